@@ -1,0 +1,1 @@
+"""What people read: strip pictures, the report, the console's end table, and all wording."""
