@@ -1,0 +1,157 @@
+"""From recorded values of the seen face to draws of its temperature and loss.
+
+A recorded value enters only as the radiance at the lens. So each draw's physics is worked out on
+a few nodes of that one variable, for each band of angle, and every station reads it off through
+one interpolation matrix that all draws share: thousands of draws cost about as much as one image.
+"""
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from cladwatt.inverse.conditions import FrameDraws, LineDraws
+from cladwatt.physics.emissivity import directional_emissivity
+from cladwatt.physics.lagged_pipe import SurfaceExchange, surface_heat_flux
+from cladwatt.physics.radiometry import object_radiance
+from cladwatt.types import FloatArray
+
+__all__ = ["Face", "FaceDraws", "face_draws", "surface_temperature_draws"]
+
+NODES = 17
+
+
+@dataclass(frozen=True)
+class Face:
+    """What was seen of a strip.
+
+    Attributes
+    ----------
+    lens_temperature : (n_bands, n_stations) array
+        Blackbody-equivalent temperature at the lens, NaN where nothing usable. [K]
+    view_angle : (n_bands,) array
+        [rad]
+    """
+
+    lens_temperature: FloatArray
+    view_angle: FloatArray
+
+
+@dataclass(frozen=True)
+class FaceDraws:
+    """Draws of the seen face, each (count, n_stations), mean over the bands of angle."""
+
+    surface_temperature: FloatArray
+    """[K]"""
+    heat_flux: FloatArray | None
+    """[W/m2]; None without wind."""
+
+
+def face_draws(
+    face: Face, frame: FrameDraws, line: LineDraws, diameter: FloatArray
+) -> FaceDraws:
+    """Return draws of temperature and heat flux along a strip.
+
+    Parameters
+    ----------
+    face : Face
+        Every station either complete or NaN in all bands.
+    frame : FrameDraws
+    line : LineDraws
+    diameter : (count,) array
+        Over the cladding, for the convection law. [m]
+
+    Returns
+    -------
+    FaceDraws
+        NaN where a draw's emissivity and reflected radiance leave no positive radiance.
+
+    Notes
+    -----
+    The convection law is applied at the local temperature of each band of angle.
+    """
+    nodes = _nodes(face.lens_temperature)
+    temperature = surface_temperature_draws(nodes, face.view_angle, frame, line)
+    flux = None
+    if frame.wind_speed is not None:
+        exchange = _beside(line.exchange(frame, diameter))
+        flux = surface_heat_flux(temperature, exchange)
+    bands, stations = face.lens_temperature.shape
+    mean_temperature = np.zeros((frame.count, stations))
+    mean_flux = np.zeros((frame.count, stations))
+    for band in range(bands):
+        weights = _interpolation_matrix(nodes, face.lens_temperature[band])
+        mean_temperature += temperature[:, band] @ weights / bands
+        if flux is not None:
+            mean_flux += flux[:, band] @ weights / bands
+    return FaceDraws(mean_temperature, None if flux is None else mean_flux)
+
+
+def surface_temperature_draws(
+    lens_temperature: FloatArray, view_angle: FloatArray, frame: FrameDraws, line: LineDraws
+) -> FloatArray:
+    """Return surface temperatures for values at the lens, (count, n_bands, n_values). [K]
+
+    Parameters
+    ----------
+    lens_temperature : (n_values,) array
+        Blackbody-equivalent temperature at the lens. [K]
+    view_angle : (n_bands,) array
+        [rad]
+    frame : FrameDraws
+    line : LineDraws
+    """
+    band = frame.band
+    true_lens = lens_temperature + frame.calibration_offset(lens_temperature)
+    emissivity = directional_emissivity(
+        line.band_emissivity[:, None], view_angle, line.is_metal
+    )
+    air_radiance = band.radiance(frame.air_temperature)[:, None, None]
+    surface = object_radiance(
+        band.radiance(true_lens)[:, None, :],
+        emissivity=emissivity[:, :, None],
+        reflected_radiance=band.radiance(frame.reflected_temperature)[:, None, None],
+        transmission=frame.transmission[:, None, None],
+        atmosphere_radiance=air_radiance,
+        window_transmission=frame.window_transmission[:, None, None],
+        window_reflectance=frame.window_reflectance[:, None, None],
+        window_radiance=band.radiance(frame.window_temperature)[:, None, None],
+        window_reflected_radiance=air_radiance,
+    )
+    return band.temperature(surface)
+
+
+def _beside(exchange: SurfaceExchange) -> SurfaceExchange:
+    """Return the exchange with its draws along the first of three axes."""
+    from dataclasses import fields, replace
+
+    changes = {
+        field.name: np.asarray(value)[:, None, None]
+        for field in fields(exchange)
+        if np.ndim(value := getattr(exchange, field.name)) == 1
+    }
+    return replace(exchange, **changes)
+
+
+def _nodes(values: FloatArray) -> FloatArray:
+    low, high = np.nanmin(values), np.nanmax(values)
+    margin = 0.02 * (high - low) + 0.05
+    return np.linspace(low - margin, high + margin, NODES)
+
+
+def _interpolation_matrix(nodes: FloatArray, values: FloatArray) -> FloatArray:
+    """Return weights W with ``f(values) ~ f(nodes) @ W``: cubic Lagrange on uniform nodes.
+
+    NaN values get NaN columns.
+    """
+    step = nodes[1] - nodes[0]
+    position = (values - nodes[0]) / step
+    usable = np.isfinite(position)
+    first = np.clip(np.floor(np.where(usable, position, 1)).astype(int) - 1, 0, nodes.size - 4)
+    x = np.where(usable, position, np.nan) - first
+    weights = np.zeros((nodes.size, values.size))
+    columns = np.arange(values.size)
+    weights[first, columns] = -(x - 1) * (x - 2) * (x - 3) / 6
+    weights[first + 1, columns] = x * (x - 2) * (x - 3) / 2
+    weights[first + 2, columns] = -x * (x - 1) * (x - 3) / 2
+    weights[first + 3, columns] = x * (x - 1) * (x - 2) / 6
+    return weights
