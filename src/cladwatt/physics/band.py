@@ -22,6 +22,7 @@ __all__ = ["TABLE_LOWER", "TABLE_UPPER", "Band", "planck_spectral_radiance"]
 TABLE_LOWER: Final = 90.0
 TABLE_UPPER: Final = 1600.0
 
+_MARGIN: Final = 0.05  # so that the ends themselves are safely inside [K]
 _INTERVALS: Final = 65_536
 _NODES: Final = 4_097
 _PIECE: Final = 0.5e-6  # widest piece one Gauss rule covers [m]
@@ -72,7 +73,8 @@ class Band:
     within 1e-7 of the integral and radiance followed by its inverse returns the temperature
     within 1e-6 K. Trade: 65 536 intervals per direction (2 MiB per band, built in some tens of
     milliseconds) with one linear step each, instead of a small table with cubic steps, which
-    takes about twice as long per frame. The inverse is tabulated against the fourth root of the
+    takes about twice as long per frame. Each chord is moved by half its
+    largest error. The inverse is tabulated against the fourth root of the
     radiance, in which temperature is nearly straight. In a mid-wave band (3-5 µm) the same holds
     for the radiance; the round trip stays within 1e-4 K above -40 °C.
 
@@ -104,7 +106,7 @@ class Band:
 
     @classmethod
     def rectangular(cls, lower: float, upper: float) -> Band:
-        """Return the band of response 1 between two wavelengths. [m]"""
+        """Return the band of response 1 between two wavelengths in metres."""
         return cls((float(lower), float(upper)), (1.0, 1.0))
 
     @classmethod
@@ -125,11 +127,11 @@ class Band:
 
     @property
     def limits(self) -> tuple[float, float]:
-        """First and last wavelength. [m]"""
+        """First and last wavelength in metres."""
         return self.wavelengths[0], self.wavelengths[-1]
 
     def radiance(self, temperature: FloatLike) -> FloatArray:
-        """In-band radiance of a black body.
+        """Return the in-band radiance of a black body.
 
         Parameters
         ----------
@@ -144,7 +146,7 @@ class Band:
         return _tables(self).radiance.look_up(temperature)
 
     def radiance_derivative(self, temperature: FloatLike) -> FloatArray:
-        """Derivative of the in-band radiance with respect to temperature.
+        """Return the derivative of the in-band radiance with respect to temperature.
 
         Parameters
         ----------
@@ -159,7 +161,7 @@ class Band:
         return _tables(self).derivative.look_up(temperature)
 
     def temperature(self, radiance: FloatLike) -> FloatArray:
-        """Temperature of the black body that has this in-band radiance.
+        """Return the temperature of the black body that has this in-band radiance.
 
         Parameters
         ----------
@@ -225,7 +227,10 @@ class _Tables(NamedTuple):
 def _uniform_table(
     position: FloatArray, value: FloatArray, *, fourth_root: bool = False
 ) -> _UniformTable:
-    slope = np.diff(value) / np.diff(position)
+    """Return the table of chords, moved so that their error is as large up as down."""
+    balanced = value.copy()
+    balanced[1:-1] -= np.diff(value, 2) / 16.0  # half of a chord's largest error, h^2/8 f''
+    value, slope = balanced, np.diff(balanced) / np.diff(position)
     padding = (np.nan,)
     return _UniformTable(
         start=float(position[0]),
@@ -279,9 +284,9 @@ def _hermite(
 
 @lru_cache(maxsize=32)
 def _tables(band: Band) -> _Tables:
-    nodes = np.linspace(1.0 / TABLE_UPPER, 1.0 / TABLE_LOWER, _NODES)
+    nodes = np.linspace(1.0 / (TABLE_UPPER + _MARGIN), 1.0 / (TABLE_LOWER - _MARGIN), _NODES)
     logarithm, slope = _logarithmic_nodes(band, nodes)
-    temperature = np.linspace(TABLE_LOWER, TABLE_UPPER, _INTERVALS + 1)
+    temperature = np.linspace(TABLE_LOWER - _MARGIN, TABLE_UPPER + _MARGIN, _INTERVALS + 1)
     log_radiance, log_slope = _hermite(nodes, logarithm, slope, 1.0 / temperature)
     radiance = np.exp(log_radiance)
     derivative = -log_slope * radiance / temperature**2

@@ -156,15 +156,13 @@ def lens_radiance(
 _NOT_ARRAYS = frozenset({"band", "name", "share"})
 
 
-def _scaled_and_shifted(values: FloatArray, scale: FloatLike, offset: FloatLike) -> FloatArray:
-    """Return values x scale + offset; `values` is reused where the shapes allow."""
-    if np.shape(scale) == () and np.shape(offset) == ():
-        if float(scale) != 1.0:
-            values *= float(scale)
-        if float(offset) != 0.0:
-            values += float(offset)
-        return values
-    return np.asarray(values * scale + offset, dtype=np.float64)
+def _scaled_and_shifted(values: FloatLike, scale: FloatLike, offset: FloatLike) -> FloatArray:
+    """Return values x scale + offset as a new array of at least no dimension."""
+    result = np.array(np.multiply(values, scale), dtype=np.float64, copy=None)
+    if np.broadcast_shapes(result.shape, np.shape(offset)) != result.shape:
+        return np.array(result + offset, dtype=np.float64, copy=None)
+    result += offset
+    return result
 
 
 def object_radiance(
@@ -234,9 +232,7 @@ def object_radiance(
         raise InputError(
             "window_transmission + window_reflectance exceeds 1; expected a sum of at most 1"
         )
-    _check_shapes(
-        **{key: value for key, value in locals().items() if key != "window_emission"}
-    )
+    _check_shapes(**{key: value for key, value in locals().items() if key != "window_emission"})
     before = window_transmission * np.asarray(transmission)
     parts = (
         _part(
@@ -264,9 +260,14 @@ def object_radiance(
             "window_radiance",
         ),
     )
-    offset = reduce(np.add, parts)
-    result = np.asarray((np.asarray(lens_radiance) - offset) / (before * emissivity))
-    return np.where(result > 0.0, result, np.nan)
+    scale = 1.0 / (before * emissivity)
+    return _positive(_scaled_and_shifted(lens_radiance, scale, -reduce(np.add, parts) * scale))
+
+
+def _positive(values: FloatArray) -> FloatArray:
+    """Return `values` with NaN in place of what is not positive; works in place."""
+    np.copyto(values, np.nan, where=values <= 0.0)
+    return values
 
 
 def correct_temperature(
@@ -578,7 +579,7 @@ def accuracy_standard_uncertainty(
     percent: FloatLike,
     coverage_factor: float | None = None,
 ) -> FloatArray:
-    """Standard uncertainty behind a camera's accuracy statement such as "±2 °C or 2 %".
+    """Return the standard uncertainty behind an accuracy statement such as "±2 °C or 2 %".
 
     Parameters
     ----------
