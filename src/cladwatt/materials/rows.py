@@ -1,0 +1,136 @@
+"""Typed rows of the material tables, in SI."""
+
+from dataclasses import dataclass
+from typing import Literal
+
+from cladwatt.quantities import Quantity
+
+__all__ = ["AirRow", "CladdingMaterial", "Confidence", "LaggingMaterial", "PipeSize"]
+
+Confidence = Literal["declared", "high", "medium", "low"]
+
+
+@dataclass(frozen=True)
+class LaggingMaterial:
+    """A lagging material: laboratory conductivity against mean temperature, dry and new.
+
+    Parameters
+    ----------
+    key, name : str
+        Key as a survey writes it, and the readable name.
+    temperature : tuple of float
+        Nodes, increasing; the curve is valid between the first and the last. [K]
+    conductivity : tuple of float
+        At the nodes, linear between them. [W/(m K)]
+    u_relative : float
+        Relative standard uncertainty of the whole curve, the largest of its nodes.
+    source : str
+        Where the conductivity comes from.
+    confidence : {"declared", "high", "medium", "low"}
+        The lowest of its nodes.
+    maximum_service_temperature : float or None
+        None where no source is held. [K]
+    vapour_tight : bool
+        Closed cells that hardly pass water vapour without a separate retarder.
+    wet_ratio : (float, float) or None
+        Lowest and highest published ratio of wet to dry conductivity; None where unknown.
+    service_source, wet_source : str
+        Where these two come from.
+    """
+
+    key: str
+    name: str
+    temperature: tuple[float, ...]
+    conductivity: tuple[float, ...]
+    u_relative: float
+    source: str
+    confidence: Confidence
+    maximum_service_temperature: float | None = None
+    vapour_tight: bool = False
+    wet_ratio: tuple[float, float] | None = None
+    service_source: str = ""
+    wet_source: str = ""
+    aliases: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class CladdingMaterial:
+    """The outer surface of a line: sheet, coat, bare lagging or bare pipe.
+
+    Parameters
+    ----------
+    key, name : str
+        Key as a survey writes it, and the readable name.
+    band_emissivity : Quantity
+        In the long-wave infrared band, near the normal.
+    total_emissivity : Quantity
+        Total hemispherical, for the heat balance.
+    solar_absorptance : Quantity
+        Share of sunlight absorbed.
+    conductivity : float
+        Of the sheet or coat. [W/(m K)]
+    thickness : Quantity
+        Usual thickness, 0 where there is no sheet. [m]
+    is_metal : bool
+        Whether emissivity against angle follows bare metal rather than a dielectric coat.
+    source : str
+        Where the emissivities come from.
+    confidence : {"declared", "high", "medium", "low"}
+        How far they can be trusted.
+    """
+
+    key: str
+    name: str
+    band_emissivity: Quantity
+    total_emissivity: Quantity
+    solar_absorptance: Quantity
+    conductivity: float
+    thickness: Quantity
+    is_metal: bool
+    source: str
+    confidence: Confidence
+    aliases: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True)
+class PipeSize:
+    """Outside diameters of one nominal pipe size; None where a series does not have it.
+
+    Parameters
+    ----------
+    dn : int or None
+        Nominal diameter DN.
+    nps : float or None
+        Nominal pipe size in inches, e.g. 2.5.
+    asme, en : float or None
+        Outside diameter in the ASME B36.10M and in the EN 10220 series. [m]
+    u_relative : float
+        Relative standard uncertainty of the diameter.
+    source : str
+        Where the diameters come from.
+    """
+
+    dn: int | None
+    nps: float | None
+    asme: float | None
+    en: float | None
+    u_relative: float
+    source: str
+    confidence: Confidence
+
+
+@dataclass(frozen=True)
+class AirRow:
+    """Dry air at 101 325 Pa, as the reference equations give it; for printing and for tests.
+
+    Temperature [K], density [kg/m3], specific heat [J/(kg K)], dynamic viscosity [Pa s],
+    conductivity [W/(m K)], Prandtl number [-].
+    """
+
+    temperature: float
+    density: float
+    specific_heat: float
+    dynamic_viscosity: float
+    conductivity: float
+    prandtl: float
+    source: str
