@@ -53,7 +53,8 @@ class FrameResult:
     regions: tuple[RegionResult, ...]
     left_out: tuple[LeftOut, ...]
     remarks: tuple[Remark, ...] = ()
-    seconds: float = 0.0
+    seconds: float = field(default=0.0, compare=False)
+    """How long it took; told by the run, not kept, so that equal runs leave equal files."""
 
 
 @dataclass(frozen=True)
@@ -118,6 +119,8 @@ class Assessment:
     assumptions: tuple[Assumption, ...]
     remarks: tuple[Remark, ...] = ()
     camera: dict[str, str] = field(default_factory=dict)
+    versions: dict[str, str] = field(default_factory=dict)
+    """Of Python and the libraries the numbers depend on."""
 
     @property
     def regions(self) -> tuple[RegionResult, ...]:

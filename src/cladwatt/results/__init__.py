@@ -1,0 +1,1 @@
+"""What one run found, written to a folder and read back."""

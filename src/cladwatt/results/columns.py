@@ -1,0 +1,224 @@
+"""The columns of the result tables: name, meaning and how each is taken from the results."""
+
+import math
+import textwrap
+from collections.abc import Callable, Iterable
+from dataclasses import dataclass
+from typing import Generic, TypeVar
+
+from cladwatt.flags import FLAG_SENTENCES, flag_names
+from cladwatt.quantities import Remark
+from cladwatt.results.assessment import Interval, RegionResult, StationTable, Stretch
+from cladwatt.results.fields import FIELDS, edge_name, edge_value, is_celsius
+
+__all__ = [
+    "REGION_COLUMNS",
+    "STATION_COLUMNS",
+    "STRETCH_COLUMNS",
+    "Cell",
+    "Column",
+    "columns_text",
+    "remark_text",
+]
+
+Cell = str | float | int | bool | None
+Row = TypeVar("Row")
+StretchRow = tuple[RegionResult, Stretch]
+StationRow = tuple[RegionResult, int]
+
+
+@dataclass(frozen=True)
+class Column(Generic[Row]):
+    """One column of a table.
+
+    Parameters
+    ----------
+    name : str
+        Header, with the unit at its end.
+    unit : str
+        Unit as a person writes it; empty for text and plain numbers.
+    meaning : str
+        What stands in it, for ``COLUMNS.txt``.
+    value : callable
+        Takes the row's object and returns the cell: None, NaN and inf become an empty cell.
+    """
+
+    name: str
+    unit: str
+    meaning: str
+    value: Callable[[Row], Cell]
+
+
+def remark_text(*remarks: Remark | None) -> str:
+    """Return remarks as ``key(name=value, ...)`` joined by ``; ``; empty for none."""
+    return "; ".join(_one_remark(remark) for remark in remarks if remark is not None)
+
+
+def _one_remark(remark: Remark) -> str:
+    if not remark.parameters:
+        return remark.key
+    inside = ", ".join(
+        f"{name}={value if isinstance(value, str) else format(value, '.6g')}"
+        for name, value in remark.parameters
+    )
+    return f"{remark.key}({inside})"
+
+
+def _number(value: float, celsius: bool) -> float | None:
+    if not math.isfinite(value):
+        return None
+    return edge_value(value) if celsius else float(value)
+
+
+def _figure_columns(
+    owner: type, field: str, get: Callable[[Row], float | Interval | None], *, interval: bool
+) -> list[Column[Row]]:
+    """Return the column of a figure, or the three of an interval."""
+    entry = FIELDS[owner][field]
+    celsius = is_celsius(owner, field)
+
+    def part_of(part: str) -> Callable[[Row], Cell]:
+        def cell(row: Row) -> Cell:
+            found = get(row)
+            if isinstance(found, Interval):
+                found = float(getattr(found, part))
+            return None if found is None else _number(found, celsius)
+
+        return cell
+
+    columns = [Column(edge_name(owner, field), entry.unit, entry.meaning, part_of("median"))]
+    if interval:
+        columns += [
+            Column(edge_name(owner, field, part), entry.unit, f"its {percentile}", part_of(part))
+            for part, percentile in (("low", "2.5 percentile"), ("high", "97.5 percentile"))
+        ]
+    return columns
+
+
+def _region_figures() -> list[Column[RegionResult]]:
+    plain = (
+        "start_station", "end_station", "recorded_temperature", "probability_damaged",
+        "probability_local", "probability_aged", "air_temperature",
+    )  # fmt: skip
+    columns: list[Column[RegionResult]] = []
+    for field in FIELDS[RegionResult]:
+        if field == "variance_shares":
+            continue
+
+        def get(region: RegionResult, field: str = field) -> float | Interval | None:
+            found: float | Interval | None = getattr(region, field)
+            return found
+
+        columns += _figure_columns(RegionResult, field, get, interval=field not in plain)
+    return columns
+
+
+def _stretch_figures() -> list[Column[StretchRow]]:
+    columns: list[Column[StretchRow]] = []
+    for field in FIELDS[Stretch]:
+        if field == "outline":
+            continue
+
+        def get(row: StretchRow, field: str = field) -> float | Interval | None:
+            found: float | Interval | None = getattr(row[1], field)
+            return found
+
+        interval = field in ("start", "end", "heat_loss", "excess")
+        columns += _figure_columns(Stretch, field, get, interval=interval)
+    return columns
+
+
+def _station_figures() -> list[Column[StationRow]]:
+    columns: list[Column[StationRow]] = []
+    for field in FIELDS[StationTable]:
+        if field == "flags":
+            continue
+
+        def get(row: StationRow, field: str = field) -> float:
+            return float(getattr(row[0].stations, field)[row[1]])
+
+        columns += _figure_columns(StationTable, field, get, interval=False)
+    return columns
+
+
+def _shares_text(region: RegionResult) -> str:
+    return "; ".join(f"{name}={share:.3g}" for name, share in region.variance_shares)
+
+
+REGION_COLUMNS: tuple[Column[RegionResult], ...] = (
+    Column("frame_id", "", "frame the region is drawn on", lambda r: r.frame_id),
+    Column("region_id", "", "region as drawn", lambda r: r.region_id),
+    Column("tag", "", "tag of the line", lambda r: r.tag),
+    Column("area", "", "area of the plant", lambda r: r.area),
+    Column("gain", "", "true where the line gains heat (chilled)", lambda r: bool(r.gain)),
+    Column("verdict", "", "quantified, indicative or not quantified", lambda r: r.verdict.level),
+    Column("reason", "", "why that verdict, as a key", lambda r: remark_text(r.verdict.reason)),
+    Column("advice", "", "measurement that would help most, as a key",
+           lambda r: remark_text(r.verdict.advice)),
+    *_region_figures(),
+    Column("stretches", "", "number of damaged stretches found", lambda r: len(r.stretches)),
+    Column("variance_shares", "", "part of the variance of the loss by quantity", _shares_text),
+    Column("missing", "", "what could not be given, and why", lambda r: remark_text(*r.missing)),
+    Column("cautions", "", "cautions, as keys", lambda r: remark_text(*r.cautions)),
+    Column("remarks", "", "other remarks, as keys", lambda r: remark_text(*r.remarks)),
+)  # fmt: skip
+
+STRETCH_COLUMNS: tuple[Column[StretchRow], ...] = (
+    Column("frame_id", "", "frame the region is drawn on", lambda row: row[0].frame_id),
+    Column("region_id", "", "region the stretch lies in", lambda row: row[0].region_id),
+    Column("stretch_id", "", "id of the stretch", lambda row: row[1].id),
+    Column("tag", "", "tag of the line", lambda row: row[0].tag),
+    Column("area", "", "area of the plant", lambda row: row[0].area),
+    Column("gain", "", "true where the line gains heat", lambda row: bool(row[0].gain)),
+    Column("verdict", "", "verdict of the region", lambda row: row[0].verdict.level),
+    *_stretch_figures(),
+)
+
+STATION_COLUMNS: tuple[Column[StationRow], ...] = (
+    Column("frame_id", "", "frame the region is drawn on", lambda row: row[0].frame_id),
+    Column("region_id", "", "region the station lies in", lambda row: row[0].region_id),
+    Column("tag", "", "tag of the line", lambda row: row[0].tag),
+    *_station_figures(),
+    Column("flags", "", FIELDS[StationTable]["flags"].meaning,
+           lambda row: flag_names(int(row[0].stations.flags[row[1]]))),
+)  # fmt: skip
+
+_NOTES = (
+    "Every table is UTF-8 text, comma separated, with one header row and a decimal point whatever "
+    "the computer's language. Units stand at the end of the names; temperatures are in degrees "
+    "Celsius, everything else in SI. Read one with pandas.read_csv(path).",
+    "A figure without _low or _high is the median, or the plain value where there is no interval; "
+    "_low and _high are the 2.5 and 97.5 percentiles, the 95 % interval. Figures carry six "
+    "significant digits; assessment.json and draws/ carry all.",
+    "An empty cell means: not known, or not finite. A resistance has no finite upper end where "
+    "the heat loss may be zero; its _high cell is then empty.",
+    "Figures of regions that are not quantified stand here with their intervals; the column "
+    "verdict says so.",
+    "Reasons, cautions and remarks are keys with parameters, key(name=value, ...), joined by "
+    "semicolons; the report words them.",
+    "Text is written as it was given, also where it begins with =, +, - or @. A spreadsheet may "
+    "take such a cell for a formula: import the column as text. In pandas, tags that look like "
+    "numbers, or read NA or null, stay text with dtype={'tag': str}, keep_default_na=False, "
+    "na_values={...} for the figures.",
+    "files.csv lists every file of this folder with its size and SHA-256. A folder that holds "
+    "other or changed files is not overwritten.",
+)
+
+
+def columns_text() -> str:
+    """Return the text of ``COLUMNS.txt``: what every column of every table means."""
+    parts = ["Columns of the result tables", ""]
+    for note in _NOTES:
+        parts += [*textwrap.wrap(note, 96), ""]
+    for name, table in (
+        ("regions.csv: one row per region", _described(REGION_COLUMNS)),
+        ("stretches.csv: one row per damaged stretch", _described(STRETCH_COLUMNS)),
+        ("stations.csv: one row per station along a region", _described(STATION_COLUMNS)),
+        ("flags in stations.csv", [(str(f.name).lower(), s) for f, s in FLAG_SENTENCES.items()]),
+    ):
+        parts += [name, *(f"  {column:<38} {meaning}" for column, meaning in table), ""]
+    return "\n".join(parts)
+
+
+def _described(columns: Iterable[Column[Row]]) -> list[tuple[str, str]]:
+    return [(c.name, f"{c.meaning} [{c.unit}]" if c.unit else c.meaning) for c in columns]
