@@ -14,6 +14,7 @@ import numpy as np
 
 from cladwatt.errors import InputError
 from cladwatt.physics.constants import FIRST_RADIATION_RADIANCE, SECOND_RADIATION
+from cladwatt.physics.lookup import UniformTable, uniform_table
 from cladwatt.types import FloatArray, FloatLike
 
 __all__ = ["TABLE_LOWER", "TABLE_UPPER", "Band", "planck_spectral_radiance"]
@@ -27,7 +28,6 @@ _INTERVALS: Final = 65_536
 _NODES: Final = 4_097
 _PIECE: Final = 0.5e-6  # widest piece one Gauss rule covers [m]
 _ORDER: Final = 10
-_CHUNK: Final = 16_384  # elements per pass: the working buffers stay in cache
 _WAVELENGTHS_ACCEPTED: Final = (1.5e-6, 30e-6)
 
 
@@ -177,68 +177,10 @@ class Band:
         return _tables(self).temperature.look_up(radiance)
 
 
-@dataclass(frozen=True)
-class _UniformTable:
-    """A line per interval of a uniform grid: value = intercept + slope x position.
-
-    The first and last interval are padding that holds NaN, so that whatever lies outside, and
-    NaN itself, comes out as NaN without a test per element.
-    """
-
-    start: float
-    step: float
-    intercept: FloatArray
-    slope: FloatArray
-    fourth_root: bool = False
-
-    def look_up(self, position: FloatLike) -> FloatArray:
-        given = np.asarray(position)
-        flat = given.reshape(-1)
-        out = np.empty(flat.size)
-        size = min(flat.size, _CHUNK)
-        cell, gathered, root = np.empty(size, dtype=np.intp), np.empty(size), np.empty(size)
-        scaled = np.empty(size)
-        inverse, shift = 1.0 / self.step, 1.0 - self.start / self.step
-        with np.errstate(invalid="ignore", over="ignore"):
-            for begin in range(0, flat.size, _CHUNK):
-                here = flat[begin : begin + _CHUNK]
-                count = here.size
-                result = out[begin : begin + count]
-                x, a, c, r = scaled[:count], gathered[:count], cell[:count], root[:count]
-                if self.fourth_root:
-                    np.sqrt(here, out=r)
-                    here = np.sqrt(r, out=r)
-                np.multiply(here, inverse, out=x)
-                np.add(x, shift, out=x)
-                np.copyto(c, x, casting="unsafe")
-                self.slope.take(c, out=result, mode="clip")
-                np.multiply(result, here, out=result)
-                self.intercept.take(c, out=a, mode="clip")
-                np.add(result, a, out=result)
-        return out.reshape(given.shape)
-
-
 class _Tables(NamedTuple):
-    radiance: _UniformTable
-    derivative: _UniformTable
-    temperature: _UniformTable
-
-
-def _uniform_table(
-    position: FloatArray, value: FloatArray, *, fourth_root: bool = False
-) -> _UniformTable:
-    """Return the table of chords, moved so that their error is as large up as down."""
-    balanced = value.copy()
-    balanced[1:-1] -= np.diff(value, 2) / 16.0  # half of a chord's largest error, h^2/8 f''
-    value, slope = balanced, np.diff(balanced) / np.diff(position)
-    padding = (np.nan,)
-    return _UniformTable(
-        start=float(position[0]),
-        step=float((position[-1] - position[0]) / (position.size - 1)),
-        slope=np.concatenate([padding, slope, padding]),
-        intercept=np.concatenate([padding, value[:-1] - slope * position[:-1], padding]),
-        fourth_root=fourth_root,
-    )
+    radiance: UniformTable
+    derivative: UniformTable
+    temperature: UniformTable
 
 
 def _quadrature(band: Band) -> tuple[FloatArray, FloatArray]:
@@ -297,7 +239,7 @@ def _tables(band: Band) -> _Tables:
         value, change = _hermite(nodes, logarithm, slope, inverse)
         inverse -= (value - target) / change
     return _Tables(
-        radiance=_uniform_table(temperature, radiance),
-        derivative=_uniform_table(temperature, derivative),
-        temperature=_uniform_table(root, 1.0 / inverse, fourth_root=True),
+        radiance=uniform_table(temperature, radiance),
+        derivative=uniform_table(temperature, derivative),
+        temperature=uniform_table(root, 1.0 / inverse, fourth_root=True),
     )
