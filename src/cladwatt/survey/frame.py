@@ -8,44 +8,26 @@ import numpy as np
 
 from cladwatt.errors import Fault, FrameError
 from cladwatt.quantities import Remark
-from cladwatt.survey.decoded import MAXIMUM_FILE_BYTES, Decoded, Refusal, TemperatureUnit
+from cladwatt.survey.decoded import Decoded, Refusal, TemperatureUnit
+from cladwatt.survey.frame_checks import (
+    background_question,
+    declared_air,
+    looks_like,
+    plateau_question,
+    refuse_impossible,
+)
+from cladwatt.survey.frame_file import decode_frame_bytes, read_frame_bytes
 from cladwatt.survey.model import FrameEntry, FrameFormat
 from cladwatt.survey.plausibility import (
-    BACKGROUND_TOLERANCE,
-    COLDEST_PIXEL,
-    HOTTEST_PIXEL,
-    Spread,
-    background_distance,
-    likely_readings,
-    shown,
     spread_of,
 )
-from cladwatt.survey.temperature_unit import UNIT_SIGN, from_kelvin, to_kelvin
+from cladwatt.survey.temperature_unit import UNIT_SIGN, to_kelvin
 from cladwatt.types import BoolArray, FloatArray
 
-__all__ = ["Frame", "decode_frame_bytes", "frame_questions", "read_frame", "read_frame_bytes"]
+__all__ = ["Frame", "frame_questions", "read_frame"]
 
-_ACCEPTED = "expected a CSV matrix or a TIFF of temperatures"
-_FOREIGN = {
-    b"\x89PNG": "a PNG picture",
-    b"\xff\xd8\xff": "a JPEG picture",
-    b"GIF8": "a GIF picture",
-    b"BM": "a BMP picture",
-    b"PK\x03\x04": "a workbook or ZIP archive",
-    b"\xd0\xcf\x11\xe0": "an old office document",
-    b"%PDF": "a PDF",
-    b"\x1f\x8b": "a gzip archive",
-    b"\x89HDF": "an HDF5 file",
-    b"\x93NUMPY": "a numpy file",
-}
 # Ends of the recording range survive a float32 and a change of unit only so far. [K]
 _RANGE_TOLERANCE = 0.005
-# A frame in which nothing at all comes this near to the air shows no background. [K]
-_NOTHING_NEAR_AIR = 35.0
-_WRONG_UNIT_TOLERANCE = 8.0
-_SKY_BELOW_AIR = 90.0
-_PLATEAU_LEVELS = 50
-_PLATEAU_PIXELS = 30
 
 
 @dataclass(frozen=True)
@@ -139,7 +121,11 @@ def frame_questions(
     tuple of Fault
         Of severity ``question``.
     """
-    found = (_background_question(frame, entry), _plateau_question(frame, entry))
+    unit = next(key for key, sign in UNIT_SIGN.items() if sign == frame.description["unit"])
+    found = (
+        background_question(frame.temperature, unit, entry),
+        plateau_question(frame.temperature, entry),
+    )
     return tuple(
         Fault(
             _path_in_messages(entry.path, root),
@@ -151,59 +137,6 @@ def frame_questions(
         for question in found
         if question is not None
     )
-
-
-def read_frame_bytes(path: Path) -> bytes:
-    """Return the bytes of a frame file that is a file of a size fit to be read.
-
-    Raises
-    ------
-    Refusal
-        If it is missing, a folder, empty, too large or may not be read.
-    """
-    try:
-        if path.is_dir():
-            raise Refusal("this is a folder", f"{_ACCEPTED}; name the file inside it")
-        if not path.exists():
-            raise Refusal("there is no such file", f"{_ACCEPTED}; correct the path or add the file")
-        if not path.is_file():
-            raise Refusal("this is no ordinary file", _ACCEPTED)
-        size = path.stat().st_size
-        if size > MAXIMUM_FILE_BYTES:
-            raise Refusal(f"the file holds {size} bytes", f"expected at most {MAXIMUM_FILE_BYTES}")
-        data = path.read_bytes()
-    except (OSError, ValueError) as error:
-        reason = getattr(error, "strerror", None) or str(error)
-        raise Refusal(f"the file cannot be read ({reason})", _ACCEPTED) from error
-    if not data:
-        raise Refusal("the file is empty", f"{_ACCEPTED}; export or copy it again")
-    return data
-
-
-def decode_frame_bytes(data: bytes, *, suffix: str = "", page: int = 0) -> Decoded:
-    """Decode a frame file by what it holds, not by what it is called.
-
-    Raises
-    ------
-    Refusal
-        If it is neither a CSV matrix nor a fit TIFF.
-    """
-    from cladwatt.survey.csv_format import MAXIMUM_CSV_BYTES, decode_text, parse_csv_matrix
-    from cladwatt.survey.tiff_format import is_tiff, parse_tiff
-
-    if is_tiff(data):
-        return parse_tiff(data, page=page)
-    for magic, name in _FOREIGN.items():
-        if data.startswith(magic):
-            raise Refusal(f"the file is {name}", f"{_ACCEPTED}; export the recorded values")
-    if suffix.lower() in (".tif", ".tiff"):
-        raise Refusal("the file does not begin like a TIFF", f"{_ACCEPTED}; export it again")
-    if len(data) > MAXIMUM_CSV_BYTES:
-        raise Refusal(f"the file holds {len(data)} bytes", f"expected at most {MAXIMUM_CSV_BYTES}")
-    if page != 0:
-        raise Refusal(f"page {page} was chosen of a text file", "expected page = 0, or a TIFF")
-    text, encoding = decode_text(data)
-    return parse_csv_matrix(text, encoding=encoding)
 
 
 def _path_in_messages(path: Path, root: Path | None) -> str:
@@ -229,7 +162,7 @@ def _make_frame(entry: FrameEntry, decoded: Decoded, digest: str) -> Frame:
             f"not one usable pixel: {int(dead.sum())} dead, {int(clipped.sum())} clipped",
             "expected recorded temperatures; check bad_value and the recording range",
         )
-    _refuse_impossible(numbers, temperature, usable, spread, unit, entry)
+    refuse_impossible(numbers, temperature, usable, spread, unit, entry)
     temperature = np.where(usable, temperature, np.nan)
     planes: tuple[FloatArray, BoolArray, BoolArray] = (temperature, dead, clipped)
     if form.rows_from == "bottom":
@@ -269,7 +202,7 @@ def _scaled(decoded: Decoded, form: FrameFormat, dead: BoolArray) -> FloatArray:
         raise Refusal(
             f"{decoded.dtype} counts ({extent}) without a declared {missing}",
             f"expected scale and offset, temperature = counts x scale + offset"
-            f"{_looks_like(spread_of(decoded.values, ~dead), None)}",
+            f"{looks_like(spread_of(decoded.values, ~dead), None)}",
         )
     if scale is not None and not (np.isfinite(scale) and scale > 0):
         raise Refusal(f"scale is {scale}", "expected a number above 0")
@@ -280,17 +213,6 @@ def _scaled(decoded: Decoded, form: FrameFormat, dead: BoolArray) -> FloatArray:
     return decoded.values * (1.0 if scale is None else scale) + (offset or 0.0)
 
 
-def _looks_like(spread: Spread | None, air: float | None) -> str:
-    readings = likely_readings(spread, air) if spread is not None else ()
-    if not readings:
-        return ""
-    names = " or ".join(
-        f"{reading} ({shown(reading.spread.minimum, 'C')} to {shown(reading.spread.maximum, 'C')})"
-        for reading in readings[:2]
-    )
-    return f"; they look like {names}: {readings[0].declaration}"
-
-
 def _settle_unit(
     decoded: Decoded, form: FrameFormat, numbers: FloatArray, dead: BoolArray, entry: FrameEntry
 ) -> TemperatureUnit:
@@ -299,7 +221,7 @@ def _settle_unit(
         extent = f"{spread.minimum:g} to {spread.maximum:g}" if spread else "none"
         raise Refusal(
             f"no unit is declared and none stands in the file (values {extent})",
-            f'expected unit = "C", "K" or "F"{_looks_like(spread, _air(entry))}',
+            f'expected unit = "C", "K" or "F"{looks_like(spread, declared_air(entry))}',
         )
     if form.unit is not None and decoded.unit is not None and form.unit != decoded.unit:
         raise Refusal(
@@ -322,63 +244,6 @@ def _clipped_pixels(temperature: FloatArray, decoded: Decoded, form: FrameFormat
         if form.range_upper is not None:
             clipped |= temperature >= form.range_upper - _RANGE_TOLERANCE
     return clipped
-
-
-def _air(entry: FrameEntry) -> float | None:
-    air = entry.conditions.air_temperature
-    return None if air is None else air.value
-
-
-def _refuse_impossible(
-    numbers: FloatArray,
-    temperature: FloatArray,
-    usable: BoolArray,
-    spread: Spread,
-    unit: TemperatureUnit,
-    entry: FrameEntry,
-) -> None:
-    """Stop a frame whose values cannot be temperatures in the unit settled on."""
-    air, sign = _air(entry), UNIT_SIGN[unit]
-    extent = f"values {spread.minimum:g} to {spread.maximum:g}"
-    outside = usable & ((temperature < COLDEST_PIXEL) | (temperature > HOTTEST_PIXEL))
-    limits = f"{shown(COLDEST_PIXEL, unit)} to {shown(HOTTEST_PIXEL, unit)}"
-    count = int(outside.sum())
-    if count > 0.01 * usable.sum():
-        raise Refusal(
-            f"{extent} cannot be temperatures in {sign}",
-            f"expected {limits}{_looks_like(spread, air)}",
-        )
-    if count:
-        example = float(numbers[outside].flat[0])
-        raise Refusal(
-            f"{count} pixel(s) hold values such as {example:g}, no temperature in {sign}",
-            f"expected {limits}; if it marks dead pixels, declare it as bad_value",
-        )
-    _refuse_other_unit(spread, unit, air, extent)
-
-
-def _refuse_other_unit(
-    spread: Spread, unit: TemperatureUnit, air: float | None, extent: str
-) -> None:
-    """Stop a frame wholly far above the air that another unit would put right there."""
-    centre = 293.15 if air is None else air
-    above = spread.kelvin(unit).low - centre
-    if above <= (_NOTHING_NEAR_AIR if air is not None else 4 * _NOTHING_NEAR_AIR):
-        return
-    better = [
-        reading
-        for reading in likely_readings(spread, centre)
-        if abs(reading.distance) <= _WRONG_UNIT_TOLERANCE
-        and (reading.unit, reading.scale) != (unit, 1.0)
-    ]
-    if better:
-        told = "" if air is None else f" at {shown(air, 'C')}"
-        raise Refusal(
-            f"{extent} cannot be {UNIT_SIGN[unit]}: nothing in the frame is within "
-            f"{above:.0f} K of the air",
-            f"expected a background near the air{told}; they look like {better[0]}: "
-            f"{better[0].declaration}",
-        )
 
 
 def _remarks(
@@ -413,51 +278,3 @@ def _description(
         description["scale"] = f"{1.0 if form.scale is None else form.scale:g}"
         description["offset"] = f"{form.offset or 0.0:g}"
     return description
-
-
-def _background_question(frame: Frame, entry: FrameEntry) -> tuple[str, str] | None:
-    air = _air(entry)
-    spread = spread_of(frame.temperature)
-    if air is None or spread is None:
-        return None
-    distance = background_distance(spread, air)
-    if abs(distance) <= BACKGROUND_TOLERANCE:
-        return None
-    unit = next(key for key, sign in UNIT_SIGN.items() if sign == frame.description["unit"])
-    other = [
-        reading
-        for reading in likely_readings(_in_unit(spread, unit), air)
-        if (reading.unit, reading.scale) != (unit, 1.0)
-    ]
-    # Outdoors the background may be sky, which looks far colder than the air.
-    sky = entry.conditions.indoors is False and -_SKY_BELOW_AIR < distance < 0
-    if sky and not (other and abs(other[0].distance) <= _WRONG_UNIT_TOLERANCE):
-        return None
-    hint = f" The numbers also look like {other[0]}: {other[0].declaration}" if other else ""
-    return (
-        f"the background is near {shown(air + distance, 'C')}, "
-        f"{abs(distance):.0f} K {'above' if distance > 0 else 'below'} "
-        f"the declared air of {shown(air, 'C')}",
-        f"is the air temperature right, and the unit?{hint}",
-    )
-
-
-def _in_unit(spread: Spread, unit: TemperatureUnit) -> Spread:
-    zero, one = from_kelvin(0.0, unit), from_kelvin(1.0, unit)
-    return spread.scaled(one - zero, zero)
-
-
-def _plateau_question(frame: Frame, entry: FrameEntry) -> tuple[str, str] | None:
-    """Ask about many pixels sharing the highest value where no upper end is declared."""
-    if entry.format.range_upper is not None:
-        return None
-    inside = frame.temperature[np.isfinite(frame.temperature)]
-    levels, counts = np.unique(inside, return_counts=True)
-    if levels.size < _PLATEAU_LEVELS or counts[-1] < _PLATEAU_PIXELS:
-        return None
-    if counts[-1] < 10 * counts[-11:-1].max():
-        return None
-    return (
-        f"{int(counts[-1])} pixels share the highest value, {shown(float(levels[-1]), 'C')}",
-        "is this the end of the recording range? Then declare range_upper_C",
-    )
