@@ -57,6 +57,7 @@ def _pipe_size(placed: Placed, shorts: Mapping[str, str], faults: list[Fault]) -
         )
     elif dn is None and nps is None:
         faults.append(placed.fault("", "neither dn nor nps is given", "expected one of them"))
+        return None
     if dn is not None and dn != int(dn):
         faults.append(placed.fault("dn", f"found {dn:g}", "expected a whole number"))
     nominal = dn if dn is not None else 25.4 * (nps or 1.0)

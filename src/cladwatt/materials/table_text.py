@@ -141,7 +141,9 @@ def _split(text: str, parsed: ParsedTable, path: str) -> tuple[list[tuple[int, l
     try:
         for cells in reader:
             filled = any(cell.strip() for cell in cells)
-            if filled and not cells[0].lstrip().startswith("#"):
+            # A table of texts has a units row of nothing but separators.
+            is_units_row = len(rows) == 1 and len(cells) == len(rows[0][1]) > 1
+            if (filled or is_units_row) and not cells[0].lstrip().startswith("#"):
                 rows.append((reader.line_num, cells))
     except csv.Error as error:
         expected = "expected quoted cells to be closed on the line they begin"

@@ -39,7 +39,7 @@ __all__ = [
 ]
 
 Series = Literal["EN", "ASME"]
-_Row = TypeVar("_Row", LaggingMaterial, CladdingMaterial)
+_Row = TypeVar("_Row", bound=LaggingMaterial | CladdingMaterial)
 
 
 def _found(name: str, rows: Mapping[str, _Row], what: str, table: str) -> _Row:
