@@ -1,0 +1,117 @@
+"""Every quantity an assessment rested on, with its source: nothing assumed unseen."""
+
+from cladwatt.quantities import Quantity
+from cladwatt.results.assessment import Assumption
+from cladwatt.survey.model import Conditions, Line
+from cladwatt.survey.survey import Survey
+
+__all__ = ["assumptions_of"]
+
+_CONDITION_UNITS = {
+    "air_temperature": "K",
+    "surroundings_temperature": "K",
+    "reflected_temperature": "K",
+    "relative_humidity": "-",
+    "distance": "m",
+    "atmosphere_transmission": "-",
+    "wind_speed": "m/s",
+    "sky_band_temperature": "K",
+    "sky_total_temperature": "K",
+    "sky_view_factor": "-",
+    "solar_irradiance": "W/m2",
+}
+
+
+def assumptions_of(survey: Survey) -> tuple[Assumption, ...]:
+    """List every declared quantity and default behind a survey's results.
+
+    Parameters
+    ----------
+    survey : Survey
+
+    Returns
+    -------
+    tuple of Assumption
+        Camera, site, then lines, then frames in their order; a condition equal in all frames
+        stands once.
+    """
+    rows = [*_camera(survey)]
+    if survey.site.pressure is not None:
+        rows.append(_row("site", "pressure", survey.site.pressure, "Pa"))
+    for line in survey.lines.values():
+        rows.extend(_line(line))
+    rows.extend(_conditions(survey))
+    return tuple(rows)
+
+
+def _row(owner: str, name: str, quantity: Quantity, unit: str) -> Assumption:
+    return Assumption(
+        owner, name, quantity.value, quantity.u, unit, quantity.source, quantity.confidence
+    )
+
+
+def _camera(survey: Survey) -> list[Assumption]:
+    camera = survey.camera
+    band = camera.band_source
+    accuracy = camera.accuracy
+    rows = [
+        Assumption("camera", "band_lower", camera.band[0], 0.0, "m", band, ""),
+        Assumption("camera", "band_upper", camera.band[1], 0.0, "m", band, ""),
+        Assumption("camera", "accuracy_limit", accuracy.limit, 0.0, "K", accuracy.source, ""),
+        Assumption("camera", "accuracy_percent", accuracy.percent, 0.0, "%", accuracy.source, ""),
+    ]
+    if camera.noise is not None:
+        rows.append(_row("camera", "noise", camera.noise, "K"))
+    return rows
+
+
+def _line(line: Line) -> list[Assumption]:
+    owner = f"line {line.tag}"
+    cladding = line.cladding
+    named: list[tuple[str, Quantity | None, str]] = [
+        ("pipe_outside_diameter", line.pipe_outside_diameter, "m"),
+        ("inside_temperature", line.inside_temperature, "K"),
+        ("installation_factor", line.installation_factor, "-"),
+        ("band_emissivity", cladding.band_emissivity, "-"),
+        ("total_emissivity", cladding.total_emissivity, "-"),
+        ("cladding_thickness", cladding.thickness, "m"),
+    ]
+    rows = [_row(owner, name, value, unit) for name, value, unit in named if value is not None]
+    for number, layer in enumerate(line.layers, start=1):
+        if layer.thickness is not None:
+            rows.append(_row(owner, f"layer_{number}_thickness", layer.thickness, "m"))
+        if layer.conductivity is not None:
+            curve = layer.conductivity
+            middle = curve.conductivity[len(curve.conductivity) // 2]
+            rows.append(
+                Assumption(
+                    owner,
+                    f"layer_{number}_conductivity",
+                    middle,
+                    middle * layer.conductivity_factor.u,
+                    "W/(m K)",
+                    curve.source,
+                    layer.conductivity_factor.confidence,
+                )
+            )
+    return rows
+
+
+def _conditions(survey: Survey) -> list[Assumption]:
+    rows = []
+    for name, unit in _CONDITION_UNITS.items():
+        by_value: dict[Quantity, list[str]] = {}
+        for frame in survey.frames:
+            value = _condition(frame.conditions, name)
+            if value is not None:
+                by_value.setdefault(value, []).append(frame.id)
+        for value, frames in by_value.items():
+            everywhere = len(frames) == len(survey.frames)
+            owner = "all frames" if everywhere else "frame " + ", ".join(frames)
+            rows.append(_row(owner, name, value, unit))
+    return rows
+
+
+def _condition(conditions: Conditions, name: str) -> Quantity | None:
+    value: Quantity | None = getattr(conditions, name)
+    return value

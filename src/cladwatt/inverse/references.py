@@ -1,0 +1,265 @@
+"""Field references in a frame: foil, tape, contact reading, known background.
+
+Each is worked out draw by draw with the same camera error, air and air path as the pipe beside
+it, so what they share cancels where it should; then it is weighed against what was declared by
+the inverse of the variances. A reading that cannot say anything is set aside with its reason.
+"""
+
+from collections.abc import Sequence
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from cladwatt.inverse.conditions import FrameDraws, LineDraws
+from cladwatt.inverse.draws import DrawBook
+from cladwatt.measure.outline import region_mask, widened
+from cladwatt.physics.constants import ZERO_CELSIUS
+from cladwatt.physics.field_methods import (
+    emissivity_from_contact,
+    emissivity_from_reference,
+    reflected_temperature_from_foil,
+)
+from cladwatt.quantities import Quantity, Remark
+from cladwatt.survey.region import Region
+from cladwatt.types import BoolArray, FloatArray
+
+__all__ = ["ReferenceReading", "read_references", "with_emissivity", "with_frame_references"]
+
+FOIL_EMISSIVITY = Quantity(0.07, 0.03, lower=0.01, upper=0.3)
+"""Bright aluminium foil: Incropera et al., table A.11 gives 0.07; its u is an assumption."""
+TAPE_EMISSIVITY = Quantity(0.95, 0.02, lower=0.8, upper=0.99)
+"""Black vinyl electrical tape, 0.93 to 0.97 in handbooks."""
+CONTACT_U = 1.5
+"""A contact probe reads towards air; common practice, no source. [K]"""
+FOIL_U = 0.5
+"""Mean over the half space against what this cladding reflects; assumption. [K]"""
+BACKGROUND_EMISSIVITY_U = 0.3
+"""Error of a painted or brick background of known temperature by its emissivity. [K]"""
+TAPE_U_RELATIVE = 0.04
+"""Tape changes the heat balance where it sticks; assumption."""
+
+
+@dataclass(frozen=True)
+class ReferenceReading:
+    """A reference region with what the frame shows there, at the lens. [K]"""
+
+    region: Region
+    reading: float
+    beside: float
+    """Of the pipe's own surface next to a tape patch; NaN for the others."""
+
+
+def read_references(
+    lens_temperature: FloatArray, regions: Sequence[Region]
+) -> tuple[ReferenceReading, ...]:
+    """Read every reference region of a frame.
+
+    Parameters
+    ----------
+    lens_temperature : (rows, cols) array
+        Blackbody-equivalent temperature at the lens, NaN where masked. [K]
+    regions : sequence of Region
+        All regions of the frame.
+
+    Returns
+    -------
+    tuple of ReferenceReading
+        NaN readings where nothing usable lies inside.
+    """
+    readings = []
+    for region in regions:
+        if region.role not in ("foil", "tape", "contact", "background"):
+            continue
+        mask = region_mask(region, lens_temperature.shape)
+        core = mask & ~widened(~mask, 1.0)
+        inside = core if np.isfinite(lens_temperature[core]).sum() >= 4 else mask
+        readings.append(
+            ReferenceReading(
+                region,
+                _median(lens_temperature, inside),
+                _beside(lens_temperature, mask, region, regions),
+            )
+        )
+    return tuple(readings)
+
+
+def _median(image: FloatArray, mask: BoolArray) -> float:
+    values = image[mask]
+    values = values[np.isfinite(values)]
+    return float(np.median(values)) if values.size else float("nan")
+
+
+def _beside(
+    image: FloatArray, mask: BoolArray, region: Region, regions: Sequence[Region]
+) -> float:
+    """Median of the pipe's surface in a ring around a patch, clear of its blurred rim."""
+    if region.role != "tape":
+        return float("nan")
+    pipe = np.zeros(mask.shape, dtype=bool)
+    for other in regions:
+        if other.role == "pipe" and other.tag == region.tag:
+            whole = region_mask(other, mask.shape)
+            pipe |= whole & ~widened(~whole, 3.0)
+    return _median(image, widened(mask, 8.0) & ~widened(mask, 2.0) & pipe)
+
+
+def with_frame_references(
+    frame: FrameDraws, readings: Sequence[ReferenceReading], book: DrawBook
+) -> tuple[FrameDraws, tuple[Remark, ...]]:
+    """Narrow the camera's offset by a known background, and the reflected temperature by foil.
+
+    Parameters
+    ----------
+    frame : FrameDraws
+    readings : sequence of ReferenceReading
+    book : DrawBook
+
+    Returns
+    -------
+    FrameDraws
+    tuple of Remark
+        What was used, and what was set aside.
+    """
+    remarks: list[Remark] = []
+    for reading in (r for r in readings if r.region.role == "background"):
+        if reading.region.value is None or not np.isfinite(reading.reading):
+            remarks.append(_set_aside(reading, "no known temperature or no usable pixels"))
+            continue
+        known = book.quantity(f"region:{reading.region.id}", "value", reading.region.value)
+        known = known + BACKGROUND_EMISSIVITY_U * book.normal(
+            f"region:{reading.region.id}", "emissivity"
+        )
+        limit = frame.calibration_offset(np.array([reading.reading]))[:, 0] / frame.calibration
+        frame = replace(
+            frame,
+            calibration=_weighed(frame.calibration, (known - reading.reading) / limit),
+        )
+    for reading in (r for r in readings if r.region.role == "foil"):
+        reflected = _foil(frame, reading, book)
+        if reflected is None:
+            remarks.append(_set_aside(reading, "no usable pixels"))
+            continue
+        combined = _weighed(frame.reflected_temperature, reflected)
+        frame = replace(frame, reflected_temperature=combined)
+        middle = float(np.median(combined)) - ZERO_CELSIUS
+        remarks.append(Remark("remark.foil_used", (("temperature_C", middle),)))
+    return frame, tuple(remarks)
+
+
+def _foil(
+    frame: FrameDraws, reading: ReferenceReading, book: DrawBook
+) -> FloatArray | None:
+    """Return draws of the reflected temperature by a foil, or by the value read from it."""
+    owner = f"region:{reading.region.id}"
+    spread = FOIL_U * book.normal(owner, "half_space")
+    if reading.region.value is not None:
+        return book.quantity(owner, "value", reading.region.value) + spread
+    if not np.isfinite(reading.reading):
+        return None
+    seen = reading.reading + frame.calibration_offset(np.array([reading.reading]))[:, 0]
+    emissivity = reading.region.band_emissivity or FOIL_EMISSIVITY
+    return spread + reflected_temperature_from_foil(
+        seen,
+        band=frame.band,
+        foil_emissivity=book.quantity(owner, "band_emissivity", emissivity),
+        foil_temperature=frame.air_temperature,
+        transmission=frame.transmission,
+        atmosphere_temperature=frame.air_temperature,
+    )
+
+
+def with_emissivity(
+    line: LineDraws,
+    tag: str,
+    frame: FrameDraws,
+    readings: Sequence[ReferenceReading],
+    book: DrawBook,
+) -> tuple[LineDraws, tuple[Remark, ...]]:
+    """Narrow a line's emissivity by tape patches and contact readings on it in this frame.
+
+    Parameters
+    ----------
+    line : LineDraws
+    tag : str
+    frame : FrameDraws
+    readings : sequence of ReferenceReading
+    book : DrawBook
+
+    Returns
+    -------
+    LineDraws
+    tuple of Remark
+    """
+    remarks: list[Remark] = []
+    for reading in readings:
+        if reading.region.tag != tag or reading.region.role not in ("tape", "contact"):
+            continue
+        found = _emissivity(reading, frame, book)
+        usable = np.isfinite(found) & (found > 0.01) & (found < 1.0)
+        if usable.mean() < 0.5:
+            remarks.append(
+                _set_aside(reading, "surface within 10 K of the reflected temperature")
+            )
+            continue
+        combined = np.where(usable, _weighed(line.band_emissivity, found), line.band_emissivity)
+        line = replace(line, band_emissivity=np.clip(combined, 0.01, 0.999))
+        remarks.append(
+            Remark("remark.tape_used", (("emissivity", float(np.median(combined))),))
+        )
+    return line, tuple(remarks)
+
+
+def _emissivity(
+    reading: ReferenceReading, frame: FrameDraws, book: DrawBook
+) -> FloatArray:
+    """Return draws of the emissivity beside a patch or at a contact reading; NaN where none."""
+    owner = f"region:{reading.region.id}"
+    nothing = np.full(frame.count, np.nan)
+    if not np.isfinite(reading.reading):
+        return nothing
+    seen = reading.reading + frame.calibration_offset(np.array([reading.reading]))[:, 0]
+    if reading.region.role == "contact":
+        if reading.region.value is None:
+            return nothing
+        contact = reading.region.value
+        if contact.u == 0:
+            contact = replace(contact, u=CONTACT_U)
+        return emissivity_from_contact(
+            seen,
+            book.quantity(owner, "value", contact),
+            band=frame.band,
+            reflected_temperature=frame.reflected_temperature,
+            transmission=frame.transmission,
+            atmosphere_temperature=frame.air_temperature,
+        )
+    if not np.isfinite(reading.beside):
+        return nothing
+    beside = reading.beside + frame.calibration_offset(np.array([reading.beside]))[:, 0]
+    emissivity = emissivity_from_reference(
+        beside,
+        seen,
+        band=frame.band,
+        reference_emissivity=book.quantity(
+            owner, "value", reading.region.value or TAPE_EMISSIVITY
+        ),
+        reflected_temperature=frame.reflected_temperature,
+        transmission=frame.transmission,
+        atmosphere_temperature=frame.air_temperature,
+    )
+    return emissivity * (1 + TAPE_U_RELATIVE * book.normal(owner, "heat_balance"))
+
+
+def _weighed(declared: FloatArray, found: FloatArray) -> FloatArray:
+    """Return the two weighed by the inverse of their variances, draw by draw."""
+    declared_variance = float(np.nanvar(declared))
+    found_variance = float(np.nanvar(found))
+    if declared_variance + found_variance == 0:
+        return found
+    share = declared_variance / (declared_variance + found_variance)
+    return share * found + (1 - share) * declared
+
+
+def _set_aside(reading: ReferenceReading, reason: str) -> Remark:
+    return Remark(
+        "remark.reading_not_used", (("id", reading.region.id), ("reason", reason))
+    )
