@@ -196,10 +196,11 @@ _NOTES = (
     "verdict says so.",
     "Reasons, cautions and remarks are keys with parameters, key(name=value, ...), joined by "
     "semicolons; the report words them.",
-    "Text is written as it was given, also where it begins with =, +, - or @. A spreadsheet may "
-    "take such a cell for a formula: import the column as text. In pandas, tags that look like "
-    "numbers, or read NA or null, stay text with dtype={'tag': str}, keep_default_na=False, "
-    "na_values={...} for the figures.",
+    "Text is written as it was given, also where it begins with =, +, - or @: changing it would "
+    "break the tie to the plant's own lists. A spreadsheet may take such a cell for a formula, so "
+    "import text columns as text. Tags that look like numbers, or read NA or null, stay text with "
+    "pandas.read_csv(path, dtype={'tag': str, 'area': str}, keep_default_na=False, "
+    "na_values=['']).",
     "files.csv lists every file of this folder with its size and SHA-256. A folder that holds "
     "other or changed files is not overwritten.",
 )

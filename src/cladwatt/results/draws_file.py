@@ -85,13 +85,13 @@ def read_frame_arrays(path: Path) -> FrameArrays:
     """
     found: FrameArrays = {}
     try:
-        with np.load(path, allow_pickle=False) as archive:
+        with path.open("rb") as file, np.load(file, allow_pickle=False) as archive:
             for name in archive.files:
                 owner, _, quantity = name.rpartition("|")
                 found.setdefault(owner, {})[quantity] = archive[name]
     except FileNotFoundError as error:
         raise ResultsError(f"{path} is missing; run the assessment again") from error
-    except (OSError, ValueError, EOFError, KeyError, AttributeError, zipfile.BadZipFile) as error:
+    except (OSError, ValueError, TypeError, EOFError, KeyError, zipfile.BadZipFile) as error:
         raise ResultsError(f"{path} is damaged ({error}); run the assessment again") from error
     return found
 

@@ -39,7 +39,7 @@ def _folded(name: str) -> str:
 def _stem(name: str, *, alone: bool) -> str:
     safe = re.sub(r"[^\w.-]+", "_", name).strip("._ ")
     safe = safe.encode("utf-8", "ignore")[:_LONGEST].decode("utf-8", "ignore")
-    if safe == name and alone and not _RESERVED.match(name):
+    if name and safe == name and alone and not _RESERVED.match(name):
         return name
     digits = hashlib.sha256(name.encode("utf-8", "surrogatepass")).hexdigest()[:8]
     return f"{safe or 'id'}-{digits}" if not _RESERVED.match(safe) else f"id-{digits}"
