@@ -264,6 +264,10 @@ def test_faulty_heads(own, text, message):
     [
         ("x,9.2,0.02,0.9,0.02,0.3,0.1,50,1,0.1,no", "x: band_emissivity: found 9.2; expected 0.02"),
         ("x,0.9,0.02,0.9,0.02,0.3,0.1,50,80,0.1,no", "thickness_mm: found 80; expected 0 to 20 mm"),
+        (
+            "x,0.92,0.02,0.09,0.02,0.3,0.1,50,1,0.1,no",
+            "band_emissivity, total_emissivity: found 0.92 and 0.09; expected them within a factor",
+        ),
         ("x,0.9,0.02,0.9,0.02,0.3,0.1,50,1,0.1,maybe", "is_metal: found 'maybe'; expected yes or"),
         (
             "x,0.9,0.02,0.9,0.02,0.3,0.1,50,1,0.1,no\nX,0.9,0.02,0.9,0.02,0.3,0.1,50,1,0.1,no",
@@ -384,3 +388,36 @@ def test_junk_is_a_fault_and_no_traceback(tmp_path, junk):
     folder.mkdir()
     (folder / "claddings.csv").write_bytes(junk)
     assert all(fault.startswith("tables/claddings.csv") for fault in faults_of(folder))
+
+
+def shipped_with_one_cell_changed(name, column, factor):
+    """Yield the text of a table that ships, once per row, with one number times a factor."""
+    header, units, rows = table_rows(name)
+    place = header.index(column)
+    for index, row in enumerate(rows):
+        if not float(row[place] or 0):
+            continue
+        changed = [list(r) for r in rows]
+        changed[index][place] = f"{float(row[place]) * factor:.6g}"
+        lines = ["\t".join(cells) for cells in (header, units, *changed)]
+        yield index + 3, "\n".join(lines)
+
+
+@pytest.mark.parametrize("factor", [10.0, 0.1])
+@pytest.mark.parametrize(
+    ("name", "column"),
+    [
+        ("lagging_conductivity", "conductivity_W_per_m_K"),
+        ("claddings", "band_emissivity"),
+        ("claddings", "total_emissivity"),
+        ("pipe_sizes", "en_outside_diameter_mm"),
+        ("pipe_sizes", "asme_outside_diameter_mm"),
+    ],
+)
+def test_every_misplaced_decimal_is_caught(own, name, column, factor):
+    changed = list(shipped_with_one_cell_changed(name, column, factor))
+    assert len(changed) >= 20
+    for line, text in changed:
+        faults = faults_of(own(name, text))
+        near = {line, line + 1}  # a curve complains at the slip or at the node after it
+        assert any(f"{name}.csv:{number}:" in fault for fault in faults for number in near), line

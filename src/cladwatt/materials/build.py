@@ -26,6 +26,8 @@ _CONFIDENCE_ORDER: tuple[Confidence, ...] = ("low", "medium", "high", "declared"
 _SOLAR_BOUNDS = (0.03, 0.99)
 _LARGEST_STEP = 2.5
 """Conductivity ratio of neighbouring nodes beyond which a digit is wrong."""
+_LARGEST_RATIO = 2.0
+"""Band to total emissivity; hemispherical over normal alone is 0.95 to 1.3."""
 
 
 def _largest_lagging_conductivity(temperature: float) -> float:
@@ -146,6 +148,16 @@ def build_claddings(
             for name in ("band_emissivity", "total_emissivity")
             if (text := _bounds_fault(placed.record, name))
         ]
+        band, total = (placed.record.needed(f"{n}_emissivity") for n in ("band", "total"))
+        if not wrong and not 1 / _LARGEST_RATIO < total / band < _LARGEST_RATIO:
+            wrong.append(
+                placed.fault(
+                    f"{key}: band_emissivity, total_emissivity",
+                    f"found {band:g} and {total:g}",
+                    f"expected them within a factor {_LARGEST_RATIO:g} of each other; "
+                    "is a decimal point misplaced?",
+                )
+            )
         faults.extend(wrong)
         if not wrong:
             built[key] = _cladding(key, placed, shorts)
