@@ -5,7 +5,7 @@ from functools import cached_property
 
 import numpy as np
 
-from cladwatt.physics.radiometry import Band
+from cladwatt.physics.band import Band
 from cladwatt.types import FloatArray
 
 __all__ = ["Neighbour", "Scene"]
