@@ -275,15 +275,15 @@ class _Problem:
             lower = np.where(mismatch > 0, surface, lower)
             upper = np.where(mismatch < 0, surface, upper)
             trial = surface + step
-            is_outside = (trial < lower) | (trial > upper)
-            trial = np.where(is_outside, 0.5 * (lower + upper), trial)
+            is_inside = (trial >= lower) & (trial <= upper)
+            trial = np.where(is_inside, trial, 0.5 * (lower + upper))
             step = np.where(is_done, 0.0, trial - surface)
             surface = surface + step
             is_done |= np.abs(step) <= _STEP_TOLERANCE
             if np.all(is_done):
                 return surface
             previous, mismatch = mismatch, self.mismatch(surface)
-            step = _secant(step, previous, mismatch, 0.5 * (lower + upper) - surface)
+            step = -mismatch / _secant_slope(mismatch - previous, step, slope)
         raise FitError(
             f"the heat balance of {np.count_nonzero(~is_done)} of {is_done.size} pipes did not "
             f"close; largest open step {np.max(np.abs(step[~is_done])):.3g} K"
@@ -302,7 +302,9 @@ class _Problem:
         for _ in range(20):
             high = np.where(sun > 0, upper + reach, upper)
             low = np.where(sun < 0, np.maximum(lower - reach, 1.0), lower)
-            if not (np.any(self.mismatch(high) > 0) or np.any(self.mismatch(low) < 0)):
+            is_short = (sun > 0) & (self.mismatch(high) > 0)
+            is_short |= (sun < 0) & (self.mismatch(low) < 0)
+            if not np.any(is_short):
                 break
             reach = 2.0 * reach
         return low, high
@@ -326,15 +328,12 @@ class _Problem:
         return np.clip(surface, lower, upper), slope
 
 
-def _secant(
-    step: FloatArray, previous: FloatArray, mismatch: FloatArray, halving: FloatArray
-) -> FloatArray:
-    fall = previous - mismatch
-    is_usable = (fall * step > 0) & np.isfinite(fall)
-    secant = step * mismatch / np.where(is_usable, fall, 1.0)
-    # where no progress can be read off the two last points: halve the bracket, or stay at a root
-    fallback = np.where(mismatch == 0.0, 0.0, halving)
-    return np.asarray(np.where(is_usable, secant, fallback))
+def _secant_slope(rise: FloatArray, step: FloatArray, estimate: FloatArray) -> FloatArray:
+    # Held to what the slope can be, as a far point reached by halving would make the next step
+    # look converged when it is not.
+    is_usable = rise * step < 0
+    slope = np.where(is_usable, rise / np.where(is_usable, step, 1.0), estimate)
+    return np.clip(slope, 8.0 * estimate, -1.0)
 
 
 def _residual(
