@@ -1,6 +1,7 @@
 """The tables: one line of pandas reads them, and text comes back as it was given."""
 
 import math
+import platform
 
 import numpy as np
 import pandas as pd
@@ -17,6 +18,7 @@ from cladwatt.results.columns import (
 )
 from cladwatt.results.csv_files import cell_text, csv_line, write_tables
 from cladwatt.results.file_names import file_stems
+from cladwatt.results.versions import library_versions
 
 TEXT = {"dtype": {"tag": str, "area": str}, "keep_default_na": False, "na_values": [""]}
 
@@ -143,3 +145,19 @@ def test_file_stems_are_safe_and_never_alike():
         assert len(stem.encode("utf-8")) <= 100
         assert stem.split(".")[0].lower() not in ("con", "nul")
     assert file_stems(["f02"]) == {"f02": "f02"}
+
+
+def test_station_figures_are_written_as_any_other(odd, tables):
+    rows = (tables / "stations.csv").read_text("utf-8").splitlines()[1:6]
+    place = [column.name for column in STATION_COLUMNS].index("heat_loss_W_per_m")
+    assert [row.split(",")[place] for row in rows] == [
+        cell_text(float(value)) for value in odd.regions[0].stations.heat_loss
+    ]
+    assert rows[0].split(",")[place] == "0"
+
+
+def test_library_versions_name_what_the_numbers_depend_on():
+    found = library_versions()
+    assert found["python"] == platform.python_version()
+    assert found["numpy"] == np.__version__
+    assert found["scipy"]

@@ -179,9 +179,7 @@ def restore_not_finite(data: Any, not_finite: NotFinite) -> None:
             ) from error
 
 
-def decode(
-    data: Any, hint: Any, supply: Supply, at: str = "", celsius: bool = False
-) -> Any:  # fmt: skip
+def decode(data: Any, hint: Any, supply: Supply, at: str = "", celsius: bool = False) -> Any:
     """Return the value of the contract that plain JSON data stand for.
 
     Parameters
@@ -222,14 +220,10 @@ def decode(
         if get_origin(choice) is tuple and isinstance(data, dict if _is_mapping(choice) else list):
             return _decode_tuple(data, choice, supply, at, celsius)
     shown = repr(data)
-    raise DataError(
-        f"{at.lstrip('.')}: found {shown[:60]}; expected {_hint_words(choices)}"
-    )  # fmt: skip
+    raise DataError(f"{at.lstrip('.')}: found {shown[:60]}; expected {_hint_words(choices)}")
 
 
-def _decode_object(
-    cls: type, data: dict[str, Any], supply: Supply, at: str, celsius: bool
-) -> Any:  # fmt: skip
+def _decode_object(cls: type, data: dict[str, Any], supply: Supply, at: str, celsius: bool) -> Any:
     values = supply(cls, data)
     for field, (name, key, hint) in zip(_stored_fields(cls), _stored(cls), strict=True):
         if key in data:

@@ -9,7 +9,8 @@ from typing import Generic, TypeVar
 from cladwatt.flags import FLAG_SENTENCES, flag_names
 from cladwatt.quantities import Remark
 from cladwatt.results.assessment import Interval, RegionResult, StationTable, Stretch
-from cladwatt.results.fields import FIELDS, edge_name, edge_value, is_celsius
+from cladwatt.results.fields import FIELDS, ZERO_CELSIUS, edge_name, edge_value, is_celsius
+from cladwatt.types import FloatArray
 
 __all__ = [
     "REGION_COLUMNS",
@@ -17,6 +18,8 @@ __all__ = [
     "STRETCH_COLUMNS",
     "Cell",
     "Column",
+    "Heading",
+    "StationColumn",
     "columns_text",
     "remark_text",
 ]
@@ -24,12 +27,11 @@ __all__ = [
 Cell = str | float | int | bool | None
 Row = TypeVar("Row")
 StretchRow = tuple[RegionResult, Stretch]
-StationRow = tuple[RegionResult, int]
 
 
 @dataclass(frozen=True)
-class Column(Generic[Row]):
-    """One column of a table.
+class Heading:
+    """What a column is called and what stands in it.
 
     Parameters
     ----------
@@ -38,15 +40,38 @@ class Column(Generic[Row]):
     unit : str
         Unit as a person writes it; empty for text and plain numbers.
     meaning : str
-        What stands in it, for ``COLUMNS.txt``.
-    value : callable
-        Takes the row's object and returns the cell: None, NaN and inf become an empty cell.
+        For ``COLUMNS.txt``.
     """
 
     name: str
     unit: str
     meaning: str
+
+
+@dataclass(frozen=True)
+class Column(Heading, Generic[Row]):
+    """A column whose cells are taken row by row.
+
+    Parameters
+    ----------
+    value : callable
+        Takes the row's object and returns the cell: None, NaN and inf become an empty cell.
+    """
+
     value: Callable[[Row], Cell]
+
+
+@dataclass(frozen=True)
+class StationColumn(Heading):
+    """A column of the stations, taken for a whole region at once since there are many.
+
+    Parameters
+    ----------
+    values : callable
+        Takes a region and returns an array of figures or a list of texts, one per station.
+    """
+
+    values: Callable[[RegionResult], FloatArray | list[str]]
 
 
 def remark_text(*remarks: Remark | None) -> str:
@@ -128,17 +153,23 @@ def _stretch_figures() -> list[Column[StretchRow]]:
     return columns
 
 
-def _station_figures() -> list[Column[StationRow]]:
-    columns: list[Column[StationRow]] = []
-    for field in FIELDS[StationTable]:
+def _station_figures() -> list[StationColumn]:
+    columns: list[StationColumn] = []
+    for field, entry in FIELDS[StationTable].items():
         if field == "flags":
             continue
 
-        def get(row: StationRow, field: str = field) -> float:
-            return float(getattr(row[0].stations, field)[row[1]])
+        def values(region: RegionResult, field: str = field) -> FloatArray:
+            found: FloatArray = getattr(region.stations, field)
+            return found - ZERO_CELSIUS if is_celsius(StationTable, field) else found
 
-        columns += _figure_columns(StationTable, field, get, interval=False)
+        name = edge_name(StationTable, field)
+        columns.append(StationColumn(name, entry.unit, entry.meaning, values))
     return columns
+
+
+def _repeated(get: Callable[[RegionResult], str]) -> Callable[[RegionResult], list[str]]:
+    return lambda region: [get(region)] * region.stations.station.size
 
 
 def _shares_text(region: RegionResult) -> str:
@@ -174,13 +205,13 @@ STRETCH_COLUMNS: tuple[Column[StretchRow], ...] = (
     *_stretch_figures(),
 )
 
-STATION_COLUMNS: tuple[Column[StationRow], ...] = (
-    Column("frame_id", "", "frame the region is drawn on", lambda row: row[0].frame_id),
-    Column("region_id", "", "region the station lies in", lambda row: row[0].region_id),
-    Column("tag", "", "tag of the line", lambda row: row[0].tag),
+STATION_COLUMNS: tuple[StationColumn, ...] = (
+    StationColumn("frame_id", "", "frame the region is drawn on", _repeated(lambda r: r.frame_id)),
+    StationColumn("region_id", "", "region the station lies in", _repeated(lambda r: r.region_id)),
+    StationColumn("tag", "", "tag of the line", _repeated(lambda r: r.tag)),
     *_station_figures(),
-    Column("flags", "", FIELDS[StationTable]["flags"].meaning,
-           lambda row: flag_names(int(row[0].stations.flags[row[1]]))),
+    StationColumn("flags", "", FIELDS[StationTable]["flags"].meaning,
+                  lambda r: [flag_names(bits) for bits in r.stations.flags.tolist()]),
 )  # fmt: skip
 
 _NOTES = (
@@ -221,5 +252,5 @@ def columns_text() -> str:
     return "\n".join(parts)
 
 
-def _described(columns: Iterable[Column[Row]]) -> list[tuple[str, str]]:
+def _described(columns: Iterable[Heading]) -> list[tuple[str, str]]:
     return [(c.name, f"{c.meaning} [{c.unit}]" if c.unit else c.meaning) for c in columns]

@@ -6,7 +6,9 @@ from collections.abc import Iterable, Iterator, Sequence
 from pathlib import Path
 from typing import TypeVar
 
-from cladwatt.results.assessment import Assessment
+import numpy as np
+
+from cladwatt.results.assessment import Assessment, RegionResult
 from cladwatt.results.columns import (
     REGION_COLUMNS,
     STATION_COLUMNS,
@@ -15,6 +17,7 @@ from cladwatt.results.columns import (
     Column,
     columns_text,
 )
+from cladwatt.types import FloatArray
 
 __all__ = ["cell_text", "csv_line", "write_tables"]
 
@@ -53,6 +56,27 @@ def _write(path: Path, columns: Sequence[Column[Row]], rows: Iterator[Row]) -> N
             file.write(csv_line(cell_text(column.value(row)) for column in columns))
 
 
+def _number_texts(figures: FloatArray) -> list[str]:
+    """Return figures as :func:`cell_text` does, many at once."""
+    texts = ("%.6g " * figures.size % tuple((figures + 0.0).tolist())).split()
+    for i in (~np.isfinite(figures)).nonzero()[0]:
+        texts[i] = ""
+    return texts
+
+
+def _write_stations(path: Path, regions: Iterable[RegionResult]) -> None:
+    with path.open("w", encoding="utf-8", errors="backslashreplace", newline="") as file:
+        file.write(csv_line(column.name for column in STATION_COLUMNS))
+        for region in regions:
+            cells = (column.values(region) for column in STATION_COLUMNS)
+            texts = [
+                [_quoted(text) for text in found] if isinstance(found, list)
+                else _number_texts(found)
+                for found in cells
+            ]  # fmt: skip
+            file.writelines(",".join(row) + "\n" for row in zip(*texts, strict=True))
+
+
 def write_tables(assessment: Assessment, folder: Path) -> None:
     """Write ``regions.csv``, ``stretches.csv``, ``stations.csv`` and ``COLUMNS.txt``.
 
@@ -69,8 +93,7 @@ def write_tables(assessment: Assessment, folder: Path) -> None:
     """
     regions = assessment.regions
     stretches = ((region, stretch) for region in regions for stretch in region.stretches)
-    stations = ((region, i) for region in regions for i in range(region.stations.station.size))
     _write(folder / "regions.csv", REGION_COLUMNS, iter(regions))
     _write(folder / "stretches.csv", STRETCH_COLUMNS, stretches)
-    _write(folder / "stations.csv", STATION_COLUMNS, stations)
+    _write_stations(folder / "stations.csv", regions)
     (folder / "COLUMNS.txt").write_text(columns_text(), encoding="utf-8", newline="\n")

@@ -16,9 +16,17 @@ from cladwatt.results.assessment import (
     Stretch,
 )
 
-__all__ = ["FIELDS", "Field", "edge_name", "edge_value", "inside_value", "is_celsius"]
+__all__ = [
+    "FIELDS",
+    "ZERO_CELSIUS",
+    "Field",
+    "edge_name",
+    "edge_value",
+    "inside_value",
+    "is_celsius",
+]
 
-_ZERO_CELSIUS = 273.15
+ZERO_CELSIUS = 273.15
 _SUFFIXES = {
     "": "",
     "°C": "_C",
@@ -153,9 +161,9 @@ def edge_value(kelvin: float) -> float:
     difference does so from -136 to 511 °C, beyond which one unit in the last place may be lost.
     """
     short = float(Decimal(repr(float(kelvin))) - Decimal("273.15"))
-    return short if inside_value(short) == kelvin else kelvin - _ZERO_CELSIUS
+    return short if inside_value(short) == kelvin else kelvin - ZERO_CELSIUS
 
 
 def inside_value(celsius: float) -> float:
     """Return a temperature in kelvin from one in °C."""
-    return celsius + _ZERO_CELSIUS
+    return celsius + ZERO_CELSIUS
