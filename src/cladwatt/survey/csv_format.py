@@ -58,10 +58,10 @@ def decode_text(data: bytes) -> tuple[str, str]:
         If the bytes are no text.
     """
     encoding = next((name for mark, name in _BYTE_ORDER_MARKS if data.startswith(mark)), None)
-    if encoding is None and b"\x00" in data[:4096]:
-        head = np.frombuffer(data[: 4096 - len(data[:4096]) % 2], dtype=np.uint8)
-        head = head[: head.size // 2 * 2]
-        zero_first, zero_second = np.mean(head[0::2] == 0), np.mean(head[1::2] == 0)
+    head = data[:4096]
+    if encoding is None and b"\x00" in head:
+        pairs = np.frombuffer(head + b"\x01" * (len(head) % 2), dtype=np.uint8).reshape(-1, 2)
+        zero_first, zero_second = np.mean(pairs == 0, axis=0)
         if max(zero_first, zero_second) < 0.7 or min(zero_first, zero_second) > 0.1:
             raise Refusal("the file is neither TIFF nor text", _MATRIX + ", or a TIFF")
         encoding = "UTF-16-BE" if zero_first > zero_second else "UTF-16-LE"

@@ -193,7 +193,7 @@ def _regions_of_label(
     specks = [piece for piece in pieces if piece[2] < _SMALLEST_PIECE]
     if not specks:
         return regions, None
-    x, y = specks[0][0][0]
+    x, y = (sum(values) / len(values) for values in zip(*specks[0][0], strict=True))
     return regions, Refusal(
         f"label {row.integer} ('{row.id}') has {len(specks)} piece(s) under {_SMALLEST_PIECE} "
         f"pixels, the first near x = {x:.0f}, y = {y:.0f}; left out",

@@ -49,6 +49,8 @@ class Spread:
     maximum: float
     background: tuple[float, ...]
     """Where the background may lie: median along the border, lowest tenth, median."""
+    whole: bool = False
+    """Whether all values are whole numbers, as counts are."""
 
     def scaled(self, scale: float, offset: float) -> "Spread":
         """Return the spread of the values times `scale` plus `offset`; `scale` is positive."""
@@ -66,6 +68,7 @@ class Spread:
             high=change(self.high),
             maximum=change(self.maximum),
             background=tuple(change(value) for value in self.background),
+            whole=self.whole,
         )
 
 
@@ -113,7 +116,8 @@ def spread_of(values: FloatArray, usable: BoolArray | None = None) -> Spread | N
     border[[0, -1], :] = border[:, [0, -1]] = True
     rim = values[good & border]
     background = (tenth, median) if rim.size == 0 else (float(np.median(rim)), tenth, median)
-    return Spread(minimum, low, median, high, maximum, background)
+    whole = bool(np.all(inside == np.round(inside)))
+    return Spread(minimum, low, median, high, maximum, background, whole)
 
 
 def background_distance(spread: Spread, air: float) -> float:
@@ -137,9 +141,10 @@ def likely_readings(spread: Spread, air: float | None) -> tuple[Reading, ...]:
     Returns
     -------
     tuple of Reading
-        The nearest first.
+        Plain units before tenths and hundredths, then the nearest first. Tenths and hundredths
+        are thought of for whole numbers only.
     """
-    return tuple(sorted(_readings(spread, air), key=lambda reading: abs(reading.distance)))
+    return tuple(sorted(_readings(spread, air), key=lambda r: (r.scale != 1.0, abs(r.distance))))
 
 
 def _readings(spread: Spread, air: float | None) -> Iterator[Reading]:
@@ -147,6 +152,8 @@ def _readings(spread: Spread, air: float | None) -> Iterator[Reading]:
         (_USUAL_AIR, _USUAL_AIR_TOLERANCE) if air is None else (air, BACKGROUND_TOLERANCE)
     )
     for unit, scale in _SCALES:
+        if scale != 1.0 and not spread.whole:
+            continue
         taken = spread.scaled(scale, 0.0).kelvin(unit)
         distance = background_distance(taken, centre)
         if taken.low >= _COLDEST_SKY and taken.high <= HOTTEST_PIXEL and abs(distance) <= tolerance:
