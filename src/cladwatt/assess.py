@@ -20,8 +20,9 @@ from cladwatt.inverse.references import (
     with_emissivity,
     with_frame_references,
 )
-from cladwatt.inverse.region_estimate import FrameImage, estimate_region
+from cladwatt.inverse.region_estimate import estimate_region
 from cladwatt.inverse.result import RegionResult, interval_of
+from cladwatt.inverse.seen import FrameImage
 from cladwatt.measure.noise import FrameNoise, estimate_noise
 from cladwatt.measure.outline import region_mask, widened
 from cladwatt.physics.radiometry import Band, lens_radiance
@@ -204,7 +205,12 @@ def _assess_regions(
     book = DrawBook(settings.seed, settings.draws)
     pipes = [region for region in regions if region.role == "pipe"]
     draws = draw_frame(
-        book, entry.id, entry.conditions, survey.camera, survey.site, _distance(survey, frame, pipes)
+        book,
+        entry.id,
+        entry.conditions,
+        survey.camera,
+        survey.site,
+        _distance(survey, frame, pipes),
     )
     if draws is None:
         remark = Remark("missing.air_temperature")
@@ -262,9 +268,7 @@ def _assess_region(
     return replace(result, remarks=result.remarks + remarks)
 
 
-def _left_out_mask(
-    region: Region, regions: list[Region], masks: dict[str, BoolArray]
-) -> BoolArray:
+def _left_out_mask(region: Region, regions: list[Region], masks: dict[str, BoolArray]) -> BoolArray:
     """Return the pixels a pipe region may not use: everything else drawn over it, widened."""
     covered = np.zeros_like(masks[region.id])
     for other in regions:
@@ -287,9 +291,7 @@ def _distance(survey: Survey, frame: Frame, pipes: list[Region]) -> float | None
     return float(np.median(found)) if found else None
 
 
-def _assembled(
-    survey: Survey, settings: Settings, frames: tuple[FrameResult, ...]
-) -> Assessment:
+def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ...]) -> Assessment:
     """Put frame results together, with totals that keep what regions share."""
     regions = [region for frame in frames for region in frame.regions]
     hot = [region for region in regions if not region.gain and "total_loss" in region.draws]
@@ -372,5 +374,7 @@ def _survey_left_out(survey: Survey) -> tuple[LeftOut, ...]:
         elif fault.tag is not None:
             left_out.append(LeftOut("line", fault.tag, "", str(fault)))
         else:
-            left_out.append(LeftOut("frame", fault.frame_id or "", fault.frame_id or "", str(fault)))
+            left_out.append(
+                LeftOut("frame", fault.frame_id or "", fault.frame_id or "", str(fault))
+            )
     return tuple(left_out)

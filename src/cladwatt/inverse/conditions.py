@@ -25,7 +25,7 @@ from cladwatt.survey.model import AccuracyStatement, Camera, Conditions, Line, S
 from cladwatt.survey.region import Region
 from cladwatt.types import FloatArray
 
-__all__ = ["AIR_AS_SOURCE", "FrameDraws", "LineDraws", "draw_frame", "draw_line", "layer_draws"]
+__all__ = ["FrameDraws", "LineDraws", "draw_frame", "draw_line", "layer_draws"]
 
 SHARED_SHARE = 2 / 3
 """Share of variance of calibration and convection law common to the survey (assumption)."""
@@ -34,7 +34,9 @@ CONVECTION_SIGMA_WIND = 0.17
 """Relative standard uncertainty of the convection law: published correlations differ by 10-20 %
 in still air and 19 % across flow."""
 AIR_AS_SOURCE = "as the air"
-"""Source of a default temperature that follows the air: its draw is the air's plus its own."""
+SURROUNDINGS_AS_SOURCE = "as the declared surroundings"
+"""Sources of a default temperature that follows another: its draws are the other's plus its
+own."""
 EMISSIVITY_CORRELATION = 0.7
 """Between the errors of band and total emissivity of one cladding (assumption): dirt and
 weather raise both."""
@@ -156,6 +158,7 @@ def draw_frame(
         if conditions.wind_speed is None
         else book.quantity(owner, "wind_speed", conditions.wind_speed)
     )
+    surroundings = _surroundings(book, owner, conditions, air)
     still = np.zeros(book.count)
     window = conditions.window
     return FrameDraws(
@@ -163,8 +166,8 @@ def draw_frame(
         accuracy=camera.accuracy,
         calibration=_calibration(book, owner, camera.accuracy),
         air_temperature=air,
-        surroundings_temperature=_surroundings(book, owner, conditions, air),
-        reflected_temperature=_reflected(book, owner, conditions, air, band),
+        surroundings_temperature=surroundings,
+        reflected_temperature=_reflected(book, owner, conditions, air, surroundings, band),
         transmission=_transmission(book, owner, conditions, camera, distance),
         wind_speed=wind,
         pressure=(
@@ -211,7 +214,7 @@ def _follow(
 ) -> FloatArray:
     """Draw a temperature; a default that follows the air takes the air's draws along."""
     if quantity.source.startswith(AIR_AS_SOURCE):
-        return air + quantity.u * book.normal(owner, name)
+        return np.asarray(air + quantity.u * book.normal(owner, name))
     return book.quantity(owner, name, quantity)
 
 
@@ -226,14 +229,24 @@ def _surroundings(
         return air
     sky = book.quantity(owner, "sky_total_temperature", conditions.sky_total_temperature)
     view = _sky_view(book, owner, conditions)
-    return combined_surroundings(np.stack([sky, air]), np.stack([view, 1 - view]))
+    return combined_surroundings((sky, air), (view, 1 - view))
 
 
 def _reflected(
-    book: DrawBook, owner: str, conditions: Conditions, air: FloatArray, band: Band
+    book: DrawBook,
+    owner: str,
+    conditions: Conditions,
+    air: FloatArray,
+    surroundings: FloatArray,
+    band: Band,
 ) -> FloatArray:
-    if conditions.reflected_temperature is not None:
-        return _follow(book, owner, "reflected_temperature", conditions.reflected_temperature, air)
+    reflected = conditions.reflected_temperature
+    if reflected is not None and reflected.source.startswith(SURROUNDINGS_AS_SOURCE):
+        declared = conditions.surroundings_temperature
+        own = reflected.u if declared is None else math.sqrt(reflected.u**2 - declared.u**2)
+        return np.asarray(surroundings + own * book.normal(owner, "reflected_temperature"))
+    if reflected is not None:
+        return _follow(book, owner, "reflected_temperature", reflected, air)
     if conditions.sky_band_temperature is None:
         return air
     sky = book.quantity(owner, "sky_band_temperature", conditions.sky_band_temperature)
@@ -322,9 +335,7 @@ def draw_line(book: DrawBook, line: Line, region: Region | None = None) -> LineD
         pipe_diameter=pipe,
         lagged_diameter=_lagged_diameter(book, line, region, pipe, layers),
         layers=layers,
-        installation_factor=book.quantity(
-            owner, "installation_factor", line.installation_factor
-        ),
+        installation_factor=book.quantity(owner, "installation_factor", line.installation_factor),
         inclination_deg=line.inclination_deg,
     )
 

@@ -1,5 +1,6 @@
-"""Draws of declared quantities: keyed by seed, owner and quantity, so that all who share a
-quantity share its draws, whatever the order of work or the number of workers.
+"""Draws of declared quantities, keyed by seed, owner and quantity.
+
+All who share a quantity share its draws, whatever the order of work or the number of workers.
 """
 
 import hashlib
@@ -67,9 +68,7 @@ class DrawBook:
         return total
 
 
-def quantity_draws(
-    quantity: Quantity, normal: Callable[[], FloatArray], count: int
-) -> FloatArray:
+def quantity_draws(quantity: Quantity, normal: Callable[[], FloatArray], count: int) -> FloatArray:
     """Turn standard normal draws into draws of a quantity.
 
     Parameters

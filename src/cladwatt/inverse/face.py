@@ -5,7 +5,7 @@ a few nodes of that one variable, for each band of angle, and every station read
 one interpolation matrix that all draws share: thousands of draws cost about as much as one image.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -13,7 +13,7 @@ from cladwatt.inverse.conditions import FrameDraws, LineDraws
 from cladwatt.physics.emissivity import directional_emissivity
 from cladwatt.physics.lagged_pipe import SurfaceExchange, surface_heat_flux
 from cladwatt.physics.radiometry import object_radiance
-from cladwatt.types import FloatArray
+from cladwatt.types import FloatArray, FloatLike
 
 __all__ = ["Face", "FaceDraws", "face_draws", "surface_temperature_draws"]
 
@@ -46,9 +46,7 @@ class FaceDraws:
     """[W/m2]; None without wind."""
 
 
-def face_draws(
-    face: Face, frame: FrameDraws, line: LineDraws, diameter: FloatArray
-) -> FaceDraws:
+def face_draws(face: Face, frame: FrameDraws, line: LineDraws, diameter: FloatArray) -> FaceDraws:
     """Return draws of temperature and heat flux along a strip.
 
     Parameters
@@ -102,9 +100,7 @@ def surface_temperature_draws(
     """
     band = frame.band
     true_lens = lens_temperature + frame.calibration_offset(lens_temperature)
-    emissivity = directional_emissivity(
-        line.band_emissivity[:, None], view_angle, line.is_metal
-    )
+    emissivity = directional_emissivity(line.band_emissivity[:, None], view_angle, line.is_metal)
     air_radiance = band.radiance(frame.air_temperature)[:, None, None]
     surface = object_radiance(
         band.radiance(true_lens)[:, None, :],
@@ -122,14 +118,21 @@ def surface_temperature_draws(
 
 def _beside(exchange: SurfaceExchange) -> SurfaceExchange:
     """Return the exchange with its draws along the first of three axes."""
-    from dataclasses import fields, replace
 
-    changes = {
-        field.name: np.asarray(value)[:, None, None]
-        for field in fields(exchange)
-        if np.ndim(value := getattr(exchange, field.name)) == 1
-    }
-    return replace(exchange, **changes)
+    def column(values: FloatLike) -> FloatArray:
+        return np.reshape(values, (-1, 1, 1))
+
+    return replace(
+        exchange,
+        air_temperature=column(exchange.air_temperature),
+        surroundings_temperature=column(exchange.surroundings_temperature),
+        wind_speed=column(exchange.wind_speed),
+        diameter=column(exchange.diameter),
+        total_emissivity=column(exchange.total_emissivity),
+        pressure=column(exchange.pressure),
+        convection_factor=column(exchange.convection_factor),
+        absorbed_solar=column(exchange.absorbed_solar),
+    )
 
 
 def _nodes(values: FloatArray) -> FloatArray:

@@ -112,7 +112,7 @@ def null_of(
 
 def _band_differences(lens_temperature: FloatArray, station_length: float) -> float:
     """Return the scatter of the mean over bands that their persistent differences imply."""
-    bands, stations = lens_temperature.shape
+    bands = lens_temperature.shape[0]
     if bands < 3:
         return 0.0
     usable = lens_temperature[:, np.isfinite(lens_temperature).all(axis=0)]

@@ -89,9 +89,7 @@ def _median(image: FloatArray, mask: BoolArray) -> float:
     return float(np.median(values)) if values.size else float("nan")
 
 
-def _beside(
-    image: FloatArray, mask: BoolArray, region: Region, regions: Sequence[Region]
-) -> float:
+def _beside(image: FloatArray, mask: BoolArray, region: Region, regions: Sequence[Region]) -> float:
     """Median of the pipe's surface in a ring around a patch, clear of its blurred rim."""
     if region.role != "tape":
         return float("nan")
@@ -146,9 +144,7 @@ def with_frame_references(
     return frame, tuple(remarks)
 
 
-def _foil(
-    frame: FrameDraws, reading: ReferenceReading, book: DrawBook
-) -> FloatArray | None:
+def _foil(frame: FrameDraws, reading: ReferenceReading, book: DrawBook) -> FloatArray | None:
     """Return draws of the reflected temperature by a foil, or by the value read from it."""
     owner = f"region:{reading.region.id}"
     spread = FOIL_U * book.normal(owner, "half_space")
@@ -197,21 +193,15 @@ def with_emissivity(
         found = _emissivity(reading, frame, book)
         usable = np.isfinite(found) & (found > 0.01) & (found < 1.0)
         if usable.mean() < 0.5:
-            remarks.append(
-                _set_aside(reading, "surface within 10 K of the reflected temperature")
-            )
+            remarks.append(_set_aside(reading, "surface within 10 K of the reflected temperature"))
             continue
         combined = np.where(usable, _weighed(line.band_emissivity, found), line.band_emissivity)
         line = replace(line, band_emissivity=np.clip(combined, 0.01, 0.999))
-        remarks.append(
-            Remark("remark.tape_used", (("emissivity", float(np.median(combined))),))
-        )
+        remarks.append(Remark("remark.tape_used", (("emissivity", float(np.median(combined))),)))
     return line, tuple(remarks)
 
 
-def _emissivity(
-    reading: ReferenceReading, frame: FrameDraws, book: DrawBook
-) -> FloatArray:
+def _emissivity(reading: ReferenceReading, frame: FrameDraws, book: DrawBook) -> FloatArray:
     """Return draws of the emissivity beside a patch or at a contact reading; NaN where none."""
     owner = f"region:{reading.region.id}"
     nothing = np.full(frame.count, np.nan)
@@ -239,9 +229,7 @@ def _emissivity(
         beside,
         seen,
         band=frame.band,
-        reference_emissivity=book.quantity(
-            owner, "value", reading.region.value or TAPE_EMISSIVITY
-        ),
+        reference_emissivity=book.quantity(owner, "value", reading.region.value or TAPE_EMISSIVITY),
         reflected_temperature=frame.reflected_temperature,
         transmission=frame.transmission,
         atmosphere_temperature=frame.air_temperature,
@@ -260,6 +248,4 @@ def _weighed(declared: FloatArray, found: FloatArray) -> FloatArray:
 
 
 def _set_aside(reading: ReferenceReading, reason: str) -> Remark:
-    return Remark(
-        "remark.reading_not_used", (("id", reading.region.id), ("reason", reason))
-    )
+    return Remark("remark.reading_not_used", (("id", reading.region.id), ("reason", reason)))

@@ -111,9 +111,7 @@ def _candidates(excess: FloatArray, null: NullModel, diameter_stations: float) -
 def _spans(marked: BoolArray) -> list[tuple[int, int]]:
     """Return first and last index of each run of True."""
     edges = np.flatnonzero(np.diff(np.concatenate([[0], marked.astype(int), [0]])))
-    return [
-        (int(first), int(end) - 1) for first, end in zip(edges[::2], edges[1::2], strict=True)
-    ]
+    return [(int(first), int(end) - 1) for first, end in zip(edges[::2], edges[1::2], strict=True)]
 
 
 def _run(
@@ -153,9 +151,7 @@ def _bridges(above: BoolArray, index: int, first: int, last: int) -> bool:
     return bool(above[low : index + 1].any() and above[index : high + 1].any())
 
 
-def _edge_u(
-    fine: FloatArray, edge: int, direction: int, plateau: float, null: NullModel
-) -> float:
+def _edge_u(fine: FloatArray, edge: int, direction: int, plateau: float, null: NullModel) -> float:
     """Return the standard uncertainty of an edge. [stations]
 
     Noise moves the crossing by its size over the slope; how the step was spread is not known,
@@ -219,9 +215,7 @@ def local_probability(sigmas: float, *, tries: float) -> float:
     return odds / (1 + odds) if math.isfinite(odds) else 1.0
 
 
-def sound_stations(
-    profile: FloatArray, runs: tuple[Run, ...], *, clear_of: float
-) -> BoolArray:
+def sound_stations(profile: FloatArray, runs: tuple[Run, ...], *, clear_of: float) -> BoolArray:
     """Return the stations that carry the sound level, well away from every run.
 
     Parameters

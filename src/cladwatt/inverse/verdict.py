@@ -76,11 +76,11 @@ def give_verdict(inputs: VerdictInputs) -> tuple[VerdictLevel, Remark]:
     relative = inputs.heat_loss.relative_width
     excess_known = inputs.excess is not None and inputs.excess.low * inputs.excess.high > 0
     if not (relative < INDICATIVE_WIDTH or excess_known):
-        return "not quantified", _remark("not_quantified.interval_too_wide", relative_width=relative)
+        return "not quantified", _remark(
+            "not_quantified.interval_too_wide", relative_width=relative
+        )
     needed = (
-        VISIBLE_RISE_SIGMAS_METAL
-        if inputs.emissivity < METAL_EMISSIVITY
-        else VISIBLE_RISE_SIGMAS
+        VISIBLE_RISE_SIGMAS_METAL if inputs.emissivity < METAL_EMISSIVITY else VISIBLE_RISE_SIGMAS
     )
     spots = 0.75 * inputs.width / inputs.spot_pixels
     if spots < SPOTS_ACROSS:
@@ -185,9 +185,7 @@ def worst(first: VerdictLevel, second: VerdictLevel) -> VerdictLevel:
     return max(first, second, key=_ORDER.index)
 
 
-def as_verdict(
-    inputs: VerdictInputs, shares: tuple[tuple[str, float], ...]
-) -> Verdict:
+def as_verdict(inputs: VerdictInputs, shares: tuple[tuple[str, float], ...]) -> Verdict:
     """Return the full verdict with its advice."""
     level, reason = give_verdict(inputs)
     return Verdict(level, reason, advice_of(shares, inputs.heat_loss, emissivity=inputs.emissivity))

@@ -1,0 +1,1 @@
+"""The inverse problem: from strips to losses, resistances, stretches, probabilities, verdicts."""

@@ -1,0 +1,72 @@
+"""What a reader must know beside the numbers: what is missing, cautions, remarks, limits."""
+
+import numpy as np
+
+from cladwatt.inverse.seen import Seen
+from cladwatt.physics.constants import ZERO_CELSIUS
+from cladwatt.quantities import Remark
+
+__all__ = ["cautions_of", "missing_of", "remarks_of", "verdict_caps"]
+
+TOUCH_CAUTION = ZERO_CELSIUS + 48.9
+"""120 °F, above which the US DOE steam tip sheet 2 advises to insulate. [K]"""
+
+
+def missing_of(seen: Seen) -> tuple[Remark, ...]:
+    """Return what is unknown of the line and the frame, and so left out."""
+    line = seen.line_draws
+    unknown = {
+        "missing.inside_temperature": line.inside_temperature is None,
+        "missing.lagging": line.layers is None,
+        "missing.diameter": line.lagged_diameter is None,
+        "missing.wind": seen.frame.wind_speed is None,
+    }
+    return tuple(Remark(key) for key, is_missing in unknown.items() if is_missing)
+
+
+def cautions_of(seen: Seen) -> tuple[Remark, ...]:
+    """Return cautions for people: hot surface, service limit, water under the lagging."""
+    cautions = []
+    hottest = float(np.nanmax(seen.median_temperature()))
+    if hottest > TOUCH_CAUTION:
+        cautions.append(_celsius("caution.touch", temperature_C=hottest))
+    inside = seen.line.inside_temperature
+    innermost = seen.line.layers[0].conductivity if seen.line.layers else None
+    limit = None if innermost is None else innermost.maximum_service_temperature
+    if inside is not None and limit is not None and inside.value > limit:
+        cautions.append(
+            _celsius("caution.service_limit", temperature_C=inside.value, limit_C=limit)
+        )
+    dew = seen.dew_point()
+    if dew is not None and seen.below_dew_point().any():
+        cautions.append(_celsius("caution.dew_point", dew_point_C=dew))
+    return tuple(cautions)
+
+
+def _celsius(key: str, **temperatures: float) -> Remark:
+    return Remark(key, tuple((name, value - ZERO_CELSIUS) for name, value in temperatures.items()))
+
+
+def remarks_of(seen: Seen) -> tuple[Remark, ...]:
+    """Return what was done to the region that a reader should know."""
+    remarks = []
+    masked = float(1 - np.isfinite(seen.lens).mean())
+    if masked > 0.02:
+        remarks.append(Remark("remark.masked_share", (("share", masked),)))
+    if seen.strip.foreshortened:
+        remarks.append(Remark("remark.foreshortening"))
+    return tuple(remarks)
+
+
+def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
+    """Return the reasons that allow an indicative verdict at most."""
+    conditions = seen.conditions
+    sun = conditions.solar_irradiance
+    below = seen.below_dew_point()[seen.usable].mean()
+    reasons = {
+        "indicative.sun": bool(conditions.sun_on_pipe or (sun is not None and sun.value > 0)),
+        "indicative.traced": seen.line.tracing.kind != "none",
+        "indicative.not_steady": conditions.indoors is False and bool(conditions.rain_last_24h),
+        "indicative.below_dew_point": bool(below > 0.05),
+    }
+    return tuple(Remark(key) for key, holds in reasons.items() if holds)

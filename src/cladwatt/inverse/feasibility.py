@@ -1,0 +1,61 @@
+"""What fluid, air and surroundings can do at all: bounds for every draw."""
+
+from typing import NamedTuple
+
+import numpy as np
+
+from cladwatt.inverse.seen import Seen
+from cladwatt.physics.lagged_pipe import surface_heat_flux
+from cladwatt.types import FloatArray
+
+__all__ = ["Bounds", "flux_bounds"]
+
+
+class Bounds(NamedTuple):
+    """Bounds of the mean flux, each (count,). [W/m2]"""
+
+    low: FloatArray
+    high: FloatArray
+
+    def beyond(self, flux: FloatArray) -> float:
+        """Return the share of draws outside, NaN counted as outside."""
+        return float(np.mean(~((flux >= self.low) & (flux <= self.high))))
+
+    def applied(self, flux: FloatArray) -> FloatArray:
+        """Return the draws moved to the nearest bound.
+
+        Moving rather than dropping keeps them in step with the draws of other regions.
+        """
+        return np.asarray(np.clip(flux, self.low, self.high))
+
+
+def flux_bounds(seen: Seen) -> Bounds:
+    """Return the bounds of a region's mean flux.
+
+    Parameters
+    ----------
+    seen : Seen
+        With known wind.
+
+    Returns
+    -------
+    Bounds
+        A line warmer than everything outside cannot take heat up through its lagging, nor lose
+        more than with its surface at the fluid's temperature; one colder than everything the
+        other way round. Sun moves the first bound by what it brings.
+    """
+    inside = seen.line_draws.inside_temperature
+    unbounded = np.full(seen.book.count, np.inf)
+    if inside is None:
+        return Bounds(-unbounded, unbounded)
+    exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
+    bare = surface_heat_flux(inside, exchange)
+    sun = np.asarray(exchange.absorbed_solar)
+    air, surroundings = seen.frame.air_temperature, seen.frame.surroundings_temperature
+    hot = inside >= np.maximum(air, surroundings)
+    cold = inside <= np.minimum(air, surroundings)
+    low = np.where(hot, -sun, -unbounded)
+    high = np.where(hot, np.maximum(bare, 0.0), unbounded)
+    low = np.where(cold, np.minimum(bare, 0.0), low)
+    high = np.where(cold, 0.0, high)
+    return Bounds(low, high)

@@ -1,0 +1,141 @@
+"""What is known of a region before anything is concluded."""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from cladwatt.inverse.conditions import FrameDraws, LineDraws
+from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.face import Face, FaceDraws
+from cladwatt.measure.noise import FrameNoise
+from cladwatt.measure.strip import Strip
+from cladwatt.physics.humidity import dew_point
+from cladwatt.survey.model import Camera, Conditions, Line
+from cladwatt.survey.region import Region
+from cladwatt.types import BoolArray, FloatArray
+
+__all__ = ["FrameImage", "Seen"]
+
+
+@dataclass(frozen=True)
+class FrameImage:
+    """A frame ready for its regions.
+
+    Attributes
+    ----------
+    frame_id : str
+    lens_temperature : (rows, cols) array
+        Blackbody-equivalent temperature at the lens, camera settings undone, NaN where dead or
+        clipped. [K]
+    recorded_temperature : (rows, cols) array
+        As recorded. [K]
+    clipped : (rows, cols) array of bool
+    noise : FrameNoise
+    """
+
+    frame_id: str
+    lens_temperature: FloatArray
+    recorded_temperature: FloatArray
+    clipped: BoolArray
+    noise: FrameNoise
+
+
+@dataclass(frozen=True)
+class Seen:
+    """A region's strip, its face, and the draws that belong to it.
+
+    Attributes
+    ----------
+    lens, recorded : (n_across, n_stations) array
+        Along the strip, NaN where left out. [K]
+    usable : (n_stations,) array of bool
+        Stations that carry a number.
+    diameter : (count,) array
+        Over the cladding; a rough guess for the convection law alone where `diameter_known` is
+        False. [m]
+    gain : bool
+        Whether the line is colder than the air.
+    """
+
+    region: Region
+    line: Line
+    strip: Strip
+    lens: FloatArray
+    recorded: FloatArray
+    face: Face
+    drawn: FaceDraws
+    usable: BoolArray
+    diameter: FloatArray
+    gain: bool
+    frame: FrameDraws
+    line_draws: LineDraws
+    conditions: Conditions
+    camera: Camera
+    image: FrameImage
+    book: DrawBook
+
+    @property
+    def owner(self) -> str:
+        """Key of draws that belong to this region alone."""
+        return f"region:{self.region.id}"
+
+    @property
+    def diameter_known(self) -> bool:
+        """Whether losses can be told per metre."""
+        return self.line_draws.lagged_diameter is not None
+
+    @property
+    def width(self) -> float:
+        """Median width of the pipe. [px]"""
+        return float(np.median(self.strip.width))
+
+    @property
+    def emissivity(self) -> float:
+        """Median of the band emissivity, after references."""
+        return float(np.median(self.line_draws.band_emissivity))
+
+    def mean_along(self, values: FloatArray) -> FloatArray:
+        """Return the mean over usable stations weighted by their metres.
+
+        Parameters
+        ----------
+        values : (count, n_stations) array
+
+        Returns
+        -------
+        (count,) array
+        """
+        metres = self.strip.length
+        weights = metres if np.isfinite(metres).all() else np.ones_like(self.strip.x)
+        weights = np.where(self.usable, weights, 0.0)
+        return np.asarray(np.where(self.usable, values, 0.0) @ (weights / weights.sum()))
+
+    def length_draws(self) -> FloatArray:
+        """Return draws of the length that carries a number, (count,). [m]"""
+        total = float(np.sum(self.strip.length[self.usable]))
+        scale = 1 + self.strip.scale_uncertainty * self.book.normal(self.owner, "scale")
+        return np.asarray(total * scale * self.diameter / np.median(self.diameter))
+
+    def dew_point(self) -> float | None:
+        """Return the dew point of the declared air; None where no humidity is known. [K]"""
+        humidity, air = self.conditions.relative_humidity, self.conditions.air_temperature
+        if humidity is None or air is None or not humidity.value > 0:
+            return None
+        return float(dew_point(air.value, humidity.value))
+
+    def below_dew_point(self) -> BoolArray:
+        """Return the stations whose median temperature is below the dew point."""
+        dew = self.dew_point()
+        if dew is None:
+            return np.zeros(self.usable.size, dtype=bool)
+        return np.asarray(self.usable & (self.median_temperature() < dew))
+
+    def median_temperature(self) -> FloatArray:
+        """Return the median surface temperature per station, NaN in gaps, (n_stations,). [K]"""
+        return np.asarray(np.median(self.drawn.surface_temperature, axis=0))
+
+    @property
+    def perimeter(self) -> FloatArray:
+        """Circumference over the cladding, (count,). [m]"""
+        return math.pi * self.diameter

@@ -1,0 +1,100 @@
+"""From runs of stations to stretches in metres and watts."""
+
+import math
+from typing import NamedTuple
+
+import numpy as np
+
+from cladwatt.inverse.result import Interval, Stretch, interval_of
+from cladwatt.inverse.seen import Seen
+from cladwatt.inverse.stretches import Run
+from cladwatt.types import FloatArray
+
+__all__ = ["stretches_of"]
+
+LOCAL_THRESHOLD = 0.10
+"""A stretch counts as damaged where it loses more than this above the sound level."""
+SMALLEST_PROBABILITY = 0.05
+"""Runs less likely than this are not listed."""
+
+
+class _Weighed(NamedTuple):
+    run: Run
+    loss: FloatArray
+    """(count,) [W/m]"""
+    excess: FloatArray
+    """(count,) [W]"""
+    probability: float
+
+
+def stretches_of(
+    seen: Seen, runs: tuple[Run, ...], loss: FloatArray, base_loss: FloatArray
+) -> tuple[Stretch, ...]:
+    """Return the stretches behind the runs of a region.
+
+    Parameters
+    ----------
+    seen : Seen
+        With known diameter.
+    runs : tuple of Run
+    loss : (count, n_stations) array
+        [W/m]
+    base_loss : (count,) array
+        At the sound level. [W/m]
+
+    Returns
+    -------
+    tuple of Stretch
+        The probability is that of the contrast times that of an excess above 10 %.
+    """
+    scale = seen.length_draws() / float(np.sum(seen.strip.length[seen.usable]))
+    weighed = [_weigh(seen, run, loss, base_loss, scale) for run in runs]
+    kept = [one for one in weighed if one.probability > SMALLEST_PROBABILITY]
+    everything = sum(float(np.median(np.abs(one.excess))) for one in kept)
+    return tuple(
+        Stretch(
+            id=f"{seen.region.id}:{number}",
+            start=_edge(seen, one.run.first, -0.5, one.run.first_u),
+            end=_edge(seen, one.run.last, 0.5, one.run.last_u),
+            probability=one.probability,
+            heat_loss=interval_of(one.loss),
+            excess=interval_of(one.excess),
+            share_of_excess=float(np.median(np.abs(one.excess))) / everything,
+            outline=_outline(seen, one.run),
+        )
+        for number, one in enumerate(kept, start=1)
+    )
+
+
+def _weigh(
+    seen: Seen, run: Run, loss: FloatArray, base_loss: FloatArray, scale: FloatArray
+) -> _Weighed:
+    metres = np.where(seen.usable, seen.strip.length, 0.0)[run.stations]
+    inside = np.where(metres > 0, loss[:, run.stations], 0.0)
+    mean = np.asarray(inside @ (metres / max(float(metres.sum()), 1e-12)))
+    above = np.abs(mean) > (1 + LOCAL_THRESHOLD) * np.abs(base_loss)
+    excess = (mean - base_loss) * float(metres.sum()) * scale
+    return _Weighed(run, mean, excess, float(run.probability * above.mean()))
+
+
+def _edge(seen: Seen, index: int, side: float, u_stations: float) -> Interval:
+    """Return an edge of a run as a station with its 95 % interval. [m]"""
+    strip, region = seen.strip, seen.region
+    step = float(strip.length[index])
+    middle = float(strip.station[index]) + region.direction * side * step
+    by_scale = strip.scale_uncertainty * abs(middle - region.start)
+    reach = 1.96 * math.hypot(u_stations * step, by_scale)
+    low, high = sorted((float(strip.station[0]), float(strip.station[-1])))
+    return Interval(middle, max(middle - reach, low - step), min(middle + reach, high + step))
+
+
+def _outline(seen: Seen, run: Run) -> tuple[tuple[float, float], ...]:
+    """Return the ring of a stretch in the frame, at the pipe's full width. [px]"""
+    strip = seen.strip
+    full = 1 / strip.across[-1]
+    sides = []
+    for samples, centre in ((strip.sample_x, strip.x), (strip.sample_y, strip.y)):
+        middle = centre[run.stations]
+        edges = [middle + (samples[row, run.stations] - middle) * full for row in (0, -1)]
+        sides.append(np.concatenate([edges[0], edges[1][::-1]]))
+    return tuple((round(float(x), 2), round(float(y), 2)) for x, y in zip(*sides, strict=True))

@@ -1,0 +1,1 @@
+"""The straightened pipe: from a frame and a region to bands of temperature along it."""
