@@ -26,7 +26,8 @@ SHARE = st.floats(0.05, 1.0)
 @given(RECORDED, BANDS)
 def test_black_and_clear_leaves_the_recorded_value(recorded, band):
     found = correct_temperature(recorded, band=band, emissivity=1.0, reflected_temperature=None)
-    assert abs(float(found) - recorded) < 1e-4 if band.limits[0] < 5e-6 else 1e-6
+    tolerance = 5e-6 if band.limits[0] < 5e-6 else 1e-6
+    assert abs(float(found) - recorded) < tolerance
 
 
 @given(RECORDED, AMBIENT, AMBIENT, SHARE, SHARE, SHARE, AMBIENT)
@@ -133,7 +134,7 @@ def test_transmission_is_a_share(distance, air, humidity):
             distance, air_temperature=air, relative_humidity=humidity, band_limits=(8e-6, 14e-6)
         )
     )
-    assert 0.5 < found <= 1.0
+    assert 0.0 < found <= 1.0
 
 
 @given(st.floats(240.0, 330.0), st.floats(0.05, 1.0))

@@ -116,7 +116,8 @@ def air_path_transmission(
     within metres: -ln tau grows about as L^0.58. The form fitted has a dry part, a water-line part
     and a water continuum. It is within 0.0007 of the table up to 20 m, 0.0009 up to 50 m and
     0.002 up to 100 m; the table itself is the weaker link, see
-    `air_path_transmission_uncertainty`. Below 0 °C and above 40 °C the fit is continued. Sea-level
+    `air_path_transmission_uncertainty`. Below 0 °C, above 40 °C and
+    above 41 g/m3 of vapour the fit is continued. Sea-level
     pressure is taken; on a mountain the air is a little clearer. Haze, fog, rain, steam leaks and
     dust are not in it.
 

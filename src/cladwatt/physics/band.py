@@ -76,7 +76,7 @@ class Band:
     takes about twice as long per frame. Each chord is moved by half its
     largest error. The inverse is tabulated against the fourth root of the
     radiance, in which temperature is nearly straight. In a mid-wave band (3-5 µm) the same holds
-    for the radiance; the round trip stays within 1e-4 K above -40 °C.
+    for the radiance; the round trip stays within 5e-6 K.
 
     Only ratios of radiances matter to a correction, so the scale of `responses` is free.
     """
