@@ -27,7 +27,8 @@ class Quantity:
         Distribution. For ``lognormal`` `value` is the median and ``u / value`` the sigma of the
         logarithm.
     source : str
-        ``declared``, or the name of the default's source.
+        Begins with ``declared`` where the user gave the value (what follows names the source of
+        a default uncertainty), else the name of the default's source.
     confidence : {"declared", "high", "medium", "low"}
         How far the source can be trusted; ``declared`` where the user said it.
     """
@@ -55,7 +56,7 @@ class Quantity:
     @property
     def is_default(self) -> bool:
         """Whether nobody declared it."""
-        return self.source != "declared"
+        return not self.source.startswith("declared")
 
     def scaled(self, factor: float) -> "Quantity":
         """Return the quantity times a positive exact `factor`."""

@@ -1,0 +1,1 @@
+"""What was recorded on one walk-down: survey file, frames, regions."""

@@ -1,0 +1,333 @@
+"""Site, camera, settings and conditions from their tables, and one frame from its own."""
+
+import math
+from dataclasses import replace
+from datetime import date, datetime, timedelta, timezone, tzinfo
+from typing import Literal
+
+from cladwatt.materials.tables import MaterialTables, default_quantity
+from cladwatt.quantities import Quantity
+from cladwatt.survey.fault_list import FaultList, shown
+from cladwatt.survey.model import (
+    AccuracyStatement,
+    Camera,
+    Conditions,
+    FrameFormat,
+    Recording,
+    Site,
+    Window,
+)
+from cladwatt.survey.table_reader import Table
+
+__all__ = [
+    "build_camera",
+    "build_conditions",
+    "build_format",
+    "build_recording",
+    "build_site",
+    "zone_of",
+    "zoned",
+]
+
+_AS_AIR = "as the air"
+"""Begins the source of a default that follows the air temperature."""
+
+
+def build_site(table: Table, tables: MaterialTables) -> Site:
+    """Return the site, with the air pressure of its altitude where none is declared."""
+    altitude = table.number("altitude")
+    pressure = table.quantity("pressure")
+    if pressure is None and altitude is not None:
+        from cladwatt.physics.air import pressure_at_altitude
+
+        value = float(pressure_at_altitude(altitude))
+        pressure = Quantity(
+            value, 0.015 * value, lower=0.9 * value, upper=1.1 * value,
+            source="standard atmosphere at the altitude (ISO 2533), u for weather",
+            confidence="medium",
+        )  # fmt: skip
+    return Site(
+        name=table.text("name"),
+        place=table.text("place"),
+        latitude_deg=table.number("latitude"),
+        longitude_deg=table.number("longitude"),
+        altitude=altitude,
+        pressure=pressure or default_quantity("air_pressure", tables),
+    )
+
+
+def build_camera(table: Table, tables: MaterialTables, faults: FaultList) -> Camera:
+    """Return the camera; what is not declared of band and accuracy comes from the tables."""
+    lower, upper = table.number("band_lower"), table.number("band_upper")
+    if (lower is None) != (upper is None):
+        name = "band_lower" if lower is not None else "band_upper"
+        faults.add(
+            table.place, table.spelling(name), "only one end of the band is given",
+            "expected band_lower_um and band_upper_um",
+        )  # fmt: skip
+    band_source = "declared"
+    if lower is None or upper is None:
+        low, high = default_quantity("band_lower", tables), default_quantity("band_upper", tables)
+        lower, upper, band_source = low.value, high.value, low.source
+    elif lower >= upper:
+        faults.add(
+            table.place, table.spelling("band_lower"),
+            f"the band runs from {lower * 1e6:g} to {upper * 1e6:g} µm",
+            "expected band_lower < band_upper",
+        )  # fmt: skip
+    calibrated = table.get("calibration_date")
+    spot = table.number("spot_pixels")
+    return Camera(
+        model=table.text("model"),
+        serial=table.text("serial"),
+        calibration_date=calibrated if isinstance(calibrated, date) else None,
+        band=(lower, upper),
+        band_source=band_source,
+        field_of_view_deg=table.number("field_of_view"),
+        noise=table.quantity("noise"),
+        accuracy=_accuracy(table, tables),
+        spot_pixels=spot if spot is not None else default_quantity("spot_pixels", tables).value,
+    )
+
+
+def _accuracy(table: Table, tables: MaterialTables) -> AccuracyStatement:
+    limit, percent = table.number("accuracy"), table.number("accuracy_of_reading")
+    factor = table.number("accuracy_coverage_factor")
+    if limit is None and percent is None:
+        usual = default_quantity("camera_accuracy_limit", tables)
+        share = default_quantity("camera_accuracy_percent", tables)
+        return AccuracyStatement(usual.value, share.value, factor, usual.source)
+    return AccuracyStatement(limit or 0.0, percent or 0.0, factor)
+
+
+def build_recording(table: Table, faults: FaultList, *, prefix: str = "") -> Recording:
+    """Return the camera's settings; those that belong together are asked for together."""
+    emissivity = _or(table.number("emissivity"), 1.0)
+    transmission = _or(table.number("transmission"), 1.0)
+    window = _or(table.number("window_transmission"), 1.0)
+    needed = (
+        ("emissivity", emissivity, "reflected_temperature"),
+        ("transmission", transmission, "atmosphere_temperature"),
+        ("window_transmission", window, "window_temperature"),
+    )
+    for name, value, other in needed:
+        if value < 1 and table.number(other) is None:
+            faults.add(
+                table.place, prefix + name if prefix else table.spelling(name),
+                f"the camera was set to {name} {value:g} but not to which {other}",
+                f"expected {prefix}{table.key(other).usual}: without it the setting cannot be"
+                " undone",
+            )  # fmt: skip
+    return Recording(
+        emissivity=emissivity,
+        reflected_temperature=table.number("reflected_temperature"),
+        transmission=transmission,
+        atmosphere_temperature=table.number("atmosphere_temperature"),
+        window_transmission=window,
+        window_temperature=table.number("window_temperature"),
+    )
+
+
+def _or(value: float | None, other: float) -> float:
+    return other if value is None else value
+
+
+def build_format(table: Table, faults: FaultList) -> FrameFormat:
+    """Return how the numbers of a frame file are to be taken."""
+    scale, offset = table.number("scale"), table.number("offset")
+    if scale == 0:
+        faults.add(table.place, table.spelling("scale"), "scale is 0", "expected another number")
+    if offset is not None and scale is None:
+        faults.add(
+            table.place, table.spelling("offset"), "offset stands without scale",
+            "expected both: temperature = counts * scale + offset",
+        )  # fmt: skip
+    lower, upper = table.number("range_lower"), table.number("range_upper")
+    if lower is not None and upper is not None and lower >= upper:
+        faults.add(
+            table.place, table.spelling("range_lower"), "the recording range is empty",
+            "expected range_lower < range_upper",
+        )  # fmt: skip
+    unit = table.text("unit")
+    bottom: Literal["top", "bottom"] = "bottom" if table.text("rows_from") == "bottom" else "top"
+    return FrameFormat(
+        unit="C" if unit == "C" else "K" if unit == "K" else "F" if unit == "F" else None,
+        scale=scale,
+        offset=offset if scale is None else _or(offset, 0.0),
+        page=int(table.number("page") or 0),
+        rows_from=bottom,
+        bad_value=table.number("bad_value"),
+        range_lower=lower,
+        range_upper=upper,
+    )
+
+
+def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) -> Conditions:
+    """Return the conditions with the defaults that may be taken.
+
+    Indoors the surroundings are taken at the air's temperature with 2 K of their own
+    uncertainty, and the wind as a draught. Outdoors, or where neither is said, there is no
+    default wind and the surroundings carry 10 K; a declared sky temperature takes the place of
+    the default.
+    """
+    indoors = table.flag("indoors")
+    air = table.quantity("air_temperature")
+    surroundings = _surroundings(table, air, tables)
+    return Conditions(
+        air_temperature=air,
+        surroundings_temperature=surroundings,
+        reflected_temperature=_reflected(table, air, surroundings, tables),
+        relative_humidity=_default(table, "relative_humidity", "relative_humidity", tables),
+        distance=table.quantity("distance"),
+        atmosphere_transmission=table.quantity("atmosphere_transmission"),
+        wind_speed=(
+            _default(table, "wind_speed", "air_speed_indoors", tables)
+            if indoors
+            else table.quantity("wind_speed")
+        ),
+        wind_angle_deg=table.quantity("wind_angle"),
+        indoors=indoors,
+        sky_band_temperature=table.quantity("sky_band_temperature"),
+        sky_total_temperature=table.quantity("sky_total_temperature"),
+        sky_view_factor=_sky_view(table),
+        solar_irradiance=table.quantity("solar_irradiance"),
+        sun_on_pipe=table.flag("sun_on_pipe"),
+        rain_last_24h=table.flag("rain_last_24h"),
+        sun_last_24h=table.flag("sun_last_24h"),
+        roll_deg=table.number("roll") or 0.0,
+        window=_window(table, faults),
+    )
+
+
+def _default(table: Table, name: str, default: str, tables: MaterialTables) -> Quantity | None:
+    """Return what is declared, else the default; None where declared unknown."""
+    if table.has(name):
+        return table.quantity(name)
+    return default_quantity(default, tables)
+
+
+def _as_air(table: Table, air: Quantity | None, tables: MaterialTables) -> Quantity | None:
+    """Return the air temperature with the uncertainty of the surroundings alone."""
+    if air is None:
+        return None
+    where = "indoors" if table.flag("indoors") else "outdoors"
+    difference = default_quantity(f"surroundings_minus_air_{where}", tables)
+    return Quantity(
+        air.value + difference.value,
+        difference.u,
+        lower=air.value + min(difference.lower, -5 * difference.u),
+        upper=air.value + max(difference.upper, 5 * difference.u),
+        source=f"{_AS_AIR}, u {difference.u:g} K {where}: {difference.source}",
+        confidence="low",
+    )
+
+
+def _surroundings(table: Table, air: Quantity | None, tables: MaterialTables) -> Quantity | None:
+    if table.has("surroundings_temperature"):
+        return table.quantity("surroundings_temperature") or _as_air(table, air, tables)
+    if table.has("sky_total_temperature") and not table.is_unknown("sky_total_temperature"):
+        return None
+    return _as_air(table, air, tables)
+
+
+def _reflected(
+    table: Table, air: Quantity | None, surroundings: Quantity | None, tables: MaterialTables
+) -> Quantity | None:
+    if table.has("reflected_temperature") and not table.is_unknown("reflected_temperature"):
+        return table.quantity("reflected_temperature")
+    if table.has("sky_band_temperature") and not table.is_unknown("sky_band_temperature"):
+        return None
+    if table.flag("indoors") and surroundings is not None and not surroundings.is_default:
+        return replace(
+            surroundings,
+            u=math.hypot(surroundings.u, 2.0),
+            source="as the declared surroundings, u 2 K more: common practice, no source",
+            confidence="low",
+        )
+    return _as_air(table, air, tables)
+
+
+def _sky_view(table: Table) -> Quantity | None:
+    if table.has("sky_view_factor"):
+        return table.quantity("sky_view_factor")
+    if not (table.has("sky_band_temperature") or table.has("sky_total_temperature")):
+        return None
+    return Quantity(
+        0.5, 0.15, lower=0.0, upper=1.0,
+        source="a level pipe in the open sees the sky from half round: geometry; u: common"
+        " practice, no source",
+        confidence="low",
+    )  # fmt: skip
+
+
+def _window(table: Table, faults: FaultList) -> Window | None:
+    transmission = table.quantity("window_transmission")
+    reflectance = table.quantity("window_reflectance")
+    if transmission is None:
+        if reflectance is not None:
+            faults.add(
+                table.place, table.spelling("window_reflectance"),
+                "a window's reflectance stands without its transmission",
+                "expected window_transmission beside it",
+            )  # fmt: skip
+        return None
+    if reflectance is None:
+        rest = 1.0 - transmission.value
+        reflectance = Quantity(
+            rest / 2, rest / 4, lower=0.0, upper=rest,
+            source="half of what the window does not transmit: common practice, no source",
+            confidence="low",
+        )  # fmt: skip
+    if transmission.value + reflectance.value > 1:
+        faults.add(
+            table.place, table.spelling("window_reflectance"),
+            f"window transmission {transmission.value:g} and reflectance {reflectance.value:g}"
+            " exceed 1 together", "expected their sum <= 1",
+        )  # fmt: skip
+    return Window(transmission, reflectance, table.quantity("window_temperature"))
+
+
+def zone_of(table: Table, faults: FaultList) -> tzinfo | None:
+    """Return the zone declared for times written without one."""
+    text = table.text("timezone")
+    if not text:
+        return None
+    try:
+        shift = datetime.strptime(text.replace(":", ""), "%z").utcoffset()
+        return timezone(shift or timedelta(0))
+    except ValueError:
+        pass
+    from zoneinfo import ZoneInfo, ZoneInfoNotFoundError
+
+    try:
+        return ZoneInfo(text)
+    except (ZoneInfoNotFoundError, ValueError, OSError):
+        faults.add(
+            table.place, "timezone", f"timezone is {shown(text)}",
+            'expected a name such as "Europe/Berlin" or an offset such as "+01:00"',
+        )  # fmt: skip
+        return None
+
+
+def zoned(table: Table, zone: tzinfo | None, faults: FaultList) -> datetime | None:
+    """Return a frame's time with its zone; without one it is asked for, never guessed."""
+    time = table.get("time")
+    if not isinstance(time, datetime):
+        return None
+    if time.tzinfo is not None:
+        return time
+    if zone is None:
+        faults.ask(
+            table.place, "time", f"time {time.isoformat(' ')} says no zone and is not used",
+            'write it with one (+01:00), or declare timezone in [site]',
+        )  # fmt: skip
+        return None
+    early, late = time.replace(tzinfo=zone), time.replace(tzinfo=zone, fold=1)
+    if early.utcoffset() != late.utcoffset():
+        faults.ask(
+            table.place, "time",
+            f"time {time.isoformat(' ')} lies in the hour the clocks change and is not used",
+            "write it with its offset (+01:00)",
+        )  # fmt: skip
+        return None
+    return early

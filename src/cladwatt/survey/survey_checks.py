@@ -1,0 +1,109 @@
+"""What no single table can show: dates, and temperatures against each other."""
+
+from collections.abc import Mapping, Sequence
+from datetime import date, timedelta
+
+from cladwatt.quantities import Quantity
+from cladwatt.survey.fault_list import FaultList, Place, shown
+from cladwatt.survey.model import Camera, FrameEntry, Line
+from cladwatt.survey.region import Region
+from cladwatt.survey.survey_regions import region_place
+from cladwatt.survey.survey_source import Source
+from cladwatt.survey.table_reader import Table
+
+__all__ = ["check_dates", "check_temperatures"]
+
+_ZERO_CELSIUS = 273.15
+_HOT_FLUIDS = ("steam", "condensate", "hot")
+_CHILLED_FLUIDS = ("chilled", "brine", "refrigerant", "cold")
+
+
+def check_dates(
+    head: Table, source: Source, camera: Camera, frames: Sequence[FrameEntry], faults: FaultList
+) -> None:
+    """Question dates that do not fit each other."""
+    del source
+    day = head.get("date")
+    if not isinstance(day, date):
+        return
+    calibrated = camera.calibration_date
+    if calibrated is not None and calibrated > day:
+        faults.ask(
+            head.place, "date",
+            f"the camera was calibrated on {calibrated}, after the survey of {day}",
+            "check both dates",
+        )  # fmt: skip
+    for frame in frames:
+        if frame.time is not None and abs(frame.time.date() - day) > timedelta(days=31):
+            faults.ask(
+                head.place, "date",
+                f"frame {shown(frame.id)} was recorded on {frame.time.date()}, the survey made"
+                f" on {day}", "check both dates",
+            )  # fmt: skip
+
+
+def check_temperatures(
+    lines: Mapping[str, Line],
+    services: Mapping[str, str],
+    frames: Mapping[str, FrameEntry],
+    regions: Sequence[Region],
+    wide_air: Quantity | None,
+    faults: FaultList,
+) -> set[str]:
+    """Return the tags whose inside temperature contradicts their service.
+
+    Each region of such a line is named as left out with it.
+    """
+    drawn: dict[str, list[FrameEntry]] = {tag: [] for tag in lines}
+    for region in regions:
+        if region.tag is not None and region.role == "pipe" and region.frame_id in frames:
+            drawn[region.tag].append(frames[region.frame_id])
+    wrong: set[str] = set()
+    for tag, line in lines.items():
+        airs = [(f"air of frame {f.id}", f.conditions.air_temperature) for f in drawn[tag]]
+        if not airs:
+            airs = [("air of [conditions]", wide_air)]
+        if any(
+            _contradicts(line, services.get(tag, ""), where, air, faults) for where, air in airs
+        ):
+            wrong.add(tag)
+    for region in regions:
+        if region.tag in wrong:
+            faults.add(
+                region_place(region), "tag",
+                f"its line {shown(region.tag)} is left out: its temperature contradicts its"
+                " service", "mend the line and the region comes back",
+            )  # fmt: skip
+    return wrong
+
+
+def _service(line: Line, declared: str) -> str:
+    if declared:
+        return declared
+    words = line.fluid.casefold()
+    if any(word in words for word in _CHILLED_FLUIDS):
+        return "chilled"
+    return "hot" if any(word in words for word in _HOT_FLUIDS) else ""
+
+
+def _contradicts(
+    line: Line, declared: str, where: str, air: Quantity | None, faults: FaultList
+) -> bool:
+    inside = line.inside_temperature
+    service = _service(line, declared)
+    if air is None or inside is None or not service:
+        return False
+    difference = inside.value - air.value
+    if (difference < 0) != (service == "hot") or difference == 0:
+        return False
+    name = "service" if declared else "fluid"
+    word = declared or line.fluid
+    side = "colder" if service == "hot" else "warmer"
+    faults.add(
+        Place("line list", f"line {line.tag}", tag=line.tag), name,
+        f"{name} is {shown(word)} but the {line.inside_is} at"
+        f" {inside.value - _ZERO_CELSIUS:.4g} °C is {side} than the {where},"
+        f" {air.value - _ZERO_CELSIUS:.4g} °C",
+        "expected the other way round; check both temperatures and their units",
+    )  # fmt: skip
+    return True
