@@ -7,7 +7,6 @@ from cladwatt.types import FloatArray, FloatLike
 __all__ = [
     "nusselt_churchill_bernstein",
     "nusselt_hilpert",
-    "nusselt_whitaker",
     "nusselt_zukauskas",
     "reynolds_number",
 ]
@@ -134,30 +133,3 @@ def nusselt_hilpert(reynolds: FloatLike, prandtl: FloatLike) -> FloatArray:
     part = np.searchsorted(_HILPERT_LIMITS, number)
     power = number ** _HILPERT_EXPONENTS[part]
     return np.asarray(_HILPERT_FACTORS[part] * power * np.cbrt(prandtl))
-
-
-def nusselt_whitaker(
-    reynolds: FloatLike, prandtl: FloatLike, *, viscosity_ratio: FloatLike = 1.0
-) -> FloatArray:
-    """Cross flow on a cylinder, 1 < Re < 1e5, 0.67 < Pr < 300; properties of the free stream.
-
-    Parameters
-    ----------
-    reynolds, prandtl : float or array
-        On the diameter, at the air's temperature. [-]
-    viscosity_ratio : float or array
-        Dynamic viscosity of the free stream over that at the surface. [-]
-
-    Returns
-    -------
-    array
-        Mean Nusselt number on the diameter. [-]
-
-    References
-    ----------
-    .. [1] Whitaker, *Forced convection heat transfer correlations*, AIChE J. 18 (1972) 361-371.
-    """
-    number = np.asarray(reynolds, dtype=np.float64)
-    layers = 0.4 * np.sqrt(number) + 0.06 * np.cbrt(number) ** 2
-    correction = np.asarray(prandtl) ** 0.4 * np.asarray(viscosity_ratio) ** 0.25
-    return np.asarray(layers * correction)
