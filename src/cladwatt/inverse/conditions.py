@@ -270,7 +270,7 @@ def _transmission(
     if conditions.atmosphere_transmission is not None:
         return book.quantity(owner, "transmission", conditions.atmosphere_transmission)
     declared = conditions.distance or Quantity(
-        distance or 5.0, 0.15 * distance if distance else 4.0, lower=0.3, upper=200.0
+        distance or 5.0, 0.15 * distance if distance else 4.0, lower=0.3, upper=149.0
     )
     humidity = conditions.relative_humidity or Quantity(0.5, 0.2, lower=0.0, upper=1.0)
     path = book.quantity(owner, "distance", declared)

@@ -73,15 +73,13 @@ def face_draws(face: Face, frame: FrameDraws, line: LineDraws, diameter: FloatAr
     if frame.wind_speed is not None:
         exchange = _beside(line.exchange(frame, diameter))
         flux = surface_heat_flux(temperature, exchange)
-    bands, stations = face.lens_temperature.shape
-    mean_temperature = np.zeros((frame.count, stations))
-    mean_flux = np.zeros((frame.count, stations))
-    for band in range(bands):
-        weights = _interpolation_matrix(nodes, face.lens_temperature[band])
-        mean_temperature += temperature[:, band] @ weights / bands
-        if flux is not None:
-            mean_flux += flux[:, band] @ weights / bands
-    return FaceDraws(mean_temperature, None if flux is None else mean_flux)
+    weights = np.concatenate(
+        [_interpolation_matrix(nodes, row) for row in face.lens_temperature]
+    ) / len(face.lens_temperature)
+    return FaceDraws(
+        temperature.reshape(frame.count, -1) @ weights,
+        None if flux is None else flux.reshape(frame.count, -1) @ weights,
+    )
 
 
 def surface_temperature_draws(

@@ -15,7 +15,14 @@ from cladwatt.inverse.feasibility import flux_bounds
 from cladwatt.inverse.hidden_side import HiddenSide, whole_flux
 from cladwatt.inverse.level import aged_probability
 from cladwatt.inverse.null import NullModel, null_of
-from cladwatt.inverse.result import Interval, RegionResult, Stretch, Verdict, interval_of
+from cladwatt.inverse.result import (
+    Interval,
+    RegionResult,
+    StationTable,
+    Stretch,
+    Verdict,
+    interval_of,
+)
 from cladwatt.inverse.seen import FrameImage, Seen
 from cladwatt.inverse.sound import SoundDraws, sound_draws
 from cladwatt.inverse.station_table import station_table
@@ -171,7 +178,7 @@ def _null(seen: Seen) -> NullModel:
 def _concluded(seen: Seen) -> RegionResult:
     """Draw the conclusions."""
     if seen.drawn.heat_flux is None:
-        return _without_balance(seen)
+        return _without_balance(seen, station_table(seen, None, None))
     profile = seen.face.lens_temperature.mean(axis=0)
     null = _null(seen)
     runs = find_runs(profile, null, sign=-1 if seen.gain else 1, diameter_stations=seen.width)
@@ -211,7 +218,7 @@ def _concluded(seen: Seen) -> RegionResult:
     )
     resistances = _resistances(seen, draws.get("heat_loss"), sound)
     return replace(
-        _without_balance(seen),
+        _without_balance(seen, station_table(seen, loss, sound)),
         heat_flux=interval_of(mean_flux),
         heat_loss=heat_loss,
         total_loss=_interval(draws, "total_loss"),
@@ -227,13 +234,12 @@ def _concluded(seen: Seen) -> RegionResult:
         probability_aged=aged,
         verdict=as_verdict(inputs, shares),
         stretches=stretches,
-        stations=station_table(seen, loss, sound),
         variance_shares=shares,
         draws=draws,
     )
 
 
-def _without_balance(seen: Seen) -> RegionResult:
+def _without_balance(seen: Seen, stations: StationTable) -> RegionResult:
     """Return what needs no heat balance: length, temperature, what is missing."""
     return RegionResult(
         region_id=seen.region.id,
@@ -261,7 +267,7 @@ def _without_balance(seen: Seen) -> RegionResult:
         probability_aged=None,
         verdict=Verdict("not quantified", Remark("not_quantified.no_wind")),
         stretches=(),
-        stations=station_table(seen, None, None),
+        stations=stations,
         missing=missing_of(seen),
         cautions=cautions_of(seen),
         remarks=remarks_of(seen),

@@ -92,9 +92,11 @@ def _outline(seen: Seen, run: Run) -> tuple[tuple[float, float], ...]:
     """Return the ring of a stretch in the frame, at the pipe's full width. [px]"""
     strip = seen.strip
     full = 1 / strip.across[-1]
+    number = 2 if len(seen.region.centreline or ()) <= 2 else 9
+    stations = np.unique(np.linspace(run.first, run.last, number).astype(int))
     sides = []
     for samples, centre in ((strip.sample_x, strip.x), (strip.sample_y, strip.y)):
-        middle = centre[run.stations]
-        edges = [middle + (samples[row, run.stations] - middle) * full for row in (0, -1)]
+        middle = centre[stations]
+        edges = [middle + (samples[row, stations] - middle) * full for row in (0, -1)]
         sides.append(np.concatenate([edges[0], edges[1][::-1]]))
     return tuple((round(float(x), 2), round(float(y), 2)) for x, y in zip(*sides, strict=True))

@@ -8,6 +8,9 @@ from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["centreline_of_outline", "region_mask", "region_ring", "widened"]
 
+LARGEST_RAGGEDNESS = 0.5
+"""Largest departure of an outline's width from a straight taper, over its median width."""
+
 
 def region_ring(region: Region) -> FloatArray:
     """Return the closed ring round a region, first point not repeated, (n, 2) in pixels.
@@ -65,7 +68,8 @@ def centreline_of_outline(region: Region) -> tuple[FloatArray, FloatArray]:
     Raises
     ------
     RegionError
-        If a cut across the outline's long axis meets it more than twice: it bends.
+        If a cut across the outline's long axis meets it more than twice, or its width jumps: it
+        is not a straight pipe.
 
     Notes
     -----
@@ -83,24 +87,31 @@ def centreline_of_outline(region: Region) -> tuple[FloatArray, FloatArray]:
     for number, cut in enumerate(cuts):
         crossings = _crossings(along, side, cut)
         if len(crossings) != 2:
-            raise RegionError(
-                Fault(
-                    f"regions/{region.frame_id}.geojson",
-                    f"feature {region.feature} (id '{region.id}')",
-                    f"a cut across the outline meets it {len(crossings)} times",
-                    "expected an outline round one straight pipe; draw a bent one as a LineString "
-                    "centreline with widths",
-                    frame_id=region.frame_id,
-                    region_id=region.id,
-                )
-            )
+            raise _bends(region, f"a cut across the outline meets it {len(crossings)} times")
         middles[number] = (crossings[0] + crossings[1]) / 2
         widths[number] = abs(crossings[1] - crossings[0])
     middle_line = np.polyfit(cuts, middles, 1)
     width_line = np.polyfit(cuts, widths, 1)
+    ragged = np.abs(widths - np.polyval(width_line, cuts)).max() / np.median(widths)
+    if ragged > LARGEST_RAGGEDNESS:
+        raise _bends(region, f"the outline's width jumps by {ragged:.0%}")
     ends = np.array([along.min(), along.max()])
     points = centre + ends[:, None] * axis + np.polyval(middle_line, ends)[:, None] * normal
     return points, np.maximum(np.polyval(width_line, ends), 1.0)
+
+
+def _bends(region: Region, found: str) -> RegionError:
+    return RegionError(
+        Fault(
+            f"regions/{region.frame_id}.geojson",
+            f"feature {region.feature} (id '{region.id}')",
+            found,
+            "expected an outline round one straight pipe; draw a bent one as a LineString "
+            "centreline with widths",
+            frame_id=region.frame_id,
+            region_id=region.id,
+        )
+    )
 
 
 def _long_axis(ring: FloatArray) -> tuple[FloatArray, FloatArray]:
