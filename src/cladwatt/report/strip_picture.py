@@ -21,6 +21,7 @@ from cladwatt.report.svg import (
     Axis,
     Drawing,
     clip_text,
+    isolated,
     nice_ticks,
     plain,
     png_data_uri,
@@ -141,7 +142,7 @@ class _StripPicture:
         self.svg.rect(0, 0, WIDTH, self.svg.height, fill=colours.PAPER)
         self.hatch = self.svg.hatch()
         self._draw_title()
-        top, bottom = FACE_TOP, self.y + LOSS_HEIGHT + GAP + RATIO_HEIGHT
+        bottom = self.y + LOSS_HEIGHT + GAP + RATIO_HEIGHT
         self._draw_stretch_tints(self.y, bottom)
         self._draw_face()
         if self.quantified:
@@ -150,14 +151,19 @@ class _StripPicture:
         else:
             self._draw_words(self.y, LOSS_HEIGHT + GAP + RATIO_HEIGHT, self._reason())
         self._draw_metres(bottom)
-        self._draw_stretch_marks(top, bottom)
+        self._draw_stretch_marks(FACE_TOP, bottom if self.quantified else self.y)
         return self.svg.render()
 
     # --- words -----------------------------------------------------------------------------
 
     def _title(self) -> str:
         region = self.region
-        return self.say("title", tag=region.tag, region=region.region_id, frame=region.frame_id)
+        return self.say(
+            "title",
+            tag=isolated(region.tag),
+            region=isolated(region.region_id),
+            frame=isolated(region.frame_id),
+        )
 
     def _reason(self) -> list[str]:
         return [self.say("not_quantified"), sentence(self.region.verdict.reason, self.language)]
@@ -188,7 +194,7 @@ class _StripPicture:
     def _stretch_label(self, stretch: Stretch) -> str:
         return self.say(
             "stretch",
-            id=clip_text(stretch.id, 24),
+            id=isolated(clip_text(stretch.id, 24)),
             start=format_number(stretch.start.median, 2),
             end=format_number(stretch.end.median, 2),
             probability=format_probability(stretch.probability),
@@ -198,9 +204,9 @@ class _StripPicture:
         region, level = self.region, self.region.verdict.level
         words = self.say(
             "title",
-            tag=clip_text(region.tag, 34),
-            region=clip_text(region.region_id, 28),
-            frame=clip_text(region.frame_id, 22),
+            tag=isolated(clip_text(region.tag, 34)),
+            region=isolated(clip_text(region.region_id, 28)),
+            frame=isolated(clip_text(region.frame_id, 22)),
         )
         self.svg.text(LEFT, TITLE_Y, words, fill=colours.INK, font_weight="600", font_size=15)
         shown = text(f"verdict.{level.replace(' ', '_')}", self.language)
@@ -310,7 +316,7 @@ class _StripPicture:
                           stroke_linejoin="round")  # fmt: skip
 
     def _legend(self, top: float, name: str, words: str, row: int = 0) -> None:
-        svg, x, y = self.svg, RIGHT + 12, top + 8 + 62 * row
+        svg, x, y = self.svg, RIGHT + 12, top + 30 + 60 * row
         hue = colours.hue_of(self.region.gain)
         if name == "band":
             svg.rect(x, y - 6, 26, 12, fill=hue, fill_opacity=0.2)

@@ -15,15 +15,37 @@ from numpy.typing import NDArray
 
 from cladwatt.types import FloatArray
 
-__all__ = ["Axis", "Drawing", "clip_text", "nice_ticks", "plain", "png_data_uri", "text_width"]
+__all__ = [
+    "Axis",
+    "Drawing",
+    "clip_text",
+    "isolated",
+    "nice_ticks",
+    "plain",
+    "png_data_uri",
+    "text_width",
+]
 
 FONT = "'Segoe UI', 'DejaVu Sans', Arial, sans-serif"
+
+_DIRECTION = frozenset("\u200e\u200f\u202a\u202b\u202c\u202d\u202e\u2066\u2067\u2068\u2069")
 
 
 def plain(words: str) -> str:
     """Return text without control characters, which no XML may hold; line ends become spaces."""
     spaced = "".join(" " if c in "\r\n\t" else c for c in words)
     return "".join(c for c in spaced if unicodedata.category(c) not in ("Cc", "Cs", "Cn"))
+
+
+def undirected(words: str) -> str:
+    """Return text without the signs that steer the writing direction."""
+    return "".join(c for c in words if c not in _DIRECTION)
+
+
+def isolated(words: str) -> str:
+    """Return text whose writing direction cannot reach what stands around it; ASCII as it is."""
+    words = plain(words)
+    return words if words.isascii() else f"\u2068{words}\u2069"
 
 
 def clip_text(words: str, limit: int) -> str:
@@ -35,7 +57,7 @@ def clip_text(words: str, limit: int) -> str:
 def text_width(words: str, size: float) -> float:
     """Return a generous estimate of the width of a text set in `size`."""
     wide = sum(1 for c in words if unicodedata.east_asian_width(c) in "WF")
-    return size * (0.58 * (len(words) - wide) + 1.1 * wide)
+    return size * (0.6 * (len(words) - wide) + 1.1 * wide)
 
 
 def nice_ticks(low: float, high: float, target: int = 5) -> list[float]:

@@ -12,7 +12,7 @@ from typing import Any
 from cladwatt.errors import InputError
 from cladwatt.quantities import Remark
 
-__all__ = ["has_wording", "known_languages", "quantity_name", "sentence", "text"]
+__all__ = ["has_wording", "known_languages", "phrases", "quantity_name", "sentence", "text"]
 
 _OPTIONAL = re.compile(r"\[\[(.*?)\]\]", re.DOTALL)
 
@@ -74,6 +74,16 @@ def _fill(template: str, parameters: Mapping[str, float | str]) -> str:
 def has_wording(key: str, language: str = "en") -> bool:
     """Return whether a key has a text in a language."""
     return _template(key, language) is not None
+
+
+def phrases(key: str, language: str = "en") -> tuple[str, ...]:
+    """Return a list of texts without parameters; raises InputError if the key holds none."""
+    node: Any = _table(language)
+    for part in key.split("."):
+        node = node.get(part) if isinstance(node, dict) else None
+    if not isinstance(node, list):
+        raise InputError(f"list key is {key!r}; expected a list of the language file {language!r}")
+    return tuple(str(item) for item in node)
 
 
 def text(key: str, language: str = "en", **parameters: float | str) -> str:

@@ -1,0 +1,126 @@
+"""Which regions are put in front of the reader, and in what order."""
+
+import math
+from dataclasses import dataclass
+
+import numpy as np
+
+from cladwatt.quantities import Remark
+from cladwatt.report.numbers import as_gain
+from cladwatt.results.assessment import Assessment, Interval, LeftOut, RegionResult
+
+__all__ = ["Finding", "all_left_out", "is_finding", "ranked_findings", "signed", "where_damaged"]
+
+LIKELY = 0.5
+"""A region is a finding where damage is at least as likely as not."""
+
+
+@dataclass(frozen=True)
+class Finding:
+    """A region in front of the reader; numbers are None where they are not quantified.
+
+    A chilled line's loss, sound loss and excess are gains, counted positive.
+    """
+
+    region: RegionResult
+    loss: Interval | None
+    """[W/m]"""
+    sound: Interval | None
+    """[W/m]"""
+    excess: Interval | None
+    """Above sound, over the drawn length. [W]"""
+    probability: float | None
+    """That the region is damaged anywhere."""
+
+    @property
+    def quantified(self) -> bool:
+        """Whether the verdict lets numbers be printed."""
+        return self.region.verdict.level != "not quantified"
+
+
+def signed(region: RegionResult, interval: Interval | None) -> Interval | None:
+    """Return a loss as it is printed: positive, as loss or as gain."""
+    if interval is None:
+        return None
+    return as_gain(interval) if region.gain else interval
+
+
+def _likelihood(region: RegionResult) -> float | None:
+    parts = [stretch.probability for stretch in region.stretches]
+    if region.probability_damaged is not None and math.isfinite(region.probability_damaged):
+        parts.append(region.probability_damaged)
+    return max(parts, default=None)
+
+
+def is_finding(region: RegionResult) -> bool:
+    """Return whether damage somewhere in the region is at least as likely as not."""
+    probability = _likelihood(region)
+    return probability is not None and probability >= LIKELY
+
+
+def whole_excess(region: RegionResult) -> Interval | None:
+    """Return found minus sound over the drawn length, in W; from the draws if kept."""
+    if region.excess is None:
+        return None
+    per_metre, length = region.draws.get("excess"), region.draws.get("length")
+    if per_metre is not None and length is not None and per_metre.shape == length.shape:
+        whole = (per_metre * length)[np.isfinite(per_metre * length)]
+        if whole.size:
+            low, median, high = np.percentile(whole, [2.5, 50.0, 97.5])
+            return Interval(float(median), float(low), float(high))
+    metres, excess = region.length.median, region.excess
+    return Interval(excess.median * metres, excess.low * metres, excess.high * metres)
+
+
+def finding_of(region: RegionResult) -> Finding:
+    """Return a region as it is put in front of the reader."""
+    printed = region.verdict.level != "not quantified"
+    return Finding(
+        region,
+        loss=signed(region, region.heat_loss) if printed else None,
+        sound=signed(region, region.sound_loss) if printed else None,
+        excess=signed(region, whole_excess(region)) if printed else None,
+        probability=_likelihood(region),
+    )
+
+
+def _rank(finding: Finding) -> tuple[bool, float, float]:
+    excess = finding.excess
+    known = excess is not None and math.isfinite(excess.median)
+    return (
+        not known,
+        -excess.median if excess is not None and known else 0.0,
+        -(finding.probability or 0.0),
+    )
+
+
+def ranked_findings(assessment: Assessment) -> tuple[Finding, ...]:
+    """Return the findings, largest expected excess first.
+
+    Those whose excess is not known or not quantified follow, by probability; equals keep the
+    order of the survey.
+    """
+    found = [finding_of(region) for region in assessment.regions if is_finding(region)]
+    return tuple(sorted(found, key=_rank))
+
+
+def where_damaged(region: RegionResult) -> tuple[tuple[float, float], ...]:
+    """Return the likely damaged parts in metres; the whole region where no stretch is marked."""
+    likely = [s for s in region.stretches if s.probability >= LIKELY]
+    if not likely:
+        low, high = sorted((region.start_station, region.end_station))
+        return ((low, high),)
+    return tuple(sorted((s.start.median, s.end.median) for s in likely))
+
+
+def all_left_out(assessment: Assessment) -> tuple[LeftOut, ...]:
+    """Return everything not assessed, of the survey and of its frames, each once."""
+    items = [*assessment.left_out]
+    for frame in assessment.frames:
+        items += frame.left_out
+    return tuple(dict.fromkeys(items))
+
+
+def unique_remarks(*groups: tuple[Remark, ...]) -> tuple[Remark, ...]:
+    """Return the remarks of all groups, each once, in order."""
+    return tuple(dict.fromkeys(remark for group in groups for remark in group))

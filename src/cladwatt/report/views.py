@@ -1,0 +1,287 @@
+"""What the report's template prints: texts and numbers ready made, nothing left to decide."""
+
+from dataclasses import dataclass
+
+from markupsafe import Markup
+
+from cladwatt.quantities import Remark
+from cladwatt.report.findings import Finding, finding_of, signed, unique_remarks, where_damaged
+from cladwatt.report.numbers import (
+    PRINT,
+    celsius,
+    celsius_interval,
+    decimals_for,
+    format_interval,
+    format_number,
+    format_probability,
+)
+from cladwatt.report.wording import quantity_name, sentence, text
+from cladwatt.results.assessment import (
+    Assessment,
+    Assumption,
+    Interval,
+    LineTotal,
+    RegionResult,
+)
+
+__all__ = [
+    "AssumptionView",
+    "FindingView",
+    "LineView",
+    "RegionView",
+    "assumption_views",
+    "finding_view",
+    "line_view",
+    "region_view",
+]
+
+MOST_SHARES = 4
+
+
+@dataclass(frozen=True)
+class FindingView:
+    """One row of the findings."""
+
+    anchor: str
+    region: RegionResult
+    where: str
+    loss: str
+    sound: str
+    excess: str
+    probability: str
+    verdict: str
+    advice: str
+
+
+@dataclass(frozen=True)
+class RegionView:
+    """One region with its picture."""
+
+    anchor: str
+    region: RegionResult
+    svg: Markup
+    figures: tuple[tuple[str, str], ...]
+    stretches: tuple[tuple[str, str, str, str, str, str], ...]
+    verdict: str
+    level: str
+    reason: str
+    advice: str
+    shares: str
+    missing: tuple[str, ...]
+    cautions: tuple[str, ...]
+    remarks: tuple[str, ...]
+
+
+@dataclass(frozen=True)
+class LineView:
+    """One line's sums."""
+
+    line: LineTotal
+    length: str
+    total: str
+    excess: str
+    regions: str
+
+
+@dataclass(frozen=True)
+class AssumptionView:
+    """One declared or assumed quantity, for all that share it."""
+
+    quantity: str
+    value: str
+    uncertainty: str
+    source: str
+    confidence: str
+    owners: str
+
+
+def _verdict(region: RegionResult, language: str) -> str:
+    return text(f"verdict.{region.verdict.level.replace(' ', '_')}", language)
+
+
+def _advice(region: RegionResult, language: str) -> str:
+    advice = region.verdict.advice
+    return sentence(advice, language) if advice is not None else ""
+
+
+def finding_view(finding: Finding, anchor: str, language: str) -> FindingView:
+    """Return a finding ready to print; its numbers give way to words where not quantified."""
+    region = finding.region
+    key = "not_known" if finding.quantified else "not_quantified"
+    instead = text(f"report.{key}", language)
+
+    def shown(interval: Interval | None) -> str:
+        return format_interval(interval, "") if interval is not None else instead
+
+    to = PRINT.range_word
+    places = [
+        f"{format_number(start, 2)} {to} {format_number(end, 2)}"
+        for start, end in where_damaged(region)
+    ]
+    return FindingView(
+        anchor=anchor,
+        region=region,
+        where="; ".join(places),
+        loss=shown(finding.loss),
+        sound=shown(finding.sound),
+        excess=shown(finding.excess),
+        probability=format_probability(finding.probability),
+        verdict=_verdict(region, language),
+        advice=_advice(region, language) or text("report.no_advice", language),
+    )
+
+
+def region_view(region: RegionResult, anchor: str, svg: str, language: str) -> RegionView:
+    """Return a region ready to print."""
+    shares = ", ".join(
+        f"{quantity_name(name, language)} {format_probability(share)}"
+        for name, share in region.variance_shares[:MOST_SHARES]
+        if share >= 0.01
+    )
+
+    def words(remarks: tuple[Remark, ...]) -> tuple[str, ...]:
+        return tuple(sentence(remark, language) for remark in unique_remarks(remarks))
+
+    return RegionView(
+        anchor=anchor,
+        region=region,
+        svg=Markup(svg),
+        figures=tuple(_figures(region, language)),
+        stretches=tuple(_stretch_rows(region, language)),
+        verdict=_verdict(region, language),
+        level=region.verdict.level.replace(" ", "-"),
+        reason=sentence(region.verdict.reason, language),
+        advice=_advice(region, language),
+        shares=shares,
+        missing=words(region.missing),
+        cautions=words(region.cautions),
+        remarks=words(region.remarks),
+    )
+
+
+def _figures(region: RegionResult, language: str) -> list[tuple[str, str]]:
+    def named(key: str, value: str) -> tuple[str, str]:
+        return text(f"report.{key}", language), value
+
+    instead = text("report.not_quantified", language)
+    quantified = region.verdict.level != "not quantified"
+    rows = [
+        named("length", format_interval(region.length, "m")),
+        named(
+            "recorded_temperature",
+            format_number(celsius(region.recorded_temperature), 1) + PRINT.space + "°C",
+        ),
+        named(
+            "surface_temperature",
+            format_interval(celsius_interval(region.surface_temperature), "°C"),
+        ),
+    ]
+    if region.air_temperature is not None:
+        air = format_number(celsius(region.air_temperature), 1) + PRINT.space + "°C"
+        rows.append(named("air_temperature", air))
+    quantities = [
+        ("heat_gain" if region.gain else "heat_loss", signed(region, region.heat_loss), "W/m"),
+        ("total_region_loss", signed(region, region.total_loss), "W"),
+        ("heat_flux", signed(region, region.heat_flux), "W/m²"),
+        ("sound_loss", signed(region, region.sound_loss), "W/m"),
+        ("specified_loss", signed(region, region.specified_loss), "W/m"),
+        ("excess_per_metre", signed(region, region.excess), "W/m"),
+        ("resistance", region.resistance, "m K/W"),
+        ("specified_resistance", region.specified_resistance, "m K/W"),
+        ("resistance_ratio", region.resistance_ratio, ""),
+        ("effective_conductivity", region.effective_conductivity, "W/(m K)"),
+    ]
+    needs_no_image = {"sound_loss", "specified_loss", "specified_resistance"}
+    for key, value, unit in quantities:
+        if value is not None:
+            shown = quantified or key in needs_no_image
+            rows.append(named(key, format_interval(value, unit) if shown else instead))
+    for key in ("probability_damaged", "probability_local", "probability_aged"):
+        probability = getattr(region, key)
+        if probability is not None:
+            rows.append(named(key, format_probability(probability)))
+    return rows
+
+
+def _stretch_rows(region: RegionResult, language: str) -> list[tuple[str, str, str, str, str, str]]:
+    quantified = region.verdict.level != "not quantified"
+    instead = text("report.not_quantified", language)
+    rows = []
+    for stretch in region.stretches:
+        loss, excess = signed(region, stretch.heat_loss), signed(region, stretch.excess)
+        rows.append(
+            (
+                stretch.id,
+                format_interval(stretch.start, ""),
+                format_interval(stretch.end, ""),
+                format_probability(stretch.probability),
+                format_interval(loss, "") if quantified and loss else instead,
+                format_interval(excess, "") if quantified and excess else instead,
+            )
+        )
+    return rows
+
+
+def line_view(line: LineTotal, language: str) -> LineView:
+    """Return a line's sums ready to print."""
+    excess = line.excess
+    if excess is not None and line.gain:
+        excess = Interval(-excess.median, -excess.high, -excess.low)
+    total = line.total_loss
+    if line.gain:
+        total = Interval(-total.median, -total.high, -total.low)
+    return LineView(
+        line=line,
+        length=format_interval(line.length, ""),
+        total=format_interval(total, ""),
+        excess=format_interval(excess, "") if excess else text("report.not_known", language),
+        regions=", ".join(line.regions),
+    )
+
+
+def _value_words(item: Assumption) -> tuple[str, str]:
+    decimals = decimals_for(item.u) if item.u > 0 else None
+    in_celsius = item.unit == "K" and "temperature" in item.quantity
+    value = celsius(item.value) if in_celsius else item.value
+    shown = f"{value:.6g}".replace("-", PRINT.minus)
+    if decimals is not None:
+        shown = format_number(value, decimals)
+    u = format_number(item.u, decimals) if decimals is not None else "0"
+    unit = "" if item.unit in ("-", "", "1") else PRINT.space + item.unit
+    return shown + (PRINT.space + "°C" if in_celsius else unit), u + unit
+
+
+def assumption_views(
+    assessment: Assessment, *, declared: bool, language: str
+) -> list[AssumptionView]:
+    """Return the declared or the default quantities, equal ones of several owners as one."""
+    groups: dict[tuple[str, str, str, str, str], list[str]] = {}
+    for item in assessment.assumptions:
+        if (item.source == "declared") == declared:
+            value, u = _value_words(item)
+            key = (item.quantity, value, u, item.source, item.confidence)
+            groups.setdefault(key, []).append(item.owner)
+    views = []
+    for (quantity, value, u, source, confidence), owners in groups.items():
+        names = list(dict.fromkeys(owners))
+        shown = ", ".join(names[:6])
+        if len(names) > 6:
+            shown = text("report.owners_more", language, first=shown, count=len(names) - 6)
+        name = quantity_name(quantity, language)
+        views.append(AssumptionView(name, value, u, source, confidence, shown))
+    return views
+
+
+def region_order(assessment: Assessment, findings: tuple[Finding, ...]) -> tuple[RegionResult, ...]:
+    """Return all regions: the findings in their order, then the rest as surveyed."""
+    first = [finding.region for finding in findings]
+    seen = {id(region) for region in first}
+    return (*first, *(r for r in assessment.regions if id(r) not in seen))
+
+
+def unquantified_count(assessment: Assessment) -> int:
+    """Return how many regions the totals contain without a printed number."""
+    return sum(
+        not finding_of(region).quantified and region.total_loss is not None
+        for region in assessment.regions
+    )
