@@ -108,6 +108,7 @@ def report_html(
         ],
         "lines": [views.line_view(line, language) for line in assessment.lines],
         "left_out": all_left_out(assessment),
+        "survey_remarks": [sentence(r, language) for r in unique_remarks(assessment.remarks)],
         "frame_remarks": [
             (frame.frame_id, [sentence(r, language) for r in unique_remarks(frame.remarks)])
             for frame in assessment.frames
