@@ -183,13 +183,15 @@ def _with_component(
 
 
 def _room(
-    drawn: tuple[float, float], component: tuple[float, float] | None
+    pipe: PlantPipe, drawn: tuple[float, float], component: tuple[float, float] | None
 ) -> tuple[float, float]:
-    """Return the longest part of the drawn pipe free of the component."""
-    if component is None:
-        return drawn
-    before, after = component[0] - drawn[0], drawn[1] - component[1]
-    return (drawn[0], component[0] - 0.05) if before > after else (component[1] + 0.05, drawn[1])
+    """Return the longest part of the drawn pipe free of what hides or replaces its lagging."""
+    blocked = [] if component is None else [(component[0] - 0.05, component[1] + 0.05)]
+    if pipe.clear is not None:
+        length = drawn[1] - drawn[0]
+        blocked.append((drawn[0] + pipe.clear[0] * length, drawn[0] + pipe.clear[1] * length))
+    edges = [drawn[0], *(edge for pair in sorted(blocked) for edge in pair), drawn[1]]
+    return max(zip(edges[::2], edges[1::2], strict=True), key=lambda part: part[1] - part[0])
 
 
 def build_pipe(
@@ -232,7 +234,7 @@ def build_pipe(
     scatter = 1 + _SCATTER * smooth_field((n_x,), (0.15 / length,), random)
     sound = _model(line, plant, frame, (n_x, _AROUND), length, line.installation_factor * scatter)
     with_component, component = _with_component(pipe, sound, drawn)
-    damage = draw_damage(kind, _room(drawn, component), random, facing=_facing(axis))
+    damage = draw_damage(kind, _room(pipe, drawn, component), random, facing=_facing(axis))
     model = lay_in(damage, with_component)
     if damage.kind in ("open_joint", "bare", "missing_sector"):
         first = round(damage.start / length)

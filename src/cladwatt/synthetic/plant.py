@@ -50,6 +50,8 @@ class PlantPipe:
     component: str
     component_at: float
     crossed_by: str
+    clear: tuple[float, float] | None
+    """Shares of the drawn part where no damage may lie."""
     tape: float | None
 
 
@@ -111,7 +113,9 @@ def _pipe(table: dict[str, Any]) -> PlantPipe:
         drawn=(float(table["drawn"][0]), float(table["drawn"][1])),
         only=tuple(table.get("only", ())),
         component=table.get("component", ""), component_at=float(table.get("component_at", 0.0)),
-        crossed_by=table.get("crossed_by", ""), tape=table.get("tape"),
+        crossed_by=table.get("crossed_by", ""),
+        clear=tuple(table["clear"]) if "clear" in table else None,
+        tape=table.get("tape"),
     )  # fmt: skip
 
 

@@ -1,0 +1,158 @@
+"""The truth of a sample, as files beside it."""
+
+import json
+from collections.abc import Iterable
+from typing import Any
+
+import numpy as np
+
+from cladwatt.physics.constants import ZERO_CELSIUS
+from cladwatt.synthetic.pipes import PipeTruth
+from cladwatt.synthetic.truth import FrameTruth, LineTruth
+
+__all__ = [
+    "AGED_THRESHOLD", "STATION_HEADER", "TRUTH_README", "region_truth", "station_rows", "truth_json"]
+
+AGED_THRESHOLD = 1.10
+"""Ageing throughout counts as damage from this ratio of found to sound loss."""
+
+TRUTH_README = """\
+Invented. Nothing here was measured: plant, pipes and damage come from the sample generator,
+which also made the frames from them. These files say what is really so, for comparison with
+what an assessment finds.
+
+truth.json          by region: kind of damage, whether it counts as damaged (local damage, or
+                    ageing throughout that raises the loss more than 10 % above sound), length of
+                    the drawn part, mean loss along it without components, what the same pipe
+                    would lose if sound and as specified, local stretches; by frame and line: the
+                    real conditions behind the declared ones
+truth_stations.csv  along every drawn part: loss, mean surface temperature around the pipe,
+                    resistance of the lagging. Stations run from the first drawn vertex.
+
+A loss is heat given off to the room, negative on a chilled line. "without components" leaves out
+the pipe under a drawn flange or support.
+"""
+
+
+def _inside(pipe: PipeTruth, drawn: tuple[float, float]) -> Any:
+    return (pipe.station > drawn[0]) & (pipe.station < drawn[1])
+
+
+def _rounded(value: float, digits: int = 6) -> float:
+    return float(f"{value:.{digits}g}")
+
+
+def region_truth(pipe: PipeTruth, frame_id: str, drawn: tuple[float, float]) -> dict[str, Any]:
+    """Return what is true of one drawn pipe.
+
+    Parameters
+    ----------
+    pipe : PipeTruth
+        The pipe.
+    frame_id : str
+        Its frame.
+    drawn : (float, float)
+        Where the first and last vertex really lie. [m]
+
+    Returns
+    -------
+    dict
+        Names carry their units.
+    """
+    inside = _inside(pipe, drawn)
+    counted = inside & ~pipe.is_component
+    mean = float(pipe.heat_loss[counted].mean())
+    damage = pipe.damage
+    stretches = []
+    if damage.is_local:
+        stretches.append({
+            "kind": damage.kind,
+            "start_m": round(damage.start - drawn[0], 4),
+            "end_m": round(damage.end - drawn[0], 4),
+            "conductivity_factor": round(damage.severity, 3),
+            "remaining_thickness": round(damage.remaining, 3),
+        })  # fmt: skip
+    aged = damage.kind == "aged" and mean / pipe.sound_loss > AGED_THRESHOLD
+    length = drawn[1] - drawn[0]
+    return {
+        "region_id": pipe.plant.id,
+        "frame_id": frame_id,
+        "tag": pipe.plant.tag,
+        "kind": damage.kind,
+        "damaged": bool(aged or damage.is_local),
+        "aged_factor": round(damage.severity, 4) if damage.kind == "aged" else 1.0,
+        "length_m": round(length, 4),
+        "heat_loss_W_per_m": _rounded(mean),
+        "total_loss_W": _rounded(mean * length),
+        "total_loss_without_components_W": _rounded(
+            float(pipe.heat_loss[counted].sum()) * pipe.cell_length
+        ),
+        "sound_loss_W_per_m": _rounded(pipe.sound_loss),
+        "specified_loss_W_per_m": _rounded(pipe.specified_loss),
+        "excess_W_per_m": _rounded(mean - pipe.sound_loss),
+        "resistance_m_K_per_W": _rounded(float(1 / np.mean(1 / pipe.resistance[counted]))),
+        "surface_temperature_C": round(
+            float(pipe.surface_temperature[counted].mean()) - ZERO_CELSIUS, 3
+        ),
+        "stretches": stretches,
+    }
+
+
+def station_rows(pipe: PipeTruth, frame_id: str, drawn: tuple[float, float]) -> Iterable[str]:
+    """Yield the lines of ``truth_stations.csv`` of one drawn pipe."""
+    component = pipe.is_component
+    for i in np.flatnonzero(_inside(pipe, drawn)):
+        yield (
+            f"{pipe.plant.id},{frame_id},{pipe.station[i] - drawn[0]:.4f},"
+            f"{pipe.heat_loss[i]:.3f},{pipe.surface_temperature[i] - ZERO_CELSIUS:.3f},"
+            f"{pipe.resistance[i]:.5f},{int(component[i])}"
+        )
+
+
+STATION_HEADER = (
+    "region_id,frame_id,station_m,heat_loss_W_per_m,surface_temperature_C,"
+    "resistance_m_K_per_W,component"
+)
+
+
+def _conditions(truth: FrameTruth) -> dict[str, float]:
+    return {
+        "air_temperature_C": round(truth.air_temperature - ZERO_CELSIUS, 3),
+        "surroundings_temperature_C": round(truth.surroundings_temperature - ZERO_CELSIUS, 3),
+        "reflected_temperature_C": round(truth.reflected_temperature - ZERO_CELSIUS, 3),
+        "relative_humidity": round(truth.relative_humidity, 4),
+        "wind_speed_m_s": round(truth.wind_speed, 4),
+        "atmosphere_transmission": round(truth.transmission, 5),
+        "convection_factor": round(truth.convection_factor, 4),
+        "calibration_share_of_limit": round(truth.calibration, 4),
+    }
+
+
+def _line(truth: LineTruth) -> dict[str, float]:
+    return {
+        "fluid_temperature_C": round(truth.fluid_temperature - ZERO_CELSIUS, 3),
+        "pipe_outside_diameter_mm": round(truth.pipe_diameter * 1000, 3),
+        "lagging_thickness_mm": round(truth.thickness * 1000, 3),
+        "emissivity": round(truth.band_emissivity, 4),
+        "total_emissivity": round(truth.total_emissivity, 4),
+        "bare_pipe_emissivity": round(truth.bare_emissivity, 4),
+        "conductivity_factor": round(truth.conductivity_factor, 4),
+        "installation_factor": round(truth.installation_factor, 4),
+    }
+
+
+def truth_json(
+    seed: int,
+    regions: list[dict[str, Any]],
+    frames: dict[str, FrameTruth],
+    lines: dict[str, LineTruth],
+) -> str:
+    """Return the text of ``truth.json``."""
+    document = {
+        "invented": True,
+        "seed": seed,
+        "regions": regions,
+        "frames": {frame_id: _conditions(truth) for frame_id, truth in frames.items()},
+        "lines": {tag: _line(truth) for tag, truth in lines.items()},
+    }
+    return json.dumps(document, indent=1, ensure_ascii=False) + "\n"
