@@ -50,7 +50,7 @@ def _frame_faults(survey: Survey) -> list[Fault]:
         except FaultyInputError as error:
             found.extend(error.faults)
             continue
-        found.extend(frame_questions(frame, entry))
+        found.extend(frame_questions(frame, entry, root=survey.root))
         shape = (frame.temperature.shape[0], frame.temperature.shape[1])
         for region in survey.regions_of(entry.id):
             fault = check_region_against_frame(region, shape)

@@ -111,6 +111,11 @@ def build_recording(table: Table, faults: FaultList, *, prefix: str = "") -> Rec
         ("window_transmission", window, "window_temperature"),
     )
     for name, value, other in needed:
+        if table.is_unknown(name):
+            faults.ask(
+                table.place, prefix + name, f"{prefix}{name} is unknown and taken as 1",
+                "find out what the camera was set to: it stands in the recorded values",
+            )  # fmt: skip
         if value < 1 and table.number(other) is None:
             faults.add(
                 table.place, prefix + name if prefix else table.spelling(name),

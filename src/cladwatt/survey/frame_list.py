@@ -45,6 +45,16 @@ def is_usable_id(text: str) -> bool:
     return bool(text) and len(text) <= _LONGEST_ID and _FORBIDDEN.search(text) is None
 
 
+@dataclass(frozen=True)
+class _Read:
+    """One frame's table, its id, and whether nothing was wrong with it."""
+
+    table: Table
+    id: str
+    sound: bool
+    extra: dict[str, str]
+
+
 @dataclass
 class _Reader:
     wide: Mapping[str, Table]
@@ -86,18 +96,18 @@ def read_frames(
     if not entries and not head.text("frame_list"):
         entries = _found_files(source, faults)
     read = [_read_entry(entry, reader) for entry in entries]
-    _ask_for_missing([table for table, _, _ in read], wide, faults)
-    twice = repeated(identity for _, identity, _ in read)
+    _ask_for_missing([one.table for one in read], wide, faults)
+    twice = repeated(one.id for one in read)
     usable: list[FrameEntry] = []
     dropped: dict[str, str] = {}
-    for table, identity, sound in read:
-        if identity.casefold() in twice:
-            _id_twice(table, identity, [(t, name) for t, name, _ in read], faults)
-            dropped[identity] = "its id is used by more than one frame"
+    for one in read:
+        if one.id.casefold() in twice:
+            _id_twice(one, read, faults)
+            dropped[one.id] = "its id is used by more than one frame"
             continue
-        frame = _build(table, identity, reader)
-        if frame is None or not sound:
-            dropped[identity] = "the frame list is at fault there"
+        frame = _build(one, reader)
+        if frame is None or not one.sound:
+            dropped[one.id] = "the frame list is at fault there"
         else:
             usable.append(frame)
     air = wide["conditions"].quantity("air_temperature")
@@ -136,8 +146,7 @@ def _found_files(source: Source, faults: FaultList) -> list[Entry]:
     ]
 
 
-def _read_entry(entry: Entry, reader: _Reader) -> tuple[Table, str, bool]:
-    """Return the table, the frame's id, and whether nothing was wrong with it."""
+def _read_entry(entry: Entry, reader: _Reader) -> _Read:
     raw = entry.raw if isinstance(entry.raw, dict) else {}
     identity = _identity(raw) or entry.place.prefix
     place = replace(entry.place, frame_id=identity)
@@ -161,7 +170,7 @@ def _read_entry(entry: Entry, reader: _Reader) -> tuple[Table, str, bool]:
             'expected up to 120 letters that may name a file: none of \\ / : * ? " < > |, no dot'
             " first or last",
         )  # fmt: skip
-    return table, identity, reader.faults.errors == before
+    return _Read(table, identity, reader.faults.errors == before, entry.extra)
 
 
 def _identity(raw: Mapping[str, object]) -> str:
@@ -191,20 +200,19 @@ def _ask_for_missing(frames: list[Table], wide: Mapping[str, Table], faults: Fau
                 faults.ask(place, written, found, expected)
 
 
-def _id_twice(
-    table: Table, identity: str, read: list[tuple[Table, str]], faults: FaultList
-) -> None:
-    other = next(t for t, name in read if t is not table and name.casefold() == identity.casefold())
-    line = other.place.line_of("id")
-    at = other.place.path if line is None else f"{other.place.path}:{line}"
+def _id_twice(one: _Read, read: list[_Read], faults: FaultList) -> None:
+    other = next(o for o in read if o is not one and o.id.casefold() == one.id.casefold())
+    line = other.table.place.line_of("id")
+    at = other.table.place.path if line is None else f"{other.table.place.path}:{line}"
     faults.add(
-        table.place, "id", f"the frame id {shown(identity)} is used more than once (also {at})",
+        one.table.place, "id",
+        f"the frame id {shown(one.id)} is used more than once (also {at})",
         "expected it once; give one of the frames another id",
     )  # fmt: skip
 
 
-def _build(table: Table, identity: str, reader: _Reader) -> FrameEntry | None:
-    faults = reader.faults
+def _build(one: _Read, reader: _Reader) -> FrameEntry | None:
+    table, faults = one.table, reader.faults
     before = faults.errors
     path = _file(table, "file", reader, ("frames",)) if table.text("file") else None
     recording = build_recording(
@@ -215,7 +223,7 @@ def _build(table: Table, identity: str, reader: _Reader) -> FrameEntry | None:
     conditions = build_conditions(merged, reader.tables, faults)
     frame_format = build_format(table.over(reader.wide["format"]), faults)
     frame = FrameEntry(
-        id=identity,
+        id=one.id,
         path=path or Path(),
         format=frame_format,
         recording=recording,
@@ -225,6 +233,7 @@ def _build(table: Table, identity: str, reader: _Reader) -> FrameEntry | None:
         note=table.text("note"),
         photo=_file(table, "photo", reader, ("photos", "frames")) if table.has("photo") else None,
         labels=_file(table, "labels", reader, ("labels",)) if table.has("labels") else None,
+        extra=one.extra,
     )
     return frame if path is not None and faults.errors == before else None
 

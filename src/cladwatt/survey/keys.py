@@ -111,7 +111,7 @@ class Key:
         return self.spellings[0][0]
 
     def default_u(self, value: float) -> float:
-        """Standard uncertainty where none is declared. [SI]"""
+        """Return the standard uncertainty where none is declared. [SI]"""
         return max(self.u, self.u_relative * abs(value))
 
 
@@ -227,7 +227,7 @@ CAMERA = (
 RECORDING = (
     _setting(
         "emissivity", "Emissivity the camera was set to", "ratio", lower=0.0, upper=1.0,
-        lower_open=True, ask=True, example="0.95",
+        lower_open=True, ask=True, default="1, and asked for", example="0.95",
     ),
     _setting(
         "reflected_temperature", "Reflected apparent temperature the camera was set to",
@@ -380,7 +380,7 @@ LAYER = (
     ),
     Key(
         "conductivity", "quantity", "As specified, instead of the table's", "conductivity", 0.0,
-        5.0, lower_open=True, u_relative=0.05, default="the material's table", example="0.038",
+        5.0, lower_open=True, u_relative=0.1, default="the material's table", example="0.038",
     ),
     _setting(
         "conductivity_temperature",
@@ -419,7 +419,7 @@ LINE = (
     ),
     Key(
         "lagging_conductivity", "quantity", "As specified, instead of the table's", "conductivity",
-        0.0, 5.0, lower_open=True, u_relative=0.05, default="the material's table",
+        0.0, 5.0, lower_open=True, u_relative=0.1, default="the material's table",
         example="0.038",
     ),
     _setting(
@@ -527,7 +527,7 @@ REGION_VALUES: dict[str, Key] = {
     "foil": _temperature("value", "Reflected apparent temperature read on the foil", u=1.0),
     "contact": _temperature("value", "Contact reading", u=1.5),
     "background": _temperature("value", "Temperature of this background", u=1.5),
-    "tape": _emissivity("value", "Emissivity of the tape or paint", ""),
+    "tape": replace(_emissivity("value", "Emissivity of the tape or paint", ""), u=0.015),
     "known_length": Key(
         "value", "quantity", "Length between the two ends", "distance", 0.0, 1e3, lower_open=True,
         cut=(1e-3, 2e3), u=0.005, u_relative=0.01,

@@ -2,10 +2,11 @@
 
 import math
 from dataclasses import replace
+from itertools import pairwise
 from typing import Literal
 
 from cladwatt.errors import TableError
-from cladwatt.materials.rows import CladdingMaterial
+from cladwatt.materials.rows import CladdingMaterial, Confidence
 from cladwatt.materials.tables import (
     MaterialTables,
     cladding_material,
@@ -161,11 +162,10 @@ def _several_layers(
         return ()
     layers = []
     for number, item in enumerate(raw, start=1):
-        line_of = table.place.line_of
         place = replace(
             table.place,
             prefix=table.place.where(f"layers[{number}]"),
-            line_of=lambda _key: line_of("layers"),
+            line_of=lambda _key: table.place.line_of("layers"),
         )
         before = faults.errors
         read = read_table(_LAYER_SECTION, item, place, faults)
@@ -181,7 +181,8 @@ def _layer(table: Table, prefix: str, tables: MaterialTables, faults: FaultList)
     declared = table.quantity(f"{prefix}conductivity")
     thickness = table.quantity(f"{prefix}thickness")
     curve, u_relative = None, 0.0
-    source, confidence = "declared", "declared"
+    source = "declared"
+    confidence: Confidence = "declared"
     if material and material.lower() != UNKNOWN_WORD:
         try:
             row = lagging_material(material, tables)
@@ -201,7 +202,7 @@ def _layer(table: Table, prefix: str, tables: MaterialTables, faults: FaultList)
     factor = Quantity(
         1.0, u_relative, lower=0.2, upper=5.0,
         shape="lognormal" if u_relative else "normal", source=source, confidence=confidence,
-    )  # type: ignore[arg-type]  # fmt: skip
+    )  # fmt: skip
     return Layer(material or UNKNOWN_WORD, thickness, curve, factor)
 
 
@@ -228,7 +229,7 @@ def _interpolated(temperature: float, curve: ConductivityCurve) -> float:
     nodes = list(zip(curve.temperature, curve.conductivity, strict=True))
     if temperature <= nodes[0][0]:
         return nodes[0][1]
-    for (low, k_low), (high, k_high) in zip(nodes, nodes[1:], strict=False):
+    for (low, k_low), (high, k_high) in pairwise(nodes):
         if temperature <= high:
             return k_low + (k_high - k_low) * (temperature - low) / (high - low)
     return nodes[-1][1]

@@ -2,6 +2,7 @@
 
 import math
 from collections.abc import Sequence
+from itertools import pairwise
 from typing import TypeAlias
 
 import numpy as np
@@ -24,7 +25,7 @@ def ring_area(ring: Sequence[Point]) -> float:
 
 def zero_step(points: Sequence[Point]) -> int | None:
     """Return the number (from 1) of the first point that repeats the one before, or None."""
-    for number, (before, here) in enumerate(zip(points, points[1:], strict=False), start=2):
+    for number, (before, here) in enumerate(pairwise(points), start=2):
         if math.dist(before, here) < 1e-6:
             return number
     return None

@@ -8,7 +8,6 @@ from cladwatt.survey.fault_list import FaultList, Place, shown
 from cladwatt.survey.model import Camera, FrameEntry, Line
 from cladwatt.survey.region import Region
 from cladwatt.survey.survey_regions import region_place
-from cladwatt.survey.survey_source import Source
 from cladwatt.survey.table_reader import Table
 
 __all__ = ["check_dates", "check_temperatures"]
@@ -19,10 +18,9 @@ _CHILLED_FLUIDS = ("chilled", "brine", "refrigerant", "cold")
 
 
 def check_dates(
-    head: Table, source: Source, camera: Camera, frames: Sequence[FrameEntry], faults: FaultList
+    head: Table, camera: Camera, frames: Sequence[FrameEntry], faults: FaultList
 ) -> None:
     """Question dates that do not fit each other."""
-    del source
     day = head.get("date")
     if not isinstance(day, date):
         return

@@ -134,7 +134,7 @@ class _Document:
         regions = read_all_regions(
             self.source, frames.entries, frames.dropped, lines, dropped, self.faults
         )
-        check_dates(head, self.source, camera, frames.entries, self.faults)
+        check_dates(head, camera, frames.entries, self.faults)
         wrong = check_temperatures(lines, services, usable, regions, frames.wide_air, self.faults)
         lines = {tag: line for tag, line in lines.items() if tag not in wrong}
         day = head.get("date")

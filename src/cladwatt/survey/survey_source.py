@@ -65,12 +65,12 @@ class Source:
         return data
 
     def locate(self, text: str, *, among: tuple[str, ...] = ()) -> Path:
-        """Return the file a survey names.
+        r"""Return the file a survey names.
 
         Parameters
         ----------
         text : str
-            Path from the survey folder; ``\\`` counts as ``/``.
+            Path from the survey folder; ``\`` counts as ``/``.
         among : tuple of str
             Folders in which it is looked for next.
 

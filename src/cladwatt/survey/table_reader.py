@@ -95,7 +95,8 @@ class Table:
                 spelled[name] = self.spelled[own]
             if own in self.written:
                 written[name] = self.written[own].over(wide.written.get(name))
-                spelled[name] = self.spelled[own]
+                if own in self.spelled:
+                    spelled[name] = self.spelled[own]
         return Table(wide.section, self.place, plain, written, spelled)
 
 
