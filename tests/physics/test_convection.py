@@ -18,7 +18,6 @@ from cladwatt.physics.convection import (
     nusselt_churchill_chu_horizontal,
     nusselt_churchill_chu_horizontal_laminar,
     nusselt_churchill_chu_vertical,
-    nusselt_churchill_chu_vertical_laminar,
     nusselt_hilpert,
     nusselt_kuehn_goldstein,
     nusselt_morgan,
@@ -172,7 +171,7 @@ def test_iso_outdoor_rule_and_its_disagreement():
         coefficient_iso12241_outdoor(FORCED["wind_m_s"], FORCED["D_m"])
         / FORCED["h_ChurchillBernstein_W_m2K"]
     )[is_lagged]
-    assert 1.3 <= ratio.min()
+    assert ratio.min() >= 1.3
     assert ratio.max() <= 2.95
 
 
@@ -278,7 +277,8 @@ def test_finite_and_even_around_equal_temperatures(wind):
     )
     assert np.all(np.isfinite(found))
     assert np.all(found > 0)
-    np.testing.assert_allclose(found, found[1], rtol=0.05)
+    assert found[0] == pytest.approx(found[2], rel=1e-9)
+    assert found[1] <= found[0] < 1.5 * found[1]
 
 
 def test_thin_air_cools_less():
@@ -324,14 +324,3 @@ def test_outside_validity():
 def test_inclination_is_checked(angle):
     with pytest.raises(ValueError, match="expected 0 \\(horizontal\\) to 90"):
         check_inclination(np.array([0.0, angle]))
-
-
-def test_vertical_laminar_form():
-    # Sukhatme, Example 6.3 uses this form for Ra <= 1e9; both forms are Churchill & Chu's (1975),
-    # who show them within a few percent of each other in the laminar range
-    rayleigh = np.array([1e6, 1e7, 1e8])
-    np.testing.assert_allclose(
-        nusselt_churchill_chu_vertical_laminar(rayleigh, 0.7),
-        nusselt_churchill_chu_vertical(rayleigh, 0.7),
-        rtol=0.1,
-    )

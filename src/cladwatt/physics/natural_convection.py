@@ -11,7 +11,6 @@ __all__ = [
     "nusselt_churchill_chu_horizontal",
     "nusselt_churchill_chu_horizontal_laminar",
     "nusselt_churchill_chu_vertical",
-    "nusselt_churchill_chu_vertical_laminar",
     "nusselt_kuehn_goldstein",
     "nusselt_morgan",
     "rayleigh_number",
@@ -130,27 +129,6 @@ def nusselt_churchill_chu_vertical(rayleigh: FloatLike, prandtl: FloatLike) -> F
     """
     damping = (1.0 + (0.492 / np.asarray(prandtl)) ** (9 / 16)) ** (8 / 27)
     return np.asarray((0.825 + 0.387 * _sixth_root(rayleigh) / damping) ** 2)
-
-
-def nusselt_churchill_chu_vertical_laminar(rayleigh: FloatLike, prandtl: FloatLike) -> FloatArray:
-    """Free convection on a vertical face, laminar, Ra <= 1e9.
-
-    Parameters
-    ----------
-    rayleigh, prandtl : float or array
-        On the height. [-]
-
-    Returns
-    -------
-    array
-        Mean Nusselt number on the height. [-]
-
-    References
-    ----------
-    .. [1] Churchill, Chu, Int. J. Heat Mass Transfer 18 (1975) 1323-1329.
-    """
-    damping = (1.0 + (0.492 / np.asarray(prandtl)) ** (9 / 16)) ** (4 / 9)
-    return np.asarray(0.68 + 0.670 * np.sqrt(np.sqrt(rayleigh)) / damping)
 
 
 def nusselt_morgan(rayleigh: FloatLike) -> FloatArray:
