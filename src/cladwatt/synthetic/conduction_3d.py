@@ -22,6 +22,9 @@ SurfaceFlux = Callable[[FloatArray], FloatArray]
 
 _CUT_FACE_COEFFICIENT = 9.0
 """Convection and radiation at a cut face of lagging, order of still indoor air. [W/(m2 K)]"""
+_MOST_GRADIENT_STEPS = 15
+_GRADIENT_TOLERANCE = 1e-7
+"""Largest residual of the heat balance, over what ties the node. [K]"""
 _STEP = 0.05
 """Step of the numerical derivative of the surface flux. [K]"""
 
@@ -179,20 +182,36 @@ def _conductances(model: ColumnModel, conductivity: FloatArray) -> _Conductances
     return _Conductances(radial, around, along, inside, bare, cut)
 
 
-def _band_matrix(parts: _Conductances, surface_slope: FloatArray) -> FloatArray:
-    """Return the symmetric positive matrix in lower band form, (n_phi (n_r + 1) + 1, n)."""
-    n_x, n_phi, n_nodes = parts.radial.shape
-    block = n_phi * n_nodes
-    diagonal = parts.cut.copy()
+def _diagonal(parts: _Conductances, surface_slope: FloatArray) -> FloatArray:
+    """Return what ties each node to all others and to fluid and air, (n_x, n_phi, n_r + 1)."""
+    diagonal = parts.cut + parts.around + np.roll(parts.around, 1, axis=1) + parts.along
     diagonal[..., 0] += parts.inside
     diagonal[..., -1] += parts.bare + surface_slope
     diagonal[..., :-1] += parts.radial[..., :-1]
     diagonal[..., 1:] += parts.radial[..., :-1]
-    diagonal += parts.around + np.roll(parts.around, 1, axis=1)
-    diagonal += parts.along
     diagonal[1:] += parts.along[:-1]
     # a column without lagging has cells without neighbours: hold them
     diagonal[diagonal <= 0] = 1.0
+    return diagonal
+
+
+def _product(parts: _Conductances, diagonal: FloatArray, field: FloatArray) -> FloatArray:
+    """Return the matrix of the heat balance times a field."""
+    radial = parts.radial[..., :-1]
+    result = diagonal * field
+    result[..., :-1] -= radial * field[..., 1:]
+    result[..., 1:] -= radial * field[..., :-1]
+    result[:-1] -= parts.along[:-1] * field[1:]
+    result[1:] -= parts.along[:-1] * field[:-1]
+    result -= parts.around * np.roll(field, -1, axis=1)
+    result -= np.roll(parts.around * field, 1, axis=1)
+    return result
+
+
+def _factor(parts: _Conductances, diagonal: FloatArray) -> FloatArray:
+    """Return the Cholesky factor of that matrix in lower band form."""
+    n_x, n_phi, n_nodes = diagonal.shape
+    block = n_phi * n_nodes
     band = np.zeros((block + 1, n_x * block))
     band[0] = diagonal.ravel()
     radial = parts.radial.copy()
@@ -206,7 +225,33 @@ def _band_matrix(parts: _Conductances, surface_slope: FloatArray) -> FloatArray:
     wrap[:, 0] = parts.around[:, -1]
     band[block - n_nodes] -= wrap.ravel()
     band[block] -= parts.along.ravel()
-    return band
+    factor: FloatArray = cholesky_banded(
+        band, lower=True, overwrite_ab=True, check_finite=False
+    )
+    return factor
+
+
+def _solve_near(
+    parts: _Conductances, diagonal: FloatArray, source: FloatArray, start: FloatArray,
+    factor: FloatArray,
+) -> FloatArray | None:  # fmt: skip
+    """Solve by conjugate gradients with the factor of a nearby matrix; None if it is too far."""
+    found = start.copy()
+    residual = source - _product(parts, diagonal, found)
+    direction, old = np.zeros_like(found), 0.0
+    for step in range(_MOST_GRADIENT_STEPS):
+        if float(np.max(np.abs(residual / diagonal))) < _GRADIENT_TOLERANCE:
+            return found
+        near = cho_solve_banded((factor, True), residual.ravel(), check_finite=False)
+        near = near.reshape(found.shape)
+        new = float(np.vdot(residual, near))
+        direction = near + (new / old) * direction if step else near
+        image = _product(parts, diagonal, direction)
+        length = new / float(np.vdot(direction, image))
+        found += length * direction
+        residual -= length * image
+        old = new
+    return None
 
 
 def solve_columns(
@@ -244,19 +289,23 @@ def solve_columns(
     cells = air + (inside - air) * np.broadcast_to(falling, (n_x, n_phi, n_r))
     surface = np.where(model.exposed, air + 0.97 * (inside - air), air + 0.1 * (inside - air))
     area = model.surface_area
+    factor: FloatArray | None = None
     for _ in range(most):
         parts = _conductances(model, model.factor * model.conductivity_curve(cells))
         flux = surface_flux(surface)
         slope = np.maximum((surface_flux(surface + _STEP) - flux) / _STEP, 0.5)
-        band = _band_matrix(parts, slope * area)
+        diagonal = _diagonal(parts, slope * area)
         source = parts.cut * air
         source[..., 0] += parts.inside * inside
         source[..., -1] += parts.bare * inside + area * (slope * surface - flux)
         # the held cells of exposed columns take the temperature of the pipe
         source[..., :n_r][model.exposed] = inside
-        factor = cholesky_banded(band, lower=True, overwrite_ab=True, check_finite=False)
-        found = cho_solve_banded((factor, True), source.ravel(), check_finite=False)
-        found = found.reshape(n_x, n_phi, n_r + 1)
+        start = np.concatenate([cells, surface[..., None]], axis=-1)
+        found = None if factor is None else _solve_near(parts, diagonal, source, start, factor)
+        if found is None:
+            factor = _factor(parts, diagonal)
+            found = cho_solve_banded((factor, True), source.ravel(), check_finite=False)
+            found = found.reshape(n_x, n_phi, n_r + 1)
         change = float(np.max(np.abs(found[..., -1] - surface)))
         surface, cells = found[..., -1], found[..., :-1]
         if change < tolerance:

@@ -29,7 +29,7 @@ class DrawnFrame:
     regions : tuple of Region
         As the inspector drew them.
     drawn : dict of str to (float, float)
-        Stations, from the start of the axis, of the first and last vertex by region id. [m]
+        Stations of the near surface seen at first and last vertex, by region id. [m]
     """
 
     regions: tuple[Region, ...]
@@ -43,8 +43,8 @@ def _point(values: FloatArray) -> tuple[float, float]:
 def _vertex(
     axis: PipeAxis, view: View, station: float, radius: float, hand: FloatArray
 ) -> tuple[tuple[float, float], float]:
-    """Return a vertex of the centreline and the width there, off by the hand."""
-    first, second = axis.edges(view, station, radius)
+    """Return the vertex where the near surface at a station is seen, and the width there."""
+    first, second = axis.edges(view, axis.seen_at(view, station, radius), radius)
     across = second - first
     width = float(np.linalg.norm(across))
     middle = (first + second) / 2 + hand[0] * across / width

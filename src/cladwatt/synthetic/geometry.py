@@ -121,6 +121,43 @@ class PipeAxis:
         point: FloatArray = self.vertices[leg] + along * self.directions[leg]
         return point
 
+    def seen_at(self, view: View, station: float, radius: float) -> float:
+        """Return the station whose axis point is seen where the near surface at `station` is.
+
+        The surface is nearer to the camera than the axis, so that both are seen apart.
+
+        Parameters
+        ----------
+        view : View
+            The camera.
+        station : float
+            Of the surface. [m]
+        radius : float
+            [m]
+
+        Returns
+        -------
+        float
+            Station of the axis. [m]
+        """
+        leg = self.leg_of(station)
+        direction, point = self.directions[leg], self.point(station)
+        away = point - (point @ direction) * direction
+        surface = view.project(point - radius * away / np.linalg.norm(away))
+        seen = station
+        for _ in range(4):
+            here = view.project(point + (seen - station) * direction)
+            ahead = view.project(point + (seen - station + 1e-4) * direction) - here
+            seen += 1e-4 * float((surface - here) @ ahead) / float(ahead @ ahead)
+        return seen
+
+    def surface_station(self, view: View, seen: float, radius: float) -> float:
+        """Return the station of the near surface that is seen at an axis point; the inverse."""
+        station = seen
+        for _ in range(8):
+            station += seen - self.seen_at(view, station, radius)
+        return station
+
     def edges(self, view: View, station: float, radius: float) -> FloatArray:
         """Return where the two edges of the pipe are seen beside a station.
 

@@ -40,7 +40,7 @@ class PipeTruth:
     axis : PipeAxis
         Where it is.
     drawn : (float, float)
-        Stations between which the inspector drew. [m]
+        Stations of the near surface between which the inspector means to draw. [m]
     damage : Damage
         What is wrong with it.
     component : (float, float) or None
@@ -230,7 +230,11 @@ def build_pipe(
     axis = _axis(pipe, view, frame.distance_ratio)
     n_x = int(np.clip(round(axis.length / _CELL_LENGTH), 60, 300))
     length = axis.length / n_x
-    drawn = (pipe.drawn[0] * axis.length, pipe.drawn[1] * axis.length)
+    outer = line.pipe_diameter / 2 + line.thickness
+    drawn = (
+        axis.surface_station(view, pipe.drawn[0] * axis.length, outer),
+        axis.surface_station(view, pipe.drawn[1] * axis.length, outer),
+    )
     scatter = 1 + _SCATTER * smooth_field((n_x,), (0.15 / length,), random)
     sound = _model(line, plant, frame, (n_x, _AROUND), length, line.installation_factor * scatter)
     with_component, component = _with_component(pipe, sound, drawn)
