@@ -27,7 +27,8 @@ def missing_of(seen: Seen) -> tuple[Remark, ...]:
 def cautions_of(seen: Seen) -> tuple[Remark, ...]:
     """Return cautions for people: hot surface, service limit, water under the lagging."""
     cautions = []
-    hottest = float(np.nanmax(seen.median_temperature()))
+    temperatures = seen.median_temperature()[seen.usable]
+    hottest = float(np.max(temperatures[np.isfinite(temperatures)], initial=0.0))
     if hottest > TOUCH_CAUTION:
         cautions.append(_celsius("caution.touch", temperature_C=hottest))
     inside = seen.line.inside_temperature

@@ -10,35 +10,20 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from cladwatt.inverse.conditions import FrameDraws, LineDraws
+from cladwatt.measure.face_bands import FaceBands
 from cladwatt.physics.emissivity import directional_emissivity
 from cladwatt.physics.lagged_pipe import SurfaceExchange, surface_heat_flux
 from cladwatt.physics.radiometry import object_radiance
 from cladwatt.types import FloatArray, FloatLike
 
-__all__ = ["Face", "FaceDraws", "face_draws", "surface_temperature_draws"]
+__all__ = ["FaceDraws", "face_draws", "surface_temperature_draws"]
 
 NODES = 17
 
 
 @dataclass(frozen=True)
-class Face:
-    """What was seen of a strip.
-
-    Attributes
-    ----------
-    lens_temperature : (n_bands, n_stations) array
-        Blackbody-equivalent temperature at the lens, NaN where nothing usable. [K]
-    view_angle : (n_bands,) array
-        [rad]
-    """
-
-    lens_temperature: FloatArray
-    view_angle: FloatArray
-
-
-@dataclass(frozen=True)
 class FaceDraws:
-    """Draws of the seen face, each (count, n_stations), mean over the bands of angle."""
+    """Draws of the seen face, each (count, n_stations), mean over its angle."""
 
     surface_temperature: FloatArray
     """[K]"""
@@ -46,12 +31,14 @@ class FaceDraws:
     """[W/m2]; None without wind."""
 
 
-def face_draws(face: Face, frame: FrameDraws, line: LineDraws, diameter: FloatArray) -> FaceDraws:
+def face_draws(
+    face: FaceBands, frame: FrameDraws, line: LineDraws, diameter: FloatArray
+) -> FaceDraws:
     """Return draws of temperature and heat flux along a strip.
 
     Parameters
     ----------
-    face : Face
+    face : FaceBands
         Every station either complete or NaN in all bands.
     frame : FrameDraws
     line : LineDraws
@@ -67,15 +54,19 @@ def face_draws(face: Face, frame: FrameDraws, line: LineDraws, diameter: FloatAr
     -----
     The convection law is applied at the local temperature of each band of angle.
     """
-    nodes = _nodes(face.lens_temperature)
+    nodes = _nodes(face.temperature)
     temperature = surface_temperature_draws(nodes, face.view_angle, frame, line)
     flux = None
     if frame.wind_speed is not None:
         exchange = _beside(line.exchange(frame, diameter))
         flux = surface_heat_flux(temperature, exchange)
+    shares = face.extent / face.extent.sum()
     weights = np.concatenate(
-        [_interpolation_matrix(nodes, row) for row in face.lens_temperature]
-    ) / len(face.lens_temperature)
+        [
+            share * _interpolation_matrix(nodes, row)
+            for share, row in zip(shares, face.temperature, strict=True)
+        ]
+    )
     return FaceDraws(
         temperature.reshape(frame.count, -1) @ weights,
         None if flux is None else flux.reshape(frame.count, -1) @ weights,

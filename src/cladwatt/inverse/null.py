@@ -6,8 +6,8 @@ mean over a run of stations of a sound pipe scatters about the sound level by
 - pixel noise, independent beyond its correlated area;
 - patches of other emissivity, dirt and convection, seen in the region itself as differences
   between its bands of angle that persist along the run;
-- the same as known of the cladding beforehand, half of it, since a smooth region may still be
-  patchy along the pipe only;
+- the same as known of the cladding beforehand, since a region alike across its bands may still
+  be patchy along the pipe;
 - a mirrored scene that changes along the pipe.
 """
 
@@ -91,19 +91,19 @@ def null_of(
 
     Notes
     -----
-    Relative patchiness of emissivity of paint, half-bright and bright metal (2, 6 and 10 %) and
+    Relative patchiness of emissivity of paint, half-bright and bright metal (3, 12 and 15 %) and
     scatter of the mirrored scene along a pipe (0.7 K indoors, 2 K outdoors, times the
     reflectance) are assumptions, no source; the bench is to test them.
     """
     level = float(np.nanmedian(lens_temperature))
     independent = max(pixels_per_station / noise.correlated_area, 1.0)
-    station_mean = np.nanmean(lens_temperature, axis=0)
+    station_mean = lens_temperature.mean(axis=0)
     rough = robust_sigma(np.diff(station_mean, 2)) / math.sqrt(6)
-    relative_patch = 0.02 if emissivity >= 0.7 else 0.06 if emissivity >= 0.25 else 0.10
+    relative_patch = 0.03 if emissivity >= 0.7 else 0.12 if emissivity >= 0.25 else 0.15
     scene = 0.7 if indoors else 2.0
     return NullModel(
         station_sigma=max(noise.sigma / math.sqrt(independent), rough),
-        patch_sigma=0.5 * relative_patch * abs(level - reflected_temperature),
+        patch_sigma=relative_patch * abs(level - reflected_temperature),
         own_sigma=_band_differences(lens_temperature, station_length),
         scene_sigma=0.5 * (1 - emissivity) * scene,
         station_length=station_length,

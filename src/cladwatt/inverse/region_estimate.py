@@ -10,9 +10,9 @@ from cladwatt.errors import Fault, RegionError
 from cladwatt.inverse.cautions import cautions_of, missing_of, remarks_of, verdict_caps
 from cladwatt.inverse.conditions import FrameDraws, LineDraws
 from cladwatt.inverse.draws import DrawBook
-from cladwatt.inverse.face import Face, face_draws, surface_temperature_draws
+from cladwatt.inverse.face import face_draws, surface_temperature_draws
 from cladwatt.inverse.feasibility import flux_bounds
-from cladwatt.inverse.hidden_side import HiddenSide, whole_flux
+from cladwatt.inverse.hidden_side import HiddenSide, evenness_of, whole_flux
 from cladwatt.inverse.level import aged_probability
 from cladwatt.inverse.null import NullModel, null_of
 from cladwatt.inverse.result import (
@@ -87,8 +87,8 @@ def estimate_region(
     strip = _strip(region, line, image, known_lengths, camera)
     lens = sample_strip(np.where(left_out, np.nan, image.lens_temperature), strip)
     recorded = np.where(np.isfinite(lens), sample_strip(image.recorded_temperature, strip), np.nan)
-    face = Face(*bands_of(lens, strip.view_angle, BANDS_OF_ANGLE))
-    usable = np.asarray(np.isfinite(face.lens_temperature).all(axis=0))
+    face = bands_of(lens, strip.view_angle, BANDS_OF_ANGLE)
+    usable = np.asarray(np.isfinite(face.temperature).all(axis=0))
     if usable.sum() < LEAST_STATIONS:
         raise RegionError(_nothing_usable(region, int(usable.sum())))
     diameter = line_draws.lagged_diameter
@@ -165,7 +165,7 @@ def _is_gain(line: Line, conditions: Conditions) -> bool:
 def _null(seen: Seen) -> NullModel:
     metres = seen.strip.length
     return null_of(
-        seen.face.lens_temperature,
+        seen.face.temperature,
         noise=seen.image.noise,
         pixels_per_station=seen.strip.used_width,
         station_length=float(np.median(metres)) if np.isfinite(metres).all() else 0.005,
@@ -179,11 +179,17 @@ def _concluded(seen: Seen) -> RegionResult:
     """Draw the conclusions."""
     if seen.drawn.heat_flux is None:
         return _without_balance(seen, station_table(seen, None, None))
-    profile = seen.face.lens_temperature.mean(axis=0)
+    profile = seen.face.temperature.mean(axis=0)
     null = _null(seen)
-    runs = find_runs(profile, null, sign=-1 if seen.gain else 1, diameter_stations=seen.width)
+    sign = -1 if seen.gain else 1
+    runs = find_runs(profile, null, sign=sign, diameter_stations=seen.width)
     sound_at = sound_stations(profile, runs, clear_of=0.5 * seen.width)
-    hidden = HiddenSide.draw(seen.book, seen.region.id)
+    hidden = HiddenSide.draw(
+        seen.book,
+        seen.owner,
+        seen_share=float(seen.face.extent.sum() / (2 * np.pi)),
+        seen=evenness_of(seen.face, runs, sound_at, sign=sign),
+    )
     base = seen.drawn.heat_flux[:, sound_at].mean(axis=1)
     flux = whole_flux(seen.drawn.heat_flux, base, hidden)
     bounds = flux_bounds(seen)
@@ -364,7 +370,7 @@ def _visible_rise(seen: Seen, null: NullModel, sound_at: BoolArray, base: FloatA
     The flux's slope against the value at the lens is taken from two values around the sound
     level, in the median of the draws.
     """
-    level = float(np.median(seen.face.lens_temperature[:, sound_at]))
+    level = float(np.median(seen.face.temperature[:, sound_at]))
     temperature = surface_temperature_draws(
         np.array([level - 0.5, level + 0.5]), np.zeros(1), seen.frame, seen.line_draws
     )[:, 0]

@@ -7,7 +7,8 @@ import numpy as np
 
 from cladwatt.inverse.conditions import FrameDraws, LineDraws
 from cladwatt.inverse.draws import DrawBook
-from cladwatt.inverse.face import Face, FaceDraws
+from cladwatt.inverse.face import FaceDraws
+from cladwatt.measure.face_bands import FaceBands
 from cladwatt.measure.noise import FrameNoise
 from cladwatt.measure.strip import Strip
 from cladwatt.physics.humidity import dew_point
@@ -63,7 +64,7 @@ class Seen:
     strip: Strip
     lens: FloatArray
     recorded: FloatArray
-    face: Face
+    face: FaceBands
     drawn: FaceDraws
     usable: BoolArray
     diameter: FloatArray
