@@ -6,7 +6,7 @@ from typing import TYPE_CHECKING, Any
 from cladwatt.report.findings import all_left_out, ranked_findings, unique_remarks
 from cladwatt.report.numbers import format_interval
 from cladwatt.report.strip_picture import strip_svg, temperature_limits
-from cladwatt.report.svg import plain
+from cladwatt.report.svg import clip_text, plain
 from cladwatt.report.wording import phrases, sentence, text
 from cladwatt.results.assessment import Assessment, RegionResult
 from cladwatt.results.file_names import file_stems
@@ -16,6 +16,9 @@ if TYPE_CHECKING:
 
 __all__ = ["report_html", "strip_pictures", "write_report"]
 
+SHORT = 48
+"""Characters of a name in a table; it stands in full over its region."""
+
 
 def _environment() -> "Environment":
     from jinja2 import Environment, PackageLoader, StrictUndefined
@@ -23,10 +26,10 @@ def _environment() -> "Environment":
 
     def finalize(value: Any) -> Any:
         if isinstance(value, str) and not isinstance(value, Markup):
-            return plain(value)
+            return plain(value).replace(" %", "\u00a0%")
         return value
 
-    return Environment(
+    environment = Environment(
         loader=PackageLoader("cladwatt.report", "templates"),
         autoescape=True,
         undefined=StrictUndefined,
@@ -34,9 +37,13 @@ def _environment() -> "Environment":
         trim_blocks=True,
         lstrip_blocks=True,
     )
+    environment.filters["short"] = lambda words: clip_text(words, SHORT)
+    return environment
 
 
-def strip_pictures(assessment: Assessment, language: str = "en") -> dict[str, str]:
+def strip_pictures(
+    assessment: Assessment, language: str = "en", *, heading: bool = True
+) -> dict[str, str]:
     """Draw the strip of every region; regions of one line share their temperature scale.
 
     Parameters
@@ -45,6 +52,8 @@ def strip_pictures(assessment: Assessment, language: str = "en") -> dict[str, st
         What one run found.
     language : str
         Code of a language file.
+    heading : bool
+        Whether each picture carries its own heading.
 
     Returns
     -------
@@ -61,22 +70,19 @@ def strip_pictures(assessment: Assessment, language: str = "en") -> dict[str, st
             air_temperature=region.air_temperature,
             limits=limits[region.tag],
             language=language,
+            heading=heading,
         )
         for region in assessment.regions
     }
 
 
-def report_html(
-    assessment: Assessment, *, pictures: dict[str, str] | None = None, language: str = "en"
-) -> str:
+def report_html(assessment: Assessment, *, language: str = "en") -> str:
     """Return the report as one HTML document that needs nothing beside it.
 
     Parameters
     ----------
     assessment : Assessment
         What one run found.
-    pictures : dict of str to str, optional
-        Strips already drawn, by region id.
     language : str
         Code of a language file.
 
@@ -87,7 +93,7 @@ def report_html(
     """
     from cladwatt.report import views
 
-    drawn = strip_pictures(assessment, language) if pictures is None else pictures
+    drawn = strip_pictures(assessment, language, heading=False)
     findings = ranked_findings(assessment)
     ordered = views.region_order(assessment, findings)
     anchors = {region.region_id: f"region-{i}" for i, region in enumerate(ordered, 1)}
@@ -154,7 +160,7 @@ def write_report(assessment: Assessment, folder: Path, *, language: str = "en") 
     pictures = strip_pictures(assessment, language)
     report = folder / "report.html"
     report.write_text(
-        report_html(assessment, pictures=pictures, language=language),
+        report_html(assessment, language=language),
         encoding="utf-8",
         newline="\n",
     )

@@ -93,7 +93,11 @@ def format_number(value: float, decimals: int, style: NumberStyle = PRINT) -> st
     return sign + whole + (style.decimal + rest if rest else "")
 
 
-def _interval_decimals(interval: Interval) -> int:
+def _interval_decimals(interval: Interval, most: int) -> int:
+    return min(most, _own_decimals(interval))
+
+
+def _own_decimals(interval: Interval) -> int:
     ends = [end for end in (interval.low, interval.high) if math.isfinite(end)]
     if len(ends) == 2:
         return decimals_for((ends[1] - ends[0]) / 2)
@@ -102,35 +106,40 @@ def _interval_decimals(interval: Interval) -> int:
     return 2
 
 
-def format_range(interval: Interval, style: NumberStyle = PRINT) -> str:
+def format_range(interval: Interval, style: NumberStyle = PRINT, *, most: int = 6) -> str:
     """Return the 95 % interval alone, without unit: ``152 to 221`` or ``above 0.42``."""
-    decimals = _interval_decimals(interval)
+    decimals = _interval_decimals(interval, most)
     if math.isnan(interval.low) or math.isnan(interval.high):
         return style.unknown
     low = format_number(interval.low, decimals, style)
     high = format_number(interval.high, decimals, style)
     if math.isinf(interval.high):
-        return f"{style.above_word} {low}"
+        return f"{style.above_word}{style.space}{low}"
     if math.isinf(interval.low):
-        return f"{style.below_word} {high}"
-    return f"{low} {style.range_word} {high}"
+        return f"{style.below_word}{style.space}{high}"
+    return style.space.join((low, style.range_word, high))
 
 
-def format_value(interval: Interval, unit: str, style: NumberStyle = PRINT) -> str:
+def format_value(
+    interval: Interval, unit: str, style: NumberStyle = PRINT, *, most: int = 6
+) -> str:
     """Return the median with its unit, with the digits the interval carries."""
     if math.isnan(interval.median):
         return style.unknown
-    number = format_number(interval.median, _interval_decimals(interval), style)
+    number = format_number(interval.median, _interval_decimals(interval, most), style)
     return f"{number}{style.space}{unit}" if unit else number
 
 
-def format_interval(interval: Interval, unit: str, style: NumberStyle = PRINT) -> str:
-    """Return median, unit and 95 % interval: ``184 W/m (152 to 221)``."""
+def format_interval(
+    interval: Interval, unit: str, style: NumberStyle = PRINT, *, most: int = 6
+) -> str:
+    """Return median, unit and 95 % interval, ``184 W/m (152 to 221)``, `most` decimals at most."""
     if math.isnan(interval.median):
         return style.unknown
     if math.isinf(interval.median):
-        return f"{format_range(interval, style)}{style.space}{unit}".strip()
-    return f"{format_value(interval, unit, style)} ({format_range(interval, style)})"
+        return f"{format_range(interval, style, most=most)}{style.space}{unit}".strip()
+    value = format_value(interval, unit, style, most=most)
+    return f"{value} ({format_range(interval, style, most=most)})"
 
 
 def format_probability(probability: float | None, style: NumberStyle = PRINT) -> str:

@@ -38,7 +38,7 @@ WIDTH = 900.0
 LEFT, RIGHT = 88.0, 792.0
 TITLE_Y = 20.0
 FACE_TOP, FACE_HEIGHT = 42.0, 86.0
-ROW_HEIGHT = 21.0
+ROW_HEIGHT = 24.0
 LOSS_HEIGHT, RATIO_HEIGHT = 150.0, 112.0
 GAP = 30.0
 TICK = 5.0
@@ -47,7 +47,7 @@ NUMBER = NumberStyle(thousands="")
 
 
 def _wrapped(words: str, limit: int) -> list[str]:
-    lines = textwrap.wrap(plain(words), limit, break_long_words=True)
+    lines = textwrap.wrap(plain(words).replace(" %", "\u00a0%"), limit, break_long_words=True)
     return lines if len(lines) <= 6 else [*lines[:5], clip_text(lines[5] + "…", limit)]
 
 
@@ -88,6 +88,7 @@ def strip_svg(
     air_temperature: float | None,
     limits: tuple[float, float] | None = None,
     language: str = "en",
+    heading: bool = True,
 ) -> str:
     """Draw the strip picture of a region.
 
@@ -102,13 +103,15 @@ def strip_svg(
         Range of the colour scale; from the region itself where None. [K]
     language : str
         Code of a language file.
+    heading : bool
+        Whether line, region, frame and verdict stand over the picture.
 
     Returns
     -------
     str
         A complete SVG, self-contained, its ids unique to the region.
     """
-    return _StripPicture(region, air_temperature, limits, language).draw()
+    return _StripPicture(region, air_temperature, limits, language, heading).draw()
 
 
 class _StripPicture:
@@ -120,8 +123,9 @@ class _StripPicture:
         air_temperature: float | None,
         limits: tuple[float, float] | None,
         language: str,
+        heading: bool,
     ) -> None:
-        self.region, self.language = region, language
+        self.region, self.language, self.heading = region, language, heading
         self.air = region.air_temperature if air_temperature is None else air_temperature
         self.limits = limits or temperature_limits(region)
         self.series: Series = series_of(region)
@@ -133,7 +137,14 @@ class _StripPicture:
         bottom = self.y + LOSS_HEIGHT + GAP + RATIO_HEIGHT + 46
         key = f"{region.frame_id}\0{region.region_id}"
         prefix = "s" + hashlib.sha256(key.encode("utf-8", "replace")).hexdigest()[:10]
-        self.svg = Drawing(WIDTH, bottom, prefix, self._title(), self._description())
+        self.svg = Drawing(
+            WIDTH,
+            bottom,
+            prefix if heading else prefix + "e",
+            self._title(),
+            self._description(),
+            top=0.0 if heading else TITLE_Y + 14,
+        )
 
     def say(self, key: str, **parameters: float | str) -> str:
         return text(f"strip.{key}", self.language, **parameters)
@@ -141,7 +152,8 @@ class _StripPicture:
     def draw(self) -> str:
         self.svg.rect(0, 0, WIDTH, self.svg.height, fill=colours.PAPER)
         self.hatch = self.svg.hatch()
-        self._draw_title()
+        if self.heading:
+            self._draw_title()
         bottom = self.y + LOSS_HEIGHT + GAP + RATIO_HEIGHT
         self._draw_stretch_tints(self.y, bottom)
         self._draw_face()
@@ -418,11 +430,15 @@ class _StripPicture:
 
     def _draw_stretch_marks(self, top: float, bottom: float) -> None:
         base = FACE_TOP + FACE_HEIGHT + 8
-        for i, row in enumerate(self.rows):
-            y = base + ROW_HEIGHT * i + 14
-            for stretch, words, centre in row:
-                self._draw_dimension(stretch, y, top, bottom)
-                self._draw_label(words, centre, y)
+        marks = [
+            (stretch, words, centre, base + ROW_HEIGHT * i + 15)
+            for i, row in enumerate(self.rows)
+            for stretch, words, centre in row
+        ]
+        for stretch, _, _, y in marks:
+            self._draw_dimension(stretch, y, top, bottom)
+        for _, words, centre, y in marks:
+            self._draw_label(words, centre, y - 5)
 
     def _draw_dimension(self, stretch: Stretch, y: float, top: float, bottom: float) -> None:
         svg, (x1, x2) = self.svg, self._ends(stretch)
@@ -436,6 +452,6 @@ class _StripPicture:
 
     def _draw_label(self, words: str, centre: float, y: float) -> None:
         half = text_width(words, SMALL) / 2
-        self.svg.rect(centre - half, y - 10, 2 * half, 15, fill=colours.PAPER)
-        self.svg.text(centre, y + 2.5, words, text_anchor="middle", font_size=SMALL,
+        self.svg.rect(centre - half, y - 11, 2 * half, 14, fill=colours.PAPER)
+        self.svg.text(centre, y, words, text_anchor="middle", font_size=SMALL,
                       font_weight="600", fill=colours.INK)  # fmt: skip

@@ -138,6 +138,8 @@ class Drawing:
         Put before every id, so that several drawings can stand in one page.
     title, description : str
         What a screen reader says.
+    top : float
+        Where the picture begins; what lies above is cut off.
     """
 
     width: float
@@ -145,6 +147,7 @@ class Drawing:
     prefix: str
     title: str
     description: str
+    top: float = 0.0
     parts: list[str] = field(default_factory=list)
 
     def element(self, tag: str, **attributes: str | float) -> None:
@@ -183,9 +186,9 @@ class Drawing:
 
     def render(self) -> str:
         """Return the finished SVG."""
-        size = f"{_number(self.width)} {_number(self.height)}"
+        size = f"{_number(self.top)} {_number(self.width)} {_number(self.height - self.top)}"
         head = (
-            f'<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 0 {size}" role="img" '
+            f'<svg xmlns="http://www.w3.org/2000/svg" viewBox="0 {size}" role="img" '
             f'aria-labelledby="{self.prefix}-t {self.prefix}-d" '
             f'font-family="{FONT}" font-size="14">'
             f'<title id="{self.prefix}-t">{escape(plain(self.title), quote=False)}</title>'

@@ -51,6 +51,7 @@ class FindingView:
     probability: str
     verdict: str
     advice: str
+    loss_known: bool
 
 
 @dataclass(frozen=True)
@@ -113,9 +114,9 @@ def finding_view(finding: Finding, anchor: str, language: str) -> FindingView:
     def shown(interval: Interval | None) -> str:
         return format_interval(interval, "") if interval is not None else instead
 
-    to = PRINT.range_word
+    to = f"{PRINT.space}{PRINT.range_word}{PRINT.space}"
     places = [
-        f"{format_number(start, 2)} {to} {format_number(end, 2)}"
+        f"{format_number(start, 2)}{to}{format_number(end, 2)}"
         for start, end in where_damaged(region)
     ]
     return FindingView(
@@ -127,7 +128,8 @@ def finding_view(finding: Finding, anchor: str, language: str) -> FindingView:
         excess=shown(finding.excess),
         probability=format_probability(finding.probability),
         verdict=_verdict(region, language),
-        advice=_advice(region, language) or text("report.no_advice", language),
+        advice=_advice(region, language),
+        loss_known=finding.loss is not None,
     )
 
 
@@ -166,14 +168,14 @@ def _figures(region: RegionResult, language: str) -> list[tuple[str, str]]:
     instead = text("report.not_quantified", language)
     quantified = region.verdict.level != "not quantified"
     rows = [
-        named("length", format_interval(region.length, "m")),
+        named("length", format_interval(region.length, "m", most=2)),
         named(
             "recorded_temperature",
             format_number(celsius(region.recorded_temperature), 1) + PRINT.space + "°C",
         ),
         named(
             "surface_temperature",
-            format_interval(celsius_interval(region.surface_temperature), "°C"),
+            format_interval(celsius_interval(region.surface_temperature), "°C", most=1),
         ),
     ]
     if region.air_temperature is not None:
@@ -212,8 +214,8 @@ def _stretch_rows(region: RegionResult, language: str) -> list[tuple[str, str, s
         rows.append(
             (
                 stretch.id,
-                format_interval(stretch.start, ""),
-                format_interval(stretch.end, ""),
+                format_interval(stretch.start, "", most=2),
+                format_interval(stretch.end, "", most=2),
                 format_probability(stretch.probability),
                 format_interval(loss, "") if quantified and loss else instead,
                 format_interval(excess, "") if quantified and excess else instead,
@@ -232,7 +234,7 @@ def line_view(line: LineTotal, language: str) -> LineView:
         total = Interval(-total.median, -total.high, -total.low)
     return LineView(
         line=line,
-        length=format_interval(line.length, ""),
+        length=format_interval(line.length, "", most=2),
         total=format_interval(total, ""),
         excess=format_interval(excess, "") if excess else text("report.not_known", language),
         regions=", ".join(line.regions),

@@ -1,6 +1,9 @@
 """An invented assessment for the tests of report and console; no number in it was computed."""
 
+from types import SimpleNamespace
+
 import numpy as np
+import pytest
 
 from cladwatt.flags import StationFlag
 from cladwatt.quantities import Remark
@@ -93,7 +96,7 @@ def region(region_id="north-1", *, tag="NS-101", frame_id="f03", gain=False, kno
         "effective_conductivity": Interval(0.052, 0.043, 0.063) if known else None,
         "probability_damaged": damaged, "probability_local": damaged, "probability_aged": 0.01,
         "verdict": Verdict(level, reason, advice), "stretches": stretches, "stations": table,
-        "variance_shares": (("band_emissivity", 0.44), ("convection", 0.31), ("camera_offset", 0.1)),
+        "variance_shares": (("band_emissivity", 0.44), ("convection", 0.31)),
         "air_temperature": 293.15, "strip_temperature": field_of(table),
     }  # fmt: skip
     return RegionResult(**(values | rest))
@@ -101,16 +104,21 @@ def region(region_id="north-1", *, tag="NS-101", frame_id="f03", gain=False, kno
 
 def assessment(*, extra=()):
     advice = Remark("advice.tape_patch", (("width_now", 42.0), ("width_then", 19.0)))
+    corners = ((0.0, 0.0), (1.0, 0.0), (1.0, 1.0))
+    spots = [(0.7, 1.0, 0.71), (1.6, 2.3, 0.94), (2.6, 2.75, 0.88), (6.5, 7.4, 0.999)]
     many = tuple(
-        Stretch(f"s{i + 1}", Interval(a, a - 0.05, a + 0.05), Interval(b, b - 0.06, b + 0.06), p,
-                Interval(200, 170, 240), Interval(40, 30, 52), 0.3, ((0.0, 0.0), (1.0, 0.0), (1.0, 1.0)))
-        for i, (a, b, p) in enumerate([(0.7, 1.0, 0.71), (1.6, 2.3, 0.94), (2.6, 2.75, 0.88), (6.5, 7.4, 0.999)])
+        Stretch(
+            f"s{i + 1}", Interval(a, a - 0.05, a + 0.05), Interval(b, b - 0.06, b + 0.06), p,
+            Interval(200, 170, 240), Interval(40, 30, 52), 0.3, corners,
+        )
+        for i, (a, b, p) in enumerate(spots)
     )  # fmt: skip
     first = (
         region(cautions=(Remark("caution.touch", (("temperature_C", 64.0),)),),
                remarks=(Remark("remark.tape_used", (("emissivity", 0.91),)),), advice=advice),
         region("north-2", stations=stations(gap=(5.2, 5.7), seed=9), stretches=many, scale=1.4,
-               level="indicative", reason=Remark("indicative.interval_wide", (("relative_width", 0.63),)),
+               level="indicative",
+               reason=Remark("indicative.interval_wide", (("relative_width", 0.63),)),
                advice=Remark("advice.wind"), damaged=0.99,
                remarks=(Remark("remark.component_not_assessed"),)),
         region("north-3", stretches=(), damaged=0.06, stations=stations(bump=(-9, -8))),
@@ -148,9 +156,15 @@ def assessment(*, extra=()):
         total_loss=Interval(6050, 5080, 7290), total_gain=Interval(280, 238, 333),
         total_excess=Interval(1040, 560, 1650), left_out=left_out,
         assumptions=(
-            Assumption("line NS-101", "installation_factor", 1.15, 0.08, "-", "common practice", "low"),
+            Assumption("line NS-101", "installation_factor", 1.15, 0.08, "-", "practice", "low"),
             Assumption("frame f03", "air_temperature", 293.15, 0.5, "K", "declared", "declared"),
-            Assumption("line NS-101", "band_emissivity", 0.9, 0.03, "-", "table of claddings", "medium"),
+            Assumption("frame f05", "air_temperature", 293.15, 0.5, "K", "declared", "declared"),
+            Assumption("line NS-101", "band_emissivity", 0.9, 0.03, "-", "claddings", "medium"),
         ),
         remarks=(), camera={"model": "own build", "serial": "0042"},
     )  # fmt: skip
+
+
+@pytest.fixture(name="invented", scope="session")
+def invented_fixture():
+    return SimpleNamespace(assessment=assessment, region=region, stations=stations, nasty=NASTY)

@@ -1,0 +1,196 @@
+import re
+from dataclasses import replace
+from html.parser import HTMLParser
+from itertools import pairwise
+from xml.etree import ElementTree
+
+import pytest
+
+from cladwatt.quantities import Remark
+from cladwatt.report.findings import ranked_findings, where_damaged
+from cladwatt.report.html_report import report_html, write_report
+from cladwatt.results.assessment import Interval
+
+VOID = {"meta", "br", "link", "img", "hr", "input"}
+
+
+class Page(HTMLParser):
+    """Collects tags, ids, links and text; fails where elements do not close in order."""
+
+    def __init__(self, html):
+        super().__init__()
+        self.open, self.tags, self.ids, self.links, self.texts = [], [], [], [], []
+        self.feed(html)
+        assert self.open == []
+
+    def handle_starttag(self, tag, attrs):
+        self.tags.append((tag, dict(attrs)))
+        self.ids += [value for name, value in attrs if name == "id"]
+        self.links += [value for name, value in attrs if name in ("href", "src")]
+        if tag not in VOID:
+            self.open.append(tag)
+
+    def handle_startendtag(self, tag, attrs):
+        self.handle_starttag(tag, attrs)
+        if tag not in VOID:
+            self.open.pop()
+
+    def handle_endtag(self, tag):
+        assert self.open.pop() == tag
+
+    def handle_data(self, data):
+        if self.open and self.open[-1] not in ("style", "title", "desc"):
+            self.texts.append(data)
+
+    @property
+    def words(self):
+        return re.sub(r"\s+", " ", " ".join(self.texts))
+
+
+@pytest.fixture(scope="module")
+def html(invented):
+    return report_html(invented.assessment())
+
+
+@pytest.fixture(scope="module")
+def page(html):
+    return Page(html)
+
+
+def test_totals_and_header(page):
+    for needed in (
+        "Holm Quay winter walk-down", "Holm Quay dye works", "2026-01-14", "R. Adeyemi", "0042",
+        "6000 W", "(5100 to 7300)", "280 W", "(238 to 333)", "1040 W",
+        "never set off against each other",
+    ):  # fmt: skip
+        assert needed in page.words, needed
+
+
+def test_findings_are_ranked_by_expected_excess(invented):
+    found = ranked_findings(invented.assessment())
+    assert [f.region.region_id for f in found] == ["north-2", "north-1", "chill-1", "roof-1"]
+    assert found[0].excess.median == pytest.approx(1.4 * 32 * 8)
+    assert found[2].excess == Interval(*(pytest.approx(v * 8) for v in (8, 4.25, 12.75)))
+    assert found[3].loss is None
+
+
+def test_where_is_the_stretches_or_the_whole_region(invented):
+    assert where_damaged(invented.region()) == ((3.0, 4.2),)
+    assert where_damaged(invented.region(stretches=())) == ((0.0, 8.0),)
+
+
+def test_not_quantified_prints_no_number(invented):
+    survey = invented.assessment()
+    roof = next(r for r in survey.regions if r.region_id == "roof-1")
+    article = re.search(r"<h3><bdi>NS-140.*?</article>", report_html(survey), re.DOTALL).group()
+    assert "not quantified" in article
+    figures = article.split('class="figures"')[1]
+    for interval in (roof.heat_loss, roof.total_loss, roof.excess):
+        assert f"{interval.low:.0f}" not in figures
+    assert "240" in article  # the reason's relative width, in percent
+
+
+def test_every_input_and_setting_is_named(page):
+    for needed in ("a" * 64, "frames/f03.tiff", "Seed 7", "Draws 1000"):
+        assert needed in page.words
+
+
+def test_left_out_with_reason(page):
+    assert "row 12 has 319 values; expected 320" in page.words
+    assert "component valve-2" in page.words
+
+
+def test_defaults_and_declared_apart(page):
+    defaults, declared = page.words.split("Defaults used")[1].split("Declared for this survey")
+    assert "installation factor" in defaults
+    assert "practice" in defaults
+    assert "20.00 °C" in declared
+    assert "frame f03, frame f05" in declared
+    assert "0.50 K" in declared
+
+
+def test_cautions_and_limits(page):
+    for needed in ("asbestos", "height", "replaces none", "permit", "about 64 °C"):
+        assert needed in page.words
+
+
+def test_self_contained(page, html):
+    assert [t for t, _ in page.tags if t in ("script", "link", "iframe", "img", "object")] == []
+    assert all(link.startswith(("#", "data:image/png;base64,")) for link in page.links)
+    assert "@import" not in html
+    assert re.findall(r"url\((?!#)", html) == []
+    assert set(re.findall(r"https?://[^\"' <]+", html)) == {"http://www.w3.org/2000/svg"}
+
+
+def test_links_lead_somewhere_and_ids_are_unique(page):
+    assert len(page.ids) == len(set(page.ids))
+    targets = [link[1:] for link in page.links if link.startswith("#")]
+    assert targets
+    assert set(targets) <= set(page.ids)
+
+
+def test_every_picture_has_a_text_for_those_who_cannot_see_it(page):
+    pictures = [attrs for tag, attrs in page.tags if tag == "svg"]
+    assert len(pictures) == 6
+    for attrs in pictures:
+        assert attrs["role"] == "img"
+        assert set(attrs["aria-labelledby"].split()) <= set(page.ids)
+
+
+def test_headings_do_not_skip_a_level(page):
+    levels = [int(tag[1]) for tag, _ in page.tags if re.fullmatch(r"h[1-6]", tag)]
+    assert levels[0] == 1
+    assert all(b - a <= 1 for a, b in pairwise(levels))
+
+
+def test_hostile_text_is_escaped_everywhere(invented):
+    nasty = invented.nasty + "\x00"
+    survey = invented.assessment(extra=(invented.region(nasty, tag=nasty, area=nasty),))
+    survey = replace(
+        survey, survey_name=nasty, place=nasty, inspector=nasty, camera={nasty: nasty},
+        left_out=(*survey.left_out, replace(survey.left_out[0], id=nasty, message=nasty)),
+        inputs=((nasty, "d" * 64),), remarks=(Remark(nasty),),
+    )  # fmt: skip
+    html = report_html(survey)
+    assert "<script" not in html
+    assert "\x00" not in html
+    assert "&lt;script&gt;" in html
+    Page(html)
+
+
+def test_an_empty_survey_still_reports(invented):
+    survey = replace(
+        invented.assessment(), frames=(), lines=(), total_loss=None, total_gain=None,
+        total_excess=None, assumptions=(), left_out=(), inputs=(), camera={},
+    )  # fmt: skip
+    words = Page(report_html(survey)).words
+    assert "not known" in words
+    assert "no proof that all lagging is sound" in words
+    assert "Every frame and region of the survey was assessed." in words
+
+
+def test_unknown_numbers_are_said_not_printed_as_nan(invented):
+    nan = float("nan")
+    nothing = Interval(nan, nan, nan)
+    region = invented.region(
+        "lost", heat_loss=None, total_loss=None, excess=None, sound_loss=None,
+        surface_temperature=nothing, resistance=Interval(float("inf"), 0.4, float("inf")),
+    )  # fmt: skip
+    words = Page(report_html(invented.assessment(extra=(region,)))).words
+    assert not re.search(r"\bnan\b|\binf\b|None|∞", words)
+    assert "above 0.40 m K/W" in words
+
+
+def test_same_input_same_bytes(invented, html):
+    assert report_html(invented.assessment()) == html
+
+
+def test_files(invented, tmp_path):
+    survey = invented.assessment(extra=(invented.region("con/../x"), invented.region("CON")))
+    written = write_report(survey, tmp_path)
+    assert written[0] == tmp_path / "report.html"
+    assert {p.parent for p in written[1:]} == {tmp_path / "strips"}
+    assert (tmp_path / "strips" / "north-1.svg").is_file()
+    assert len(written) == len({p.name.casefold() for p in written}) == 9
+    for path in written[1:]:
+        ElementTree.parse(path)
