@@ -108,6 +108,23 @@ def test_any_header_is_passed_over(header):
     np.testing.assert_array_equal(read(csv_text(values, header=header, decimal=",")), values)
 
 
+def test_header_lines_filled_up_by_a_spreadsheet():
+    fill = ";" * 14
+    header = f"Frame;7{fill}\nEmissivity;0,95{fill}\n20,5;{fill}\n;{fill}\nunit;K{fill}\n;{fill}\n"
+    decoded = parse_csv_matrix(csv_text(matrix(), header=header, decimal=","))
+    np.testing.assert_array_equal(decoded.values, matrix())
+    assert decoded.unit == "K"
+
+
+@pytest.mark.parametrize("header", ["", "Temperature [K]\n"])
+def test_a_dead_first_row_is_no_header(header):
+    lines = csv_text(matrix()).splitlines()
+    lines[0] = ";" * 15
+    values = read(header + "\n".join(lines))
+    assert values.shape == matrix().shape
+    assert np.isnan(values[0]).all()
+
+
 @pytest.mark.parametrize("corner", ["", "y\\x", "Temperature [K]"])
 @pytest.mark.parametrize("first", [0, 1])
 @pytest.mark.parametrize("trailing", ["", ";"])
@@ -283,3 +300,14 @@ def test_a_list_of_points_is_refused():
 def test_too_many_values_are_refused_before_they_are_read(monkeypatch):
     monkeypatch.setattr("cladwatt.survey.csv_format.MAXIMUM_PIXELS", 100)
     assert "the matrix holds 192 values" in refusal_of(csv_text(matrix())).found
+
+
+@pytest.mark.parametrize(
+    ("text", "found"),
+    [
+        (";" * 20000 + "\n" + ";" * 20000, "the rows hold 20001 values"),
+        ("1;2\n" * 20000, "the file holds 20000 lines"),
+    ],
+)
+def test_sides_no_camera_has_are_refused(text, found):
+    assert refusal_of(text).found == found

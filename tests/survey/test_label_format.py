@@ -82,6 +82,18 @@ def test_holes_and_islands_in_them():
     assert small[1] == ()
 
 
+def test_many_rings_each_keep_their_own_hole():
+    mask = np.zeros((60, 60), bool)
+    for row, column in np.ndindex(10, 10):
+        mask[6 * row : 6 * row + 5, 6 * column : 6 * column + 5] = True
+        mask[6 * row + 2, 6 * column + 1 : 6 * column + 4] = False
+    pieces = mask_outlines(mask)
+    assert [pixels for *_, pixels in pieces] == [22] * 100
+    for outline, holes, _ in pieces:
+        (hole,) = holes
+        assert np.mean(hole, axis=0) == pytest.approx(np.mean(outline, axis=0))
+
+
 def test_a_slanted_band_keeps_its_area():
     y, x = np.mgrid[0:80, 0:120]
     mask = np.abs(y - 20 - 0.37 * x) < 6.5

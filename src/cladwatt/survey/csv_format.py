@@ -11,9 +11,11 @@ from cladwatt.survey.decoded import MAXIMUM_PIXELS, Decoded, Refusal
 from cladwatt.survey.temperature_unit import unit_in_header
 from cladwatt.types import FloatArray
 
-__all__ = ["MAXIMUM_CSV_BYTES", "decode_text", "parse_csv_matrix"]
+__all__ = ["MAXIMUM_CSV_BYTES", "MAXIMUM_CSV_SIDE", "decode_text", "parse_csv_matrix"]
 
 MAXIMUM_CSV_BYTES = 256 * 1024**2
+MAXIMUM_CSV_SIDE = 16384
+"""Most lines and most values in a line; settled before any line is taken apart."""
 
 _SEPARATOR_NAMES = {"\t": "tab", ";": "semicolon", ",": "comma"}
 _MATRIX = (
@@ -126,6 +128,10 @@ def _numbered_lines(text: str) -> list[tuple[int, str]]:
     """Return the lines that hold anything, with their numbers from 1."""
     text = text.replace("\r\n", "\n").replace("\r", "\n")
     text = text.replace("\u2212", "-").replace("\xa0", " ")
+    if text.count("\n") > MAXIMUM_CSV_SIDE:
+        raise Refusal(
+            f"the file holds {text.count(chr(10))} lines", f"expected at most {MAXIMUM_CSV_SIDE}"
+        )
     lines = [
         (number, line)
         for number, line in enumerate(text.split("\n"), 1)
@@ -176,10 +182,9 @@ def _find_layout(lines: list[tuple[int, str]]) -> _Layout:
     columns = Counter(count for count, good in zip(counts, data, strict=True) if good).most_common(
         1
     )[0][0]
-    start = next(
-        i for i, (count, good) in enumerate(zip(counts, data, strict=True))
-        if good and count == columns
-    )  # fmt: skip
+    if columns > MAXIMUM_CSV_SIDE:
+        raise Refusal(f"the rows hold {columns} values", f"expected at most {MAXIMUM_CSV_SIDE}")
+    start = _first_row([line for _, line in lines], data, columns, separator)
     header = [line for _, line in lines[:start]]
     _check_header_rows(lines[:start], data[:start], columns, separator)
     body = lines[start:]
@@ -205,13 +210,35 @@ def _find_layout(lines: list[tuple[int, str]]) -> _Layout:
     return _Layout(separator, _find_decimal(body, separator), header, body, columns, remarks)
 
 
+def _first_row(lines: list[str], data: list[bool], columns: int, separator: str) -> int:
+    """Return where the matrix begins.
+
+    A spreadsheet fills header lines up with separators, and blank lines too; a blank row counts
+    as a dead one only where no such line stands above it.
+    """
+    rows = [i for i, line in enumerate(lines) if data[i] and line.count(separator) + 1 == columns]
+    full = next(
+        (
+            i
+            for i in rows
+            if 2 * sum(map(bool, map(str.strip, lines[i].split(separator)))) > columns
+        ),
+        rows[0],
+    )
+    last_words = max((i for i in range(full) if not data[i]), default=-1)
+    if last_words >= 0 and lines[last_words].count(separator) + 1 == columns:
+        return full
+    return next(i for i in rows if i > last_words)
+
+
 def _check_header_rows(
     lines: list[tuple[int, str]], data: list[bool], columns: int, separator: str
 ) -> None:
     """Refuse a long row of numbers of another length above the matrix: a ragged first row."""
     for (number, line), good in zip(lines, data, strict=True):
         count = line.count(separator) + 1
-        if good and count > 3 and not _counts_up(line, separator):
+        filled = sum(map(bool, map(str.strip, line.split(separator))))
+        if good and filled > 3 and count != columns and not _counts_up(line, separator):
             raise Refusal(
                 f"the row has {count} values, the other rows have {columns}",
                 "expected rows of one length; the file may be cut or edited, export it again",

@@ -32,10 +32,13 @@ def mask_outlines(mask: BoolArray) -> list[tuple[Ring, tuple[Ring, ...], int]]:
     inner = [ring for ring in rings if _signed_area(ring) < 0]
     outer.sort(key=_signed_area)
     holes: dict[int, list[NDArray[np.float64]]] = {i: [] for i in range(len(outer))}
+    lower = np.array([ring.min(axis=0) for ring in outer])
+    upper = np.array([ring.max(axis=0) for ring in outer])
     for hole in inner:
+        point = _point_in_hole(hole)
+        near = np.flatnonzero(np.all((lower < point) & (upper > point), axis=1))
         # The smallest ring around a hole is the one it was cut from.
-        owner = next(i for i, ring in enumerate(outer) if _contains(ring, _point_in_hole(hole)))
-        holes[owner].append(hole)
+        holes[next(int(i) for i in near if _contains(outer[i], point))].append(hole)
     pieces = []
     for i, ring in enumerate(outer):
         area = _signed_area(ring) + sum(_signed_area(hole) for hole in holes[i])
