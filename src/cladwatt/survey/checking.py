@@ -6,12 +6,13 @@ from pathlib import Path
 from cladwatt.errors import Fault, FaultyInputError
 from cladwatt.survey.fault_list import FaultList
 from cladwatt.survey.frame import frame_questions, read_frame
+from cladwatt.survey.model import FrameEntry
 from cladwatt.survey.region import Region
 from cladwatt.survey.survey import Survey
 from cladwatt.survey.survey_file import load_survey
 from cladwatt.survey.survey_regions import region_place
 
-__all__ = ["check_region_against_frame", "check_survey"]
+__all__ = ["check_labels_against_frame", "check_region_against_frame", "check_survey"]
 
 _EDGE_TOLERANCE = 2.0
 """A hand drawing may overshoot the frame's edge so far. [px]"""
@@ -50,13 +51,42 @@ def _frame_faults(survey: Survey) -> list[Fault]:
         except FaultyInputError as error:
             found.extend(error.faults)
             continue
-        found.extend(frame_questions(frame, entry, root=survey.root))
         shape = (frame.temperature.shape[0], frame.temperature.shape[1])
+        found.extend(check_labels_against_frame(entry, shape, root=survey.root))
+        found.extend(frame_questions(frame, entry, root=survey.root))
         for region in survey.regions_of(entry.id):
             fault = check_region_against_frame(region, shape)
             if fault is not None:
                 found.append(fault)
     return found
+
+
+def check_labels_against_frame(
+    entry: FrameEntry, shape: tuple[int, int], *, root: Path
+) -> tuple[Fault, ...]:
+    """Return why a frame's label image does not fit it; empty where it does or there is none.
+
+    Parameters
+    ----------
+    entry : FrameEntry
+    shape : (int, int)
+        Rows and columns of the frame.
+    root : Path
+        Survey folder; paths in messages are relative to it.
+    """
+    if entry.labels is None:
+        return ()
+    from cladwatt.survey.label_format import read_label_image
+
+    try:
+        read_label_image(entry.labels, frame_id=entry.id, root=root)
+    except FaultyInputError:
+        return ()  # said when the survey was read
+    try:
+        read_label_image(entry.labels, frame_id=entry.id, shape=shape, root=root)
+    except FaultyInputError as error:
+        return error.faults
+    return ()
 
 
 def check_region_against_frame(region: Region, shape: tuple[int, int]) -> Fault | None:

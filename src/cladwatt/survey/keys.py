@@ -12,6 +12,7 @@ camera had been told.
 
 import math
 from dataclasses import dataclass, replace
+from functools import cached_property
 from typing import Literal
 
 from cladwatt.units import Unit, units_of
@@ -125,9 +126,15 @@ class Section:
     array: bool = False
     """Whether it may stand several times (``[[line]]``)."""
 
-    def spellings(self) -> dict[str, tuple[Key, Unit | None, bool]]:
-        """Return every accepted key as written: (key, unit, whether it is the uncertainty)."""
-        found: dict[str, tuple[Key, Unit | None, bool]] = {}
+    @cached_property
+    def by_name(self) -> dict[str, Key]:
+        """Keys by name."""
+        return {key.name: key for key in self.keys}
+
+    @cached_property
+    def spellings(self) -> dict[str, tuple[Key, Unit, bool]]:
+        """Every accepted key as written: (key, unit, whether it is the uncertainty)."""
+        found: dict[str, tuple[Key, Unit, bool]] = {}
         for key in self.keys:
             for written, unit in key.spellings:
                 found[written] = (key, unit, False)

@@ -50,7 +50,7 @@ def entries_of_csv(
         If the file as a whole cannot be used.
     """
     further = extra_columns or {}
-    keys = {name: key for name, (key, _, _) in part.spellings().items()} | further
+    keys = {name: key for name, (key, _, _) in part.spellings.items()} | further
     rows = read_rows(data, path, part, frozenset(further), faults)
     return [_entry(row, keys, path, part.name) for row in rows]
 
@@ -80,7 +80,7 @@ def line_entries_of_csv(data: bytes, path: str, faults: FaultList) -> list[Entry
 
 
 def _numbered_columns() -> dict[str, Key]:
-    spellings = Section("layers", "", LAYER).spellings()
+    spellings = Section("layers", "", LAYER).spellings
     columns: dict[str, Key] = {}
     for number in range(1, MAXIMUM_LAYERS + 1):
         for name, (key, _, _) in spellings.items():

@@ -85,7 +85,9 @@ def read_rows(
 
 
 def _split(text: str, delimiter: str, path: str) -> list[tuple[int, list[str]]]:
-    reader = csv.reader(io.StringIO(text, newline=""), delimiter=delimiter, skipinitialspace=True)
+    reader = csv.reader(
+        io.StringIO(text, newline=""), delimiter=delimiter, skipinitialspace=True, strict=True
+    )
     csv.field_size_limit(_LONGEST_FIELD)
     rows: list[tuple[int, list[str]]] = []
     start = 1
@@ -110,7 +112,7 @@ def _columns(
     faults: FaultList,
 ) -> list[tuple[str, bool]]:
     """Return each column's (name, whether it is a key)."""
-    accepted = {name.lower(): name for name in (*section.spellings(), *extra_names)}
+    accepted = {name.lower(): name for name in (*section.spellings, *extra_names)}
     columns: list[tuple[str, bool]] = []
     seen: set[str] = set()
     for cell in head:

@@ -59,7 +59,7 @@ def parse_regions(data: bytes, path: str, frame_id: str, faults: FaultList) -> l
     try:
         features = _features(data)
     except Problem as problem:
-        faults.add(whole, "", problem.found, problem.expected)
+        faults.add(whole, "", problem.found, problem.expected, line=problem.line)
         return []
     regions = []
     for number, feature in enumerate(features, start=1):
@@ -97,8 +97,9 @@ def _json(data: bytes) -> object:
         raise Problem("the text is not UTF-8", "save the file as UTF-8") from None
     except json.JSONDecodeError as error:
         raise Problem(
-            f"not valid JSON: {error.msg} at line {error.lineno}, column {error.colno}",
+            f"not valid JSON: {error.msg} at column {error.colno}",
             "mend it there, or draw the regions anew",
+            error.lineno,
         ) from None
     except RecursionError:
         raise Problem("the JSON is nested too deeply", "expected a FeatureCollection") from None

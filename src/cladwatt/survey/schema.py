@@ -48,7 +48,7 @@ def _table(part: Section) -> Schema:
         "description": part.title,
         "properties": {
             name: _u(key, unit) if is_u else _value(key, unit)
-            for name, (key, unit, is_u) in part.spellings().items()
+            for name, (key, unit, is_u) in part.spellings.items()
         }
         | {key.name: _UNKNOWN for key in part.keys if key.has_unit and _takes_unknown(key)},
         "required": [key.usual for key in part.keys if key.required],
@@ -159,11 +159,11 @@ def _feature() -> Schema:
 
 def _region_properties() -> Schema:
     named: Schema = {}
-    for name, (key, unit, is_u) in Section("region", "", REGION).spellings().items():
+    for name, (key, unit, is_u) in Section("region", "", REGION).spellings.items():
         schema = _u(key, unit) if is_u else _value(key, unit)
         named[name] = schema if key.required else {"anyOf": [schema, {"type": "null"}]}
     for role, key in REGION_VALUES.items():
-        spellings = Section(role, "", (key,)).spellings()
+        spellings = Section(role, "", (key,)).spellings
         for name, (_, unit, is_u) in spellings.items():
             text = f"A reading, for {' and '.join(_roles_with(name))}"
             sign = f" [{unit.text}]" if unit is not None and unit.text else ""
@@ -188,7 +188,7 @@ def _region_properties() -> Schema:
 
 def _roles_with(name: str) -> list[str]:
     return [
-        role for role, key in REGION_VALUES.items() if name in Section(role, "", (key,)).spellings()
+        role for role, key in REGION_VALUES.items() if name in Section(role, "", (key,)).spellings
     ]
 
 

@@ -4,7 +4,7 @@ from collections.abc import Mapping, Sequence
 from datetime import date, timedelta
 
 from cladwatt.quantities import Quantity
-from cladwatt.survey.fault_list import FaultList, Place, shown
+from cladwatt.survey.fault_list import FaultList, shown
 from cladwatt.survey.model import Camera, FrameEntry, Line
 from cladwatt.survey.region import Region
 from cladwatt.survey.survey_regions import region_place
@@ -42,13 +42,15 @@ def check_dates(
 
 def check_temperatures(
     lines: Mapping[str, Line],
-    services: Mapping[str, str],
+    written: Mapping[str, Table],
     frames: Mapping[str, FrameEntry],
     regions: Sequence[Region],
     wide_air: Quantity | None,
     faults: FaultList,
 ) -> set[str]:
     """Return the tags whose inside temperature contradicts their service.
+
+    `written` holds the table each line was built from.
 
     Each region of such a line is named as left out with it.
     """
@@ -61,9 +63,7 @@ def check_temperatures(
         airs = [(f"air of frame {f.id}", f.conditions.air_temperature) for f in drawn[tag]]
         if not airs:
             airs = [("air of [conditions]", wide_air)]
-        if any(
-            _contradicts(line, services.get(tag, ""), where, air, faults) for where, air in airs
-        ):
+        if any(_contradicts(line, written[tag], where, air, faults) for where, air in airs):
             wrong.add(tag)
     for region in regions:
         if region.tag in wrong:
@@ -76,6 +76,7 @@ def check_temperatures(
 
 
 def _service(line: Line, declared: str) -> str:
+    """Return ``hot`` or ``chilled`` as declared or as the fluid's name says, else nothing."""
     if declared:
         return declared
     words = line.fluid.casefold()
@@ -85,9 +86,10 @@ def _service(line: Line, declared: str) -> str:
 
 
 def _contradicts(
-    line: Line, declared: str, where: str, air: Quantity | None, faults: FaultList
+    line: Line, table: Table, where: str, air: Quantity | None, faults: FaultList
 ) -> bool:
     inside = line.inside_temperature
+    declared = table.text("service")
     service = _service(line, declared)
     if air is None or inside is None or not service:
         return False
@@ -98,7 +100,7 @@ def _contradicts(
     word = declared or line.fluid
     side = "colder" if service == "hot" else "warmer"
     faults.add(
-        Place("line list", f"line {line.tag}", tag=line.tag), name,
+        table.place, name,
         f"{name} is {shown(word)} but the {line.inside_is} at"
         f" {inside.value - _ZERO_CELSIUS:.4g} °C is {side} than the {where},"
         f" {air.value - _ZERO_CELSIUS:.4g} °C",

@@ -129,13 +129,13 @@ class _Document:
         frames = read_frames(
             self._entries("frame"), head, site_table, wide, self.source, self.tables, self.faults
         )
-        lines, dropped, services = self._lines(head)
+        lines, dropped, written = self._lines(head)
         usable = {frame.id: frame for frame in frames.entries}
         regions = read_all_regions(
             self.source, frames.entries, frames.dropped, lines, dropped, self.faults
         )
         check_dates(head, camera, frames.entries, self.faults)
-        wrong = check_temperatures(lines, services, usable, regions, frames.wide_air, self.faults)
+        wrong = check_temperatures(lines, written, usable, regions, frames.wide_air, self.faults)
         lines = {tag: line for tag, line in lines.items() if tag not in wrong}
         day = head.get("date")
         return Survey(
@@ -158,7 +158,7 @@ class _Document:
                 continue
             place = Place(SURVEY_FILE, line_of=lambda key: self.finder.line(key, 0, ""))
             line = self.finder.line(name, 0, "") or self.finder.line("", 0, name)
-            homes = [part.name for part in SECTIONS if name in part.spellings()]
+            homes = [part.name for part in SECTIONS if name in part.spellings]
             if homes and not isinstance(self.document[name], (dict, list)):
                 found = f"{name} stands outside of any table"
                 expected = f"expected it under [{homes[0]}]"
@@ -204,15 +204,15 @@ class _Document:
             for index, item in enumerate(raw)
         ]
 
-    def _lines(self, head: Table) -> tuple[dict[str, Line], dict[str, str], dict[str, str]]:
-        """Return the usable lines, why others were dropped, and the declared services."""
+    def _lines(self, head: Table) -> tuple[dict[str, Line], dict[str, str], dict[str, Table]]:
+        """Return the usable lines, why others were dropped, and the tables of the usable."""
         entries = self._entries("line")
         entries += self._listed(head)
         tables = [self._line_table(entry) for entry in entries]
         twice = repeated(table.text("tag") for table, _ in tables if table.text("tag"))
         lines: dict[str, Line] = {}
         dropped: dict[str, str] = {}
-        services: dict[str, str] = {}
+        written: dict[str, Table] = {}
         for table, sound in tables:
             tag = table.text("tag")
             if tag.casefold() in twice and tag:
@@ -224,13 +224,13 @@ class _Document:
                 dropped[tag] = "the line list is at fault there"
                 continue
             lines[tag] = line
-            services[tag] = table.text("service")
+            written[tag] = table
         if not entries and not self.faults.stopping():
             self.faults.add(
                 Place(SURVEY_FILE), "", "the survey has no lines",
                 "expected [[line]] tables, or line_list in [survey]",
             )  # fmt: skip
-        return lines, dropped, services
+        return lines, dropped, written
 
     def _listed(self, head: Table) -> list[Entry]:
         data, path = self.source.listed(head, "line_list", self.faults)

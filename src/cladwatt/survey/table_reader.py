@@ -72,11 +72,11 @@ class Table:
         """Return the key as it stands in the file, or its usual spelling."""
         if name in self.spelled:
             return self.spelled[name]
-        return next(key.usual for key in self.section.keys if key.name == name)
+        return self.key(name).usual
 
     def key(self, name: str) -> Key:
         """Return the key of this name."""
-        return next(key for key in self.section.keys if key.name == name)
+        return self.section.by_name[name]
 
     def quantity(self, name: str) -> Quantity | None:
         """Return a quantity; None where missing or unknown."""
@@ -144,8 +144,8 @@ def read_table(
 class _Reader:
     def __init__(self, section: Section, place: Place, faults: FaultList) -> None:
         self.section, self.place, self.faults = section, place, faults
-        self.spellings = section.spellings()
-        self.by_name = {key.name: key for key in section.keys}
+        self.spellings = section.spellings
+        self.by_name = section.by_name
         self.plain: dict[str, object] = {}
         self.written: dict[str, Written] = {}
         self.spelled: dict[str, str] = {}
@@ -166,8 +166,7 @@ class _Reader:
             self.faulty.add(key.name)
             self.faults.add(self.place, name, problem.found, problem.expected)
 
-    def _take_value(self, key: Key, unit: Unit | None, name: str, raw: object) -> None:
-        assert unit is not None
+    def _take_value(self, key: Key, unit: Unit, name: str, raw: object) -> None:
         if key.name in self.spelled:
             raise Problem(
                 f"{self.spelled[key.name]} and {name} are both given", "expected one of the two"
@@ -183,8 +182,7 @@ class _Reader:
             self.plain[key.name] = parse_plain(key, unit, name, raw)
         self.spelled[key.name] = name
 
-    def _take_u(self, key: Key, unit: Unit | None, name: str, raw: object) -> None:
-        assert unit is not None
+    def _take_u(self, key: Key, unit: Unit, name: str, raw: object) -> None:
         known = self.written.get(key.name)
         if known is not None and known.u is not None:
             raise Problem(f"{name} repeats the uncertainty of {key.name}", "expected it once")

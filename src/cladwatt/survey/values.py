@@ -40,10 +40,11 @@ UNKNOWN = Unknown()
 class Problem(Exception):
     """A value is not acceptable: what was found and what is accepted."""
 
-    def __init__(self, found: str, expected: str) -> None:
+    def __init__(self, found: str, expected: str, line: int | None = None) -> None:
         super().__init__(f"{found}; {expected}")
         self.found = found
         self.expected = expected
+        self.line = line
 
 
 @dataclass(frozen=True)
