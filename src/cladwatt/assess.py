@@ -11,7 +11,7 @@ from multiprocessing import get_context
 import numpy as np
 
 from cladwatt.assumptions import assumptions_of
-from cladwatt.errors import Fault, FaultyInputError
+from cladwatt.errors import Fault, InputError
 from cladwatt.inverse.conditions import FrameDraws, draw_frame, draw_line
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.references import (
@@ -28,6 +28,7 @@ from cladwatt.measure.outline import region_mask, widened
 from cladwatt.physics.radiometry import Band, lens_radiance
 from cladwatt.quantities import Remark
 from cladwatt.results.assessment import Assessment, FrameResult, LeftOut, LineTotal, Settings
+from cladwatt.results.versions import library_versions
 from cladwatt.survey.checking import check_region_against_frame
 from cladwatt.survey.frame import Frame, frame_questions, read_frame
 from cladwatt.survey.model import FrameEntry
@@ -42,6 +43,8 @@ Progress = Callable[[int, int, str], None]
 
 BLUR_MARGIN_PX = 2.0
 """How far left-out areas are widened: their rims are blurred into the pipe. [px]"""
+LEFT_OUT_ROLES = frozenset({"pipe", "leave_out", "foil", "tape", "contact"})
+"""Whatever else is drawn over a pipe may not be used for it; crossing pipes hide each other."""
 
 
 def assess(
@@ -133,7 +136,7 @@ def assess_frame(survey: Survey, entry: FrameEntry, settings: Settings) -> Frame
     started = time.perf_counter()
     try:
         frame = read_frame(entry, root=survey.root)
-    except FaultyInputError as error:
+    except InputError as error:
         left_out = (LeftOut("frame", entry.id, entry.id, str(error)),)
         return FrameResult(entry.id, "", (0, 0), (), left_out)
     regions, left_out_list = _sound_regions(survey, entry, frame)
@@ -230,7 +233,7 @@ def _assess_regions(
             result = _assess_region(
                 survey, entry, region, regions, masks, image, draws, readings, book
             )
-        except FaultyInputError as error:
+        except InputError as error:
             left_out.append(LeftOut("region", region.id, entry.id, str(error)))
             continue
         results.append(replace(result, remarks=result.remarks + remarks))
@@ -257,7 +260,8 @@ def _assess_region(
         region,
         line,
         image=image,
-        left_out=_left_out_mask(region, regions, masks),
+        left_out=widened(_covered(region, regions, masks, LEFT_OUT_ROLES), BLUR_MARGIN_PX),
+        components=_covered(region, regions, masks, frozenset({"component"})),
         known_lengths=[r for r in regions if r.role == "known_length" and r.tag == region.tag],
         frame=frame,
         line_draws=line_draws,
@@ -268,13 +272,15 @@ def _assess_region(
     return replace(result, remarks=result.remarks + remarks)
 
 
-def _left_out_mask(region: Region, regions: list[Region], masks: dict[str, BoolArray]) -> BoolArray:
-    """Return the pixels a pipe region may not use: everything else drawn over it, widened."""
+def _covered(
+    region: Region, regions: list[Region], masks: dict[str, BoolArray], roles: frozenset[str]
+) -> BoolArray:
+    """Return the pixels of other regions with these roles."""
     covered = np.zeros_like(masks[region.id])
     for other in regions:
-        if other.id != region.id and other.role not in ("known_length", "background"):
+        if other.id != region.id and other.role in roles:
             covered |= masks[other.id]
-    return widened(covered, BLUR_MARGIN_PX) if covered.any() else covered
+    return covered
 
 
 def _distance(survey: Survey, frame: Frame, pipes: list[Region]) -> float | None:
@@ -304,6 +310,7 @@ def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ..
         date="" if survey.date is None else survey.date.isoformat(),
         inspector=survey.inspector,
         version=version("cladwatt"),
+        versions=library_versions(),
         settings=settings,
         inputs=_inputs(survey, frames),
         frames=frames,

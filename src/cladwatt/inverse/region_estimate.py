@@ -43,6 +43,8 @@ UNKNOWN_DIAMETER = 0.2
 """For the convection law alone where no diameter is known, a factor of 1.6 uncertain. [m]"""
 BANDS_OF_ANGLE = 5
 LEAST_STATIONS = 5
+COMPONENT_MARGIN = 0.15
+"""How far a component may reach beyond its drawn outline, over the pipe's width; assumption."""
 
 
 def estimate_region(
@@ -51,6 +53,7 @@ def estimate_region(
     *,
     image: FrameImage,
     left_out: BoolArray,
+    components: BoolArray,
     known_lengths: Sequence[Region],
     frame: FrameDraws,
     line_draws: LineDraws,
@@ -66,7 +69,9 @@ def estimate_region(
         What was drawn, and over which line.
     image : FrameImage
     left_out : (rows, cols) array of bool
-        Pixels of other regions, components and patches, already widened by the blur.
+        Pixels of other regions and patches, already widened by the blur.
+    components : (rows, cols) array of bool
+        Pixels of components, as drawn; whole stations are left out for them.
     known_lengths : sequence of Region
         Role ``known_length`` on the same line in this frame.
     frame, line_draws
@@ -86,6 +91,7 @@ def estimate_region(
     """
     strip = _strip(region, line, image, known_lengths, camera)
     lens = sample_strip(np.where(left_out, np.nan, image.lens_temperature), strip)
+    lens[:, _component_stations(strip, components)] = np.nan
     recorded = np.where(np.isfinite(lens), sample_strip(image.recorded_temperature, strip), np.nan)
     face = bands_of(lens, strip.view_angle, BANDS_OF_ANGLE)
     usable = np.asarray(np.isfinite(face.temperature).all(axis=0))
@@ -141,6 +147,16 @@ def _strip(
                 known_length=factor,
             )
     return strip
+
+
+def _component_stations(strip: Strip, components: BoolArray) -> BoolArray:
+    """Return the stations that a component touches, widened for how it may bulge.
+
+    A round fitting seen obliquely bulges along the pipe, and its outline is drawn by hand.
+    """
+    touched = np.nan_to_num(sample_strip(components.astype(float), strip)).max(axis=0) > 0
+    margin = round(max(3.0, COMPONENT_MARGIN * float(np.median(strip.width))))
+    return np.asarray(np.convolve(touched, np.ones(2 * margin + 1), mode="same") > 0)
 
 
 def _nothing_usable(region: Region, stations: int) -> Fault:
