@@ -270,6 +270,15 @@ def test_a_bad_cell_is_named(word):
     assert f"value 4 of the row is '{word}'" in refusal.found
 
 
+@pytest.mark.parametrize("header", ["", "Temperature [K]\n"])
+def test_a_bad_cell_in_the_first_row_does_not_make_it_a_header(header):
+    lines = csv_text(matrix(), decimal=",").splitlines()
+    lines[0] = lines[0].replace("2", "Z", 1)
+    refusal = refusal_of(header + "\n".join(lines))
+    assert refusal.line == 1 + header.count("\n")
+    assert refusal.found.startswith("value 1 of the row is 'Z")
+
+
 def test_words_below_the_matrix_are_named():
     refusal = refusal_of(csv_text(matrix()) + "end of export\n")
     assert refusal.line == 13

@@ -21,12 +21,12 @@ _SEPARATOR_NAMES = {"\t": "tab", ";": "semicolon", ",": "comma"}
 _MATRIX = (
     "expected a matrix of numbers, one image row per line, separated by comma, semicolon or tab"
 )
-_DATA_LINE = re.compile(r"[\d\s+\-.,;eE]*")
+_DATA_LINE = re.compile(r"[0-9\s+\-.,;eE]*")
 _DEAD_WORD = re.compile(
     r"(?i)(?<![^\s,;])(?:[+-]?nan|n/a|na|null|none|[+-]?inf(?:inity)?)(?![^\s,;])"
 )
 _DEAD_CELL = re.compile(r"(?i)-*|[+-]?nan|n/a|na|null|none|[+-]?inf(?:inity)?")
-_NUMBER = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?")
+_NUMBER = re.compile(r"[+-]?(?:[0-9]+[.,]?[0-9]*|[.,][0-9]+)(?:[eE][+-]?[0-9]+)?")
 _QUOTED = re.compile(r'"([^"]*)"')
 _BYTE_ORDER_MARKS = (
     (b"\xff\xfe\x00\x00", "UTF-32"),
@@ -190,7 +190,7 @@ def _find_layout(lines: list[tuple[int, str]]) -> _Layout:
     body = lines[start:]
     for (number, line), count, good in zip(body, counts[start:], data[start:], strict=True):
         if not good:
-            raise _bad_cell(number, line.split(separator), ".") or Refusal(
+            raise _bad_cell(number, line.split(separator)) or Refusal(
                 f"no row of numbers: {line.strip()[:40]!r}", _MATRIX, number
             )
         if count != columns:
@@ -234,10 +234,17 @@ def _first_row(lines: list[str], data: list[bool], columns: int, separator: str)
 def _check_header_rows(
     lines: list[tuple[int, str]], data: list[bool], columns: int, separator: str
 ) -> None:
-    """Refuse a long row of numbers of another length above the matrix: a ragged first row."""
+    """Refuse what stands above the matrix and is a faulty row of it rather than a header."""
     for (number, line), good in zip(lines, data, strict=True):
-        count = line.count(separator) + 1
-        filled = sum(map(bool, map(str.strip, line.split(separator))))
+        cells = [cell.strip() for cell in line.split(separator)]
+        count = len(cells)
+        numbers = sum(_NUMBER.fullmatch(cell) is not None for cell in cells)
+        counting = _counts_up(separator.join(["", *cells[1:]]), separator)
+        if not good and columns > 3 and 2 * numbers > columns and not counting:
+            bad = _bad_cell(number, cells)
+            if bad is not None:
+                raise bad
+        filled = sum(map(bool, cells))
         if good and filled > 3 and count != columns and not _counts_up(line, separator):
             raise Refusal(
                 f"the row has {count} values, the other rows have {columns}",
@@ -272,9 +279,9 @@ def _find_decimal(body: list[tuple[int, str]], separator: str) -> str:
     return ","
 
 
-def _bad_cell(number: int, cells: list[str], decimal: str) -> Refusal | None:
+def _bad_cell(number: int, cells: list[str]) -> Refusal | None:
     for column, cell in enumerate(cells, 1):
-        text = cell.strip().replace(decimal, ".")
+        text = cell.strip()
         if _NUMBER.fullmatch(text) is None and _DEAD_CELL.fullmatch(text) is None:
             return Refusal(
                 f"value {column} of the row is {cell.strip()[:30]!r}",
@@ -298,7 +305,7 @@ def _numbers(layout: _Layout) -> FloatArray:
         )  # fmt: skip
     except (ValueError, OverflowError) as error:
         for number, line in layout.body:
-            bad = _bad_cell(number, line.split(layout.separator), layout.decimal)
+            bad = _bad_cell(number, line.split(layout.separator))
             if bad is not None:
                 raise bad from None
         raise Refusal(f"the numbers cannot be read ({error})", _MATRIX) from None
