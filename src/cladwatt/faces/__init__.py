@@ -1,0 +1,1 @@
+"""Where people meet the program: the command line."""
