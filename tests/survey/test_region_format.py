@@ -304,6 +304,20 @@ def test_read_write_read_gives_equal_regions(survey_folder, drawn, box, tmp_path
     assert tuple(again) == first
 
 
+def test_an_emissivity_lent_by_the_line_is_not_written(survey_folder, drawn):
+    survey_folder.draw(drawn(emissivity=0.8))
+    text = region_text(read_survey(survey_folder.root).regions_of("f01"))
+    assert json.loads(text)["features"][0]["properties"]["emissivity"] == 0.8
+    assert "total_emissivity" not in text
+
+
+def test_a_property_of_another_program_is_asked_about_but_harmless(drawn):
+    regions, (fault,) = parsed(drawn(layer_colour="red"))
+    assert len(regions) == 1
+    assert fault.severity == "question"
+    assert "there is no key 'layer_colour' here and it is not used" in str(fault)
+
+
 coordinate = st.floats(-1e4, 1e4, allow_nan=False)
 
 

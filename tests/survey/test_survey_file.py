@@ -142,7 +142,8 @@ def test_indoor_defaults_follow_the_air_and_name_their_source(survey_folder):
 
 def test_outdoors_there_is_no_default_wind_and_the_surroundings_are_wide(survey_folder):
     survey_folder.edit("indoors = true", "indoors = false")
-    conditions = read_survey(survey_folder.root).frames[0].conditions
+    survey = asks(survey_folder, "wind_speed_m_s is missing outdoors")
+    conditions = survey.frames[0].conditions
     assert conditions.wind_speed is None
     assert conditions.surroundings_temperature.u == 10.0
 
@@ -519,7 +520,8 @@ def test_a_line_without_tag(survey_folder):
         ("air_temperature_C = 25.0", "recording = { emissivity = 0.9 }", "a table recording stands "
          "in a frame; write its keys directly in the frame with camera_ before them"),
         ("air_temperature_C = 25.0", "offset = 3", "offset stands without scale"),
-        ("air_temperature_C = 25.0", "scale = 0", "scale is 0"),
+        ("air_temperature_C = 25.0", "scale = 0.1", "scale stands without offset; expected both"),
+        ("air_temperature_C = 25.0", "scale = 0\noffset = 3", "scale is 0"),
         ("air_temperature_C = 25.0", "page = -1", "expected 0 <= page"),
         ("air_temperature_C = 25.0", "range_lower_C = 90\nrange_upper_C = 20", "the recording "
          "range is empty"),
@@ -555,3 +557,17 @@ def test_dates_that_do_not_fit_are_questioned(survey_folder):
     asks(survey_folder, "the camera was calibrated on 2026-04-01, after the survey")
     survey_folder.edit("2026-03-18T09:40:00", "2025-03-18T09:40:00")
     asks(survey_folder, "frame 'f01' was recorded on 2025-03-18, the survey made on 2026-03-18")
+
+
+@pytest.mark.parametrize(
+    ("old", "new", "message"),
+    [
+        ("altitude_m = 95", "latitude_deg = 52", "latitude stands without longitude"),
+        ("indoors = true", "indoors = true\nsun_on_pipe = true", "but solar_irradiance_W_m2 is"),
+        ("emissivity = 0.95", 'emissivity = "unknown"', "emissivity is unknown and taken as 1"),
+        ("dn = 100", "dn = 100\ntracer_power_W_m = 20", "tracer_power_W_m is given but tracing"),
+    ],
+)
+def test_what_is_only_half_said_is_asked_about(survey_folder, old, new, message):
+    survey = asks(survey_folder.edit(old, new), message)
+    assert len(survey.regions) == 2

@@ -33,9 +33,15 @@ _AS_AIR = "as the air"
 """Begins the source of a default that follows the air temperature."""
 
 
-def build_site(table: Table, tables: MaterialTables) -> Site:
+def build_site(table: Table, tables: MaterialTables, faults: FaultList) -> Site:
     """Return the site, with the air pressure of its altitude where none is declared."""
     altitude = table.number("altitude")
+    for name, other in (("latitude", "longitude"), ("longitude", "latitude")):
+        if table.has(name) and not table.has(other):
+            faults.ask(
+                table.place, table.spelling(name), f"{name} stands without {other}",
+                f"expected {other}_deg beside it",
+            )  # fmt: skip
     pressure = table.quantity("pressure")
     if pressure is None and altitude is not None:
         from cladwatt.physics.air import pressure_at_altitude
@@ -142,9 +148,10 @@ def build_format(table: Table, faults: FaultList) -> FrameFormat:
     scale, offset = table.number("scale"), table.number("offset")
     if scale == 0:
         faults.add(table.place, table.spelling("scale"), "scale is 0", "expected another number")
-    if offset is not None and scale is None:
+    if (offset is None) != (scale is None):
+        alone, other = ("offset", "scale") if scale is None else ("scale", "offset")
         faults.add(
-            table.place, table.spelling("offset"), "offset stands without scale",
+            table.place, table.spelling(alone), f"{alone} stands without {other}",
             "expected both: temperature = counts * scale + offset",
         )  # fmt: skip
     lower, upper = table.number("range_lower"), table.number("range_upper")
@@ -158,7 +165,7 @@ def build_format(table: Table, faults: FaultList) -> FrameFormat:
     return FrameFormat(
         unit="C" if unit == "C" else "K" if unit == "K" else "F" if unit == "F" else None,
         scale=scale,
-        offset=offset if scale is None else _or(offset, 0.0),
+        offset=offset,
         page=int(table.number("page") or 0),
         rows_from=bottom,
         bad_value=table.number("bad_value"),
@@ -176,6 +183,7 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
     the default.
     """
     indoors = table.flag("indoors")
+    _ask_outdoors(table, faults)
     air = table.quantity("air_temperature")
     surroundings = _surroundings(table, air, tables)
     return Conditions(
@@ -202,6 +210,22 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
         roll_deg=table.number("roll") or 0.0,
         window=_window(table, faults),
     )
+
+
+def _ask_outdoors(table: Table, faults: FaultList) -> None:
+    """Ask for wind outdoors and for the strength of a sun that shone on the pipe."""
+    if table.flag("indoors") is False and not table.has("wind_speed"):
+        faults.ask(
+            table.place, "wind_speed_m_s",
+            "wind_speed_m_s is missing outdoors and nothing is assumed in its place",
+            'declare the wind at the pipe or write "unknown"',
+        )  # fmt: skip
+    if table.flag("sun_on_pipe") and not table.has("solar_irradiance"):
+        faults.ask(
+            table.place, table.spelling("sun_on_pipe"),
+            "the sun shone on the pipe, but solar_irradiance_W_m2 is missing",
+            'declare it or write "unknown"',
+        )  # fmt: skip
 
 
 def _default(table: Table, name: str, default: str, tables: MaterialTables) -> Quantity | None:

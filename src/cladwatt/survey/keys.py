@@ -125,6 +125,8 @@ class Section:
     keys: tuple[Key, ...]
     array: bool = False
     """Whether it may stand several times (``[[line]]``)."""
+    strict: bool = True
+    """Whether a key that resembles none of these is a fault rather than a question."""
 
     @cached_property
     def by_name(self) -> dict[str, Key]:

@@ -151,7 +151,9 @@ def _region(feature: object, number: int, whole: Place, faults: FaultList) -> Re
 def _section(role: object) -> Section:
     value = REGION_VALUES.get(role) if isinstance(role, str) else None
     keys = REGION if value is None else (*REGION, value)
-    return Section(f"a {role} region" if isinstance(role, str) else "a region", "", keys)
+    return Section(
+        f"a {role} region" if isinstance(role, str) else "a region", "", keys, strict=False
+    )
 
 
 def _check_role(table: Table, place: Place, faults: FaultList) -> None:
@@ -331,7 +333,7 @@ def _properties(region: Region) -> dict[str, object]:
         ("lagging_thickness_m", region.lagging_thickness),
     )
     for name, quantity in quantities:
-        if quantity is not None:
+        if quantity is not None and not quantity.is_default:
             found[name] = quantity.value
             if quantity.source == "declared":
                 found[f"u_{name}"] = quantity.u

@@ -121,7 +121,7 @@ class _Document:
         self.tables = self._tables()
         head = self._section("survey")
         site_table = self._section("site")
-        site = build_site(site_table, self.tables)
+        site = build_site(site_table, self.tables, self.faults)
         camera = build_camera(self._section("camera"), self.tables, self.faults)
         wide = {
             name: self._section(name, ask=False) for name in ("recording", "conditions", "format")
@@ -259,7 +259,7 @@ class _Document:
         names = []
         if not table.has("fluid_temperature") and not table.has("wall_temperature"):
             names.append("fluid_temperature")
-        if not table.has("layers") and table.text("lagging_material") != "none":
+        if not table.has("layers") and table.text("lagging_material").lower() != "none":
             if not table.has("lagging_material") and not table.has("lagging_conductivity"):
                 names.append("lagging_material")
             if not table.has("lagging_thickness"):

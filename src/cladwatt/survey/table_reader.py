@@ -204,11 +204,13 @@ class _Reader:
             self.faults.add(self.place, name, f"{bare} takes no uncertainty", "delete this key")
             return
         hint = nearest(name, self.spellings)
+        foreign = not self.section.strict and not hint
         self.faults.add(
             self.place,
             name,
-            f"there is no key {shown(name)} here",
+            f"there is no key {shown(name)} here" + (" and it is not used" if foreign else ""),
             f"expected a key of {self.section.name}{hint}",
+            severity="question" if foreign else "error",
         )
 
     def _take_bare_unknown(self, key: Key, name: str) -> None:
