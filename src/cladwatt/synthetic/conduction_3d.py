@@ -8,9 +8,11 @@ there, so that the pipe itself faces the room, and the cut faces of its neighbou
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from typing import cast
 
 import numpy as np
-from scipy.linalg import cholesky_banded, cho_solve_banded
+from scipy.sparse import coo_matrix
+from scipy.sparse.linalg import splu
 
 from cladwatt.errors import FitError
 from cladwatt.types import BoolArray, FloatArray
@@ -19,6 +21,8 @@ __all__ = ["ColumnModel", "Solution", "SurfaceFlux", "solve_columns"]
 
 SurfaceFlux = Callable[[FloatArray], FloatArray]
 """Heat flux leaving the surface for a surface temperature, both (n_x, n_phi). [K] -> [W/m2]"""
+
+_Solver = Callable[[FloatArray], FloatArray]
 
 _CUT_FACE_COEFFICIENT = 9.0
 """Convection and radiation at a cut face of lagging, order of still indoor air. [W/(m2 K)]"""
@@ -208,46 +212,43 @@ def _product(parts: _Conductances, diagonal: FloatArray, field: FloatArray) -> F
     return result
 
 
-def _factor(parts: _Conductances, diagonal: FloatArray) -> FloatArray:
-    """Return the Cholesky factor of that matrix in lower band form."""
-    n_x, n_phi, n_nodes = diagonal.shape
-    block = n_phi * n_nodes
-    band = np.zeros((block + 1, n_x * block))
-    band[0] = diagonal.ravel()
-    radial = parts.radial.copy()
-    radial[..., -1] = 0.0
-    band[1] -= radial.ravel()
-    around = parts.around.copy()
-    around[:, -1] = 0.0
-    band[n_nodes] -= around.ravel()
-    # the last phi meets the first one of the same x
-    wrap = np.zeros_like(parts.around)
-    wrap[:, 0] = parts.around[:, -1]
-    band[block - n_nodes] -= wrap.ravel()
-    band[block] -= parts.along.ravel()
-    factor: FloatArray = cholesky_banded(
-        band, lower=True, overwrite_ab=True, check_finite=False
+def _factor(parts: _Conductances, diagonal: FloatArray) -> _Solver:
+    """Return a solver with the factors of that matrix."""
+    node = np.arange(diagonal.size).reshape(diagonal.shape)
+    ties = (
+        (node[..., :-1], node[..., 1:], parts.radial[..., :-1]),
+        (node, np.roll(node, -1, axis=1), parts.around),
+        (node[:-1], node[1:], parts.along[:-1]),
     )
-    return factor
+    first = np.concatenate([tie[0].ravel() for tie in ties])
+    second = np.concatenate([tie[1].ravel() for tie in ties])
+    value = -np.concatenate([tie[2].ravel() for tie in ties])
+    rows = np.concatenate([first, second, node.ravel()])
+    cols = np.concatenate([second, first, node.ravel()])
+    matrix = coo_matrix((np.concatenate([value, value, diagonal.ravel()]), (rows, cols)))
+    factors = splu(
+        matrix.tocsc(), permc_spec="MMD_AT_PLUS_A", diag_pivot_thresh=0.0,
+        options={"SymmetricMode": True},
+    )  # fmt: skip
+    return cast(_Solver, factors.solve)
 
 
 def _solve_near(
     parts: _Conductances, diagonal: FloatArray, source: FloatArray, start: FloatArray,
-    factor: FloatArray,
+    solver: _Solver,
 ) -> FloatArray | None:  # fmt: skip
-    """Solve by conjugate gradients with the factor of a nearby matrix; None if it is too far."""
+    """Solve by conjugate gradients with the factors of a nearby matrix; None if it is too far."""
     found = start.copy()
     residual = source - _product(parts, diagonal, found)
     direction, old = np.zeros_like(found), 0.0
     for step in range(_MOST_GRADIENT_STEPS):
         if float(np.max(np.abs(residual / diagonal))) < _GRADIENT_TOLERANCE:
             return found
-        near = cho_solve_banded((factor, True), residual.ravel(), check_finite=False)
-        near = near.reshape(found.shape)
-        new = float(np.vdot(residual, near))
+        near = solver(residual.ravel()).reshape(found.shape)
+        new = float(np.sum(residual * near))
         direction = near + (new / old) * direction if step else near
         image = _product(parts, diagonal, direction)
-        length = new / float(np.vdot(direction, image))
+        length = new / float(np.sum(direction * image))
         found += length * direction
         residual -= length * image
         old = new
@@ -289,7 +290,7 @@ def solve_columns(
     cells = air + (inside - air) * np.broadcast_to(falling, (n_x, n_phi, n_r))
     surface = np.where(model.exposed, air + 0.97 * (inside - air), air + 0.1 * (inside - air))
     area = model.surface_area
-    factor: FloatArray | None = None
+    solver: _Solver | None = None
     for _ in range(most):
         parts = _conductances(model, model.factor * model.conductivity_curve(cells))
         flux = surface_flux(surface)
@@ -301,11 +302,10 @@ def solve_columns(
         # the held cells of exposed columns take the temperature of the pipe
         source[..., :n_r][model.exposed] = inside
         start = np.concatenate([cells, surface[..., None]], axis=-1)
-        found = None if factor is None else _solve_near(parts, diagonal, source, start, factor)
+        found = None if solver is None else _solve_near(parts, diagonal, source, start, solver)
         if found is None:
-            factor = _factor(parts, diagonal)
-            found = cho_solve_banded((factor, True), source.ravel(), check_finite=False)
-            found = found.reshape(n_x, n_phi, n_r + 1)
+            solver = _factor(parts, diagonal)
+            found = solver(source.ravel()).reshape(n_x, n_phi, n_r + 1)
         change = float(np.max(np.abs(found[..., -1] - surface)))
         surface, cells = found[..., -1], found[..., :-1]
         if change < tolerance:

@@ -54,7 +54,7 @@ class Damage:
 
 _LENGTHS = {
     "compressed": (0.25, 0.60), "wet": (0.25, 0.70), "wet_underside": (0.30, 0.80),
-    "void": (0.30, 0.70), "open_joint": (0.013, 0.040), "bare": (0.15, 0.40),
+    "void": (0.30, 0.70), "open_joint": (0.012, 0.040), "bare": (0.15, 0.40),
     "missing_sector": (0.25, 0.55),
 }  # fmt: skip
 

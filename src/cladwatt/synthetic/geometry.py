@@ -284,34 +284,43 @@ def trace_pipe(rays: FloatArray, axis: PipeAxis, radius: FloatArray) -> Hits:
     )
 
 
+def _dot(vectors: FloatArray, vector: FloatArray) -> FloatArray:
+    """Return the dot products of (n, 3) vectors with one, without a matrix library's threads."""
+    product: FloatArray = (
+        vectors[:, 0] * vector[0] + vectors[:, 1] * vector[1] + vectors[:, 2] * vector[2]
+    )
+    return product
+
+
 def _meet_leg(
     rays: FloatArray, axis: PipeAxis, leg: int, radius: float
 ) -> tuple[IntArray, FloatArray, FloatArray, FloatArray, FloatArray]:
     """Return ray number, depth, station, angle and normal where rays meet one leg."""
     direction, start = axis.directions[leg], axis.vertices[leg]
-    square = rays - (rays @ direction)[:, None] * direction
+    along_ray = _dot(rays, direction)
     offset = (start @ direction) * direction - start
-    a = np.einsum("ij,ij->i", square, square)
-    b = square @ offset
+    # |t s + offset| = radius, where s is the part of the ray square to the axis
+    a = 1.0 - along_ray * along_ray
+    b = _dot(rays, offset)
     root = b * b - a * (offset @ offset - radius**2)
     which = np.flatnonzero((root > 0) & (a > 1e-12))
     t = (-b[which] - np.sqrt(root[which])) / a[which]
     point = t[:, None] * rays[which]
-    along = (point - start) @ direction
+    along = t * along_ray[which] - float(start @ direction)
     last = axis.steps.size - 1
     keep = t > 0
     if leg == 0:
         keep &= along >= 0
     else:
         bisector = axis.directions[leg - 1] + direction
-        keep &= (point - start) @ bisector >= 0
+        keep &= _dot(point - start, bisector) >= 0
     if leg == last:
         keep &= along <= axis.steps[leg]
     else:
         bisector = axis.directions[leg + 1] + direction
-        keep &= (point - axis.vertices[leg + 1]) @ bisector < 0
+        keep &= _dot(point - axis.vertices[leg + 1], bisector) < 0
     which, t, point, along = which[keep], t[keep], point[keep], along[keep]
     out = (point - start - along[:, None] * direction) / radius
     zero = axis.zeros[leg]
-    phi = np.arctan2(out @ np.cross(direction, zero), out @ zero)
+    phi = np.arctan2(_dot(out, np.cross(direction, zero)), _dot(out, zero))
     return which, t, axis.starts[leg] + along, phi, out

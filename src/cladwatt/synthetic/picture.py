@@ -112,6 +112,7 @@ def take_picture(
     lens = render(
         view, [pipe.skin for pipe in pipes], background, scene,
         AirPath(truth.transmission, truth.air_temperature), band,
+        fine=3 if frame.cols < 480 else 2,
     )  # fmt: skip
     camera = plant.camera
     detector = Detector(

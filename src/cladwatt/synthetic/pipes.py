@@ -19,7 +19,7 @@ from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["COMPONENT_LENGTHS", "PipeTruth", "build_pipe"]
 
-_CELL_LENGTH = 0.013
+_CELL_LENGTH = 0.015
 _AROUND, _RADIAL = 24, 5
 _SCATTER = 0.03
 """Relative scatter of sound lagging along the pipe."""
@@ -228,7 +228,7 @@ def build_pipe(
         The pipe.
     """
     axis = _axis(pipe, view, frame.distance_ratio)
-    n_x = int(np.clip(round(axis.length / _CELL_LENGTH), 60, 300))
+    n_x = int(np.clip(round(axis.length / _CELL_LENGTH), 60, 260))
     length = axis.length / n_x
     outer = line.pipe_diameter / 2 + line.thickness
     drawn = (

@@ -70,31 +70,43 @@ class AirPath:
     temperature: float
 
 
-def _look_up(skin: Skin, field: FloatArray, hits: Hits) -> FloatArray:
-    """Return a field at the hits: linear between columns, but not across the end of lagging."""
-    n_x, n_phi = field.shape
-    x = np.clip(hits.station / skin.axis.length * n_x - 0.5, 0, n_x - 1.000001)
-    phi = np.mod(hits.angle / (2 * np.pi) * n_phi - 0.5, n_phi)
-    i, j = x.astype(np.int64), phi.astype(np.int64) % n_phi
-    ahead, round_ = np.minimum(i + 1, n_x - 1), (j + 1) % n_phi
-    fx, fp = x - i, phi - np.floor(phi)
-    corners = skin.exposed
-    mixed = (corners[i, j] != corners[ahead, j]) | (corners[i, j] != corners[i, round_])
-    mixed |= corners[i, j] != corners[ahead, round_]
-    fx = np.where(mixed, np.round(fx), fx)
-    fp = np.where(mixed, np.round(fp), fp)
-    value: FloatArray = (
-        (1 - fx) * ((1 - fp) * field[i, j] + fp * field[i, round_])
-        + fx * ((1 - fp) * field[ahead, j] + fp * field[ahead, round_])
-    )
-    return value
+class _LookUp:
+    """Fields of a skin at the hits: linear between columns, not across the end of lagging."""
+
+    def __init__(self, skin: Skin, hits: Hits) -> None:
+        n_x, n_phi = skin.exposed.shape
+        x = np.clip(hits.station / skin.axis.length * n_x - 0.5, 0, n_x - 1.000001)
+        phi = np.mod(hits.angle / (2 * np.pi) * n_phi - 0.5, n_phi)
+        i, j = x.astype(np.int64), phi.astype(np.int64)
+        part_x, part_phi = x - i, phi - j
+        j %= n_phi
+        ahead, beside = np.minimum(i + 1, n_x - 1) * n_phi, (j + 1) % n_phi
+        i *= n_phi
+        self._corners = (i + j, i + beside, ahead + j, ahead + beside)
+        if skin.exposed.any():
+            bare = [skin.exposed.ravel()[corner] for corner in self._corners]
+            mixed = (bare[0] != bare[1]) | (bare[0] != bare[2]) | (bare[0] != bare[3])
+            part_x = np.where(mixed, np.round(part_x), part_x)
+            part_phi = np.where(mixed, np.round(part_phi), part_phi)
+        self._weights = (
+            (1 - part_x) * (1 - part_phi), (1 - part_x) * part_phi,
+            part_x * (1 - part_phi), part_x * part_phi,
+        )  # fmt: skip
+
+    def __call__(self, field: FloatArray) -> FloatArray:
+        """Return the (n_x, n_phi) field at the hits."""
+        flat = field.ravel()
+        total = np.zeros(self._weights[0].size)
+        for weight, corner in zip(self._weights, self._corners, strict=True):
+            total += weight * flat[corner]
+        return total
 
 
 def surface_radiance(skin: Skin, hits: Hits, scene: Scene, band: Band) -> FloatArray:
     """Return what leaves a pipe towards the camera at the hits. [W/(m2 sr)]"""
-    temperature = _look_up(skin, skin.temperature, hits)
-    normal_emissivity = _look_up(skin, skin.emissivity, hits)
-    bare = _look_up(skin, skin.exposed.astype(np.float64), hits) > 0.5
+    look_up = _LookUp(skin, hits)
+    temperature, normal_emissivity = look_up(skin.temperature), look_up(skin.emissivity)
+    bare = look_up(skin.exposed.astype(np.float64)) > 0.5
     taped = np.zeros(bare.shape, dtype=bool)
     for patch in skin.patches:
         middle, half = sum(patch.angle) / 2, (patch.angle[1] - patch.angle[0]) / 2
@@ -103,16 +115,12 @@ def surface_radiance(skin: Skin, hits: Hits, scene: Scene, band: Band) -> FloatA
         normal_emissivity = np.where(inside, patch.emissivity, normal_emissivity)
         taped |= inside
     normal_emissivity = np.where(hits.face, _CUT_FACE_EMISSIVITY, normal_emissivity)
-    temperature = np.where(
-        hits.face, _look_up(skin, skin.face_temperature, hits), temperature
-    )
+    if hits.face.any():
+        temperature = np.where(hits.face, look_up(skin.face_temperature), temperature)
     cosine = -np.einsum("ij,ij->i", hits.normal, hits.ray)
     view = np.arccos(np.clip(cosine, 0.01, 1.0))
     matt = bare | taped | hits.face
-    emissivity = directional_emissivity(normal_emissivity, view, False)
-    if skin.is_metal:
-        emissivity = np.where(matt, emissivity,
-                              directional_emissivity(normal_emissivity, view, True))  # fmt: skip
+    emissivity = directional_emissivity(normal_emissivity, view, skin.is_metal & ~matt)
     back = hits.ray + 2 * cosine[:, None] * hits.normal
     mirror = np.where(matt, 0.0, skin.mirror)
     reflected = mirror * scene.mirrored(back, band)
@@ -141,7 +149,7 @@ def render(
     air: AirPath,
     band: Band,
     *,
-    fine: int = 3,
+    fine: int,
 ) -> FloatArray:
     """Return the radiance at the lens, before blur and noise.
 

@@ -32,14 +32,14 @@ class Neighbour:
     def weight(self, direction: FloatArray) -> FloatArray:
         """Return its share of what is seen in directions (..., 3)."""
         towards = np.array(self.direction) / np.linalg.norm(self.direction)
-        apart = np.arccos(np.clip(direction @ towards, -1, 1))
+        apart = np.arccos(np.clip(np.einsum("...i,i", direction, towards), -1, 1))
         weight: FloatArray = np.clip(1.5 - apart / self.half_width, 0, 1)
         return weight
 
     def factor(self, normal: FloatArray) -> FloatArray:
         """Return its view factor from surfaces with normals (..., 3)."""
         towards = np.array(self.direction) / np.linalg.norm(self.direction)
-        factor: FloatArray = np.clip(normal @ towards, 0, 1) * np.sin(self.half_width) ** 2
+        factor: FloatArray = np.clip(np.einsum("...i,i", normal, towards), 0, 1) * np.sin(self.half_width) ** 2
         return factor
 
 
