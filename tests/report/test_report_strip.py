@@ -6,8 +6,10 @@ import numpy as np
 import pytest
 
 from cladwatt.quantities import Remark
-from cladwatt.report.strip_picture import LEFT, RIGHT, strip_svg, temperature_limits
+from cladwatt.report.strip_picture import strip_svg, temperature_limits
 from cladwatt.report.strip_series import left_out_runs, resample_columns, series_of
+from cladwatt.report.strip_sheet import LEFT, RIGHT
+from cladwatt.results.assessment import Interval
 
 SVG = "{http://www.w3.org/2000/svg}"
 
@@ -99,9 +101,7 @@ def test_gaps_are_hatched_and_break_the_curve(invented):
 def test_falling_stations_give_the_same_picture(invented):
     region = invented.region()
     table = region.stations
-    turned = replace(table, **{name: getattr(table, name)[::-1] for name in table.__slots__}
-                     if hasattr(table, "__slots__") else
-                     {name: value[::-1] for name, value in vars(table).items()})  # fmt: skip
+    turned = replace(table, **{name: values[::-1] for name, values in vars(table).items()})
     other = replace(region, stations=turned, strip_temperature=region.strip_temperature[:, ::-1])
     assert strip_svg(other, air_temperature=None) == strip_svg(region, air_temperature=None)
 
@@ -162,3 +162,16 @@ def test_labels_of_many_stretches_do_not_overlap(invented):
     for i, (x1, y1, w1) in enumerate(boxes):
         for x2, y2, w2 in boxes[i + 1 :]:
             assert abs(y1 - y2) > 12 or abs(x1 - x2) > (w1 + w2) / 2
+
+
+def test_more_stretches_than_labels_find_place_keep_their_dimension_lines(invented):
+    (one,) = invented.region().stretches
+    many = tuple(
+        replace(one, id=f"s{i}", start=Interval(i / 8, i / 8 - 0.01, i / 8 + 0.01),
+                end=Interval(i / 8 + 0.06, i / 8 + 0.05, i / 8 + 0.07))
+        for i in range(1, 60)
+    )  # fmt: skip
+    root = drawn(invented.region(stretches=many))
+    edges = [e for e in root.iter(f"{SVG}line") if e.get("stroke-dasharray") == "10 3 2 3"]
+    assert len(edges) == 2 * len(many)
+    assert all(f"s{i}: " in root.find(f"{SVG}desc").text for i in range(1, 60))
