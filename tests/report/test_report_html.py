@@ -9,7 +9,7 @@ import pytest
 from cladwatt.quantities import Remark
 from cladwatt.report.findings import ranked_findings, where_damaged
 from cladwatt.report.html_report import report_html, write_report
-from cladwatt.results.assessment import Interval
+from cladwatt.results.assessment import Assumption, Interval
 
 VOID = {"meta", "br", "link", "img", "hr", "input"}
 
@@ -107,6 +107,32 @@ def test_defaults_and_declared_apart(page):
     assert "20.00 °C" in declared
     assert "frame f03, frame f05" in declared
     assert "0.50 K" in declared
+
+
+def test_assumptions_are_printed_in_the_units_people_use(invented):
+    def row(quantity, value, u, unit):
+        return Assumption("camera", quantity, value, u, unit, "declared", "declared")
+
+    survey = replace(
+        invented.assessment(),
+        assumptions=(
+            row("band_lower", 7.5e-6, 0.0, "m"), row("cladding_thickness", 0.0008, 0.0001, "m"),
+            row("inside_temperature", 433.15, 2.0, "K"), row("distance", 4.0, 0.2, "m"),
+        ),
+    )  # fmt: skip
+    words = Page(report_html(survey)).words.replace("\u00a0", " ")
+    for needed in ("7.5 µm", "0.80 mm", "0.10 mm", "160.0 °C", "2.0 K", "4.00 m", "0.20 m"):
+        assert needed in words, needed
+
+
+def test_without_a_diameter_the_flux_is_still_given(invented):
+    region = invented.region(
+        "bare", heat_loss=None, total_loss=None, excess=None, level="not quantified",
+        reason=Remark("not_quantified.no_diameter"), stretches=(),
+    )  # fmt: skip
+    words = Page(report_html(invented.assessment(extra=(region,)))).words
+    tail = words.split("NS-101 · bare")[-1].replace("\u00a0", " ")
+    assert "Flux over the seen face 312 W/m² (262 to 365)" in tail
 
 
 def test_cautions_and_limits(page):

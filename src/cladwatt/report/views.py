@@ -193,10 +193,11 @@ def _figures(region: RegionResult, language: str) -> list[tuple[str, str]]:
         ("resistance_ratio", region.resistance_ratio, ""),
         ("effective_conductivity", region.effective_conductivity, "W/(m K)"),
     ]
+    flux_remains = region.verdict.reason.key == "not_quantified.no_diameter"
     needs_no_image = {"sound_loss", "specified_loss", "specified_resistance"}
     for key, value, unit in quantities:
         if value is not None:
-            shown = quantified or key in needs_no_image
+            shown = quantified or key in needs_no_image or (key == "heat_flux" and flux_remains)
             rows.append(named(key, format_interval(value, unit) if shown else instead))
     for key in ("probability_damaged", "probability_local", "probability_aged"):
         probability = getattr(region, key)
@@ -241,16 +242,29 @@ def line_view(line: LineTotal, language: str) -> LineView:
     )
 
 
+def _printed_unit(item: Assumption) -> tuple[float, str]:
+    """Return factor and unit that suit the quantity; lengths of pipes and sheets are in mm."""
+    if item.unit == "m" and item.quantity.startswith("band_"):
+        return 1e6, "µm"
+    if item.unit == "m" and item.quantity.endswith(("thickness", "diameter")):
+        return 1e3, "mm"
+    return 1.0, "" if item.unit in ("-", "", "1") else item.unit.replace("m2", "m²")
+
+
 def _value_words(item: Assumption) -> tuple[str, str]:
-    decimals = decimals_for(item.u) if item.u > 0 else None
-    in_celsius = item.unit == "K" and "temperature" in item.quantity
-    value = celsius(item.value) if in_celsius else item.value
-    shown = f"{value:.6g}".replace("-", PRINT.minus)
-    if decimals is not None:
-        shown = format_number(value, decimals)
-    u = format_number(item.u, decimals) if decimals is not None else "0"
-    unit = "" if item.unit in ("-", "", "1") else PRINT.space + item.unit
-    return shown + (PRINT.space + "°C" if in_celsius else unit), u + unit
+    factor, unit = _printed_unit(item)
+    value, u = item.value * factor, item.u * factor
+    after = PRINT.space + unit if unit else ""
+    value_after = after
+    if unit == "K" and "temperature" in item.quantity:
+        value, value_after = celsius(value), PRINT.space + "°C"
+    if u > 0:
+        decimals = min(decimals_for(u), 6)
+        return (
+            format_number(value, decimals) + value_after,
+            format_number(u, decimals) + after,
+        )
+    return f"{value:.6g}".replace("-", PRINT.minus) + value_after, "0" + after
 
 
 def assumption_views(
