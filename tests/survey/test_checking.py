@@ -17,7 +17,6 @@ def found(folder, message, severity="error"):
 
 
 def test_a_sound_survey_has_nothing(survey_folder):
-    # a flat hot pipe has a plateau at neither end here, so there is no question either
     assert check_survey(survey_folder.root) == ()
 
 

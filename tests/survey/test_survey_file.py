@@ -571,3 +571,16 @@ def test_dates_that_do_not_fit_are_questioned(survey_folder):
 def test_what_is_only_half_said_is_asked_about(survey_folder, old, new, message):
     survey = asks(survey_folder.edit(old, new), message)
     assert len(survey.regions) == 2
+
+
+@pytest.mark.parametrize(
+    ("written", "limit", "percent"),
+    [("accuracy_K = 1.5", 1.5, 0.0), ("", 2.0, 2.0), ("accuracy_of_reading_percent = 1", 0.0, 1.0)],
+)
+def test_an_accuracy_statement_is_taken_as_declared_and_else_by_default(
+    survey_folder, written, limit, percent
+):
+    survey_folder.edit("accuracy_K = 2.0\naccuracy_of_reading_percent = 2.0", written)
+    accuracy = read_survey(survey_folder.root).camera.accuracy
+    assert (accuracy.limit, accuracy.percent) == (limit, percent)
+    assert (accuracy.source == "declared") is bool(written)
