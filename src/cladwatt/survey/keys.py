@@ -222,7 +222,8 @@ CAMERA = (
     ),
     _setting(
         "accuracy_of_reading", "Maker's limit as a share of the reading in °C; the larger counts",
-        "percent", lower=0.0, upper=20.0, default="2 % where neither this nor the limit is declared", example="2.0",
+        "percent", lower=0.0, upper=20.0, example="2.0",
+        default="2 % where neither this nor the limit is declared",
     ),
     _setting(
         "accuracy_coverage_factor", "Only where the maker states one", "none", lower=1.0, upper=4.0
