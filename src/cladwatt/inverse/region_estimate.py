@@ -91,7 +91,8 @@ def estimate_region(
     """
     strip = _strip(region, line, image, known_lengths, camera)
     lens = sample_strip(np.where(left_out, np.nan, image.lens_temperature), strip)
-    lens[:, _component_stations(strip, components)] = np.nan
+    component_at = _component_stations(strip, components)
+    lens[:, _bulged(component_at, strip)] = np.nan
     recorded = np.where(np.isfinite(lens), sample_strip(image.recorded_temperature, strip), np.nan)
     face = bands_of(lens, strip.view_angle, BANDS_OF_ANGLE)
     usable = np.asarray(np.isfinite(face.temperature).all(axis=0))
@@ -110,6 +111,7 @@ def estimate_region(
             face=face,
             drawn=face_draws(face, frame, line_draws, diameter),
             usable=usable,
+            component_at=component_at,
             diameter=diameter,
             gain=_is_gain(line, conditions),
             frame=frame,
@@ -150,13 +152,15 @@ def _strip(
 
 
 def _component_stations(strip: Strip, components: BoolArray) -> BoolArray:
-    """Return the stations that a component touches, widened for how it may bulge.
+    """Return the stations that a drawn component touches."""
+    touched = np.nan_to_num(sample_strip(components.astype(float), strip)).max(axis=0)
+    return np.asarray(touched > 0)
 
-    A round fitting seen obliquely bulges along the pipe, and its outline is drawn by hand.
-    """
-    touched = np.nan_to_num(sample_strip(components.astype(float), strip)).max(axis=0) > 0
+
+def _bulged(stations: BoolArray, strip: Strip) -> BoolArray:
+    """Widen stations along: a round fitting seen obliquely bulges, and is drawn by hand."""
     margin = round(max(3.0, COMPONENT_MARGIN * float(np.median(strip.width))))
-    return np.asarray(np.convolve(touched, np.ones(2 * margin + 1), mode="same") > 0)
+    return np.asarray(np.convolve(stations, np.ones(2 * margin + 1), mode="same") > 0)
 
 
 def _nothing_usable(region: Region, stations: int) -> Fault:

@@ -52,6 +52,8 @@ class Seen:
         Along the strip, NaN where left out. [K]
     usable : (n_stations,) array of bool
         Stations that carry a number.
+    component_at : (n_stations,) array of bool
+        Stations under a drawn component: no pipe lagging, not counted in the length.
     diameter : (count,) array
         Over the cladding; a rough guess for the convection law alone where `diameter_known` is
         False. [m]
@@ -67,6 +69,7 @@ class Seen:
     face: FaceBands
     drawn: FaceDraws
     usable: BoolArray
+    component_at: BoolArray
     diameter: FloatArray
     gain: bool
     frame: FrameDraws
@@ -113,8 +116,11 @@ class Seen:
         return np.asarray(np.where(self.usable, values, 0.0) @ (weights / weights.sum()))
 
     def length_draws(self) -> FloatArray:
-        """Return draws of the length that carries a number, (count,). [m]"""
-        total = float(np.sum(self.strip.length[self.usable]))
+        """Return draws of the drawn length without components, (count,). [m]
+
+        Gaps behind other things count: the pipe goes on there, at the mean of the rest.
+        """
+        total = float(np.sum(self.strip.length[~self.component_at]))
         scale = 1 + self.strip.scale_uncertainty * self.book.normal(self.owner, "scale")
         return np.asarray(total * scale * self.diameter / np.median(self.diameter))
 

@@ -47,7 +47,7 @@ def stretches_of(
     tuple of Stretch
         The probability is that of the contrast times that of an excess above 10 %.
     """
-    scale = seen.length_draws() / float(np.sum(seen.strip.length[seen.usable]))
+    scale = seen.length_draws() / float(np.sum(seen.strip.length[~seen.component_at]))
     weighed = [_weigh(seen, run, loss, base_loss, scale) for run in runs]
     kept = [one for one in weighed if one.probability > SMALLEST_PROBABILITY]
     everything = sum(float(np.median(np.abs(one.excess))) for one in kept)
