@@ -37,6 +37,12 @@ def test_plain_latin_text_for_old_terminals(invented):
         line.encode("cp1252")
 
 
+@pytest.mark.parametrize("width", range(64, 130))
+def test_no_line_begins_with_a_percent_sign(invented, width):
+    lines = console_summary(invented.assessment(), width)
+    assert not [line for line in lines if line.lstrip().startswith("%")]
+
+
 def test_nothing_found_is_said(invented):
     survey = replace(invented.assessment(), frames=(), total_loss=None, total_gain=None,
                      total_excess=None, left_out=())  # fmt: skip

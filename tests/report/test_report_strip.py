@@ -6,6 +6,7 @@ import numpy as np
 import pytest
 
 from cladwatt.quantities import Remark
+from cladwatt.report.strip_face import common_limits
 from cladwatt.report.strip_picture import strip_svg, temperature_limits
 from cladwatt.report.strip_series import left_out_runs, resample_columns, series_of
 from cladwatt.report.strip_sheet import LEFT, RIGHT
@@ -175,3 +176,12 @@ def test_more_stretches_than_labels_find_place_keep_their_dimension_lines(invent
     edges = [e for e in root.iter(f"{SVG}line") if e.get("stroke-dasharray") == "10 3 2 3"]
     assert len(edges) == 2 * len(many)
     assert all(f"s{i}: " in root.find(f"{SVG}desc").text for i in range(1, 60))
+
+
+def test_one_bare_stretch_does_not_take_the_colours_from_the_rest_of_its_line(invented):
+    plain, near = invented.region("a"), invented.region("b", stations=invented.stations(seed=8))
+    bare = invented.region("c")
+    bare = replace(bare, strip_temperature=bare.strip_temperature + 200.0)
+    assert common_limits(plain, [plain, near]) == temperature_limits(plain, near)
+    assert common_limits(plain, [plain, near, bare]) == temperature_limits(plain)
+    assert common_limits(bare, [plain, near, bare]) == temperature_limits(plain, near, bare)

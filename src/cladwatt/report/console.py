@@ -137,4 +137,7 @@ def _reason(item: LeftOut, language: str) -> str:
 
 
 def _item(name: str, reason: str, width: int) -> list[str]:
-    return textwrap.wrap(f"{name}: {reason}", width, initial_indent="  ", subsequent_indent="    ")
+    # A number and its percent sign stay on one line.
+    words = f"{name}: {reason}".replace(" %", "\u00a0%")
+    lines = textwrap.wrap(words, width, initial_indent="  ", subsequent_indent="    ")
+    return [line.replace("\u00a0", " ") for line in lines]

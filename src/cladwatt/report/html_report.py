@@ -5,7 +5,8 @@ from typing import TYPE_CHECKING, Any
 
 from cladwatt.report.findings import all_left_out, ranked_findings, unique_remarks
 from cladwatt.report.numbers import format_interval
-from cladwatt.report.strip_picture import strip_svg, temperature_limits
+from cladwatt.report.strip_face import common_limits
+from cladwatt.report.strip_picture import strip_svg
 from cladwatt.report.svg import clip_text, plain
 from cladwatt.report.wording import phrases, sentence, text
 from cladwatt.results.assessment import Assessment, RegionResult
@@ -44,7 +45,7 @@ def _environment() -> "Environment":
 def strip_pictures(
     assessment: Assessment, language: str = "en", *, heading: bool = True
 ) -> dict[str, str]:
-    """Draw the strip of every region; regions of one line share their temperature scale.
+    """Draw the strip of every region; regions of one line share their colours where they can.
 
     Parameters
     ----------
@@ -63,12 +64,11 @@ def strip_pictures(
     by_line: dict[str, list[RegionResult]] = {}
     for region in assessment.regions:
         by_line.setdefault(region.tag, []).append(region)
-    limits = {tag: temperature_limits(*regions) for tag, regions in by_line.items()}
     return {
         region.region_id: strip_svg(
             region,
             air_temperature=region.air_temperature,
-            limits=limits[region.tag],
+            limits=common_limits(region, by_line[region.tag]),
             language=language,
             heading=heading,
         )

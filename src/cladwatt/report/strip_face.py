@@ -1,6 +1,7 @@
 """The upper panel of a strip picture: the straightened temperature and its scale."""
 
 import math
+from collections.abc import Sequence
 
 import numpy as np
 from numpy.typing import NDArray
@@ -22,7 +23,7 @@ from cladwatt.report.svg import Axis, nice_ticks, png_data_uri, tick_decimals
 from cladwatt.results.assessment import RegionResult
 from cladwatt.types import FloatArray
 
-__all__ = ["draw_face", "temperature_limits"]
+__all__ = ["common_limits", "draw_face", "temperature_limits"]
 
 
 def temperature_limits(*regions: RegionResult) -> tuple[float, float] | None:
@@ -45,6 +46,32 @@ def temperature_limits(*regions: RegionResult) -> tuple[float, float] | None:
         return None
     low, high = np.percentile(values, [0.5, 99.5]) - 273.15
     return math.floor(low) + 273.15, max(math.ceil(high), math.floor(low) + 2) + 273.15
+
+
+def common_limits(
+    region: RegionResult, of_line: Sequence[RegionResult]
+) -> tuple[float, float] | None:
+    """Return the range a region shares with its line, or its own where the shared one is too wide.
+
+    Parameters
+    ----------
+    region : RegionResult
+        The region to be drawn.
+    of_line : sequence of RegionResult
+        All regions of its line, this one among them.
+
+    Returns
+    -------
+    (float, float) or None
+        The shared range, unless one bare stretch elsewhere would leave this region less than
+        half of the colours. [K]
+    """
+    own, shared = temperature_limits(region), temperature_limits(*of_line)
+    if own is None or shared is None:
+        return own
+    centre = own[0] if region.air_temperature is None else region.air_temperature
+    reach = max(abs(limit - centre) for limit in own)
+    return shared if max(abs(limit - centre) for limit in shared) <= 2 * reach else own
 
 
 def draw_face(sheet: Sheet) -> None:
