@@ -4,6 +4,7 @@ from html.parser import HTMLParser
 from itertools import pairwise
 from xml.etree import ElementTree
 
+import numpy as np
 import pytest
 
 from cladwatt.quantities import Remark
@@ -72,6 +73,14 @@ def test_findings_are_ranked_by_expected_excess(invented):
     assert found[0].excess.median == pytest.approx(1.4 * 32 * 8)
     assert found[2].excess == Interval(*(pytest.approx(v * 8) for v in (8, 4.25, 12.75)))
     assert found[3].loss is None
+
+
+def test_the_excess_over_the_length_comes_from_the_draws_where_they_are_kept(invented):
+    draws = np.linspace(100.0, 300.0, 1001)
+    region = invented.region(draws={"total_excess": draws})
+    survey = invented.assessment(extra=(region,))
+    (excess,) = (f.excess for f in ranked_findings(survey) if f.region is region)
+    assert (excess.low, excess.median, excess.high) == pytest.approx((105.0, 200.0, 295.0))
 
 
 def test_where_is_the_stretches_or_the_whole_region(invented):

@@ -7,7 +7,7 @@ import numpy as np
 
 from cladwatt.quantities import Remark
 from cladwatt.report.numbers import as_gain
-from cladwatt.results.assessment import Assessment, Interval, LeftOut, RegionResult
+from cladwatt.results.assessment import Assessment, Interval, LeftOut, RegionResult, interval_of
 
 __all__ = ["Finding", "all_left_out", "is_finding", "ranked_findings", "signed", "where_damaged"]
 
@@ -62,12 +62,9 @@ def whole_excess(region: RegionResult) -> Interval | None:
     """Return found minus sound over the drawn length, in W; from the draws if kept."""
     if region.excess is None:
         return None
-    per_metre, length = region.draws.get("excess"), region.draws.get("length")
-    if per_metre is not None and length is not None and per_metre.shape == length.shape:
-        whole = (per_metre * length)[np.isfinite(per_metre * length)]
-        if whole.size:
-            low, median, high = np.percentile(whole, [2.5, 50.0, 97.5])
-            return Interval(float(median), float(low), float(high))
+    drawn = region.draws.get("total_excess")
+    if drawn is not None and np.isfinite(drawn).any():
+        return interval_of(drawn)
     metres, excess = region.length.median, region.excess
     return Interval(excess.median * metres, excess.low * metres, excess.high * metres)
 
