@@ -106,14 +106,19 @@ def _ignore(_value: object) -> None:
 
 def _assess(survey: "Survey", options: argparse.Namespace, messages: Messages) -> "Assessment":
     from cladwatt.assess import assess
+    from cladwatt.faces.cli.workers import worker_pool
     from cladwatt.results.assessment import Settings
 
-    with ProgressBar(messages.width, silent=messages.quiet) as progress:
+    workers = min(options.workers, max(len(survey.frames), 1))
+    with (
+        worker_pool(workers, show_warnings=options.debug) as pool,
+        ProgressBar(messages.width, silent=messages.quiet) as progress,
+    ):
         return assess(
             survey,
             settings=Settings(seed=options.seed, draws=options.draws),
-            workers=options.workers,
             progress=progress,
+            executor=pool,
         )
 
 

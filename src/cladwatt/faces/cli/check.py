@@ -14,7 +14,7 @@ list, regions, the survey's own tables, and the frames themselves, each read and
 what is declared. Writes nothing.
 """
 _END = """\
-prints, one to a line, ready for an editor to jump to:
+prints, one to a line, files named from the survey folder:
   FILE:LINE: KEY: what was found; what is accepted
 Faults first. Questions after them: they stop nothing, but somebody should answer them.
 

@@ -10,7 +10,7 @@ from typing import NoReturn
 from cladwatt.errors import CladwattError
 from cladwatt.faces.cli import assess, check, sample, schema, start, tables
 from cladwatt.faces.cli.common import global_options
-from cladwatt.faces.cli.messages import ExitCode, Messages
+from cladwatt.faces.cli.messages import ExitCode, Messages, end_output
 
 __all__ = ["build_parser", "main", "run"]
 
@@ -84,8 +84,6 @@ def main(arguments: Sequence[str] | None = None) -> int:
         options = build_parser().parse_args(arguments)
     except SystemExit as end:
         return end.code if isinstance(end.code, int) else ExitCode.WRONG_USAGE
-    except BrokenPipeError:
-        return ExitCode.DONE
     messages = Messages(quiet=options.quiet)
     try:
         code: ExitCode = options.run(options, messages)
@@ -128,4 +126,6 @@ def run() -> NoReturn:
     if "--debug" not in sys.argv:
         # numerical libraries warn in words meant for programmers
         warnings.simplefilter("ignore")
-    sys.exit(main())
+    code = main()
+    end_output()
+    sys.exit(code)

@@ -9,7 +9,7 @@ from enum import IntEnum
 
 from cladwatt.errors import CladwattError, FaultyInputError
 
-__all__ = ["ExitCode", "Messages", "counted"]
+__all__ = ["ExitCode", "Messages", "counted", "end_output"]
 
 _PROGRAM = "cladwatt"
 
@@ -122,6 +122,14 @@ def _harmless(text: str) -> str:
         letter if letter in "\n\t" or unicodedata.category(letter) != "Cc" else "\ufffd"
         for letter in text
     )
+
+
+def end_output() -> None:
+    """Write what is still held back; a reader that went away is no error."""
+    try:
+        sys.stdout.flush()
+    except BrokenPipeError:
+        _close_stdout_quietly()
 
 
 def _close_stdout_quietly() -> None:
