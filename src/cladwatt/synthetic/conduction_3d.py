@@ -73,6 +73,12 @@ class ColumnModel:
     air_temperature: float
 
     @property
+    def station(self) -> FloatArray:
+        """Middle of each column along the pipe, (n_x,). [m]"""
+        middle: FloatArray = (np.arange(self.exposed.shape[0]) + 0.5) * self.cell_length
+        return middle
+
+    @property
     def surface_radius(self) -> FloatArray:
         """Radius of what faces the room, (n_x, n_phi). [m]"""
         radius: FloatArray = np.where(
@@ -139,9 +145,7 @@ class _Conductances:
 def _series(first: FloatArray, second: FloatArray) -> FloatArray:
     """Return two conductances in series; zero where either is zero."""
     total = first + second
-    result: FloatArray = np.divide(
-        first * second, total, out=np.zeros_like(total), where=total > 0
-    )
+    result: FloatArray = np.divide(first * second, total, out=np.zeros_like(total), where=total > 0)
     return result
 
 

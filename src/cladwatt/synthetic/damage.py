@@ -132,7 +132,7 @@ def lay_in(damage: Damage, model: ColumnModel) -> ColumnModel:
         The damaged one.
     """
     n_x, n_phi, n_r = model.factor.shape
-    station = (np.arange(n_x) + 0.5) * model.cell_length
+    station = model.station
     angle = (np.arange(n_phi) + 0.5) * 2 * np.pi / n_phi
     apart = np.abs(np.angle(np.exp(1j * (angle - damage.angle))))
     if damage.kind == "sound":

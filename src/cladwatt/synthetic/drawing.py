@@ -91,9 +91,7 @@ def _component(pipe: PipeTruth, frame: PlantFrame, view: View) -> Region | None:
     )  # fmt: skip
 
 
-def _crossing(
-    pipe: PipeTruth, other: PipeTruth, frame: PlantFrame, view: View
-) -> Region:
+def _crossing(pipe: PipeTruth, other: PipeTruth, frame: PlantFrame, view: View) -> Region:
     """Return what the pipe in front hides of the one behind."""
     height = float(pipe.skin.radius.max())
     behind = pipe.axis.edges(view, pipe.axis.length * 0.65, height)

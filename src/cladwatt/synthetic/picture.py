@@ -18,7 +18,7 @@ from cladwatt.synthetic.scene import Neighbour, Scene
 from cladwatt.synthetic.truth import FrameTruth
 from cladwatt.types import FloatArray
 
-__all__ = ["true_band", "take_picture"]
+__all__ = ["take_picture", "true_band"]
 
 _FOIL_EMISSIVITY = 0.05
 

@@ -157,9 +157,7 @@ def _model(
     )
 
 
-def _plain_loss(
-    line: LineTruth, plant: PlantLine, frame: FrameTruth, factor: float
-) -> float:
+def _plain_loss(line: LineTruth, plant: PlantLine, frame: FrameTruth, factor: float) -> float:
     """Return the loss of the undamaged pipe with a conductivity factor. [W/m]"""
     model = _model(line, plant, frame, (2, _AROUND), 1.0, np.full(2, factor))
     solution = solve_columns(model, _flux(model, line, frame, plant.inclination_deg))
@@ -178,7 +176,9 @@ def _with_component(
     if pipe.component == "flange":
         return lay_in(Damage("bare", *place), model), place
     shoe = Damage("wet", *place, severity=12.0, angle=np.pi, half_angle=0.6)
-    growth = lay_in(shoe, replace(model, inside_temperature=300.0, factor=np.ones_like(model.factor)))
+    growth = lay_in(
+        shoe, replace(model, inside_temperature=300.0, factor=np.ones_like(model.factor))
+    )
     return replace(model, factor=model.factor * growth.factor), place
 
 
@@ -251,7 +251,7 @@ def build_pipe(
     surface = (share * solution.surface_temperature).sum(axis=1)
     return PipeTruth(
         plant=pipe, axis=axis, drawn=drawn, damage=damage, component=component, tape=tape,
-        station=(np.arange(n_x) + 0.5) * length, cell_length=length, heat_loss=heat_loss,
+        station=model.station, cell_length=length, heat_loss=heat_loss,
         surface_temperature=surface,
         resistance=(line.fluid_temperature - surface) / heat_loss,
         sound_loss=_plain_loss(line, plant, frame, line.installation_factor),
@@ -282,8 +282,7 @@ def _skin(
     # compressed lagging keeps its outline: dents are too shallow to be seen
     radius[~model.exposed] = line.pipe_diameter / 2 + line.thickness
     if component is not None and pipe.component == "flange":
-        station = (np.arange(n_x) + 0.5) * model.cell_length
-        inside = (station > component[0]) & (station < component[1])
+        inside = (model.station > component[0]) & (model.station < component[1])
         radius[inside] = 0.85 * line.pipe_diameter
     return Skin(
         axis=axis, radius=radius, temperature=solution.surface_temperature,

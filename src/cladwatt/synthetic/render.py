@@ -7,8 +7,9 @@ import numpy as np
 
 from cladwatt.physics.band import Band
 from cladwatt.physics.emissivity import directional_emissivity
-from cladwatt.synthetic.geometry import Hits, PipeAxis, View, trace_pipe
+from cladwatt.synthetic.geometry import PipeAxis, View
 from cladwatt.synthetic.scene import Scene
+from cladwatt.synthetic.tracing import Hits, trace_pipe
 from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["AirPath", "Patch", "Skin", "render"]
@@ -125,9 +126,7 @@ def surface_radiance(skin: Skin, hits: Hits, scene: Scene, band: Band) -> FloatA
     mirror = np.where(matt, 0.0, skin.mirror)
     reflected = mirror * scene.mirrored(back, band)
     reflected += (1 - mirror) * scene.diffuse(hits.normal, band)
-    radiance: FloatArray = (
-        emissivity * band.radiance(temperature) + (1 - emissivity) * reflected
-    )
+    radiance: FloatArray = emissivity * band.radiance(temperature) + (1 - emissivity) * reflected
     return radiance
 
 

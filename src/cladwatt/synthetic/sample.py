@@ -1,6 +1,5 @@
 """The sample: a whole survey folder of the invented plant, with its truth beside it."""
 
-import os
 import shutil
 import tempfile
 from collections.abc import Iterator
@@ -78,7 +77,9 @@ def assign_damage(plant: Plant, random: np.random.Generator) -> dict[str, Damage
 def _weather(frame: PlantFrame, random: np.random.Generator) -> PlantFrame:
     """Return a frame whose declared conditions are those of another day."""
     conditions = dict(frame.conditions)
-    shift = round(float(np.clip(random.standard_normal(), -2, 2)) * _WEATHER["air_temperature_C"], 1)
+    shift = round(
+        float(np.clip(random.standard_normal(), -2, 2)) * _WEATHER["air_temperature_C"], 1
+    )
     for key in ("air_temperature_C", "surroundings_temperature_C", "reflected_temperature_C"):
         conditions[key] = replace(conditions[key], value=round(conditions[key].value + shift, 1))
     if not frame.indoors:
@@ -88,9 +89,7 @@ def _weather(frame: PlantFrame, random: np.random.Generator) -> PlantFrame:
     return replace(frame, conditions=conditions)
 
 
-def make_frames(
-    plant: Plant, seed: int
-) -> tuple[dict[str, LineTruth], Iterator[SampleFrame]]:
+def make_frames(plant: Plant, seed: int) -> tuple[dict[str, LineTruth], Iterator[SampleFrame]]:
     """Make the survey of one seed, frame by frame.
 
     Parameters
@@ -210,4 +209,4 @@ def _put_in_place(work: Path, target: Path) -> None:
         return
     # survey.toml last: a survey without it is none
     for part in sorted(work.iterdir(), key=lambda path: (path.is_file(), path.name)):
-        os.replace(part, target / part.name)
+        part.replace(target / part.name)

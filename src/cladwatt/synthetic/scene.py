@@ -39,7 +39,9 @@ class Neighbour:
     def factor(self, normal: FloatArray) -> FloatArray:
         """Return its view factor from surfaces with normals (..., 3)."""
         towards = np.array(self.direction) / np.linalg.norm(self.direction)
-        factor: FloatArray = np.clip(np.einsum("...i,i", normal, towards), 0, 1) * np.sin(self.half_width) ** 2
+        factor: FloatArray = (
+            np.clip(np.einsum("...i,i", normal, towards), 0, 1) * np.sin(self.half_width) ** 2
+        )
         return factor
 
 

@@ -11,7 +11,13 @@ from cladwatt.synthetic.pipes import PipeTruth
 from cladwatt.synthetic.truth import FrameTruth, LineTruth
 
 __all__ = [
-    "AGED_THRESHOLD", "STATION_HEADER", "TRUTH_README", "region_truth", "station_rows", "truth_json"]
+    "AGED_THRESHOLD",
+    "STATION_HEADER",
+    "TRUTH_README",
+    "region_truth",
+    "station_rows",
+    "truth_json",
+]
 
 AGED_THRESHOLD = 1.10
 """Ageing throughout counts as damage from this ratio of found to sound loss."""

@@ -1,0 +1,196 @@
+"""The sample: same seed, same bytes; truth that agrees with itself; read back without a fault."""
+
+import csv
+import json
+from dataclasses import replace
+
+import numpy as np
+import pytest
+
+from cladwatt.errors import InputError
+from cladwatt.survey.frame import read_frame
+from cladwatt.survey.survey_file import read_survey
+from cladwatt.synthetic import sample
+from cladwatt.synthetic.damage import DAMAGE_KINDS, draw_damage
+from cladwatt.synthetic.frame_files import FRAME_FILES, frame_bytes
+from cladwatt.synthetic.plant import load_plant
+
+SMALL = ("f06_calender_riser", "f10_from_the_gallery")
+
+
+def contents(folder):
+    return {
+        path.relative_to(folder).as_posix(): path.read_bytes()
+        for path in sorted(folder.rglob("*"))
+        if path.is_file()
+    }
+
+
+@pytest.fixture
+def small_plant(monkeypatch):
+    """Two small frames of the plant, so that a sample takes a second."""
+    plant = load_plant()
+    frames = tuple(
+        replace(frame, pipes=tuple(replace(pipe, only=()) for pipe in frame.pipes))
+        for frame in plant.frames
+        if frame.id in SMALL
+    )
+    small = replace(plant, frames=frames)
+    monkeypatch.setattr(sample, "load_plant", lambda: small)
+    monkeypatch.setattr(sample, "_KINDS", ("bare", "aged"))
+    return small
+
+
+@pytest.fixture(scope="module")
+def whole(tmp_path_factory):
+    folder = tmp_path_factory.mktemp("whole") / "sample"
+    sample.write_sample(folder, 7)
+    return folder
+
+
+@pytest.mark.usefixtures("small_plant")
+def test_the_same_seed_gives_the_same_bytes(tmp_path):
+    sample.write_sample(tmp_path / "one", 3)
+    sample.write_sample(tmp_path / "two", 3)
+    sample.write_sample(tmp_path / "three", 4)
+    one, two, three = (contents(tmp_path / name) for name in ("one", "two", "three"))
+    assert one == two
+    assert one.keys() == three.keys()
+    assert all(one[name] != three[name] for name in one if name != "truth/README.txt")
+
+
+@pytest.mark.usefixtures("small_plant")
+def test_an_empty_folder_is_filled(tmp_path):
+    folder = tmp_path / "empty"
+    folder.mkdir()
+    sample.write_sample(folder, 3)
+    assert (folder / "survey.toml").is_file()
+    assert [path.name for path in tmp_path.iterdir()] == ["empty"]
+
+
+def test_a_folder_in_use_is_refused(tmp_path):
+    (tmp_path / "note.txt").write_text("mine")
+    with pytest.raises(InputError, match="holds files already; expected a new or an empty folder"):
+        sample.write_sample(tmp_path)
+    assert [path.name for path in tmp_path.iterdir()] == ["note.txt"]
+
+
+def test_a_file_is_refused(tmp_path):
+    (tmp_path / "note.txt").write_text("mine")
+    with pytest.raises(InputError, match="is a file; expected a new or an empty folder"):
+        sample.write_sample(tmp_path / "note.txt")
+
+
+def test_a_negative_seed_is_refused(tmp_path):
+    with pytest.raises(InputError, match="seed is -1; expected 0 or more"):
+        sample.write_sample(tmp_path / "new", -1)
+
+
+@pytest.mark.usefixtures("small_plant")
+def test_nothing_is_left_of_a_sample_cut_short(tmp_path, monkeypatch):
+    def fail(*_):
+        raise OSError(28, "No space left on device")
+
+    monkeypatch.setattr(sample, "truth_json", fail)
+    with pytest.raises(InputError, match="cannot be written \\(No space left on device\\)"):
+        sample.write_sample(tmp_path / "new", 3)
+    assert list(tmp_path.iterdir()) == []
+
+
+def test_every_kind_is_dealt_and_near_half_is_sound():
+    plant = load_plant()
+    only = {pipe.id: pipe.only for frame in plant.frames for pipe in frame.pipes}
+    for seed in range(20):
+        kinds = sample.assign_damage(plant, np.random.default_rng(seed))
+        assert set(kinds.values()) == set(DAMAGE_KINDS)
+        share = list(kinds.values()).count("sound") / len(kinds)
+        assert 0.4 <= share <= 0.6
+        assert all(not only[region] or kind in only[region] for region, kind in kinds.items())
+
+
+@pytest.mark.parametrize("kind", [kind for kind in DAMAGE_KINDS if kind not in ("sound", "aged")])
+def test_damage_lies_in_its_room(kind):
+    random = np.random.default_rng(5)
+    for _ in range(50):
+        damage = draw_damage(kind, (0.4, 1.3), random, facing=1.0)
+        assert 0.4 < damage.start < damage.end < 1.3
+
+
+@pytest.mark.parametrize("kind", list(FRAME_FILES))
+def test_every_file_kind_is_read_back(kind, tmp_path):
+    from cladwatt.survey.model import Conditions, FrameEntry, FrameFormat, Recording
+
+    random = np.random.default_rng(6)
+    temperature = 300.0 + 20 * random.random((30, 40))
+    suffix, keys, _ = FRAME_FILES[kind]
+    path = tmp_path / f"frame{suffix}"
+    path.write_bytes(frame_bytes(kind, temperature))
+    entries = dict(line.split(" = ") for line in keys.splitlines())
+    counts = "scale" in entries
+    layout = FrameFormat(
+        unit=entries["unit"].strip('"'),
+        scale=float(entries["scale"]) if counts else None,
+        offset=float(entries["offset"]) if counts else None,
+        rows_from=entries.get("rows_from", '"top"').strip('"'),
+    )
+    frame = read_frame(FrameEntry("f", path, layout, Recording(), Conditions()), root=tmp_path)
+    # half of the step of 0.01, or of 0.01 °F
+    assert frame.temperature == pytest.approx(temperature, abs=0.0051)
+
+
+def test_the_whole_sample_is_read_without_a_fault(whole):
+    from cladwatt.survey.checking import check_survey
+
+    survey = read_survey(whole)
+    assert survey.faults == ()
+    assert check_survey(whole) == ()
+    assert sum(path.stat().st_size for path in whole.rglob("*") if path.is_file()) < 6e6
+    roles = {region.role for region in survey.regions}
+    assert {"pipe", "foil", "tape", "component", "leave_out"} <= roles
+    assert 12 <= sum(region.role == "pipe" for region in survey.regions) <= 18
+
+
+def test_the_truth_agrees_with_itself(whole):
+    truth = json.loads((whole / "truth" / "truth.json").read_text(encoding="utf-8"))
+    assert truth["invented"] is True
+    with (whole / "truth" / "truth_stations.csv").open(encoding="utf-8", newline="") as file:
+        rows = list(csv.DictReader(file))
+    drawn = {region.id for region in read_survey(whole).regions if region.role == "pipe"}
+    assert {region["region_id"] for region in truth["regions"]} == drawn
+    for region in truth["regions"]:
+        own = [row for row in rows if row["region_id"] == region["region_id"]]
+        counted = [float(r["heat_loss_W_per_m"]) for r in own if r["component"] == "0"]
+        assert np.mean(counted) == pytest.approx(region["heat_loss_W_per_m"], abs=1e-3)
+        assert float(own[-1]["station_m"]) == pytest.approx(region["length_m"], abs=0.04)
+        local = region["kind"] not in ("sound", "aged")
+        assert bool(region["stretches"]) == local
+        ratio = region["heat_loss_W_per_m"] / region["sound_loss_W_per_m"]
+        assert region["damaged"] == (local or (region["kind"] == "aged" and ratio > 1.1))
+        if region["kind"] == "sound" and region["region_id"] not in ("R07", "R08"):
+            assert ratio == pytest.approx(1.0, abs=0.06)
+        for stretch in region["stretches"]:
+            assert 0 < stretch["start_m"] < stretch["end_m"] < region["length_m"]
+            inside = [
+                float(r["heat_loss_W_per_m"]) for r in own
+                if stretch["start_m"] < float(r["station_m"]) < stretch["end_m"]
+            ]  # fmt: skip
+            assert abs(np.mean(inside)) > 1.05 * abs(region["sound_loss_W_per_m"])
+
+
+def test_declared_values_miss_the_truth_by_their_uncertainty():
+    # over many draws the truth scatters about the declared value as declared
+    from cladwatt.synthetic.truth import draw_frame, draw_line, draw_shared
+
+    plant, random = load_plant(), np.random.default_rng(8)
+    line, frame = plant.lines["LS-114"], plant.frames[0]
+    lines = [draw_line(line, random) for _ in range(600)]
+    frames = [draw_frame(frame, draw_shared(random), random) for _ in range(600)]
+    fluid = line.quantities["fluid_temperature_C"]
+    off = [(truth.fluid_temperature - 273.15 - fluid.value) / fluid.u for truth in lines]
+    assert np.mean(off) == pytest.approx(0.0, abs=0.15)
+    assert np.std(off) == pytest.approx(1.0, abs=0.1)
+    assert np.std([truth.installation_factor for truth in lines]) == pytest.approx(0.08, rel=0.1)
+    # a limit of error is rectangular: standard deviation 1 / sqrt(3) of it
+    calibration = [truth.calibration for truth in frames]
+    assert np.std(calibration) == pytest.approx(3**-0.5, rel=0.08)
+    assert np.max(np.abs(calibration)) <= 1.0
