@@ -22,6 +22,8 @@ EDGE_MARGIN_PX = 1.5
 """Kept clear of the drawn edge on either side: optical blur and an outline error of a pixel."""
 OUTLINE_ERROR_PX = 0.7
 """Standard uncertainty of a drawn edge; common practice, no source. [px]"""
+UNKNOWN_VIEW_DEG = 35.0
+"""Horizontal field of view where none is declared; assumption."""
 
 
 @dataclass(frozen=True)
@@ -41,6 +43,8 @@ class Strip:
         Where the frame is sampled. [px]
     scale_uncertainty : float
         Relative standard uncertainty of every length, common to all stations.
+    nearer : float
+        Factor by which lengths shrink since the near surface is what is drawn.
     foreshortened : bool
         Whether the axis runs towards or away from the camera noticeably.
     """
@@ -54,6 +58,7 @@ class Strip:
     sample_x: FloatArray
     sample_y: FloatArray
     scale_uncertainty: float
+    nearer: float
     foreshortened: bool
 
     @property
@@ -88,7 +93,7 @@ def straighten(
     field_of_view_deg : float, optional
         Horizontal field of view; with it the foreshortening follows from the growth of the width.
     known_length : float, optional
-        Factor on all lengths from a known length along this pipe, see `known_length_factor`.
+        Factor on all lengths by width alone, see `known_length_factor`.
 
     Returns
     -------
@@ -103,8 +108,9 @@ def straighten(
     -----
     A pinhole camera of focal length f (in pixels) sees a pipe of diameter D at distance Z with
     the width w = f D / Z. One pixel along the axis then is ``sqrt((D / w)^2 + (f D d(1/w)/ds)^2)``
-    metres. Without a field of view the second term is not applied; a half of what 40 degrees
-    would give is carried as uncertainty.
+    metres. What is drawn along the middle is the near surface, closer by D / 2: every length
+    shrinks by ``1 - w / (2 f)``. Without a field of view the growth of the width is not used,
+    and f is taken as that of 35 degrees with half of the shrinkage as uncertainty (assumption).
     """
     if region.outline is not None:
         points, vertex_widths = centreline_of_outline(region)
@@ -132,15 +138,23 @@ def straighten(
     normal_x, normal_y = _normals(points, distance, along, float(np.median(width)))
     across = _across(float(np.median(width)))
     half = width / 2
+    view = UNKNOWN_VIEW_DEG if field_of_view_deg is None else field_of_view_deg
+    focal = columns / 2 / math.tan(math.radians(view) / 2)
+    nearer = float(np.median(width)) / (2 * focal)
+    scale_u = _scale_uncertainty(width, len(points), known_length)
+    if field_of_view_deg is None and known_length is None:
+        scale_u = math.hypot(scale_u, nearer / 2)
+    growing = focal if field_of_view_deg is not None else 0.0
     return Strip(
-        *_stations(region, along, width, lagged_diameter, columns, field_of_view_deg, known_length),
+        *_stations(region, along, width, lagged_diameter, growing, 1 - nearer, known_length),
         x=x,
         y=y,
         width=width,
         across=across,
         sample_x=x + across[:, None] * half * normal_x,
         sample_y=y + across[:, None] * half * normal_y,
-        scale_uncertainty=_scale_uncertainty(width, len(points), known_length),
+        scale_uncertainty=scale_u,
+        nearer=1 - nearer,
         foreshortened=bool(_width_growth(along, width) * columns > 0.02),
     )
 
@@ -178,8 +192,8 @@ def _stations(
     along: FloatArray,
     width: FloatArray,
     diameter: float | None,
-    columns: int,
-    field_of_view_deg: float | None,
+    focal: float,
+    nearer: float,
     known_length: float | None,
 ) -> tuple[FloatArray, FloatArray]:
     """Return station and length per station. [m]"""
@@ -188,12 +202,10 @@ def _stations(
         return nothing, nothing
     step = along[1] - along[0]
     length = diameter / width * step
-    if field_of_view_deg is not None and along.size >= 8:
-        focal = columns / 2 / math.tan(math.radians(field_of_view_deg) / 2)
+    if along.size >= 8:
         receding = focal * diameter * np.polyfit(along, 1 / width, 1)[0] * step
         length = np.hypot(length, receding)
-    if known_length is not None:
-        length = length * known_length
+    length = length * (nearer if known_length is None else known_length)
     position = np.cumsum(length) - length / 2
     return region.start + region.direction * position, length
 
@@ -236,7 +248,8 @@ def known_length_factor(strip: Strip, marked: Region) -> float | None:
             return None
         ends.append(nearest)
     first, last = sorted(ends)
-    measured = float(np.sum(strip.length[first:last]))
+    by_width = strip.length[first:last] / strip.nearer
+    measured = float(np.sum(by_width))
     return marked.value.value / measured if measured > 0 else None
 
 
