@@ -75,7 +75,7 @@ class ColumnModel:
     @property
     def station(self) -> FloatArray:
         """Middle of each column along the pipe, (n_x,). [m]"""
-        middle: FloatArray = (np.arange(self.exposed.shape[0]) + 0.5) * self.cell_length
+        middle: FloatArray = np.arange(0.5, self.exposed.shape[0]) * float(self.cell_length)
         return middle
 
     @property
