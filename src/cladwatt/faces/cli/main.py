@@ -46,7 +46,7 @@ class _Version(argparse.Action):
     def __call__(self, parser: argparse.ArgumentParser, *_: object) -> NoReturn:
         from importlib.metadata import version
 
-        sys.stdout.write(f"cladwatt {version('cladwatt')}\n")
+        Messages().output(f"cladwatt {version('cladwatt')}")
         parser.exit()
 
 
