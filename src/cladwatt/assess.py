@@ -12,7 +12,7 @@ import numpy as np
 
 from cladwatt.assumptions import assumptions_of
 from cladwatt.errors import Fault, InputError
-from cladwatt.inverse.conditions import FrameDraws, draw_frame, draw_line
+from cladwatt.inverse.conditions import FrameDraws, draw_frame, draw_line, mirrored
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.references import (
     ReferenceReading,
@@ -263,7 +263,13 @@ def _assess_region(
         left_out=widened(_covered(region, regions, masks, LEFT_OUT_ROLES), BLUR_MARGIN_PX),
         components=_covered(region, regions, masks, frozenset({"component"})),
         known_lengths=[r for r in regions if r.role == "known_length" and r.tag == region.tag],
-        frame=frame,
+        frame=mirrored(
+            frame,
+            book,
+            region.id,
+            is_metal=line_draws.is_metal,
+            indoors=entry.conditions.indoors is not False,
+        ),
         line_draws=line_draws,
         conditions=entry.conditions,
         camera=survey.camera,

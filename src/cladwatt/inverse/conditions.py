@@ -9,7 +9,7 @@ correlations say nothing of how their error divides.
 """
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -25,7 +25,7 @@ from cladwatt.survey.model import AccuracyStatement, Camera, Conditions, Line, S
 from cladwatt.survey.region import Region
 from cladwatt.types import FloatArray
 
-__all__ = ["FrameDraws", "LineDraws", "draw_frame", "draw_line", "layer_draws"]
+__all__ = ["FrameDraws", "LineDraws", "draw_frame", "draw_line", "layer_draws", "mirrored"]
 
 SHARED_SHARE = 2 / 3
 """Share of variance of calibration and convection law common to the survey (assumption)."""
@@ -292,6 +292,20 @@ def _convection_factor(book: DrawBook, owner: str, conditions: Conditions) -> Fl
     sigma = CONVECTION_SIGMA_STILL + share * (CONVECTION_SIGMA_WIND - CONVECTION_SIGMA_STILL)
     normal = book.mixed("convection", ("model", SHARED_SHARE), (owner, 1 - SHARED_SHARE))
     return np.asarray(np.exp(sigma * normal))
+
+
+def mirrored(
+    frame: FrameDraws, book: DrawBook, region_id: str, *, is_metal: bool, indoors: bool
+) -> FrameDraws:
+    """Return the frame's draws with what this one region mirrors.
+
+    The reflected apparent temperature is a mean over the half space. A region mirrors its own
+    part of the scene: metal a direction or two (1 K off indoors, 5 K outdoors), a dielectric
+    coat, which reflects diffusely, less (0.3 and 1.5 K). Assumptions, no source.
+    """
+    sigma = (1.0 if is_metal else 0.3) if indoors else (5.0 if is_metal else 1.5)
+    own = sigma * book.normal(f"region:{region_id}", "mirrored_scene")
+    return replace(frame, reflected_temperature=frame.reflected_temperature + own)
 
 
 def draw_line(book: DrawBook, line: Line, region: Region | None = None) -> LineDraws:

@@ -7,6 +7,7 @@ from typing import NamedTuple
 import numpy as np
 
 from cladwatt.errors import Fault, RegionError
+from cladwatt.inverse.bare import bare_draws, with_bare
 from cladwatt.inverse.cautions import cautions_of, missing_of, remarks_of, verdict_caps
 from cladwatt.inverse.conditions import FrameDraws, LineDraws
 from cladwatt.inverse.draws import DrawBook
@@ -212,6 +213,10 @@ def _concluded(seen: Seen) -> RegionResult:
     )
     base = seen.drawn.heat_flux[:, sound_at].mean(axis=1)
     flux = whole_flux(seen.drawn.heat_flux, base, hidden)
+    for run in runs:
+        bare = bare_draws(seen, run, sound_at)
+        if bare is not None:
+            flux = with_bare(flux, bare, seen.perimeter)
     bounds = flux_bounds(seen)
     mean_flux = seen.mean_along(flux)
     infeasible = bounds.beyond(mean_flux)
