@@ -194,3 +194,34 @@ def test_declared_values_miss_the_truth_by_their_uncertainty():
     calibration = [truth.calibration for truth in frames]
     assert np.std(calibration) == pytest.approx(3**-0.5, rel=0.08)
     assert np.max(np.abs(calibration)) <= 1.0
+
+
+def test_an_image_inverted_with_the_truth_gives_the_true_surface(monkeypatch):
+    # settings, calibration, air path, emissivity and reflection undone one by one, by hand
+    from cladwatt.physics.emissivity import directional_emissivity
+    from cladwatt.synthetic.picture import true_band
+
+    plant, band = load_plant(), true_band()
+    frames = tuple(frame for frame in plant.frames if frame.id == "f02_hall_north")
+    camera = {**plant.camera, "emissivity": 1.0, "noise_K": 0.0}
+    monkeypatch.setattr(sample, "_KINDS", ())
+    lines, made = sample.make_frames(replace(plant, frames=frames, camera=camera), 1)
+    frame = next(made)
+    truth, pipe, region = frame.truth, frame.pipes[0], frame.drawn.regions[0]
+    assert region.tag == "HS-201"
+    first, last = np.array(region.centreline[0]), np.array(region.centreline[-1])
+    along = (last - first) / np.linalg.norm(last - first)
+    side = np.array([-along[1], along[0]])
+    across = np.linspace(-0.75, 0.75, 31)
+    middle = first + (last - first) * np.linspace(0.1, 0.9, 60)[:, None]
+    points = middle[:, None, :] + side * (region.widths[0] / 2 * across)[:, None]
+    x, y = np.round(points).astype(int).transpose(2, 0, 1)
+    black = band.radiance(frame.recorded[y, x] - 2.0 * truth.calibration)
+    left = black - (1 - truth.transmission) * band.radiance(truth.air_temperature)
+    emissivity = directional_emissivity(
+        lines["HS-201"].band_emissivity, np.abs(np.arcsin(across)), False
+    )
+    mirrored = (1 - emissivity) * band.radiance(truth.reflected_temperature)
+    found = band.temperature((left / truth.transmission - mirrored) / emissivity)
+    # patchy emissivity of 3 % and a hidden half that is cooled otherwise
+    assert found.mean() == pytest.approx(pipe.surface_temperature.mean(), abs=0.6)

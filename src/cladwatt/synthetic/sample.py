@@ -208,5 +208,13 @@ def _put_in_place(work: Path, target: Path) -> None:
         work.rename(target)
         return
     # survey.toml last: a survey without it is none
-    for part in sorted(work.iterdir(), key=lambda path: (path.is_file(), path.name)):
-        part.replace(target / part.name)
+    parts = sorted(work.iterdir(), key=lambda path: (path.is_file(), path.name))
+    moved: list[Path] = []
+    try:
+        for part in parts:
+            part.rename(target / part.name)
+            moved.append(target / part.name)
+    except OSError:
+        for path in moved:
+            path.rename(work / path.name)
+        raise
