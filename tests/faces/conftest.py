@@ -128,3 +128,20 @@ def cladwatt(capsys: pytest.CaptureFixture[str]) -> Callable[..., Ended]:
         return Ended(code, streams.out, streams.err)
 
     return run
+
+
+@pytest.fixture
+def draw(survey: Path) -> Callable[..., None]:
+    """Return a function that draws regions, (id, tag[, properties]), on a frame anew."""
+
+    def on(frame_id: str, *regions: tuple[object, ...]) -> None:
+        features = []
+        for region_id, tag, *rest in regions:
+            one = feature(str(region_id), tag if tag is None else str(tag))
+            for name, value in (rest[0] if rest else {}).items():
+                place = one["geometry"] if name == "coordinates" else one["properties"]
+                place[name] = value
+            features.append(one)
+        write_features(survey / "regions" / f"{frame_id}.geojson", *features)
+
+    return on

@@ -114,7 +114,7 @@ def test_earlier_results_are_replaced(cladwatt, survey):
 
 
 def test_questions_are_pointed_to(cladwatt, survey, edit):
-    edit('date = 2026-03-18\n', "")
+    edit("date = 2026-03-18\n", "")
     ended = cladwatt("assess", survey, *DRAWS)
     assert ended.code == ExitCode.DONE
     assert "question" in ended.err
