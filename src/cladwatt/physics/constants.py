@@ -12,6 +12,23 @@ from __future__ import annotations
 from math import pi
 from typing import Final
 
+__all__ = [
+    "AVOGADRO",
+    "BOLTZMANN",
+    "FIRST_RADIATION",
+    "FIRST_RADIATION_RADIANCE",
+    "GRAVITY",
+    "LIGHT_SPEED",
+    "MOLAR_GAS",
+    "MOLAR_MASS_DRY_AIR",
+    "MOLAR_MASS_WATER",
+    "PLANCK",
+    "SECOND_RADIATION",
+    "STANDARD_PRESSURE",
+    "STEFAN_BOLTZMANN",
+    "ZERO_CELSIUS",
+]
+
 #: Planck constant h [J s], exact.
 PLANCK: Final = 6.62607015e-34
 
