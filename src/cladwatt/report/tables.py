@@ -87,12 +87,13 @@ def lines_table(assessment: Assessment) -> "pandas.DataFrame":
     Returns
     -------
     pandas.DataFrame
-        ``length_*_m``, ``total_loss_*_W`` and ``excess_*_W`` with ``median``, ``low`` and
-        ``high``, the 95 % interval; NaN is not known.
+        ``length_m``, ``total_loss_W`` and ``excess_W`` are medians; with ``_low`` and ``_high``
+        before the unit they are the ends of the 95 % interval. NaN is not known.
     """
     figures = (("length", "m"), ("total_loss", "W"), ("excess", "W"))
+    parts = (("median", ""), ("low", "_low"), ("high", "_high"))
     names = ["tag", "area", "gain", "regions"] + [
-        f"{figure}_{part}_{unit}" for figure, unit in figures for part in ("median", "low", "high")
+        f"{figure}{ending}_{unit}" for figure, unit in figures for _, ending in parts
     ]
     rows = []
     for line in assessment.lines:
@@ -101,9 +102,9 @@ def lines_table(assessment: Assessment) -> "pandas.DataFrame":
         }  # fmt: skip
         for figure, unit in figures:
             found = getattr(line, figure)
-            for part in ("median", "low", "high"):
+            for part, ending in parts:
                 value = float("nan") if found is None else getattr(found, part)
-                row[f"{figure}_{part}_{unit}"] = value
+                row[f"{figure}{ending}_{unit}"] = value
         rows.append(row)
     return _frame(rows, names)
 
