@@ -1,12 +1,11 @@
-"""Bare stretches: a model of their own.
+"""Where the pipe itself is seen: a model of its own.
 
-Where the lagging is gone the surface is the pipe's: its diameter, its emissivity, and a
-temperature close to the fluid's. Read as very hot cladding such a stretch comes out wrong, most
-of all on bright cladding. A stretch is bare as likely as
-
-- its middle shows about the fluid's temperature when read with the emissivity of a pipe, and
-- its edges show what a thinner pipe leaves free, the background, rather than lagging that goes
-  on (a missing sector also shows the pipe in the middle).
+Where lagging is gone the surface is the pipe's: its diameter, its emissivity, and a temperature
+close to the fluid's. Read as very hot cladding such a stretch comes out wrong, most of all on
+bright cladding. The pipe is seen where the middle of a stretch shows about the fluid's
+temperature when read with the emissivity of a pipe. Then either the stretch is bare all round,
+and background shows on both sides of the thinner pipe; or a sector is missing, and lagging goes
+on at one side at least.
 """
 
 import math
@@ -19,7 +18,7 @@ from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.stretches import Run
 from cladwatt.physics.lagged_pipe import surface_heat_flux
 from cladwatt.quantities import Quantity
-from cladwatt.types import BoolArray, FloatArray
+from cladwatt.types import BoolArray, FloatArray, IntArray
 
 __all__ = ["BareDraws", "bare_draws", "with_bare"]
 
@@ -34,32 +33,43 @@ ENDS_U = 0.1
 """Relative standard uncertainty for what cut ends lose or shelter; assumption."""
 PRIOR_BARE = 0.5
 """Of a stretch whose middle shows the pipe; a missing sector is the rest. Assumption."""
+SECTOR_SHARE = (0.15, 0.6)
+"""Share of the circumference that a missing sector opens, all equally likely; assumption."""
+LEAST_PROBABILITY = 0.02
 EDGE_SIGMA = 3.0
-"""Scatter of what an edge band shows about background or lagging; assumption. [K]"""
+EDGE_SIGMA_SHARE = 0.03
+"""Scatter of what shows beside a pipe about background or lagging: 3 K and 3 % of the drop from
+fluid to air, since the cut face of what lagging is left may be cool too; assumption."""
+LIKELIHOOD_FLOOR = 0.01
+LEAST_ROOM_PX = 2.0
+"""Between the two edges and halfway; with less the blur of the hot pipe decides. [px]"""
+BACKGROUND_AT = 1.35
+"""Where the background is looked for, in half widths."""
 
 
 @dataclass(frozen=True)
 class BareDraws:
-    """One run read as bare pipe.
+    """One run in which the pipe is seen.
 
     Attributes
     ----------
     run : Run
     probability : float
-    loss : (count,) array
-        Of the bare pipe. [W/m]
-    is_bare : (count,) array of bool
-        Draws in which the run is bare.
+        That it is bare all round.
+    sector_probability : float
+        That a sector is missing.
+    flux : (count,) array
+        Loss per square metre of cladding, NaN in draws in which neither is the case. [W/m2]
     """
 
     run: Run
     probability: float
-    loss: FloatArray
-    is_bare: BoolArray
+    sector_probability: float
+    flux: FloatArray
 
 
-def bare_draws(seen: Seen, run: Run, sound_at: BoolArray) -> BareDraws | None:
-    """Return a run read as bare pipe.
+def bare_draws(seen: Seen, run: Run, sound_at: BoolArray, base: FloatArray) -> BareDraws | None:
+    """Return a run read as bare pipe, or as an opening in the lagging.
 
     Parameters
     ----------
@@ -67,103 +77,121 @@ def bare_draws(seen: Seen, run: Run, sound_at: BoolArray) -> BareDraws | None:
         With known wind.
     run : Run
     sound_at : (n_stations,) array of bool
+    base : (count,) array
+        Flux at the sound level, over the whole circumference. [W/m2]
 
     Returns
     -------
     BareDraws or None
-        None where inside temperature or diameters are unknown, or the run cannot be bare.
+        None where inside temperature or diameters are unknown, or the pipe is not seen.
+
+    Notes
+    -----
+    With a sector missing, that share of the circumference loses what the bare pipe does, the
+    rest what sound lagging does: radial heat only, and no shelter in the opening.
     """
     line = seen.line_draws
     inside, pipe = line.inside_temperature, line.pipe_diameter
     if inside is None or pipe is None or line.lagged_diameter is None:
         return None
-    emissivity = seen.book.quantity(seen.owner, "bare_emissivity", BARE_EMISSIVITY)
+    book, owner = seen.book, f"{seen.owner}:{run.first}"
+    emissivity = book.quantity(seen.owner, "bare_emissivity", BARE_EMISSIVITY)
     bare_line = replace(
         line, band_emissivity=emissivity, total_emissivity=emissivity, is_metal=False
     )
     middle = seen.face.temperature[len(seen.face.view_angle) // 2, run.stations]
-    hottest = np.nanpercentile(middle, 50 if seen.gain else 60)
-    shown = surface_temperature_draws(np.array([hottest]), np.zeros(1), seen.frame, bare_line)[
-        :, 0, 0
-    ]
+    shown = surface_temperature_draws(
+        np.array([np.nanmedian(middle)]), np.zeros(1), seen.frame, bare_line
+    )[:, 0, 0]
     drop = inside - seen.frame.air_temperature
-    near = float(np.mean(np.abs(shown - inside) < NEAR_FLUID * np.abs(drop)))
-    edges = _edges_favour_bare(seen, run, sound_at, float(np.median(pipe / line.lagged_diameter)))
-    odds = PRIOR_BARE / (1 - PRIOR_BARE) * edges
-    probability = near * odds / (1 + odds)
-    if probability < 0.02:
+    pipe_seen = float(np.mean(np.abs(shown - inside) < NEAR_FLUID * np.abs(drop)))
+    if pipe_seen < LEAST_PROBABILITY:
         return None
-    wall = inside - WALL_DROP * drop * seen.book.uniform(seen.owner, "bare_wall")
-    exchange = bare_line.exchange(seen.frame, pipe)
-    ends = np.exp(ENDS_U * seen.book.normal(seen.owner, "bare_ends"))
+    thinner = float(np.median(pipe / line.lagged_diameter))
+    odds = PRIOR_BARE / (1 - PRIOR_BARE) * _edges_favour_bare(seen, run, sound_at, thinner)
+    probability = pipe_seen * odds / (1 + odds)
+    wall = inside - WALL_DROP * drop * book.uniform(seen.owner, "bare_wall")
+    ends = np.exp(ENDS_U * book.normal(seen.owner, "bare_ends"))
+    bare = surface_heat_flux(wall, bare_line.exchange(seen.frame, pipe)) * ends
+    all_round = bare * pipe / line.lagged_diameter
+    share = SECTOR_SHARE[0] + np.ptp(SECTOR_SHARE) * book.uniform(owner, "sector_share")
+    sector = share * all_round + (1 - share) * base
+    kind = book.uniform(owner, "bare_kind")
     return BareDraws(
         run=run,
         probability=probability,
-        loss=math.pi * pipe * surface_heat_flux(wall, exchange) * ends,
-        is_bare=seen.book.uniform(seen.owner, "bare_kind") < probability,
+        sector_probability=pipe_seen - probability,
+        flux=np.where(kind < probability, all_round, np.where(kind < pipe_seen, sector, np.nan)),
     )
 
 
 def _edges_favour_bare(seen: Seen, run: Run, sound_at: BoolArray, thinner: float) -> float:
-    """Return the likelihood of the edge bands under bare over that under a missing sector.
+    """Return the likelihood of what shows beside the pipe, bare over missing sector.
 
-    `thinner` is the pipe's diameter over the lagged one's.
+    `thinner` is the pipe's diameter over the lagged one's. Halfway between the pipe's edge and
+    the lagging's a bare stretch lets the background through, on both sides. With a sector missing
+    lagging goes on at one side at least, and shows its sound level there or, inside the opening,
+    something warmer.
     """
-    face = seen.face
-    if face.view_angle.size < 3:
+    halfway = (1 + thinner) / 2
+    room_px = (1 - thinner) * seen.width / 4
+    if room_px < LEAST_ROOM_PX:
         return 1.0
-    edges = face.temperature[[0, -1]]
-    shown = np.nanmedian(edges[:, run.stations], axis=1)
-    lagging = np.median(edges[:, sound_at], axis=1)
-    middle = float(np.nanmedian(face.temperature[face.view_angle.size // 2, run.stations]))
-    seen_on_pipe = math.sin(face.view_angle[-1]) < thinner
-    expected = middle if seen_on_pipe else _background(seen, run)
-    scatter = EDGE_SIGMA + 0.1 * abs(middle - float(lagging.mean()))
-    bare = -0.5 * float(np.sum(np.square((shown - expected) / scatter)))
+    within = np.arange(run.first, run.last + 1)
+    sound = np.flatnonzero(sound_at)
     sign = -1 if seen.gain else 1
-    # beside a missing sector the lagging is at its sound level or warmer, up to half the middle's
-    above = sign * (shown - lagging)
-    room = 0.5 * abs(middle - float(lagging.mean()))
-    away = np.maximum(-above, 0) + np.maximum(above - room, 0)
-    sector = -0.5 * float(np.sum(np.square(away / scatter)))
-    return float(np.exp(np.clip(bare - sector, -20, 20)))
+    assert seen.line_draws.inside_temperature is not None
+    drop = np.median(seen.line_draws.inside_temperature - seen.frame.air_temperature)
+    scatter = EDGE_SIGMA + EDGE_SIGMA_SHARE * abs(float(drop))
+    through, goes_on = [], []
+    for side in (-1.0, 1.0):
+        shown = _beside(seen, side * halfway, within)
+        background = _beside(seen, side * BACKGROUND_AT, within)
+        lagging = _beside(seen, side * halfway, sound)
+        if not np.isfinite([shown, background, lagging]).all():
+            continue
+        through.append(_likelihood((shown - background) / scatter))
+        goes_on.append(_likelihood(min(sign * (shown - lagging), 0.0) / scatter))
+    if len(through) < 2:
+        return 1.0
+    sector = (goes_on[0] * goes_on[1] + goes_on[0] * through[1] + through[0] * goes_on[1]) / 3
+    return through[0] * through[1] / sector
 
 
-def _background(seen: Seen, run: Run) -> float:
-    """Return what the frame shows beside the pipe along a run, at the lens. [K]"""
+def _likelihood(away: float) -> float:
+    """Return a likelihood with a floor, since other things may lie beside a pipe."""
+    return math.exp(-0.5 * away**2) + LIKELIHOOD_FLOOR
+
+
+def _beside(seen: Seen, across: float, stations: IntArray) -> float:
+    """Return the median at the lens at a fraction of the half width, NaN where none. [K]"""
     strip, image = seen.strip, seen.image.lens_temperature
-    beside = []
-    for row, beyond in ((0, 1.4), (-1, 1.4)):
-        reach = beyond / abs(strip.across[row])
-        x = strip.x + (strip.sample_x[row] - strip.x) * reach
-        y = strip.y + (strip.sample_y[row] - strip.y) * reach
-        rows, columns = np.rint(y).astype(int), np.rint(x).astype(int)
-        inside = (rows >= 0) & (rows < image.shape[0]) & (columns >= 0)
-        inside &= columns < image.shape[1]
-        inside[: run.first] = inside[run.last + 1 :] = False
-        beside.append(image[rows[inside], columns[inside]])
-    values = np.concatenate(beside)
+    reach = across / strip.across[-1]
+    x = strip.x + (strip.sample_x[-1] - strip.x) * reach
+    y = strip.y + (strip.sample_y[-1] - strip.y) * reach
+    rows, columns = np.rint(y[stations]).astype(int), np.rint(x[stations]).astype(int)
+    inside = (rows >= 0) & (rows < image.shape[0]) & (columns >= 0) & (columns < image.shape[1])
+    values = image[rows[inside], columns[inside]]
     values = values[np.isfinite(values)]
-    return float(np.median(values)) if values.size else float(np.median(seen.frame.air_temperature))
+    return float(np.median(values)) if values.size else math.nan
 
 
-def with_bare(flux: FloatArray, bare: BareDraws, perimeter: FloatArray) -> FloatArray:
-    """Put the bare loss in place of the cladding's, in the draws in which a run is bare.
+def with_bare(flux: FloatArray, bare: BareDraws) -> FloatArray:
+    """Put the flux of a seen pipe in place of the cladding's, in the draws in which it is seen.
 
     Parameters
     ----------
     flux : (count, n_stations) array
         Per square metre of cladding. [W/m2]
     bare : BareDraws
-    perimeter : (count,) array
-        Over the cladding. [m]
 
     Returns
     -------
     (count, n_stations) array
-        A new array: the bare loss spread over the cladding's circumference. [W/m2]
+        A new array. [W/m2]
     """
     spread = flux.copy()
+    seen = np.isfinite(bare.flux)
     along = np.arange(bare.run.first, bare.run.last + 1)
-    spread[np.ix_(bare.is_bare, along)] = (bare.loss / perimeter)[bare.is_bare, None]
+    spread[np.ix_(seen, along)] = bare.flux[seen, None]
     return spread

@@ -214,9 +214,9 @@ def _concluded(seen: Seen) -> RegionResult:
     base = seen.drawn.heat_flux[:, sound_at].mean(axis=1)
     flux = whole_flux(seen.drawn.heat_flux, base, hidden)
     for run in runs:
-        bare = bare_draws(seen, run, sound_at)
+        bare = bare_draws(seen, run, sound_at, base * (1 + hidden.unevenness))
         if bare is not None:
-            flux = with_bare(flux, bare, seen.perimeter)
+            flux = with_bare(flux, bare)
     bounds = flux_bounds(seen)
     mean_flux = seen.mean_along(flux)
     infeasible = bounds.beyond(mean_flux)
