@@ -1,0 +1,121 @@
+"""The baseline a careful user reaches with a spreadsheet.
+
+Mean recorded temperature in the outline, emissivity by the fourth power, one textbook correlation,
+radiation; damaged above 1.25 times the specified loss.
+"""
+
+import numpy as np
+
+from cladwatt.measure.outline import region_mask
+from cladwatt.physics.air import air_properties
+from cladwatt.physics.constants import GRAVITY, STEFAN_BOLTZMANN
+from cladwatt.physics.forced_convection import nusselt_churchill_bernstein, reynolds_number
+from cladwatt.physics.natural_convection import nusselt_churchill_chu_horizontal, rayleigh_number
+from cladwatt.physics.radiometry import surface_temperature_fourth_power
+from cladwatt.survey.frame import Frame
+from cladwatt.survey.model import Conditions, FrameEntry, Recording
+from cladwatt.survey.region import Region
+from cladwatt.survey.survey import Survey
+
+__all__ = ["DAMAGED_ABOVE", "cylinder_loss", "fourth_power_corrected", "spreadsheet_loss"]
+
+DAMAGED_ABOVE = 1.25
+"""Times the specified loss."""
+_NOT_LAGGING = frozenset({"pipe", "component", "leave_out", "foil", "tape", "contact"})
+
+
+def spreadsheet_loss(
+    survey: Survey, entry: FrameEntry, frame: Frame, region: Region, regions: tuple[Region, ...]
+) -> float:
+    """Return the loss per metre a spreadsheet gives; NaN where it gives none. [W/m]"""
+    shape = (frame.temperature.shape[0], frame.temperature.shape[1])
+    inside = region_mask(region, shape)
+    for other in regions:
+        if other.id != region.id and other.role in _NOT_LAGGING:
+            inside &= ~region_mask(other, shape)
+    recorded = frame.temperature[inside & np.isfinite(frame.temperature)]
+    line = survey.lines[str(region.tag)]
+    conditions = entry.conditions
+    reflected = conditions.reflected_temperature or conditions.air_temperature
+    if recorded.size == 0 or reflected is None or line.lagged_diameter is None:
+        return float("nan")
+    surface = fourth_power_corrected(
+        float(recorded.mean()),
+        entry.recording,
+        emissivity=line.cladding.band_emissivity.value,
+        reflected=reflected.value,
+    )
+    return cylinder_loss(
+        surface,
+        conditions,
+        diameter=line.lagged_diameter,
+        emissivity=line.cladding.total_emissivity.value,
+    )
+
+
+def fourth_power_corrected(
+    recorded: float, recording: Recording, *, emissivity: float, reflected: float
+) -> float:
+    """Undo the camera's emissivity and apply the declared one, both by the fourth power. [K]"""
+    apparent = recorded
+    if recording.emissivity < 1 and recording.reflected_temperature is not None:
+        mirrored = (1 - recording.emissivity) * recording.reflected_temperature**4
+        apparent = float((recording.emissivity * recorded**4 + mirrored) ** 0.25)
+    return float(
+        surface_temperature_fourth_power(apparent, emissivity=emissivity, reflected=reflected)
+    )
+
+
+def cylinder_loss(
+    surface: float, conditions: Conditions, *, diameter: float, emissivity: float
+) -> float:
+    """Return the loss of a horizontal cylinder: in wind Churchill-Bernstein, else Churchill-Chu.
+
+    Parameters
+    ----------
+    surface : float
+        [K]
+    conditions : Conditions
+        Declared ones; only their values are used.
+    diameter : float
+        [m]
+    emissivity : float
+        Total.
+
+    Returns
+    -------
+    float
+        [W/m]
+    """
+    assert conditions.air_temperature is not None
+    air = conditions.air_temperature.value
+    around = conditions.surroundings_temperature
+    surroundings = air if around is None else around.value
+    if not np.isfinite(surface):
+        return float("nan")
+    film = air_properties((surface + air) / 2)
+    prandtl = film.prandtl
+    if conditions.indoors is False and conditions.wind_speed is not None:
+        nusselt = nusselt_churchill_bernstein(
+            reynolds_number(
+                conditions.wind_speed.value,
+                length=diameter,
+                kinematic_viscosity=film.kinematic_viscosity,
+            ),
+            prandtl,
+        )
+    else:
+        nusselt = nusselt_churchill_chu_horizontal(
+            rayleigh_number(
+                surface - air,
+                length=diameter,
+                expansion=film.expansion,
+                kinematic_viscosity=film.kinematic_viscosity,
+                prandtl=prandtl,
+                gravity=GRAVITY,
+            ),
+            prandtl,
+        )
+    convection = float(nusselt) * float(film.conductivity) / diameter * (surface - air)
+    radiation = emissivity * STEFAN_BOLTZMANN * (surface**4 - surroundings**4)
+    return float(np.pi * diameter * (convection + radiation))
