@@ -14,13 +14,14 @@ from cladwatt.assumptions import assumptions_of
 from cladwatt.errors import Fault, InputError
 from cladwatt.inverse.conditions import FrameDraws, draw_frame, draw_line, mirrored
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.observe import Observed, observe_region
 from cladwatt.inverse.references import (
     ReferenceReading,
     read_references,
     with_emissivity,
     with_frame_references,
 )
-from cladwatt.inverse.region_estimate import estimate_region
+from cladwatt.inverse.region_estimate import estimate_regions
 from cladwatt.inverse.result import RegionResult, interval_of
 from cladwatt.inverse.seen import FrameImage
 from cladwatt.measure.noise import FrameNoise, estimate_noise
@@ -29,7 +30,7 @@ from cladwatt.physics.radiometry import Band, lens_radiance
 from cladwatt.quantities import Remark
 from cladwatt.results.assessment import Assessment, FrameResult, LeftOut, LineTotal, Settings
 from cladwatt.results.versions import library_versions
-from cladwatt.survey.checking import check_region_against_frame
+from cladwatt.survey.checking import check_labels_against_frame, check_region_against_frame
 from cladwatt.survey.frame import Frame, frame_questions, read_frame
 from cladwatt.survey.model import FrameEntry
 from cladwatt.survey.region import Region
@@ -146,13 +147,12 @@ def assess_frame(survey: Survey, entry: FrameEntry, settings: Settings) -> Frame
         results.extend(found)
         left_out_list.extend(more)
     remarks = frame.remarks + tuple(
-        Remark("remark.background_questioned", (("message", str(question)),))
-        for question in frame_questions(frame, entry)
+        _question(question) for question in frame_questions(frame, entry, root=survey.root)
     )
     return FrameResult(
         frame_id=entry.id,
         sha256=frame.sha256,
-        shape=(frame.temperature.shape[0], frame.temperature.shape[1]),
+        shape=frame.shape,
         regions=tuple(results),
         left_out=tuple(left_out_list),
         remarks=remarks,
@@ -160,12 +160,20 @@ def assess_frame(survey: Survey, entry: FrameEntry, settings: Settings) -> Frame
     )
 
 
+def _question(fault: Fault) -> Remark:
+    return Remark("remark.question", (("message", str(fault)),))
+
+
 def _sound_regions(
     survey: Survey, entry: FrameEntry, frame: Frame
 ) -> tuple[list[Region], list[LeftOut]]:
     """Divide a frame's regions into usable ones and those that do not fit the frame."""
-    usable, left_out = [], []
-    shape = (frame.temperature.shape[0], frame.temperature.shape[1])
+    usable: list[Region] = []
+    left_out: list[LeftOut] = []
+    shape = frame.shape
+    wrong_labels = check_labels_against_frame(entry, shape, root=survey.root)
+    if wrong_labels:  # nothing drawn on this frame can be trusted to lie where it should
+        return [], [LeftOut("region", "", entry.id, str(fault)) for fault in wrong_labels]
     for region in survey.regions_of(entry.id):
         fault: Fault | None = check_region_against_frame(region, shape)
         if fault is None:
@@ -222,25 +230,31 @@ def _assess_regions(
     readings = read_references(image.lens_temperature, regions)
     draws, remarks = with_frame_references(draws, readings, book)
     masks = {region.id: region_mask(region, frame.temperature.shape) for region in regions}
-    results: list[RegionResult] = []
     left_out = [
         LeftOut("component", region.id, entry.id, "", Remark("remark.component_not_assessed"))
         for region in regions
         if region.role == "component"
     ]
+    observed: list[Observed] = []
+    used: list[tuple[Remark, ...]] = []
     for region in pipes:
         try:
-            result = _assess_region(
+            one, references = _observe(
                 survey, entry, region, regions, masks, image, draws, readings, book
             )
         except InputError as error:
             left_out.append(LeftOut("region", region.id, entry.id, str(error)))
             continue
-        results.append(replace(result, remarks=result.remarks + remarks))
+        observed.append(one)
+        used.append(remarks + references)
+    results = [
+        replace(result, remarks=result.remarks + references)
+        for result, references in zip(estimate_regions(observed, book, entry.id), used, strict=True)
+    ]
     return results, left_out
 
 
-def _assess_region(
+def _observe(
     survey: Survey,
     entry: FrameEntry,
     region: Region,
@@ -250,13 +264,14 @@ def _assess_region(
     frame: FrameDraws,
     readings: tuple[ReferenceReading, ...],
     book: DrawBook,
-) -> RegionResult:
+) -> tuple[Observed, tuple[Remark, ...]]:
+    """Read one region off the image, with the references on its line."""
     assert region.tag is not None
     line = survey.lines[region.tag]
     line_draws, remarks = with_emissivity(
         draw_line(book, line, region), line.tag, frame, readings, book
     )
-    result = estimate_region(
+    observed = observe_region(
         region,
         line,
         image=image,
@@ -275,7 +290,7 @@ def _assess_region(
         camera=survey.camera,
         book=book,
     )
-    return replace(result, remarks=result.remarks + remarks)
+    return observed, remarks
 
 
 def _covered(
@@ -327,6 +342,7 @@ def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ..
         left_out=_survey_left_out(survey)
         + tuple(item for frame in frames for item in frame.left_out),
         assumptions=assumptions_of(survey),
+        remarks=tuple(_question(f) for f in survey.faults if f.severity == "question"),
         camera={
             "model": camera.model,
             "serial": camera.serial,

@@ -6,7 +6,7 @@ import numpy as np
 
 from cladwatt.inverse.seen import Seen
 from cladwatt.physics.lagged_pipe import surface_heat_flux
-from cladwatt.types import FloatArray
+from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["Bounds", "flux_bounds"]
 
@@ -21,12 +21,23 @@ class Bounds(NamedTuple):
         """Return the share of draws outside, NaN counted as outside."""
         return float(np.mean(~((flux >= self.low) & (flux <= self.high))))
 
+    def filled(self, flux: FloatArray, usable: BoolArray) -> FloatArray:
+        """Return draws along a strip with impossible ones (NaN) at the lower bound.
+
+        A draw whose emissivity and reflected radiance leave no positive radiance says that the
+        surface is as cold as it can be. NaN stays in gaps, and where there is no bound the
+        smallest draw of the station stands in.
+        """
+        smallest = np.min(np.where(np.isfinite(flux), flux, np.inf), axis=0)
+        low = np.where(np.isfinite(self.low)[:, None], self.low[:, None], smallest)
+        return np.asarray(np.where(np.isfinite(flux) | ~usable, flux, low))
+
     def applied(self, flux: FloatArray) -> FloatArray:
         """Return the draws moved to the nearest bound.
 
         Moving rather than dropping keeps them in step with the draws of other regions.
         """
-        return np.asarray(np.clip(flux, self.low, self.high))
+        return np.asarray(np.clip(np.where(np.isfinite(flux), flux, self.low), self.low, self.high))
 
 
 def flux_bounds(seen: Seen) -> Bounds:

@@ -176,6 +176,8 @@ class RegionResult:
     remarks: tuple[Remark, ...] = ()
     variance_shares: tuple[tuple[str, float], ...] = ()
     """Share of the variance of the loss by declared quantity, largest first."""
+    image_loss: Interval | None = None
+    """Mean loss per metre as the image gives it by itself, the specification unused. [W/m]"""
     air_temperature: float | None = None
     """Declared air temperature of the frame; strip pictures are centred on it. [K]"""
     strip_temperature: FloatArray | None = field(default=None, repr=False, compare=False)

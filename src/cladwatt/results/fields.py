@@ -85,6 +85,7 @@ _REGION = {
     "surface_temperature": Field("°C", "mean corrected surface temperature"),
     "heat_flux": Field("W/m²", "mean heat flux over the seen face"),
     "heat_loss": Field("W/m", "mean heat loss per metre, negative for a gain"),
+    "image_loss": Field("W/m", "the same by the image alone, the specification unused"),
     "total_loss": Field("W", "heat loss over the drawn length"),
     "sound_loss": Field("W/m", "what sound lagging would lose in the same conditions"),
     "specified_loss": Field("W/m", "loss with the lagging as specified, laboratory conductivity"),

@@ -1,0 +1,303 @@
+"""Conclusions on one region: loss, resistance, stretches, probabilities and verdict."""
+
+from collections.abc import Sequence
+from dataclasses import replace
+from typing import NamedTuple
+
+import numpy as np
+
+from cladwatt.inverse.cautions import cautions_of, missing_of, remarks_of, verdict_caps
+from cladwatt.inverse.face import FaceDraws, surface_temperature_draws
+from cladwatt.inverse.joint import JointUpdate
+from cladwatt.inverse.observe import Balance, Observed
+from cladwatt.inverse.result import (
+    Interval,
+    RegionResult,
+    StationTable,
+    Stretch,
+    Verdict,
+    interval_of,
+)
+from cladwatt.inverse.seen import Seen
+from cladwatt.inverse.sound import SoundDraws
+from cladwatt.inverse.station_table import station_table
+from cladwatt.inverse.stretch_results import stretches_of
+from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
+from cladwatt.physics.lagged_pipe import surface_heat_flux
+from cladwatt.quantities import Remark
+from cladwatt.types import FloatArray
+
+__all__ = ["conclude"]
+
+
+def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionResult:
+    """Draw the conclusions on a region.
+
+    Parameters
+    ----------
+    observed : Observed
+    updates : sequence of JointUpdate
+        What the frame's regions and the specification say together; without any the result is
+        what the image says by itself.
+
+    Returns
+    -------
+    RegionResult
+    """
+    if observed.balance is None:
+        seen = observed.seen
+        return _without_balance(seen, station_table(seen, None, None))
+    image_loss = _image_loss(observed.seen, observed.balance)
+    shift = _Shift(updates)
+    seen = _shifted_seen(observed.seen, shift)
+    balance = _shifted_balance(observed.balance, shift)
+    aged = next((u.aged[seen.region.id] for u in updates if seen.region.id in u.aged), None)
+    result = _concluded(seen, balance, image_loss, aged, shift)
+    if any(seen.region.id in update.doubted for update in updates):
+        return replace(result, remarks=(*result.remarks, Remark("remark.specification_doubted")))
+    return result
+
+
+class _Shift(NamedTuple):
+    """All updates of a frame, one after the other."""
+
+    updates: Sequence[JointUpdate]
+
+    def __call__(self, values: FloatArray) -> FloatArray:
+        for update in self.updates:
+            values = update.apply(values)
+        return values
+
+
+def _image_loss(seen: Seen, balance: Balance) -> Interval | None:
+    """Return the loss as the image alone gives it. [W/m]"""
+    if not seen.diameter_known:
+        return None
+    return interval_of(seen.perimeter * balance.bounds.applied(seen.mean_along(balance.flux)))
+
+
+def _shifted_seen(seen: Seen, shift: _Shift) -> Seen:
+    """Return what was seen with its temperatures moved; impossible draws count as coldest."""
+    temperature = seen.drawn.surface_temperature
+    coldest = np.min(np.where(np.isfinite(temperature), temperature, np.inf), axis=0)
+    filled = np.where(np.isfinite(temperature) | ~seen.usable, temperature, coldest)
+    return replace(seen, drawn=FaceDraws(shift(filled), seen.drawn.heat_flux))
+
+
+def _shifted_balance(balance: Balance, shift: _Shift) -> Balance:
+    sound = balance.sound
+    if sound is not None:
+        sound = SoundDraws(
+            np.sign(sound.heat_loss) * np.exp(shift(np.log(np.abs(sound.heat_loss)))),
+            np.sign(sound.specified_loss) * np.exp(shift(np.log(np.abs(sound.specified_loss)))),
+            np.exp(shift(np.log(sound.specified_resistance))),
+        )
+    return replace(balance, flux=shift(balance.flux), base=shift(balance.base), sound=sound)
+
+
+def _concluded(
+    seen: Seen,
+    balance: Balance,
+    image_loss: Interval | None,
+    aged_level: float | None,
+    shift: _Shift,
+) -> RegionResult:
+    bounds, sound = balance.bounds, balance.sound
+    mean_flux = bounds.applied(seen.mean_along(balance.flux))
+    draws = {"length": seen.length_draws()}
+    stretches: tuple[Stretch, ...] = ()
+    local = aged = None
+    loss = None
+    if seen.diameter_known:
+        loss = seen.perimeter[:, None] * balance.flux
+        draws |= _loss_draws(seen.perimeter * mean_flux, sound, draws["length"])
+        base_loss = seen.perimeter * bounds.applied(balance.base)
+        stretches = stretches_of(seen, balance.runs, loss, base_loss)
+        local = float(1 - np.prod([1 - stretch.probability for stretch in stretches]))
+        aged = None if aged_level is None else (1 - local) * aged_level
+    heat_loss = _interval(draws, "heat_loss")
+    shares = variance_shares(draws["heat_loss"], _drivers(seen, shift)) if heat_loss else ()
+    inputs = VerdictInputs(
+        heat_loss=heat_loss,
+        excess=_interval(draws, "excess"),
+        emissivity=seen.emissivity,
+        visible_rise_sigmas=_visible_rise(seen, balance),
+        width=seen.width,
+        spot_pixels=seen.camera.spot_pixels,
+        infeasible_share=balance.infeasible,
+        caps=verdict_caps(seen),
+        refusals=() if seen.diameter_known else (Remark("not_quantified.no_diameter"),),
+    )
+    resistances = _resistances(seen, draws.get("heat_loss"), sound)
+    return replace(
+        _without_balance(seen, station_table(seen, loss, sound)),
+        heat_flux=interval_of(mean_flux),
+        heat_loss=heat_loss,
+        image_loss=image_loss,
+        total_loss=_interval(draws, "total_loss"),
+        sound_loss=_interval(draws, "sound_loss"),
+        specified_loss=_interval(draws, "specified_loss"),
+        excess=_interval(draws, "excess"),
+        resistance=resistances.found,
+        specified_resistance=resistances.specified,
+        resistance_ratio=resistances.ratio,
+        effective_conductivity=resistances.effective_conductivity,
+        probability_damaged=None if local is None or aged is None else local + aged,
+        probability_local=local,
+        probability_aged=aged,
+        verdict=as_verdict(inputs, shares),
+        stretches=stretches,
+        variance_shares=shares,
+        draws=draws,
+    )
+
+
+def _without_balance(seen: Seen, stations: StationTable) -> RegionResult:
+    """Return what needs no heat balance: length, temperature, what is missing."""
+    return RegionResult(
+        region_id=seen.region.id,
+        frame_id=seen.region.frame_id,
+        tag=seen.line.tag,
+        area=seen.line.area,
+        gain=seen.gain,
+        length=interval_of(seen.length_draws()),
+        start_station=float(seen.strip.station[0]),
+        end_station=float(seen.strip.station[-1]),
+        recorded_temperature=float(np.nanmean(seen.recorded)),
+        surface_temperature=interval_of(seen.mean_along(seen.drawn.surface_temperature)),
+        heat_flux=Interval(float("nan"), float("nan"), float("nan")),
+        heat_loss=None,
+        total_loss=None,
+        sound_loss=None,
+        specified_loss=None,
+        excess=None,
+        resistance=None,
+        specified_resistance=None,
+        resistance_ratio=None,
+        effective_conductivity=None,
+        probability_damaged=None,
+        probability_local=None,
+        probability_aged=None,
+        verdict=Verdict("not quantified", Remark("not_quantified.no_wind")),
+        stretches=(),
+        stations=stations,
+        missing=missing_of(seen),
+        cautions=cautions_of(seen),
+        remarks=remarks_of(seen),
+        air_temperature=float(np.median(seen.frame.air_temperature)),
+        strip_temperature=_strip_temperature(seen),
+    )
+
+
+def _loss_draws(
+    loss: FloatArray, sound: SoundDraws | None, length: FloatArray
+) -> dict[str, FloatArray]:
+    draws = {"heat_loss": loss, "total_loss": loss * length}
+    if sound is not None:
+        excess = loss - sound.heat_loss
+        draws |= {
+            "sound_loss": sound.heat_loss,
+            "specified_loss": sound.specified_loss,
+            "excess": excess,
+            "total_excess": excess * length,
+        }
+    return draws
+
+
+def _interval(draws: dict[str, FloatArray], quantity: str) -> Interval | None:
+    return interval_of(draws[quantity]) if quantity in draws else None
+
+
+class _Resistances(NamedTuple):
+    found: Interval | None = None
+    specified: Interval | None = None
+    ratio: Interval | None = None
+    effective_conductivity: Interval | None = None
+
+
+def _resistances(seen: Seen, loss: FloatArray | None, sound: SoundDraws | None) -> _Resistances:
+    """Return resistance, specified resistance, their ratio, and the effective conductivity.
+
+    Carried as conductances, since a loss may be zero, and turned over as quantiles.
+    """
+    line = seen.line_draws
+    if loss is None or line.inside_temperature is None:
+        return _Resistances()
+    drop = line.inside_temperature - seen.mean_along(seen.drawn.surface_temperature)
+    with np.errstate(divide="ignore", invalid="ignore"):
+        conductance = np.where(drop * np.sign(loss) > 0, loss / drop, np.nan)
+    specified = None if sound is None else sound.specified_resistance
+    effective = None
+    if line.pipe_diameter is not None and line.lagged_diameter is not None:
+        lagging = line.lagged_diameter - 2 * seen.line.cladding.thickness.value
+        shape = np.log(np.maximum(lagging / line.pipe_diameter, 1.0)) / (2 * np.pi)
+        effective = interval_of(conductance * shape)
+    return _Resistances(
+        found=_reciprocal(interval_of(conductance)),
+        specified=None if specified is None else interval_of(specified),
+        ratio=None if specified is None else _reciprocal(interval_of(conductance * specified)),
+        effective_conductivity=effective,
+    )
+
+
+def _reciprocal(interval: Interval) -> Interval:
+    """Turn the interval of a conductance into that of a resistance."""
+    with np.errstate(divide="ignore"):
+        low, median, high = (
+            float(np.divide(1.0, max(value, 0.0)))
+            for value in (interval.high, interval.median, interval.low)
+        )
+    return Interval(median, low, high)
+
+
+def _drivers(seen: Seen, shift: _Shift) -> dict[str, FloatArray]:
+    """Return the draws behind each quantity that may carry variance, moved like the rest."""
+    frame, line = f"frame:{seen.region.frame_id}", f"line:{seen.line.tag}"
+    overridden = seen.region.band_emissivity is not None
+    cladding = seen.owner if overridden else line
+    normal = seen.book.normal
+    drivers = {
+        "band_emissivity": seen.line_draws.band_emissivity,
+        "total_emissivity": normal(cladding, "total_emissivity"),
+        "reflected_temperature": normal(frame, "reflected_temperature"),
+        "surroundings_temperature": normal(frame, "surroundings_temperature"),
+        "air_temperature": normal(frame, "air_temperature"),
+        "wind_speed": normal(frame, "wind_speed"),
+        "transmission": normal(frame, "transmission"),
+        "calibration": seen.frame.calibration,
+        "convection": np.log(seen.frame.convection_factor),
+        "diameter": seen.diameter,
+        "hidden_side": normal(seen.owner, "unevenness"),
+    }
+    return {name: shift(values) for name, values in drivers.items()}
+
+
+def _visible_rise(seen: Seen, balance: Balance) -> float:
+    """Return at how many standard uncertainties a 25 % rise over one diameter would show.
+
+    The flux's slope against the value at the lens is taken from two values around the sound
+    level, in the median of the draws.
+    """
+    level = float(np.median(seen.face.temperature[:, balance.sound_at]))
+    temperature = surface_temperature_draws(
+        np.array([level - 0.5, level + 0.5]), np.zeros(1), seen.frame, seen.line_draws
+    )[:, 0]
+    exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
+    cooler, warmer = (surface_heat_flux(temperature[:, side], exchange) for side in (0, 1))
+    slope = float(np.nanmedian(warmer - cooler))
+    if not slope > 0:
+        return 0.0
+    rise = 0.25 * abs(float(np.median(balance.base))) / slope
+    return rise / balance.null.run_sigma(seen.width)
+
+
+def _strip_temperature(seen: Seen) -> FloatArray:
+    """Return the corrected temperature of the seen face straightened, at the draws' median. [K]
+
+    Corrected sample by sample with the declared inputs, then set to the level of the draws.
+    """
+    nodes = np.linspace(np.nanmin(seen.lens) - 0.1, np.nanmax(seen.lens) + 0.1, 33)
+    drawn = surface_temperature_draws(nodes, np.zeros(1), seen.frame, seen.line_draws)[:, 0]
+    field = np.interp(seen.lens, nodes, np.nanmedian(drawn, axis=0))
+    level = float(np.median(seen.mean_along(seen.drawn.surface_temperature)))
+    return np.asarray(field + level - np.nanmean(field[:, seen.usable]))

@@ -1,0 +1,270 @@
+"""What the image says of one region by itself: its strip, contrasts, levels, and their draws."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from cladwatt.errors import Fault, RegionError
+from cladwatt.inverse.bare import bare_draws, with_bare
+from cladwatt.inverse.conditions import FrameDraws, LineDraws
+from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.face import face_draws
+from cladwatt.inverse.feasibility import Bounds, flux_bounds
+from cladwatt.inverse.hidden_side import HiddenSide, evenness_of, whole_flux
+from cladwatt.inverse.joint import LevelEvidence
+from cladwatt.inverse.null import NullModel, null_of
+from cladwatt.inverse.seen import FrameImage, Seen
+from cladwatt.inverse.sound import SoundDraws, sound_draws
+from cladwatt.inverse.stretches import Run, find_runs, sound_stations
+from cladwatt.measure.face_bands import bands_of
+from cladwatt.measure.strip import Strip, known_length_factor, sample_strip, straighten
+from cladwatt.survey.model import Camera, Conditions, Line
+from cladwatt.survey.region import Region
+from cladwatt.types import BoolArray, FloatArray
+
+__all__ = ["Balance", "Observed", "observe_region"]
+
+UNKNOWN_DIAMETER = 0.2
+"""For the convection law alone where no diameter is known, a factor of 1.6 uncertain. [m]"""
+BANDS_OF_ANGLE = 5
+LEAST_STATIONS = 5
+COMPONENT_MARGIN = 0.15
+"""How far a component may reach beyond its drawn outline, over the pipe's width; assumption."""
+SMALLEST_SOUND_LOSS = 1.0
+"""Below this the specification says nothing of the level: the line is at the air's temperature.
+[W/m]"""
+
+
+@dataclass(frozen=True)
+class Balance:
+    """What the heat balance adds to what was seen.
+
+    Attributes
+    ----------
+    null : NullModel
+    runs : tuple of Run
+    sound_at : (n_stations,) array of bool
+        Stations that carry the sound level.
+    flux : (count, n_stations) array
+        Over the whole circumference, NaN in gaps only. [W/m2]
+    base : (count,) array
+        The same at the sound level. [W/m2]
+    bounds : Bounds
+    infeasible : float
+        Share of draws of the mean flux beyond the bounds.
+    sound : SoundDraws or None
+    """
+
+    null: NullModel
+    runs: tuple[Run, ...]
+    sound_at: BoolArray
+    flux: FloatArray
+    base: FloatArray
+    bounds: Bounds
+    infeasible: float
+    sound: SoundDraws | None
+
+
+@dataclass(frozen=True)
+class Observed:
+    """One region as the image shows it; no balance where the wind is unknown."""
+
+    seen: Seen
+    balance: Balance | None
+
+    def evidence(self) -> LevelEvidence | None:
+        """Return what the region says of its lagging as a whole, None where it says nothing.
+
+        A traced line says nothing: its tracer's heat is not the fluid's.
+        """
+        balance = self.balance
+        if balance is None or balance.sound is None or self.seen.line.tracing.kind != "none":
+            return None
+        sound = balance.sound.heat_loss
+        if not (np.abs(sound) > SMALLEST_SOUND_LOSS).all() or np.ptp(np.sign(sound)) > 0:
+            return None
+        relative = self.seen.perimeter * balance.bounds.applied(balance.base) / sound - 1
+        return LevelEvidence(self.seen.region.id, np.clip(relative, -2.0, 20.0))
+
+
+def observe_region(
+    region: Region,
+    line: Line,
+    *,
+    image: FrameImage,
+    left_out: BoolArray,
+    components: BoolArray,
+    known_lengths: Sequence[Region],
+    frame: FrameDraws,
+    line_draws: LineDraws,
+    conditions: Conditions,
+    camera: Camera,
+    book: DrawBook,
+) -> Observed:
+    """Read one pipe region off the image.
+
+    Parameters
+    ----------
+    region, line
+        What was drawn, and over which line.
+    image : FrameImage
+    left_out : (rows, cols) array of bool
+        Pixels of other regions and patches, already widened by the blur.
+    components : (rows, cols) array of bool
+        Pixels of components, as drawn; whole stations are left out for them.
+    known_lengths : sequence of Region
+        Role ``known_length`` on the same line in this frame.
+    frame, line_draws
+        Shared draws.
+    conditions, camera
+        As declared for this frame.
+    book : DrawBook
+
+    Returns
+    -------
+    Observed
+
+    Raises
+    ------
+    RegionError
+        If nothing usable is left of the region.
+    """
+    strip = _strip(region, line, image, known_lengths, camera)
+    lens = sample_strip(np.where(left_out, np.nan, image.lens_temperature), strip)
+    component_at = _component_stations(strip, components)
+    lens[:, _bulged(component_at, strip)] = np.nan
+    recorded = np.where(np.isfinite(lens), sample_strip(image.recorded_temperature, strip), np.nan)
+    face = bands_of(lens, strip.view_angle, BANDS_OF_ANGLE)
+    usable = np.asarray(np.isfinite(face.temperature).all(axis=0))
+    if usable.sum() < LEAST_STATIONS:
+        raise RegionError(_nothing_usable(region, int(usable.sum())))
+    diameter = line_draws.lagged_diameter
+    if diameter is None:
+        diameter = UNKNOWN_DIAMETER * np.exp(0.5 * book.normal(f"region:{region.id}", "diameter"))
+    seen = Seen(
+        region=region,
+        line=line,
+        strip=strip,
+        lens=lens,
+        recorded=recorded,
+        face=face,
+        drawn=face_draws(face, frame, line_draws, diameter),
+        usable=usable,
+        component_at=component_at,
+        diameter=diameter,
+        gain=_is_gain(line, conditions),
+        frame=frame,
+        line_draws=line_draws,
+        conditions=conditions,
+        camera=camera,
+        image=image,
+        book=book,
+    )
+    return Observed(seen, _balance(seen))
+
+
+def _strip(
+    region: Region,
+    line: Line,
+    image: FrameImage,
+    known_lengths: Sequence[Region],
+    camera: Camera,
+) -> Strip:
+    """Straighten the region, by a known length along it where one was marked."""
+    nominal = line.lagged_diameter
+    if region.outside_diameter is not None:
+        nominal = region.outside_diameter.value
+    columns = image.lens_temperature.shape[1]
+    view = camera.field_of_view_deg
+    strip = straighten(region, lagged_diameter=nominal, columns=columns, field_of_view_deg=view)
+    for marked in known_lengths:
+        factor = known_length_factor(strip, marked)
+        if factor is not None:
+            return straighten(
+                region,
+                lagged_diameter=nominal,
+                columns=columns,
+                field_of_view_deg=view,
+                known_length=factor,
+            )
+    return strip
+
+
+def _component_stations(strip: Strip, components: BoolArray) -> BoolArray:
+    """Return the stations that a drawn component touches."""
+    touched = np.nan_to_num(sample_strip(components.astype(float), strip)).max(axis=0)
+    return np.asarray(touched > 0)
+
+
+def _bulged(stations: BoolArray, strip: Strip) -> BoolArray:
+    """Widen stations along: a round fitting seen obliquely bulges, and is drawn by hand."""
+    margin = round(max(3.0, COMPONENT_MARGIN * float(np.median(strip.width))))
+    return np.asarray(np.convolve(stations, np.ones(2 * margin + 1), mode="same") > 0)
+
+
+def _nothing_usable(region: Region, stations: int) -> Fault:
+    return Fault(
+        f"regions/{region.frame_id}.geojson",
+        f"feature {region.feature} (id '{region.id}')",
+        f"only {stations} stations hold usable pixels",
+        f"expected at least {LEAST_STATIONS}; the rest is dead, clipped, left out or outside the "
+        "frame",
+        frame_id=region.frame_id,
+        region_id=region.id,
+    )
+
+
+def _is_gain(line: Line, conditions: Conditions) -> bool:
+    """Whether the fluid is colder than the air."""
+    if line.inside_temperature is None or conditions.air_temperature is None:
+        return False
+    return line.inside_temperature.value < conditions.air_temperature.value
+
+
+def _null(seen: Seen) -> NullModel:
+    metres = seen.strip.length
+    return null_of(
+        seen.face.temperature,
+        noise=seen.image.noise,
+        pixels_per_station=seen.strip.used_width,
+        station_length=float(np.median(metres)) if np.isfinite(metres).all() else 0.005,
+        reflected_temperature=float(np.median(seen.frame.reflected_temperature)),
+        emissivity=seen.emissivity,
+        indoors=seen.conditions.indoors is not False,
+    )
+
+
+def _balance(seen: Seen) -> Balance | None:
+    """Balance the heat of the seen face, with what stands out and what is hidden."""
+    if seen.drawn.heat_flux is None:
+        return None
+    profile = seen.face.temperature.mean(axis=0)
+    null = _null(seen)
+    sign = -1 if seen.gain else 1
+    runs = find_runs(profile, null, sign=sign, diameter_stations=seen.width)
+    sound_at = sound_stations(profile, runs, clear_of=0.5 * seen.width)
+    hidden = HiddenSide.draw(
+        seen.book,
+        seen.owner,
+        seen_share=float(seen.face.extent.sum() / (2 * np.pi)),
+        seen=evenness_of(seen.face, runs, sound_at, sign=sign),
+    )
+    bounds = flux_bounds(seen)
+    seen_base = seen.drawn.heat_flux[:, sound_at].mean(axis=1)
+    flux = whole_flux(seen.drawn.heat_flux, seen_base, hidden)
+    base = seen_base * (1 + hidden.unevenness)
+    for run in runs:
+        bare = bare_draws(seen, run, sound_at, base)
+        if bare is not None:
+            flux = with_bare(flux, bare)
+    return Balance(
+        null=null,
+        runs=runs,
+        sound_at=sound_at,
+        flux=bounds.filled(flux, seen.usable),
+        base=bounds.applied(base),
+        bounds=bounds,
+        infeasible=bounds.beyond(seen.mean_along(flux)),
+        sound=sound_draws(seen.line_draws, seen.frame) if seen.diameter_known else None,
+    )
