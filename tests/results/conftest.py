@@ -110,7 +110,7 @@ def odd_assessment() -> Assessment:
             region("r2", "f01", long_tag, stretches=(stretch("line", ((1.0, 2.0), (3.0, 4.0))),)),
         ),
         left_out=(LeftOut("region", "r9", "f01", "regions/f01.geojson: too few pixels"),),
-        remarks=(Remark("remark.background_questioned"),),
+        remarks=(Remark("remark.question"),),
         seconds=0.25,
     )
     second = FrameResult(

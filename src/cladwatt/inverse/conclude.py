@@ -145,7 +145,7 @@ def _concluded(
         probability_damaged=None if local is None or aged is None else local + aged,
         probability_local=local,
         probability_aged=aged,
-        verdict=as_verdict(inputs, shares),
+        verdict=as_verdict(inputs, shares, missing_of(seen)),
         stretches=stretches,
         variance_shares=shares,
         draws=draws,

@@ -10,7 +10,7 @@ from cladwatt.inverse.result import Interval, Verdict, VerdictLevel
 from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray
 
-__all__ = ["VerdictInputs", "advice_of", "give_verdict", "variance_shares"]
+__all__ = ["VerdictInputs", "advice_of", "as_verdict", "give_verdict", "variance_shares"]
 
 QUANTIFIED_WIDTH = 0.40
 INDICATIVE_WIDTH = 1.20
@@ -23,8 +23,6 @@ METAL_EMISSIVITY = 0.7
 SPOTS_ACROSS = 3.0
 INFEASIBLE_SHARE = 0.3
 
-_ORDER: tuple[VerdictLevel, ...] = ("quantified", "indicative", "not quantified")
-
 _ADVICE: dict[str, tuple[str, float]] = {
     # quantity: (advice key, share of its uncertainty that the measurement leaves)
     "band_emissivity": ("advice.tape_patch", 0.35),
@@ -35,6 +33,12 @@ _ADVICE: dict[str, tuple[str, float]] = {
     "wind_speed": ("advice.wind", 0.4),
     "transmission": ("advice.closer_frame", 0.4),
 }
+_FIND_OUT = {
+    "missing.inside_temperature": "advice.inside_temperature",
+    "missing.lagging": "advice.lagging_data",
+}
+LEAST_GAIN = 0.1
+"""Advice that would narrow the interval by less than this share is not given."""
 
 
 @dataclass(frozen=True)
@@ -161,7 +165,8 @@ def advice_of(
     Returns
     -------
     Remark or None
-        Half widths now and then, in percent; None where nothing measurable carries 10 %.
+        Half widths now and then, in percent; None where nothing measurable would narrow the
+        interval by a tenth.
     """
     if heat_loss is None or not heat_loss.median:
         return None
@@ -175,17 +180,26 @@ def advice_of(
             then = now * math.sqrt(max(1 - share * (1 - left**2), 0.02))
             if best is None or then < best[0]:
                 best = (then, key)
-    if best is None:
+    if best is None or best[0] > (1 - LEAST_GAIN) * now:
         return None
     return _remark(best[1], width_now=now, width_then=best[0])
 
 
-def worst(first: VerdictLevel, second: VerdictLevel) -> VerdictLevel:
-    """Return the more cautious of two verdicts."""
-    return max(first, second, key=_ORDER.index)
+def as_verdict(
+    inputs: VerdictInputs, shares: tuple[tuple[str, float], ...], missing: tuple[Remark, ...] = ()
+) -> Verdict:
+    """Return the full verdict with its advice.
 
-
-def as_verdict(inputs: VerdictInputs, shares: tuple[tuple[str, float], ...]) -> Verdict:
-    """Return the full verdict with its advice."""
+    Parameters
+    ----------
+    inputs : VerdictInputs
+    shares : tuple of (name, share)
+        As `variance_shares` gives them.
+    missing : tuple of Remark
+        What is unknown; finding that out comes before any measurement.
+    """
     level, reason = give_verdict(inputs)
+    for remark in missing:
+        if remark.key in _FIND_OUT:
+            return Verdict(level, reason, Remark(_FIND_OUT[remark.key]))
     return Verdict(level, reason, advice_of(shares, inputs.heat_loss, emissivity=inputs.emissivity))
