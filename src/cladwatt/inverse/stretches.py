@@ -77,8 +77,8 @@ def find_runs(
     fine = moving_mean(excess, 3)
     runs = [
         run
-        for first, last in _spans(marked & usable)
-        if (run := _run(fine, excess, first, last, null)) is not None
+        for span in _spans(marked & usable)
+        if (run := _run(fine, excess, *_narrowed(fine, *span, null), null)) is not None
     ]
     return _merged(runs, excess, null, diameter_stations)
 
@@ -112,6 +112,21 @@ def _spans(marked: BoolArray) -> list[tuple[int, int]]:
     """Return first and last index of each run of True."""
     edges = np.flatnonzero(np.diff(np.concatenate([[0], marked.astype(int), [0]])))
     return [(int(first), int(end) - 1) for first, end in zip(edges[::2], edges[1::2], strict=True)]
+
+
+def _narrowed(fine: FloatArray, first: int, last: int, null: NullModel) -> tuple[int, int]:
+    """Cut a span that a wide scale marked round a short, strong run down to that run.
+
+    Left as it is where the rest of the span stands out by itself: a peak within damage.
+    """
+    inside = fine[first : last + 1]
+    high = np.flatnonzero(inside > np.nanmax(inside) / 4)
+    if high.size == 0:
+        return first, last
+    rest = np.concatenate([inside[: high[0]], inside[high[-1] + 1 :]])
+    if rest.size and np.mean(rest > CANDIDATE_SIGMA * null.run_sigma(3)) > 0.25:
+        return first, last
+    return first + int(high[0]), first + int(high[-1])
 
 
 def _run(
