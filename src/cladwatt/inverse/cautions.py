@@ -10,6 +10,8 @@ __all__ = ["cautions_of", "missing_of", "remarks_of", "verdict_caps"]
 
 TOUCH_CAUTION = ZERO_CELSIUS + 48.9
 """120 °F, above which the US DOE steam tip sheet 2 advises to insulate. [K]"""
+NOTICEABLE_ANGLE = 0.2
+"""Foreshortening is mentioned beyond this: it shortens lengths by 2 %. [rad]"""
 
 
 def missing_of(seen: Seen) -> tuple[Remark, ...]:
@@ -27,7 +29,7 @@ def missing_of(seen: Seen) -> tuple[Remark, ...]:
 def cautions_of(seen: Seen) -> tuple[Remark, ...]:
     """Return cautions for people: hot surface, service limit, water under the lagging."""
     cautions = []
-    temperatures = seen.median_temperature()[seen.usable]
+    temperatures = seen.median_temperature[seen.usable]
     hottest = float(np.max(temperatures[np.isfinite(temperatures)], initial=0.0))
     if hottest > TOUCH_CAUTION:
         cautions.append(_celsius("caution.touch", temperature_C=hottest))
@@ -39,7 +41,7 @@ def cautions_of(seen: Seen) -> tuple[Remark, ...]:
             _celsius("caution.service_limit", temperature_C=inside.value, limit_C=limit)
         )
     dew = seen.dew_point()
-    if dew is not None and seen.below_dew_point().any():
+    if dew is not None and seen.below_dew_point.any():
         cautions.append(_celsius("caution.dew_point", dew_point_C=dew))
     return tuple(cautions)
 
@@ -54,8 +56,9 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
     masked = float(1 - np.isfinite(seen.lens).mean())
     if masked > 0.02:
         remarks.append(Remark("remark.masked_share", (("share", masked),)))
-    if seen.strip.foreshortened:
-        remarks.append(Remark("remark.foreshortening"))
+    if seen.strip.receding_angle > NOTICEABLE_ANGLE:
+        angle = float(np.degrees(seen.strip.receding_angle))
+        remarks.append(Remark("remark.foreshortening", (("angle_deg", angle),)))
     return tuple(remarks)
 
 
@@ -63,7 +66,7 @@ def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
     """Return the reasons that allow an indicative verdict at most."""
     conditions = seen.conditions
     sun = conditions.solar_irradiance
-    below = seen.below_dew_point()[seen.usable].mean()
+    below = seen.below_dew_point[seen.usable].mean()
     reasons = {
         "indicative.sun": bool(conditions.sun_on_pipe or (sun is not None and sun.value > 0)),
         "indicative.traced": seen.line.tracing.kind != "none",

@@ -2,6 +2,7 @@
 
 import math
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 
@@ -131,15 +132,17 @@ class Seen:
             return None
         return float(dew_point(air.value, humidity.value))
 
+    @cached_property
     def below_dew_point(self) -> BoolArray:
-        """Return the stations whose median temperature is below the dew point."""
+        """Stations whose median temperature is below the dew point."""
         dew = self.dew_point()
         if dew is None:
             return np.zeros(self.usable.size, dtype=bool)
-        return np.asarray(self.usable & (self.median_temperature() < dew))
+        return np.asarray(self.usable & (self.median_temperature < dew))
 
+    @cached_property
     def median_temperature(self) -> FloatArray:
-        """Return the median surface temperature per station, NaN in gaps, (n_stations,). [K]"""
+        """Median surface temperature per station, NaN in gaps, (n_stations,). [K]"""
         return np.asarray(np.median(self.drawn.surface_temperature, axis=0))
 
     @property

@@ -66,7 +66,9 @@ def _quantiles(draws: FloatArray) -> FloatArray:
     """Return 2.5, 50 and 97.5 percentiles over the draws, (3, n_stations)."""
     last = draws.shape[0] - 1
     picks = np.rint(np.array([0.025, 0.5, 0.975]) * last).astype(int)
-    return np.asarray(np.partition(draws, picks, axis=0)[picks])
+    # contiguous per station: several times quicker than picking across rows
+    ordered = np.partition(np.ascontiguousarray(draws.T), picks, axis=1)
+    return np.asarray(ordered[:, picks].T)
 
 
 def _resistances(seen: Seen, loss: FloatArray) -> FloatArray:
@@ -94,7 +96,7 @@ def _flags(seen: Seen) -> IntArray:
     flags[(clipped > 0).any(axis=0)] |= StationFlag.CLIPPED
     impossible = ~np.isfinite(seen.drawn.surface_temperature)
     flags[seen.usable & (impossible.mean(axis=0) > INFEASIBLE_SHARE)] |= StationFlag.INFEASIBLE
-    below = seen.below_dew_point()
+    below = seen.below_dew_point
     flags[below] |= StationFlag.BELOW_DEW_POINT
-    flags[below & (seen.median_temperature() < ZERO_CELSIUS)] |= StationFlag.FROST
+    flags[below & (seen.median_temperature < ZERO_CELSIUS)] |= StationFlag.FROST
     return flags

@@ -45,8 +45,8 @@ class Strip:
         Relative standard uncertainty of every length, common to all stations.
     nearer : float
         Factor by which lengths shrink since the near surface is what is drawn.
-    foreshortened : bool
-        Whether the axis runs towards or away from the camera noticeably.
+    receding_angle : float
+        Angle between the axis and the image plane as the growth of the width shows it. [rad]
     """
 
     station: FloatArray
@@ -59,7 +59,7 @@ class Strip:
     sample_y: FloatArray
     scale_uncertainty: float
     nearer: float
-    foreshortened: bool
+    receding_angle: float
 
     @property
     def view_angle(self) -> FloatArray:
@@ -155,7 +155,7 @@ def straighten(
         sample_y=y + across[:, None] * half * normal_y,
         scale_uncertainty=scale_u,
         nearer=1 - nearer,
-        foreshortened=bool(_width_growth(along, width) * columns > 0.02),
+        receding_angle=math.atan(focal * _width_growth(along, width)),
     )
 
 
@@ -180,11 +180,11 @@ def _normals(
 
 
 def _width_growth(along: FloatArray, width: FloatArray) -> float:
-    """Return |d(1/w)/ds| times the mean width: relative growth of the width per pixel."""
+    """Return |d(1/w)/ds| times the median width: relative growth of the width per pixel."""
     if along.size < 8:
         return 0.0
     slope = np.polyfit(along, 1 / width, 1)[0]
-    return float(abs(slope) * np.mean(width))
+    return float(abs(slope) * np.median(width))
 
 
 def _stations(
