@@ -56,7 +56,14 @@ class Case:
     probability: float
     """That it is damaged."""
     verdict: str
+    image: float
+    """Loss by the image alone, the specification unused; NaN where it gives none."""
+    image_low: float
+    image_high: float
     specified: float
+    """At the declared values and laboratory conductivity."""
+    as_specified: float
+    """Sound at the declared values, the image unused."""
     spreadsheet: float
     """What the spreadsheet makes of it; NaN where it gives no number."""
     long_overlap: float = NAN

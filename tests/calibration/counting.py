@@ -16,6 +16,7 @@ __all__ = [
     "overlap_of",
     "percentile_band",
     "relative_errors",
+    "relative_widths",
     "resamples",
     "rms_log_error",
     "roc_area",
@@ -33,6 +34,12 @@ def coverage(low: FloatArray, high: FloatArray, truth: FloatArray) -> float:
 def relative_errors(estimate: FloatArray, truth: FloatArray) -> FloatArray:
     """Return the size of each error over the size of the truth."""
     return np.asarray(np.abs(estimate - truth) / np.abs(truth))
+
+
+def relative_widths(low: FloatArray, high: FloatArray, middle: FloatArray) -> FloatArray:
+    """Return full widths over the size of the middle; infinite where that is zero."""
+    size = np.abs(middle)
+    return np.asarray(np.where(size > 0, (high - low) / np.where(size > 0, size, 1.0), np.inf))
 
 
 def wrong_signs(estimate: FloatArray, truth: FloatArray) -> BoolArray:

@@ -14,6 +14,10 @@ from pathlib import Path
 from typing import Any
 
 import numpy as np
+from tests.calibration.baselines import declared_losses, spreadsheet_loss
+from tests.calibration.cases import LOCAL_KINDS, Case
+from tests.calibration.counting import longest_run, overlap_of
+from tests.calibration.oracle import with_true_inputs
 
 from cladwatt.assess import assess
 from cladwatt.results.assessment import RegionResult, Settings
@@ -22,10 +26,6 @@ from cladwatt.survey.survey import Survey
 from cladwatt.survey.survey_file import read_survey
 from cladwatt.synthetic.sample import write_sample
 from cladwatt.types import FloatArray
-from tests.calibration.cases import LOCAL_KINDS, Case
-from tests.calibration.counting import longest_run, overlap_of
-from tests.calibration.oracle import with_true_inputs
-from tests.calibration.spreadsheet import spreadsheet_loss
 
 __all__ = ["SurveyCases", "assessed", "survey_cases"]
 
@@ -155,12 +155,13 @@ def _case(
 ) -> Case:  # fmt: skip
     assert result.heat_loss is not None
     assert result.sound_loss is not None
-    assert result.specified_loss is not None
     assert result.probability_damaged is not None
+    nan = float("nan")
     line = survey.lines[true["tag"]]
     conditions = survey.frame(true["frame_id"]).conditions
     quarter, three_quarters = np.nanquantile(result.draws["heat_loss"], [0.25, 0.75])
     ratio = true["heat_loss_W_per_m"] / true["sound_loss_W_per_m"]
+    specified, as_specified = declared_losses(line, conditions)
     matters = _matters(true, truth["lines"][true["tag"]], stations)
     overlap, offset = _stretch_scores(true, result, matters)
     return Case(
@@ -191,7 +192,11 @@ def _case(
         length_high=result.length.high,
         probability=result.probability_damaged,
         verdict=result.verdict.level,
-        specified=result.specified_loss.median,
+        image=nan if result.image_loss is None else result.image_loss.median,
+        image_low=nan if result.image_loss is None else result.image_loss.low,
+        image_high=nan if result.image_loss is None else result.image_loss.high,
+        specified=specified,
+        as_specified=as_specified,
         spreadsheet=spreadsheet,
         long_overlap=overlap,
         short_offset=offset,
