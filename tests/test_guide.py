@@ -1,0 +1,66 @@
+"""Pages of the guide that are made by a command are what the command makes."""
+
+import re
+import runpy
+from pathlib import Path
+
+import pytest
+
+import cladwatt
+from cladwatt.survey.keys import FRAME, LAYER, REGION, REGION_VALUES, SECTIONS
+
+CLONE = Path(__file__).parent.parent
+PACKAGE = Path(cladwatt.__file__).parent
+inputs = runpy.run_path(str(CLONE / "tests" / "guide_inputs.py"))
+PAGES = sorted((PACKAGE / "guide").glob("*.md"))
+
+
+def test_the_page_of_inputs_is_the_one_made_from_the_keys():
+    page = inputs["PAGE"].read_text(encoding="utf-8")
+    assert page == inputs["page_text"](), "run python -m tests.guide_inputs"
+
+
+def test_every_key_is_on_the_page_of_inputs():
+    page = inputs["page_text"]()
+    keys = [key for part in SECTIONS if part.name != "frame" for key in part.keys]
+    keys += [key for key in FRAME if key.default != "as set for the whole survey"]
+    keys += [*LAYER, *REGION, *REGION_VALUES.values()]
+    assert [key.usual for key in keys if f"| `{key.usual}` |" not in page] == []
+
+
+def test_what_is_kept_only_is_used_by_nothing():
+    attributes = {"latitude": "latitude_deg", "longitude": "longitude_deg", "roll": "roll_deg",
+                  "wind_angle": "wind_angle_deg", "tracer_clock_position": "clock_position",
+                  "tracer_temperature": "tracing.temperature",
+                  "tracer_power": "tracing.power"}  # fmt: skip
+    names = [attributes.get(name, name) for name in inputs["RECORDED_ONLY"]]
+    taken = re.compile("|".join(rf"\.{re.escape(name)}\b" for name in names))
+    sources = [PACKAGE / "assess.py"]
+    for part in ("physics", "measure", "inverse", "report"):
+        sources += (PACKAGE / part).glob("*.py")
+    used = {path.name: taken.findall(path.read_text("utf-8")) for path in sources}
+    assert {name: found for name, found in used.items() if found} == {}
+
+
+def test_defaults_that_are_not_shown_are_looked_up_by_nothing():
+    sources = "\n".join(path.read_text("utf-8") for path in (PACKAGE / "survey").glob("*.py"))
+    lookups = set(re.findall(r"""default_quantity\(\s*f?["'](\w+)""", sources))
+    lookups |= set(re.findall(r"""_default\(table, "\w+", "(\w+)\"""", sources))
+    assert lookups
+    assert lookups & inputs["NOT_TAKEN"] == set()
+
+
+@pytest.mark.parametrize("page", PAGES, ids=lambda page: page.name)
+def test_links_of_the_guide_lead_somewhere(page):
+    targets = re.findall(r"\]\(([^)#\s]+)[^)]*\)", page.read_text(encoding="utf-8"))
+    inside = [target for target in targets if not target.startswith(("http:", "https:"))]
+    assert [target for target in inside if not (page.parent / target).exists()] == []
+
+
+def test_modules_named_in_the_documents_exist():
+    missing = []
+    for document in [*PAGES, CLONE / "DEVELOPERS.md"]:
+        for name in re.findall(r"`((?:[a-z_0-9]+/)+[a-z_0-9]+\.py)`", document.read_text("utf-8")):
+            if not ((PACKAGE / name).exists() or (CLONE / name).exists()):
+                missing.append(f"{document.name}: {name}")
+    assert missing == []
