@@ -1,0 +1,110 @@
+"""The values on the guide's page of the method are those the program computes with."""
+
+import math
+from pathlib import Path
+
+import pytest
+
+import cladwatt
+from cladwatt import Settings
+from cladwatt.inverse import (
+    bare,
+    cautions,
+    conditions,
+    hidden_side,
+    joint,
+    null,
+    observe,
+    references,
+    stretch_results,
+    stretches,
+    verdict,
+)
+from cladwatt.measure import strip
+from cladwatt.physics.constants import ZERO_CELSIUS
+from cladwatt.physics.field_methods import MINIMUM_SEPARATION
+
+FOLDER = Path(cladwatt.__file__).parent / "guide"
+PAGE = " ".join((FOLDER / "method.md").read_text(encoding="utf-8").split())
+
+
+def percent(share: float) -> str:
+    return f"{100 * share:.3g} %"
+
+
+VALUES = [
+    f"emissivity of foil | {references.FOIL_EMISSIVITY.value}, u {references.FOIL_EMISSIVITY.u} |",
+    f"emissivity of tape | {references.TAPE_EMISSIVITY.value}, u {references.TAPE_EMISSIVITY.u} |",
+    f"u of a contact reading | {references.CONTACT_U} K |",
+    f"what the cladding mirrors | {references.FOIL_U} K |",
+    f"u of a background by its own emissivity | {references.BACKGROUND_EMISSIVITY_U} K |",
+    f"since tape changes the heat balance | {percent(references.TAPE_U_RELATIVE)} |",
+    f"Less than {MINIMUM_SEPARATION:g} K from the reflected temperature",
+    f"within {math.degrees(math.asin(strip.WIDEST_FRACTION)):.0f}° is used, and "
+    f"{strip.EDGE_MARGIN_PX} px are kept clear",
+    f"u of a drawn edge | {strip.OUTLINE_ERROR_PX} px |",
+    f"where none is declared | {strip.UNKNOWN_VIEW_DEG:.0f}°,",
+    f"{percent(observe.COMPONENT_MARGIN)} of the width, at least 3 px |",
+    f"u of the law in still air | {percent(conditions.CONVECTION_SIGMA_STILL)} |",
+    f"u of the law in wind | {percent(conditions.CONVECTION_SIGMA_WIND)} |",
+    f"band and total emissivity | {conditions.EMISSIVITY_CORRELATION} |",
+    f"where no diameter is known | {observe.UNKNOWN_DIAMETER} m,",
+    f"({Settings().draws} draws by default)",
+    f"by {stretches.CANDIDATE_SIGMA} u are candidates",
+    f"patches hang together | {null.PATCH_LENGTH} m |",
+    f"prior of local damage in a region | {stretches.PRIOR_LOCAL} |",
+    f"contrast of damage | 0 to {stretches.LARGEST_CONTRAST:g} u,",
+    f"Student, {stretches.NULL_FREEDOM:g} degrees of freedom |",
+    f"damaged from | {percent(stretch_results.LOCAL_THRESHOLD)} above",
+    f"Stretches below {percent(stretch_results.SMALLEST_PROBABILITY)} are not listed",
+    f"is within {percent(bare.NEAR_FLUID)} of the fluid's temperature",
+    f"bare steel | {bare.BARE_EMISSIVITY.value}, u {bare.BARE_EMISSIVITY.u} |",
+    f"outside of the wall | 0 to {percent(bare.WALL_DROP)} of fluid minus air |",
+    f"cut ends lose or shelter | {percent(bare.ENDS_U)} |",
+    f"prior of bare against a missing sector | {bare.PRIOR_BARE} |",
+    f"a missing sector opens | {bare.SECTOR_SHARE[0]} to {bare.SECTOR_SHARE[1]},",
+    f"beside the pipe | {bare.EDGE_SIGMA:g} K and {percent(bare.EDGE_SIGMA_SHARE)} of",
+    f"unevenness of sound lagging around the pipe | u {percent(hidden_side.UNEVENNESS)} |",
+    f"goes all round | {hidden_side.ALL_ROUND_EVEN} for an even face, "
+    f"{hidden_side.ALL_ROUND_UNEVEN} for an uneven one",
+    f"over strongest band) | {hidden_side.EVEN_FROM}, {hidden_side.UNEVEN_BELOW} |",
+    *(f"| {s.mean:.2f} | {s.sigma:.2f} | {s.prior:.2f} |" for s in joint.STATES),
+    f"more than {joint.LARGEST_DISAGREEMENT} u away from every state",
+    f"sound loss is below {observe.SMALLEST_SOUND_LOSS:g} W/m",
+    f"more than {percent(verdict.INFEASIBLE_SHARE)} of the draws are beyond",
+    f"narrower than {percent(verdict.INDICATIVE_WIDTH)} of its median",
+    f"narrower than {percent(verdict.QUANTIFIED_WIDTH)}; three measuring spots",
+    f"at {verdict.VISIBLE_RISE_SIGMAS:g} u of the contrast "
+    f"({verdict.VISIBLE_RISE_SIGMAS_METAL:g} u at emissivity below {verdict.METAL_EMISSIVITY})",
+    f"above {cautions.TOUCH_CAUTION - ZERO_CELSIUS:.1f} °C",
+]
+
+
+@pytest.mark.parametrize("value", VALUES)
+def test_a_value_on_the_page_is_the_program_s(value):
+    assert value in PAGE
+
+
+def test_words_for_numbers():
+    assert observe.BANDS_OF_ANGLE == 5
+    assert "Five bands of angle" in PAGE
+    assert joint.MOST_TOGETHER == 5
+    assert "More than five regions in a frame are taken in groups of five" in PAGE
+    assert conditions.SHARED_SHARE == 2 / 3
+    assert "| 2/3 of the variance |" in PAGE
+    assert verdict.SPOTS_ACROSS == 3
+    assert verdict.LEAST_GAIN == 0.1
+    assert "by at least a tenth" in PAGE
+
+
+def test_what_each_measurement_would_leave():
+    names = {"advice.tape_patch": "tape patch", "advice.reflector": "foil",
+             "advice.contact_temperature": "contact temperature",
+             "advice.air_temperature": "air temperature", "advice.other_hour": "another hour",
+             "advice.wind": "wind", "advice.closer_frame": "closer frame"}  # fmt: skip
+    missing = [
+        f"{names[key]} {percent(left)}"
+        for key, left in verdict._ADVICE.values()
+        if f"{names[key]} {percent(left)}" not in PAGE
+    ]
+    assert missing == []
