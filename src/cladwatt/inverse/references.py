@@ -123,6 +123,9 @@ def with_frame_references(
         if reading.region.value is None or not np.isfinite(reading.reading):
             remarks.append(_set_aside(reading, "no known temperature or no usable pixels"))
             continue
+        if not np.any(frame.calibration_offset(np.array([reading.reading]))):
+            remarks.append(_set_aside(reading, "the camera is declared without error"))
+            continue
         known = book.quantity(f"region:{reading.region.id}", "value", reading.region.value)
         known = known + BACKGROUND_EMISSIVITY_U * book.normal(
             f"region:{reading.region.id}", "emissivity"
@@ -190,6 +193,10 @@ def with_emissivity(
     for reading in readings:
         if reading.region.tag != tag or reading.region.role not in ("tape", "contact"):
             continue
+        lacking = _lacking(reading)
+        if lacking is not None:
+            remarks.append(_set_aside(reading, lacking))
+            continue
         found = _emissivity(reading, frame, book)
         usable = np.isfinite(found) & (found > 0.01) & (found < 1.0)
         if usable.mean() < 0.5:
@@ -201,17 +208,22 @@ def with_emissivity(
     return line, tuple(remarks)
 
 
+def _lacking(reading: ReferenceReading) -> str | None:
+    """Return what a tape patch or contact reading lacks, None where it is complete."""
+    if not np.isfinite(reading.reading):
+        return "no usable pixels"
+    if reading.region.role == "contact":
+        return "no contact temperature given" if reading.region.value is None else None
+    return None if np.isfinite(reading.beside) else "no usable pixels of the pipe beside it"
+
+
 def _emissivity(reading: ReferenceReading, frame: FrameDraws, book: DrawBook) -> FloatArray:
     """Return draws of the emissivity beside a patch or at a contact reading; NaN where none."""
     owner = f"region:{reading.region.id}"
-    nothing = np.full(frame.count, np.nan)
-    if not np.isfinite(reading.reading):
-        return nothing
     seen = reading.reading + frame.calibration_offset(np.array([reading.reading]))[:, 0]
     if reading.region.role == "contact":
-        if reading.region.value is None:
-            return nothing
         contact = reading.region.value
+        assert contact is not None
         if contact.u == 0:
             contact = replace(contact, u=CONTACT_U)
         return emissivity_from_contact(
@@ -222,8 +234,6 @@ def _emissivity(reading: ReferenceReading, frame: FrameDraws, book: DrawBook) ->
             transmission=frame.transmission,
             atmosphere_temperature=frame.air_temperature,
         )
-    if not np.isfinite(reading.beside):
-        return nothing
     beside = reading.beside + frame.calibration_offset(np.array([reading.beside]))[:, 0]
     emissivity = emissivity_from_reference(
         beside,
