@@ -31,9 +31,12 @@ _HEAD = """\
 
 Are the intervals as wide as they should be, and no wider? How often is a sound pipe called damaged,
 and a damaged one sound? This page counts, on surveys whose truth is known because they are
-simulated. It is made by `{command}` from a clone; every number on it comes from that run
-({seeds} surveys, {frames} frames, {regions} regions, {draws} draws each; {left_out} regions came
-to no loss and are in no table).
+simulated. It is made from a clone by
+
+    {command}
+
+and every number on it comes from that run: {seeds} surveys, {frames} frames, {regions} regions,
+{draws} draws each. Regions that came to no loss and are in no table: {left_out}.
 
 ![Reliability of the probability, and coverage by group](images/calibration.svg)
 
@@ -67,8 +70,11 @@ part in that. That a region is damaged is decided at P > 0.5, fixed beforehand.
 _LIMITS = """\
 ## What is not counted here
 
-- Other people's plants and simulators: plant, damage and scatter are ours, and the estimator's
-  authors knew them.
+- Other people's plants and simulators: plant, damage and scatter are ours, and known to those
+  who wrote the estimator.
+- The convection law's form, air properties, conduction curves and the emissivity against viewing
+  angle: generator and estimator use the same formulas, the generator with other values. They are
+  checked against published values in the tests instead.
 - Kinds of damage beyond local and throughout: the assessment does not yet tell them apart.
 - Sun on the pipe, rain, start-up, and declared uncertainties that are themselves wrong.
 """
@@ -84,8 +90,9 @@ def page_text(summary: Summary, run: Run) -> str:
             first=run.first_seed, last=run.last_seed,
         ),
         "## What was aimed at, and what was reached\n\n",
-        "A line with a band is met where the band of 95 % from resampling whole frames overlaps "
-        "the range, for coverage; elsewhere the number itself decides.\n\n",
+        "Behind a number stands its 95 % band from resampling whole frames, since the regions of\n"
+        "a frame share its errors. A range of coverage is met where the band overlaps it;\n"
+        "elsewhere the number itself decides.\n\n",
         _markdown(aims),
         "\n",
         _shortfalls(summary),

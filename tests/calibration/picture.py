@@ -8,11 +8,11 @@ from cladwatt.report.svg import Axis, Drawing
 
 __all__ = ["picture"]
 
-_WIDTH, _PAD_TOP, _PLOT = 1040.0, 76.0, 380.0
+_WIDTH, _PAD_TOP, _PLOT = 1130.0, 76.0, 380.0
 _LEFT = 72.0
 _ROW = 25.0
-_LABELS = 640.0
-_BARS = (660.0, 950.0)
+_LABELS = 736.0
+_BARS = (756.0, 1046.0)
 _RANGE_95, _FLOOR_95 = (0.93, 0.97), 0.88
 _LEAST_SHOWN = 5
 """Tenths and groups of fewer regions say nothing in a picture."""
@@ -102,7 +102,7 @@ def _coverage(drawing: Drawing, groups: list[tuple[str, Counted]]) -> None:
     along = Axis(max(0.0, int(lowest * 20) / 20), 1.0, *_BARS)
     bottom = _PAD_TOP + _ROW * len(groups)
     _title(
-        drawing, 500, "How often is the truth inside the 95 % interval of the loss?",
+        drawing, 524, "Is the truth inside the 95 % interval of the loss?",
         f"By group, with the band from resampling frames; open: under {LEAST_CASES} regions",
     )  # fmt: skip
     low, high = _RANGE_95
