@@ -163,6 +163,30 @@ def test_two_stretches_far_apart_stay_two():
     assert [run.contrast for run in runs] == pytest.approx([3.0, 5.0], rel=0.05)
 
 
+@pytest.mark.parametrize("heights", [(4.0, 4.0), (8.0, 3.0), (20.0, 3.0), (3.0, 9.0)], ids=str)
+def test_two_stretches_that_a_wide_scale_marks_as_one_stay_two(heights):
+    for seed in range(10):
+        profile = null_profile(seed, 240, PAINT)
+        profile[40:70] += heights[0]
+        profile[150:210] += heights[1]
+        runs = find_runs(profile, PAINT, sign=1, diameter_stations=48)
+        likely = [run for run in runs if run.probability > 0.5]
+        edges = [(run.first, run.last) for run in likely]
+        assert np.abs(np.subtract(edges, [(40, 69), (150, 209)])).max() <= 1
+
+
+def test_the_tail_of_a_spread_step_is_no_second_stretch():
+    from scipy.ndimage import gaussian_filter1d
+
+    for seed in range(10):
+        profile = null_profile(seed, 300, PAINT)
+        profile += gaussian_filter1d(step(300, 110, 190, 15.0, level=0.0), 10.0)
+        runs = find_runs(profile, PAINT, sign=1, diameter_stations=48)
+        (run,) = [run for run in runs if run.probability > 0.5]
+        assert abs(run.first - 110) <= 2
+        assert abs(run.last - 190) <= 2
+
+
 def test_two_stretches_closer_than_a_quarter_diameter_are_one():
     profile = step(300, 100, 140, 4.0) + step(300, 146, 190, 4.0, level=0.0)
     (run,) = find_runs(profile, SMOOTH, sign=1, diameter_stations=40)

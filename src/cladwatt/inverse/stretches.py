@@ -76,9 +76,7 @@ def find_runs(
     marked = _candidates(excess, null, diameter_stations)
     fine = moving_mean(excess, 3)
     runs = [
-        run
-        for span in _spans(marked & usable)
-        if (run := _run(fine, excess, *_narrowed(fine, *span, null), null)) is not None
+        run for span in _spans(marked & usable) for run in _runs_within(fine, excess, *span, null)
     ]
     return _merged(runs, excess, null, diameter_stations)
 
@@ -112,6 +110,32 @@ def _spans(marked: BoolArray) -> list[tuple[int, int]]:
     """Return first and last index of each run of True."""
     edges = np.flatnonzero(np.diff(np.concatenate([[0], marked.astype(int), [0]])))
     return [(int(first), int(end) - 1) for first, end in zip(edges[::2], edges[1::2], strict=True)]
+
+
+def _runs_within(
+    fine: FloatArray, excess: FloatArray, first: int, last: int, null: NullModel
+) -> list[Run]:
+    """Return the strongest run of a candidate, and those that stand apart from it.
+
+    A wide scale marks two runs and the sound lagging between them as one. Beside the strongest
+    one only what is likely damage by itself counts, and only beyond a valley: not its tail.
+    """
+    strongest = _run(fine, excess, *_narrowed(fine, first, last, null), null)
+    if strongest is None:
+        return []
+    runs = [strongest]
+    high = fine > CANDIDATE_SIGMA * null.run_sigma(3)
+    high[strongest.stations] = False
+    high[:first] = high[last + 1 :] = False
+    for start, end in _spans(high):
+        before = end < strongest.first
+        valley = fine[end + 1 : strongest.first] if before else fine[strongest.last + 1 : start]
+        if not np.any(valley < 0.5 * np.max(fine[start : end + 1])):
+            continue
+        run = _run(fine, excess, start, end, null)
+        if run is not None and run.probability > 0.5:
+            runs.append(run)
+    return runs
 
 
 def _narrowed(fine: FloatArray, first: int, last: int, null: NullModel) -> tuple[int, int]:
