@@ -270,6 +270,13 @@ class TestSummary:
         assert not aim.met(Counted(0.90, 0.86, 0.92, 100, 100))
         assert not replace(aim, by_band=False).met(Counted(0.90, 0.86, 0.94, 100, 100))
 
+    def test_what_is_missed_by_less_than_a_digit_shows_it(self):
+        cases = [replace(CASE, seed=s, probability=math.sqrt(0.11004)) for s in range(60)]
+        lines = {line.words: line for line in judged(summarise(columns_of(cases), samples=5))}
+        assert lines["Brier score, all regions"].met is False
+        assert lines["Brier score, all regions"].aim == "at most 0.110"
+        assert lines["Brier score, all regions"].reached == "0.11004"
+
     def test_spreadsheet_beside_it(self, summary):
         lines = {line.words: line for line in summary.estimators}
         # 160 of 200 is 20 % off, and above 1.25 times 87; so is no sound one at 100

@@ -101,8 +101,12 @@ def _judged(summary: Summary, aim: Aim) -> list[Judged]:
     words = f"{measure.words}, {GROUPS[aim.group][0]}"
     if counted is None:
         return [Judged(words, _limits(aim), "no such region", 0, None)]
-    reached = shown(counted.value, measure.shown, counted.low, counted.high)
     met = aim.met(counted) if counted.judged else None
+    reached = shown(counted.value, measure.shown, counted.low, counted.high)
+    limits = {shown(limit, measure.shown) for limit in (aim.low, aim.high)}
+    if met is False and shown(counted.value, measure.shown) in limits:
+        # missed by less than a digit: show the digits that tell them apart
+        reached = shown(counted.value, measure.shown, counted.low, counted.high, more_digits=2)
     return [Judged(words, _limits(aim), reached, counted.number, met)]
 
 

@@ -5,17 +5,26 @@ import math
 __all__ = ["plain_table", "shown"]
 
 
-def shown(value: float, how: str, low: float | None = None, high: float | None = None) -> str:
+def shown(
+    value: float,
+    how: str,
+    low: float | None = None,
+    high: float | None = None,
+    *,
+    more_digits: int = 0,
+) -> str:
     """Return a number in words, with its band behind it where one is given.
 
     Parameters
     ----------
     value, low, high : float
     how : {"percent", "plain", "count"}
+    more_digits : int
+        Of the value, not of its band.
     """
     if math.isnan(value):
         return "–"
-    text = _one(value, how)
+    text = _one(value, how, more_digits)
     if how == "percent":
         text += " %"
     if low is None or high is None or how == "count" or math.isnan(low) or math.isnan(high):
@@ -26,14 +35,14 @@ def shown(value: float, how: str, low: float | None = None, high: float | None =
     return f"{text} ({_one(low, how)} to {_one(high, how)})"
 
 
-def _one(value: float, how: str) -> str:
+def _one(value: float, how: str, more: int = 0) -> str:
     if math.isinf(value):
         return "∞"
     if how == "percent":
-        return f"{100 * value:.1f}".removesuffix(".0")
+        return f"{100 * value:.{1 + more}f}".removesuffix(".0")
     if how == "count":
         return f"{value:.0f}"
-    return f"{value:.3f}" if abs(value) < 1 else f"{value:.2f}"
+    return f"{value:.{(3 if abs(value) < 1 else 2) + more}f}"
 
 
 def plain_table(header: list[str], rows: list[list[str]]) -> str:
