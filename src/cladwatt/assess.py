@@ -44,6 +44,8 @@ Progress = Callable[[int, int, str], None]
 
 BLUR_MARGIN_PX = 2.0
 """How far left-out areas are widened: their rims are blurred into the pipe. [px]"""
+FEWEST_DRAWS = 40
+"""With fewer no draw lies beyond the 2.5 and 97.5 percentiles."""
 LEFT_OUT_ROLES = frozenset({"pipe", "leave_out", "foil", "tape", "contact"})
 """Whatever else is drawn over a pipe may not be used for it; crossing pipes hide each other."""
 
@@ -79,9 +81,11 @@ def assess(
     Raises
     ------
     InputError
-        If settings are out of range.
+        If there are fewer than `FEWEST_DRAWS` draws.
     """
     settings = settings or Settings()
+    if settings.draws < FEWEST_DRAWS:
+        raise InputError(f"draws is {settings.draws}; expected at least {FEWEST_DRAWS}")
     frames: list[FrameResult] = []
     for result in _frame_results(survey, settings, workers, executor):
         frames.append(result)
