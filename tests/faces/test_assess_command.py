@@ -60,6 +60,18 @@ def test_json_summary_is_json_and_nothing_else(cladwatt, survey):
     assert (survey / "results").samefile(summary["results"])
 
 
+@pytest.mark.parametrize("line", ["dn = 100\n", "lagging_thickness_mm = 50\n"])
+def test_a_line_of_unknown_diameter_is_left_without_metres(cladwatt, survey, edit, line):
+    edit(line, "")
+    ended = cladwatt("assess", survey, *DRAWS)
+    assert ended.code == ExitCode.DONE, ended.err
+    regions = pd.read_csv(survey / "results" / "regions.csv").set_index("region_id")
+    assert np.isnan(regions.loc["north-1", "heat_loss_W_per_m"])
+    assert regions.loc["north-1", "heat_flux_W_per_m2"] > 0
+    assert np.isfinite(regions.loc["south-1", "heat_loss_W_per_m"])
+    assert "along the drawn line, pixels" in (survey / "results" / "report.html").read_text("utf-8")
+
+
 def test_quiet_says_nothing(cladwatt, survey):
     ended = cladwatt("--quiet", "assess", survey, *DRAWS)
     assert (ended.code, ended.out, ended.err) == (0, "", "")

@@ -185,3 +185,20 @@ def test_one_bare_stretch_does_not_take_the_colours_from_the_rest_of_its_line(in
     assert common_limits(plain, [plain, near]) == temperature_limits(plain, near)
     assert common_limits(plain, [plain, near, bare]) == temperature_limits(plain)
     assert common_limits(bare, [plain, near, bare]) == temperature_limits(plain, near, bare)
+
+
+def test_without_a_scale_the_strip_counts_pixels(invented):
+    region = invented.region(level="not quantified", reason=Remark("not_quantified.no_diameter"))
+    table, nothing = region.stations, np.full(region.stations.station.shape, np.nan)
+    unscaled = replace(
+        region, stations=replace(table, station=nothing, length=nothing),
+        start_station=np.nan, end_station=np.nan, stretches=(),
+    )  # fmt: skip
+    root = drawn(unscaled)
+    said = words(root)
+    assert "along the drawn line, pixels" in said
+    assert "station along the line, m" not in said
+    # the invented stations lie 3 pixels apart: 159 steps
+    assert "400" in said
+    assert "from 0.0 to 477.0 pixels" in root.find(f"{SVG}desc").text
+    assert "nan" not in strip_svg(unscaled, air_temperature=None).lower()

@@ -80,14 +80,14 @@ def draw_ratio(sheet: Sheet, top: float) -> None:
 
 
 def draw_metres(sheet: Sheet, y: float) -> None:
-    """Draw the axis of metres under the panels."""
+    """Draw the axis along the pipe under the panels."""
     ticks = sheet.metres.ticks(8)
     for tick in ticks:
         x = sheet.metres(tick)
         sheet.svg.line(x, y, x, y + TICK, stroke=colours.INK)
         sheet.svg.text(x, y + 19, format_number(tick, tick_decimals(ticks), NUMBER),
                       text_anchor="middle", font_size=SMALL, fill=colours.INK)  # fmt: skip
-    sheet.svg.text((LEFT + RIGHT) / 2, y + 38, sheet.say("metres"), text_anchor="middle",
+    sheet.svg.text((LEFT + RIGHT) / 2, y + 38, sheet.say(sheet.along), text_anchor="middle",
                   font_size=SMALL, fill=colours.INK)  # fmt: skip
     if left_out_runs(sheet.region, sheet.metres.low, sheet.metres.high):
         sheet.svg.rect(RIGHT + 12, y + 27, 18, 12, fill=sheet.hatch, stroke=colours.QUIET,

@@ -1,13 +1,14 @@
 """The strip picture: a pipe straightened into metres, what it shows and what it loses."""
 
 import hashlib
+import math
 
 from cladwatt.report import colours
 from cladwatt.report.numbers import as_gain, format_interval, format_number
 from cladwatt.report.strip_curves import draw_loss, draw_metres, draw_ratio
 from cladwatt.report.strip_face import draw_face, temperature_limits
 from cladwatt.report.strip_marks import draw_marks, draw_tints, label_rows, stretch_label
-from cladwatt.report.strip_series import series_of
+from cladwatt.report.strip_series import series_of, with_pixels
 from cladwatt.report.strip_sheet import (
     FACE_HEIGHT,
     FACE_TOP,
@@ -61,6 +62,9 @@ def strip_svg(
     str
         A complete SVG, self-contained, its ids unique to the region.
     """
+    scaled = math.isfinite(region.start_station) and math.isfinite(region.end_station)
+    if not scaled:
+        region = with_pixels(region)
     low, high = sorted((region.start_station, region.end_station))
     metres = Axis(low, high if high > low else low + 1.0, LEFT, RIGHT)
     rows = label_rows(region, metres, language)
@@ -70,7 +74,7 @@ def strip_svg(
         top + PANELS + FOOT,
         _prefix(region, heading),
         _title(region, language),
-        _description(region, metres, language),
+        _description(region, metres, language, "strip" if scaled else "strip_pixels"),
         top=0.0 if heading else TITLE_Y + 14,
     )
     svg.rect(0, 0, WIDTH, svg.height, fill=colours.PAPER)
@@ -83,6 +87,7 @@ def strip_svg(
         limits=limits or temperature_limits(region),
         hatch=svg.hatch(),
         language=language,
+        along="metres" if scaled else "pixels",
     )
     if heading:
         _draw_heading(sheet)
@@ -122,12 +127,12 @@ def _title(region: RegionResult, language: str, tag: int = 2000, rest: int = 200
     )
 
 
-def _description(region: RegionResult, metres: Axis, language: str) -> str:
+def _description(region: RegionResult, metres: Axis, language: str, along: str) -> str:
     def say(key: str, **parameters: str) -> str:
         return text(f"strip.described_{key}", language, **parameters)
 
     start, end = format_number(metres.low, 1), format_number(metres.high, 1)
-    parts = [say("strip", start=start, end=end)]
+    parts = [say(along, start=start, end=end)]
     if region.verdict.level == "not quantified":
         parts.append(say("not_quantified"))
     elif region.heat_loss is not None:

@@ -1,6 +1,6 @@
 """What a strip picture plots: station figures in ascending order, gaps, and picture columns."""
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -8,7 +8,7 @@ from cladwatt.flags import StationFlag
 from cladwatt.results.assessment import RegionResult
 from cladwatt.types import BoolArray, FloatArray, IntArray
 
-__all__ = ["Series", "left_out_runs", "resample_columns", "series_of"]
+__all__ = ["Series", "left_out_runs", "resample_columns", "series_of", "with_pixels"]
 
 MOST_COLUMNS = 1000
 
@@ -78,6 +78,17 @@ def series_of(region: RegionResult) -> Series:
         ratio_low=clean(ratio_low),
         ratio_high=clean(ratio_high),
     )
+
+
+def with_pixels(region: RegionResult) -> RegionResult:
+    """Return a region of unknown scale with its stations counted in pixels of the frame."""
+    table = region.stations
+    steps = np.hypot(np.diff(table.x), np.diff(table.y))
+    along = np.concatenate(([0.0], np.cumsum(steps)))[: table.station.size]
+    length = np.full(along.shape, float(np.mean(steps)) if steps.size else 1.0)
+    ends = (float(along[0]), float(along[-1])) if along.size else (0.0, 1.0)
+    counted = replace(table, station=along, length=length)
+    return replace(region, stations=counted, start_station=ends[0], end_station=ends[1])
 
 
 def _usable(region: RegionResult) -> BoolArray:

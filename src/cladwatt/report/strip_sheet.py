@@ -39,6 +39,8 @@ class Sheet:
     hatch: str
     """Paint of what was left out."""
     language: str
+    along: str = "metres"
+    """What the long axis counts: "metres", or "pixels" where there is no scale."""
 
     def say(self, key: str, **parameters: float | str) -> str:
         """Return a text of the picture."""
