@@ -505,6 +505,15 @@ def test_more_than_the_fluid_can_give_is_no_number(bench, line_with):
     assert result.verdict.reason.key == "not_quantified.infeasible"
 
 
+def test_the_caution_names_the_hottest_place_and_no_mean_across(bench):
+    lens = bench.lens(310.0)
+    # the middle third of the face shows 380 K along 40 pixels
+    patch = np.s_[40:56, 120:160]
+    lens[patch] = bench.lens(380.0)[patch]
+    (caution,) = (c for c in bench.alone(lens).cautions if c.key == "caution.touch")
+    assert dict(caution.parameters)["temperature_C"] == pytest.approx(106.85, abs=0.5)
+
+
 def test_cautions_are_for_people_and_lagging(bench, hall_with, chilled, keys):
     (layer,) = bench.line.layers
     weak = replace(layer.conductivity, maximum_service_temperature=400.0)

@@ -2,6 +2,7 @@
 
 import numpy as np
 
+from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.seen import Seen
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.quantities import Remark
@@ -10,6 +11,8 @@ __all__ = ["cautions_of", "missing_of", "remarks_of", "verdict_caps"]
 
 TOUCH_CAUTION = ZERO_CELSIUS + 48.9
 """120 °F, above which the US DOE steam tip sheet 2 advises to insulate. [K]"""
+TRUSTED_EMISSIVITY = 0.5
+"""Below this single pixels are left to the mean across: what they mirror weighs too much. [-]"""
 NOTICEABLE_ANGLE = 0.2
 """Foreshortening is mentioned beyond this: it shortens lengths by 2 %. [rad]"""
 
@@ -29,8 +32,7 @@ def missing_of(seen: Seen) -> tuple[Remark, ...]:
 def cautions_of(seen: Seen) -> tuple[Remark, ...]:
     """Return cautions for people: hot surface, service limit, water under the lagging."""
     cautions = []
-    temperatures = seen.median_temperature[seen.usable]
-    hottest = float(np.max(temperatures[np.isfinite(temperatures)], initial=0.0))
+    hottest = _hottest(seen)
     if hottest > TOUCH_CAUTION:
         cautions.append(_celsius("caution.touch", temperature_C=hottest))
     inside = seen.line.inside_temperature
@@ -44,6 +46,25 @@ def cautions_of(seen: Seen) -> tuple[Remark, ...]:
     if dew is not None and seen.below_dew_point.any():
         cautions.append(_celsius("caution.dew_point", dew_point_C=dew))
     return tuple(cautions)
+
+
+def _hottest(seen: Seen) -> float:
+    """Return the hottest place of the seen face, at the draws' median, 0 where none is. [K]
+
+    Three stations are averaged, so that one bad pixel does not speak for a surface; a mean across
+    the pipe would hide a bare side.
+    """
+    along = seen.median_temperature[seen.usable]
+    hottest = float(np.max(along[np.isfinite(along)], initial=0.0))
+    lens = np.where(seen.usable, seen.lens, np.nan)
+    three = (lens[:, :-2] + lens[:, 1:-1] + lens[:, 2:]) / 3
+    three = three[np.isfinite(three)]
+    if seen.emissivity < TRUSTED_EMISSIVITY or three.size == 0:
+        return hottest
+    drawn = surface_temperature_draws(
+        np.array([three.max()]), np.zeros(1), seen.frame, seen.line_draws
+    )
+    return max(hottest, float(np.nan_to_num(np.nanmedian(drawn))))
 
 
 def _celsius(key: str, **temperatures: float) -> Remark:
