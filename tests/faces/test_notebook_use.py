@@ -18,11 +18,11 @@ def test_read_assess_tables_write_read(survey, tmp_path):
     hot = stations[stations["region_id"] == "north-1"]
     assert hot["heat_loss_W_per_m"].max() > 1.5 * hot["heat_loss_W_per_m"].median()
     folder = cladwatt.write_results(
-        assessment, tmp_path / "results", survey_root=read.root,
+        assessment, str(tmp_path / "results"), survey_root=str(read.root),
         extra=lambda place: cladwatt.write_report(assessment, place),
     )  # fmt: skip
     assert (folder / "report.html").stat().st_size > 1000
-    again = cladwatt.read_results(folder)
+    again = cladwatt.read_results(str(folder))
     assert again.total_loss == assessment.total_loss
     assert cladwatt.stations_table(again).equals(stations)
     assert cladwatt.regions_table(again).equals(regions)

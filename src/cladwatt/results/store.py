@@ -38,9 +38,9 @@ _LITTER = frozenset({".DS_Store", "Thumbs.db", "desktop.ini", ".directory"})
 
 def write_results(
     assessment: Assessment,
-    folder: Path,
+    folder: str | Path,
     *,
-    survey_root: Path | None = None,
+    survey_root: str | Path | None = None,
     extra: Callable[[Path], None] | None = None,
 ) -> Path:
     """Write a results folder, all of it or nothing.
@@ -49,10 +49,10 @@ def write_results(
     ----------
     assessment : Assessment
         What one run found.
-    folder : Path
+    folder : str or Path
         Folder to write; may be missing, empty, or hold earlier results, which stay whole until
         the new ones are complete.
-    survey_root : Path, optional
+    survey_root : str or Path, optional
         Survey folder, which must not be the results folder itself.
     extra : callable, optional
         Called with the folder being written, to add further files (reports, pictures) before it
@@ -73,6 +73,8 @@ def write_results(
     -----
     Equal assessments and extra files give identical bytes; no file carries a date.
     """
+    folder = Path(folder)
+    survey_root = None if survey_root is None else Path(survey_root)
     try:
         target = folder.resolve()
         check_target(folder, survey_root)
@@ -225,12 +227,12 @@ def _some(names: list[str]) -> str:
     return ", ".join(names[:3]) + more
 
 
-def read_results(folder: Path) -> Assessment:
+def read_results(folder: str | Path) -> Assessment:
     """Read a results folder back.
 
     Parameters
     ----------
-    folder : Path
+    folder : str or Path
         Folder written by :func:`write_results`.
 
     Returns
@@ -243,6 +245,7 @@ def read_results(folder: Path) -> Assessment:
     ResultsError
         If it is no results folder, incomplete, damaged or of another version.
     """
+    folder = Path(folder)
     target = folder.resolve()
     try:
         restore_if_missing(target)
