@@ -8,8 +8,9 @@ import numpy as np
 import pytest
 
 from cladwatt.quantities import Remark
-from cladwatt.report.findings import ranked_findings, where_damaged
+from cladwatt.report.findings import is_finding, ranked_findings, where_damaged
 from cladwatt.report.html_report import report_html, write_report
+from cladwatt.report.views import region_view
 from cladwatt.results.assessment import Assumption, Interval
 
 VOID = {"meta", "br", "link", "img", "hr", "input"}
@@ -97,6 +98,30 @@ def test_not_quantified_prints_no_number(invented):
     for interval in (roof.heat_loss, roof.total_loss, roof.excess):
         assert f"{interval.low:.0f}" not in figures
     assert "240" in article  # the reason's relative width, in percent
+
+
+def test_a_region_without_number_stands_among_what_could_not_be_quantified(page):
+    listed = page.words.split("What could not be assessed or quantified")[1]
+    listed = listed.split("The regions")[0]
+    assert "region roof-1" in listed
+    assert "240" in listed  # the reason's relative width, in percent
+
+
+def test_a_pipe_too_narrow_to_be_measured_is_no_finding(invented):
+    reason = Remark("not_quantified.too_narrow", (("width_px", 2.0),))
+    narrow = invented.region(level="not quantified", reason=reason, damaged=0.97)
+    assert not is_finding(narrow)
+    assert is_finding(invented.region(damaged=0.97))
+
+
+def test_the_part_of_the_variance_nothing_declared_carries_is_said(invented):
+    shares = (("convection", 0.07), ("wind_speed", 0.02), ("diameter", 0.001))
+    view = region_view(invented.region(variance_shares=shares), "a", "", "en")
+    assert view.shares.startswith("convection model 7")
+    assert "all else" in view.shares
+    assert "91" in view.shares
+    whole = region_view(invented.region(variance_shares=(("convection", 0.95),)), "a", "", "en")
+    assert "all else" not in whole.shares
 
 
 def test_every_input_and_setting_is_named(page):

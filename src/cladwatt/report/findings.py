@@ -53,7 +53,12 @@ def _likelihood(region: RegionResult) -> float | None:
 
 
 def is_finding(region: RegionResult) -> bool:
-    """Return whether damage somewhere in the region is at least as likely as not."""
+    """Return whether damage somewhere in the region is at least as likely as not.
+
+    A pipe under three pixels wide carries no evidence either way.
+    """
+    if region.verdict.reason.key == "not_quantified.too_narrow":
+        return False
     probability = _likelihood(region)
     return probability is not None and probability >= LIKELY
 

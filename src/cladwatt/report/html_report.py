@@ -97,6 +97,9 @@ def report_html(assessment: Assessment, *, language: str = "en") -> str:
     findings = ranked_findings(assessment)
     ordered = views.region_order(assessment, findings)
     anchors = {region.region_id: f"region-{i}" for i, region in enumerate(ordered, 1)}
+    shown = [
+        views.region_view(r, anchors[r.region_id], drawn[r.region_id], language) for r in ordered
+    ]
     context = {
         "language": language,
         "assessment": assessment,
@@ -108,10 +111,8 @@ def report_html(assessment: Assessment, *, language: str = "en") -> str:
         "findings": [
             views.finding_view(item, anchors[item.region.region_id], language) for item in findings
         ],
-        "regions": [
-            views.region_view(r, anchors[r.region_id], drawn[r.region_id], language)
-            for r in ordered
-        ],
+        "regions": shown,
+        "unquantified_regions": [view for view in shown if view.level == "not-quantified"],
         "lines": [views.line_view(line, language) for line in assessment.lines],
         "left_out": all_left_out(assessment),
         "survey_remarks": [sentence(r, language) for r in unique_remarks(assessment.remarks)],

@@ -36,6 +36,7 @@ __all__ = [
 ]
 
 MOST_SHARES = 4
+NOTABLE_REST = 0.1
 
 
 @dataclass(frozen=True)
@@ -135,11 +136,6 @@ def finding_view(finding: Finding, anchor: str, language: str) -> FindingView:
 
 def region_view(region: RegionResult, anchor: str, svg: str, language: str) -> RegionView:
     """Return a region ready to print."""
-    shares = ", ".join(
-        f"{quantity_name(name, language)} {format_probability(share)}"
-        for name, share in region.variance_shares[:MOST_SHARES]
-        if share >= 0.01
-    )
 
     def words(remarks: tuple[Remark, ...]) -> tuple[str, ...]:
         return tuple(sentence(remark, language) for remark in unique_remarks(remarks))
@@ -154,11 +150,24 @@ def region_view(region: RegionResult, anchor: str, svg: str, language: str) -> R
         level=region.verdict.level.replace(" ", "-"),
         reason=sentence(region.verdict.reason, language),
         advice=_advice(region, language),
-        shares=shares,
+        shares=_shares(region, language),
         missing=words(region.missing),
         cautions=words(region.cautions),
         remarks=words(region.remarks),
     )
+
+
+def _shares(region: RegionResult, language: str) -> str:
+    """Return what the variance comes from, the rest that no declared quantity carries with it."""
+    named = [(n, share) for n, share in region.variance_shares[:MOST_SHARES] if share >= 0.01]
+    words = [
+        f"{quantity_name(name, language)} {format_probability(share)}" for name, share in named
+    ]
+    rest = 1.0 - sum(share for _, share in named)
+    if named and rest >= NOTABLE_REST:
+        share = format_probability(rest)
+        words.append(text("report.shares_rest", language, share=share))
+    return ", ".join(words)
 
 
 def _figures(region: RegionResult, language: str) -> list[tuple[str, str]]:
