@@ -125,6 +125,12 @@ def test_earlier_results_are_replaced(cladwatt, survey):
     assert (survey / "results" / "assessment.json").read_bytes() != before
 
 
+def test_a_question_about_a_frame_is_pointed_to(cladwatt, survey, edit):
+    # numbers near 20 declared °F lie 27 K below the declared air: asked, not refused
+    edit('steam.tiff"\nunit = "C"', 'steam.tiff"\nunit = "F"')
+    assert "1 question" in cladwatt("assess", survey, *DRAWS).err
+
+
 def test_questions_are_pointed_to(cladwatt, survey, edit):
     edit("date = 2026-03-18\n", "")
     ended = cladwatt("assess", survey, *DRAWS)

@@ -25,6 +25,18 @@ def test_questions_alone_give_0_and_stand_apart(cladwatt, survey, edit):
     assert "survey.date" in ended.out
 
 
+def test_a_faulty_key_is_not_missing_as_well(cladwatt, survey, edit):
+    edit("\nair_temperature_C = 20.0", '\nair_temperature_C = "20.0"')
+    ended = cladwatt("check", survey)
+    assert ended.out.count("air_temperature_C: air_temperature_C") == 1
+    assert "Questions" not in ended.out
+
+
+def test_a_tag_that_differs_by_case_alone_is_pointed_to(cladwatt, survey):
+    swapped(survey / "regions" / "steam.geojson", "HS-101", "hs-101")
+    assert "nearest: HS-101" in cladwatt("check", survey).out
+
+
 def test_every_fault_at_once_with_file_line_key(cladwatt, survey, edit):
     edit("lagging_thickness_mm = 50", "lagging_thickness_mm = -50")
     edit('cladding = "painted_steel"\nfluid_temperature_C = 6.0',

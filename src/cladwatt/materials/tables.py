@@ -156,7 +156,7 @@ def pipe_size(
             label,
             "the table has no such pipe size",
             f"nearest are {', '.join(f'{n:g}' for n in sorted(near))}; or declare "
-            "outside_diameter_mm, or add a row to tables/pipe_sizes.csv beside the survey",
+            "pipe_outside_diameter_mm, or add a row to tables/pipe_sizes.csv beside the survey",
         )
     )
 
@@ -208,7 +208,7 @@ def pipe_outside_diameter(
         label = f"DN {dn}" if nps is None else f"NPS {nps}"
         other = "ASME" if chosen == "EN" else "EN"
         found = f"the {chosen} series has no outside diameter for it"
-        expected = f"expected series {other!r}, or a declared outside_diameter_mm"
+        expected = f"expected series {other!r}, or a declared pipe_outside_diameter_mm"
         raise TableError(Fault("pipe_sizes.csv", label, found, expected))
     return diameter
 

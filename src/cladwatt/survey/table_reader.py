@@ -24,7 +24,10 @@ __all__ = ["Table", "nearest", "read_table"]
 
 def nearest(word: str, known: Iterable[str]) -> str:
     """Return ``; nearest: a, b`` or an empty text."""
-    close = difflib.get_close_matches(word, list(known), n=3, cutoff=0.6)
+    # without regard to case: what differs by case alone is the nearest there is
+    spelled = {name.casefold(): name for name in known}
+    close = difflib.get_close_matches(word.casefold(), list(spelled), n=3, cutoff=0.6)
+    close = [spelled[name] for name in close]
     return f" (nearest: {', '.join(close)})" if close else ""
 
 

@@ -148,6 +148,9 @@ def _closing_notes(
     survey: "Survey", assessment: "Assessment", options: argparse.Namespace, messages: Messages
 ) -> None:
     questions = sum(fault.severity == "question" for fault in survey.faults)
+    questions += sum(
+        remark.key == "remark.question" for frame in assessment.frames for remark in frame.remarks
+    )
     if questions:
         messages.note(
             f"{counted(questions, 'question')} about the survey; "
