@@ -105,7 +105,13 @@ def test_a_linear_function_moves_like_its_parts():
     assert update.apply(columns) == pytest.approx(np.stack([moved, -2 * moved], axis=1))
 
 
-@pytest.mark.parametrize("level", [-0.6, 4.0])
+@pytest.mark.parametrize("sigma", [0.05, 0.15, 0.3])
+def test_a_loss_some_times_the_specified_is_never_taken_for_sound(sigma):
+    found = [single(level, sigma)[0].aged["a"] for level in (1.3, 1.6, 2.0, 2.5, 3.0)]
+    assert min(found) > 0.98
+
+
+@pytest.mark.parametrize("level", [-0.6, 6.0])
 def test_a_level_no_state_explains_is_doubted(level):
     update, moved = single(level, 0.05)
     assert update.doubted == {"a"}
