@@ -177,7 +177,7 @@ def _sound_regions(
     shape = frame.shape
     wrong_labels = check_labels_against_frame(entry, shape, root=survey.root)
     if wrong_labels:  # nothing drawn on this frame can be trusted to lie where it should
-        return [], [LeftOut("region", "", entry.id, str(fault)) for fault in wrong_labels]
+        return [], [LeftOut("frame", entry.id, entry.id, str(fault)) for fault in wrong_labels]
     for region in survey.regions_of(entry.id):
         fault: Fault | None = check_region_against_frame(region, shape)
         if fault is None:

@@ -1,5 +1,6 @@
 """Every quantity an assessment rested on, with its source: nothing assumed unseen."""
 
+from cladwatt.measure.strip import UNKNOWN_VIEW_DEG
 from cladwatt.quantities import Quantity
 from cladwatt.results.assessment import Assumption
 from cladwatt.survey.model import Conditions, Line
@@ -62,6 +63,10 @@ def _camera(survey: Survey) -> list[Assumption]:
     ]
     if camera.noise is not None:
         rows.append(_row("camera", "noise", camera.noise, "K"))
+    if camera.field_of_view_deg is None:
+        # half of what it shortens lengths by is their uncertainty: about half of the angle
+        view, why = UNKNOWN_VIEW_DEG, "assumption, no source; half its effect on lengths is u"
+        rows.append(Assumption("camera", "field_of_view", view, view / 2, "deg", why, "low"))
     return rows
 
 

@@ -72,6 +72,30 @@ def test_a_line_of_unknown_diameter_is_left_without_metres(cladwatt, survey, edi
     assert "along the drawn line, pixels" in (survey / "results" / "report.html").read_text("utf-8")
 
 
+def test_a_faulty_label_image_leaves_its_frame_out_and_no_other(cladwatt, survey, edit):
+    (survey / "labels").mkdir()
+    painted = np.zeros((96, 160), np.uint8)
+    painted[33:63, 8:150] = 1
+    tifffile.imwrite(survey / "labels" / "steam.tiff", painted)
+    (survey / "labels" / "steam.csv").write_text("integer,id,tag\n")
+    (survey / "regions" / "steam.geojson").unlink()
+    edit('steam.tiff"\n', 'steam.tiff"\nlabels = "labels/steam.tiff"\n')
+    ended = cladwatt("assess", survey, *DRAWS)
+    assert ended.code == ExitCode.LEFT_OUT, ended.err
+    assert "frame steam: labels/steam.tiff" in ended.out
+    assert list(pd.read_csv(survey / "results" / "regions.csv")["region_id"]) == ["south-1"]
+
+
+def test_an_assumed_field_of_view_is_named(cladwatt, survey, edit):
+    cladwatt("assess", survey, *DRAWS)
+    report = (survey / "results" / "report.html").read_text("utf-8")
+    assert "field of view of the camera" in report
+    edit("noise_K = 0.05", "noise_K = 0.05\nfield_of_view_deg = 25")
+    cladwatt("assess", survey, *DRAWS)
+    report = (survey / "results" / "report.html").read_text("utf-8")
+    assert "field of view of the camera" not in report
+
+
 def test_quiet_says_nothing(cladwatt, survey):
     ended = cladwatt("--quiet", "assess", survey, *DRAWS)
     assert (ended.code, ended.out, ended.err) == (0, "", "")

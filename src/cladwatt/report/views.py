@@ -258,7 +258,9 @@ def _printed_unit(item: Assumption) -> tuple[float, str]:
         return 1e6, "µm"
     if item.unit == "m" and item.quantity.endswith(("thickness", "diameter")):
         return 1e3, "mm"
-    return 1.0, "" if item.unit in ("-", "", "1") else item.unit.replace("m2", "m²")
+    return 1.0, "" if item.unit in ("-", "", "1") else item.unit.replace("m2", "m²").replace(
+        "deg", "°"
+    )
 
 
 def _value_words(item: Assumption) -> tuple[str, str]:

@@ -245,6 +245,7 @@ def _fault(
         refusal.found,
         refusal.expected,
         line=refusal.line,
+        frame_id=frame_id,
         region_id=None if row is None else row.id,
         tag=None,
     )
