@@ -254,6 +254,7 @@ def test_a_file_instead_of_the_survey_folder(cladwatt, survey):
     ended = cladwatt("check", survey / "survey.toml")
     assert ended.code == ExitCode.COULD_NOT
     assert "this is a file" in ended.out
+    assert "it cannot be opened" not in ended.out
 
 
 def test_no_such_survey_folder(cladwatt, tmp_path):

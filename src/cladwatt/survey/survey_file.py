@@ -97,6 +97,8 @@ def _opened(root: Path) -> Source:
                 root, f"{SURVEY_FILE} {found}",
                 "expected a survey folder; `cladwatt start` makes one",
             )  # fmt: skip
+    except SurveyFileError:
+        raise  # a ValueError too
     except (OSError, ValueError) as error:
         raise _stop(root, f"it cannot be opened ({error})", "expected a survey folder") from None
     return Source(resolved)
