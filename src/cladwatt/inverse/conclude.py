@@ -7,7 +7,7 @@ from typing import NamedTuple
 import numpy as np
 
 from cladwatt.inverse.cautions import cautions_of, missing_of, remarks_of, verdict_caps
-from cladwatt.inverse.face import FaceDraws, surface_temperature_draws
+from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
 from cladwatt.inverse.observe import Balance, Observed
 from cladwatt.inverse.result import (
@@ -50,9 +50,10 @@ def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionR
     image_loss = _image_loss(observed.seen, observed.balance)
     shift = _Shift(updates)
     seen = _shifted_seen(observed.seen, shift)
-    balance = _shifted_balance(observed.balance, shift)
+    balance = _shifted_balance(observed, shift, seen.perimeter)
     aged = next((u.aged[seen.region.id] for u in updates if seen.region.id in u.aged), None)
-    result = _concluded(seen, balance, image_loss, aged, shift)
+    drivers = {name: shift(draws) for name, draws in _drivers(observed.seen).items()}
+    result = _concluded(seen, balance, image_loss, aged, drivers)
     if any(seen.region.id in update.doubted for update in updates):
         return replace(result, remarks=(*result.remarks, Remark("remark.specification_doubted")))
     return result
@@ -77,22 +78,53 @@ def _image_loss(seen: Seen, balance: Balance) -> Interval | None:
 
 
 def _shifted_seen(seen: Seen, shift: _Shift) -> Seen:
-    """Return what was seen with its temperatures moved; impossible draws count as coldest."""
+    """Return what was seen with what its conclusions rest on moved.
+
+    Impossible draws of the surface count as the coldest.
+    """
     temperature = seen.drawn.surface_temperature
     coldest = np.min(np.where(np.isfinite(temperature), temperature, np.inf), axis=0)
+    coldest = np.where(np.isfinite(coldest), coldest, COLDEST)
     filled = np.where(np.isfinite(temperature) | ~seen.usable, temperature, coldest)
-    return replace(seen, drawn=FaceDraws(shift(filled), seen.drawn.heat_flux))
+    inside = seen.line_draws.inside_temperature
+    return replace(
+        seen,
+        drawn=FaceDraws(shift(filled), seen.drawn.heat_flux),
+        diameter=np.exp(shift(np.log(seen.diameter))),
+        line_draws=replace(
+            seen.line_draws, inside_temperature=None if inside is None else shift(inside)
+        ),
+    )
 
 
-def _shifted_balance(balance: Balance, shift: _Shift) -> Balance:
-    sound = balance.sound
+def _shifted_balance(observed: Observed, shift: _Shift, perimeter: FloatArray) -> Balance:
+    """Move the balance; the sound level by its ratio to what sound lagging would lose.
+
+    Flux is sound loss times ratio: moved by itself, its draws would keep the sound loss's error
+    times a ratio that may be far off in them, on bright cladding many times the error.
+    """
+    balance = observed.balance
+    assert balance is not None
+    sound, base = balance.sound, shift(balance.base)
     if sound is not None:
         sound = SoundDraws(
-            np.sign(sound.heat_loss) * np.exp(shift(np.log(np.abs(sound.heat_loss)))),
-            np.sign(sound.specified_loss) * np.exp(shift(np.log(np.abs(sound.specified_loss)))),
+            _shifted_loss(sound.heat_loss, shift),
+            _shifted_loss(sound.specified_loss, shift),
             np.exp(shift(np.log(sound.specified_resistance))),
         )
-    return replace(balance, flux=shift(balance.flux), base=shift(balance.base), sound=sound)
+        evidence = observed.evidence()
+        if shift.updates and evidence is not None:
+            base = sound.heat_loss * (1 + shift(evidence.relative_excess)) / perimeter
+    contrast = shift(balance.flux - balance.base[:, None])
+    return replace(balance, flux=base[:, None] + contrast, base=base, sound=sound)
+
+
+def _shifted_loss(loss: FloatArray, shift: _Shift) -> FloatArray:
+    """Move a loss by its logarithm, which keeps its sign; as it is where it may change sign."""
+    size = np.abs(loss)
+    if np.ptp(np.sign(loss)) > 0 or not (size > 0.05 * np.median(size)).all():
+        return shift(loss)
+    return np.asarray(np.sign(loss) * np.exp(shift(np.log(size))))
 
 
 def _concluded(
@@ -100,7 +132,7 @@ def _concluded(
     balance: Balance,
     image_loss: Interval | None,
     aged_level: float | None,
-    shift: _Shift,
+    drivers: dict[str, FloatArray],
 ) -> RegionResult:
     bounds, sound = balance.bounds, balance.sound
     mean_flux = bounds.applied(seen.mean_along(balance.flux))
@@ -111,12 +143,11 @@ def _concluded(
     if seen.diameter_known:
         loss = seen.perimeter[:, None] * balance.flux
         draws |= _loss_draws(seen.perimeter * mean_flux, sound, draws["length"])
-        base_loss = seen.perimeter * bounds.applied(balance.base)
-        stretches = stretches_of(seen, balance.runs, loss, base_loss)
+        stretches = stretches_of(seen, balance.runs, loss, seen.perimeter * balance.base)
         local = float(1 - np.prod([1 - stretch.probability for stretch in stretches]))
         aged = None if aged_level is None else (1 - local) * aged_level
     heat_loss = _interval(draws, "heat_loss")
-    shares = variance_shares(draws["heat_loss"], _drivers(seen, shift)) if heat_loss else ()
+    shares = variance_shares(draws["heat_loss"], drivers) if heat_loss else ()
     inputs = VerdictInputs(
         heat_loss=heat_loss,
         excess=_interval(draws, "excess"),
@@ -218,14 +249,17 @@ class _Resistances(NamedTuple):
 def _resistances(seen: Seen, loss: FloatArray | None, sound: SoundDraws | None) -> _Resistances:
     """Return resistance, specified resistance, their ratio, and the effective conductivity.
 
-    Carried as conductances, since a loss may be zero, and turned over as quantiles.
+    Carried as conductances, since a loss may be zero, and turned over as quantiles. A draw with
+    no loss, or one against the fluid, is a conductance of nothing and stays among them; only
+    draws with the surface beyond the fluid's temperature tell nothing and are left out.
     """
     line = seen.line_draws
     if loss is None or line.inside_temperature is None:
         return _Resistances()
     drop = line.inside_temperature - seen.mean_along(seen.drawn.surface_temperature)
+    towards = np.sign(line.inside_temperature - seen.frame.air_temperature)
     with np.errstate(divide="ignore", invalid="ignore"):
-        conductance = np.where(drop * np.sign(loss) > 0, loss / drop, np.nan)
+        conductance = np.where(drop * towards > 0, np.maximum(loss / drop, 0.0), np.nan)
     specified = None if sound is None else sound.specified_resistance
     effective = None
     if line.pipe_diameter is not None and line.lagged_diameter is not None:
@@ -250,13 +284,13 @@ def _reciprocal(interval: Interval) -> Interval:
     return Interval(median, low, high)
 
 
-def _drivers(seen: Seen, shift: _Shift) -> dict[str, FloatArray]:
-    """Return the draws behind each quantity that may carry variance, moved like the rest."""
+def _drivers(seen: Seen) -> dict[str, FloatArray]:
+    """Return the draws behind each quantity that may carry variance."""
     frame, line = f"frame:{seen.region.frame_id}", f"line:{seen.line.tag}"
     overridden = seen.region.band_emissivity is not None
     cladding = seen.owner if overridden else line
     normal = seen.book.normal
-    drivers = {
+    return {
         "band_emissivity": seen.line_draws.band_emissivity,
         "total_emissivity": normal(cladding, "total_emissivity"),
         "reflected_temperature": normal(frame, "reflected_temperature"),
@@ -269,7 +303,6 @@ def _drivers(seen: Seen, shift: _Shift) -> dict[str, FloatArray]:
         "diameter": seen.diameter,
         "hidden_side": normal(seen.owner, "unevenness"),
     }
-    return {name: shift(values) for name, values in drivers.items()}
 
 
 def _visible_rise(seen: Seen, balance: Balance) -> float:
@@ -283,8 +316,9 @@ def _visible_rise(seen: Seen, balance: Balance) -> float:
         np.array([level - 0.5, level + 0.5]), np.zeros(1), seen.frame, seen.line_draws
     )[:, 0]
     exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
+    temperature = np.fmax(temperature, COLDEST)
     cooler, warmer = (surface_heat_flux(temperature[:, side], exchange) for side in (0, 1))
-    slope = float(np.nanmedian(warmer - cooler))
+    slope = float(np.median(warmer - cooler))
     if not slope > 0:
         return 0.0
     rise = 0.25 * abs(float(np.median(balance.base))) / slope
@@ -298,6 +332,6 @@ def _strip_temperature(seen: Seen) -> FloatArray:
     """
     nodes = np.linspace(np.nanmin(seen.lens) - 0.1, np.nanmax(seen.lens) + 0.1, 33)
     drawn = surface_temperature_draws(nodes, np.zeros(1), seen.frame, seen.line_draws)[:, 0]
-    field = np.interp(seen.lens, nodes, np.nanmedian(drawn, axis=0))
+    field = np.interp(seen.lens, nodes, np.median(np.fmax(drawn, COLDEST), axis=0))
     level = float(np.median(seen.mean_along(seen.drawn.surface_temperature)))
     return np.asarray(field + level - np.nanmean(field[:, seen.usable]))

@@ -16,9 +16,12 @@ from cladwatt.physics.lagged_pipe import SurfaceExchange, surface_heat_flux
 from cladwatt.physics.radiometry import object_radiance
 from cladwatt.types import FloatArray, FloatLike
 
-__all__ = ["FaceDraws", "face_draws", "surface_temperature_draws"]
+__all__ = ["COLDEST", "FaceDraws", "face_draws", "surface_temperature_draws"]
 
 NODES = 17
+COLDEST = 150.0
+"""What a surface counts as for its heat flux where a draw leaves it less radiance than that, or
+none: colder than any pipe, so that such draws stay recognisable and in step along the strip. [K]"""
 
 
 @dataclass(frozen=True)
@@ -28,7 +31,7 @@ class FaceDraws:
     surface_temperature: FloatArray
     """[K]"""
     heat_flux: FloatArray | None
-    """[W/m2]; None without wind."""
+    """[W/m2], finite wherever a station carries a number; None without wind."""
 
 
 def face_draws(
@@ -48,7 +51,8 @@ def face_draws(
     Returns
     -------
     FaceDraws
-        NaN where a draw's emissivity and reflected radiance leave no positive radiance.
+        Temperatures are NaN where a draw's emissivity and reflected radiance leave no positive
+        radiance.
 
     Notes
     -----
@@ -59,7 +63,7 @@ def face_draws(
     flux = None
     if frame.wind_speed is not None:
         exchange = _beside(line.exchange(frame, diameter))
-        flux = surface_heat_flux(temperature, exchange)
+        flux = surface_heat_flux(np.fmax(temperature, COLDEST), exchange)
     shares = face.extent / face.extent.sum()
     weights = np.concatenate(
         [
@@ -68,9 +72,19 @@ def face_draws(
         ]
     )
     return FaceDraws(
-        temperature.reshape(frame.count, -1) @ weights,
-        None if flux is None else flux.reshape(frame.count, -1) @ weights,
+        _read_off(temperature.reshape(frame.count, -1), weights),
+        None if flux is None else _read_off(flux.reshape(frame.count, -1), weights),
     )
+
+
+def _read_off(values: FloatArray, weights: FloatArray) -> FloatArray:
+    """Interpolate; NaN only at stations that lean on a NaN node, not along the whole strip."""
+    missing = np.isnan(values)
+    if not missing.any():
+        return np.asarray(values @ weights)
+    read = np.where(missing, 0.0, values) @ weights
+    leaning = missing.astype(float) @ (np.nan_to_num(weights) != 0).astype(float)
+    return np.where(leaning > 0, np.nan, read)
 
 
 def surface_temperature_draws(

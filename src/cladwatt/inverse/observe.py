@@ -49,7 +49,7 @@ class Balance:
     flux : (count, n_stations) array
         Over the whole circumference, NaN in gaps only. [W/m2]
     base : (count,) array
-        The same at the sound level. [W/m2]
+        The same at the sound level; like `flux` not yet held to the bounds. [W/m2]
     bounds : Bounds
     infeasible : float
         Share of draws of the mean flux beyond the bounds.
@@ -84,8 +84,9 @@ class Observed:
         sound = balance.sound.heat_loss
         if not (np.abs(sound) > SMALLEST_SOUND_LOSS).all() or np.ptp(np.sign(sound)) > 0:
             return None
-        relative = self.seen.perimeter * balance.bounds.applied(balance.base) / sound - 1
-        return LevelEvidence(self.seen.region.id, np.clip(relative, -2.0, 20.0))
+        # as seen, impossible or not: clipped here alone, draws would not be moved all the way
+        relative = self.seen.perimeter * balance.base / sound - 1
+        return LevelEvidence(self.seen.region.id, relative) if np.isfinite(relative).all() else None
 
 
 def observe_region(
@@ -222,6 +223,12 @@ def _is_gain(line: Line, conditions: Conditions) -> bool:
     return line.inside_temperature.value < conditions.air_temperature.value
 
 
+def _infeasible_share(seen: Seen, bounds: Bounds, flux: FloatArray) -> float:
+    """Return the share of draws without radiance somewhere, or with a mean beyond the bounds."""
+    dark = np.isnan(seen.drawn.surface_temperature[:, seen.usable]).any(axis=1)
+    return bounds.beyond(np.where(dark, np.nan, seen.mean_along(flux)))
+
+
 def _null(seen: Seen) -> NullModel:
     metres = seen.strip.length
     return null_of(
@@ -263,8 +270,8 @@ def _balance(seen: Seen) -> Balance | None:
         runs=runs,
         sound_at=sound_at,
         flux=bounds.filled(flux, seen.usable),
-        base=bounds.applied(base),
+        base=bounds.filled(base[:, None], np.ones(1, dtype=bool))[:, 0],
         bounds=bounds,
-        infeasible=bounds.beyond(seen.mean_along(flux)),
+        infeasible=_infeasible_share(seen, bounds, flux),
         sound=sound_draws(seen.line_draws, seen.frame) if seen.diameter_known else None,
     )

@@ -40,7 +40,7 @@ def stretches_of(
     loss : (count, n_stations) array
         [W/m]
     base_loss : (count,) array
-        At the sound level. [W/m]
+        At the sound level; like `loss` as seen, possible or not. [W/m]
 
     Returns
     -------
@@ -50,7 +50,7 @@ def stretches_of(
     scale = seen.length_draws() / float(np.sum(seen.strip.length[~seen.component_at]))
     weighed = [_weigh(seen, run, loss, base_loss, scale) for run in runs]
     kept = [one for one in weighed if one.probability > SMALLEST_PROBABILITY]
-    everything = sum(float(np.median(np.abs(one.excess))) for one in kept)
+    everything = max(sum(float(np.median(np.abs(one.excess))) for one in kept), 1e-12)
     return tuple(
         Stretch(
             id=f"{seen.region.id}:{number}",
@@ -72,7 +72,9 @@ def _weigh(
     metres = np.where(seen.usable, seen.strip.length, 0.0)[run.stations]
     inside = np.where(metres > 0, loss[:, run.stations], 0.0)
     mean = np.asarray(inside @ (metres / max(float(metres.sum()), 1e-12)))
-    above = np.abs(mean) > (1 + LOCAL_THRESHOLD) * np.abs(base_loss)
+    # a level against the fluid is impossible and does not speak against a clear contrast
+    sign = -1 if seen.gain else 1
+    above = sign * (mean - base_loss) > LOCAL_THRESHOLD * np.maximum(sign * base_loss, 0.0)
     excess = (mean - base_loss) * float(metres.sum()) * scale
     return _Weighed(run, mean, excess, float(run.probability * above.mean()))
 
