@@ -226,6 +226,19 @@ def test_a_known_background_narrows_the_cameras_offset(bench, drawn_box):
     assert offset.std() == pytest.approx(np.sqrt(declared * found / (declared + found)), rel=0.05)
 
 
+@pytest.mark.parametrize(("off", "used_up"), [(3.5, True), (36.0, False)])
+def test_a_background_beyond_the_cameras_accuracy_is_set_aside(bench, drawn_box, off, used_up):
+    # 3.5 * sqrt(4 / 3 + 0.13) = 4.2 K is the most that both uncertainties explain
+    rough = bench.but(count=2000, camera=Camera(accuracy=AccuracyStatement(2.0, 0.0)))
+    lens = bench.lens(SURFACE)
+    put(lens, FOIL_BOX, 293.15)
+    wall = drawn_box("wall", "background", *FOIL_BOX, value=Quantity(293.15 + off, 0.2))
+    before = rough.frame_draws().calibration
+    frame, remarks = used(read_references(lens, [wall]), rough)
+    assert [r.key for r in remarks] == ([] if used_up else ["remark.reading_not_used"])
+    assert np.array_equal(frame.calibration, before) != used_up
+
+
 def test_a_background_without_a_temperature_is_set_aside(bench, drawn_box, keys):
     wall = drawn_box("wall", "background", *FOIL_BOX)
     _, remarks = used(read_references(bench.lens(SURFACE), [wall]), bench)

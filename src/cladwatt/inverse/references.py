@@ -5,6 +5,7 @@ it, so what they share cancels where it should; then it is weighed against what 
 the inverse of the variances. A reading that cannot say anything is set aside with its reason.
 """
 
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
 
@@ -35,6 +36,8 @@ FOIL_U = 0.5
 """Mean over the half space against what this cladding reflects; assumption. [K]"""
 BACKGROUND_EMISSIVITY_U = 0.3
 """Error of a painted or brick background of known temperature by its emissivity. [K]"""
+BEYOND = 3.5
+"""Standard uncertainties beyond which a reading is broken and poisons all that it touches. [-]"""
 TAPE_U_RELATIVE = 0.04
 """Tape changes the heat balance where it sticks; assumption."""
 
@@ -130,7 +133,18 @@ def with_frame_references(
         known = known + BACKGROUND_EMISSIVITY_U * book.normal(
             f"region:{reading.region.id}", "emissivity"
         )
-        limit = frame.calibration_offset(np.array([reading.reading]))[:, 0] / frame.calibration
+        offset = frame.calibration_offset(np.array([reading.reading]))[:, 0]
+        limit = offset / frame.calibration
+        off = abs(float(np.median(known)) - reading.reading)
+        if off > BEYOND * math.hypot(float(np.std(offset)), float(np.std(known))):
+            remarks.append(
+                _set_aside(
+                    reading,
+                    f"the camera is {off:.1f} K off the temperature declared for it, more than "
+                    "both uncertainties explain; check its value and its place in the frame",
+                )
+            )
+            continue
         frame = replace(
             frame,
             calibration=_weighed(frame.calibration, (known - reading.reading) / limit),
