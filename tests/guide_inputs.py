@@ -6,6 +6,7 @@ from pathlib import Path
 from cladwatt.materials.load import shipped_tables
 from cladwatt.survey.keys import (
     LAYER,
+    PIECE,
     REGION,
     REGION_VALUES,
     SECTIONS,
@@ -18,9 +19,10 @@ PAGE = Path(__file__).parent.parent / "src/cladwatt/guide/inputs.md"
 
 RECORDED_ONLY = frozenset(
     {
-        "wind_angle", "roll", "sun_last_24h", "hours_at_temperature", "tracer_clock_position",
+        "wind_angle", "roll", "sun_last_24h", "tracer_clock_position",
         "tracer_temperature", "tracer_power", "pipe_material", "latitude", "longitude", "lagged",
-        "access",
+        "access", "cloud_cover", "surface_wet", "inside_film", "flow", "specific_heat",
+        "supports_allowance", "condition", "inner_emissivity", "outer_emissivity",
     }
 )  # fmt: skip
 """Read, checked and kept, but no number of this version depends on them."""
@@ -82,6 +84,8 @@ def page_text() -> str:
         parts.append(f"## `{name}`: {_title(part)}\n\n{_table(keys)}")
         if part.name == "line":
             parts.append(f"### `layers` of a line, each `{{ ... }}`\n\n{_table(LAYER)}")
+        if part.name == "conditions":
+            parts.append(f"### `surroundings` piece by piece, each `{{ ... }}`\n\n{_table(PIECE)}")
     parts.append(
         "## Properties of a region\n\n"
         "In `regions/FRAME.geojson`; coordinates are `[x, y]` in pixels, x right, y down, `[0, 0]` "
@@ -145,6 +149,7 @@ def _accepted(key: Key, unit: Unit) -> str:
     words = {
         "text": "text", "name": "text", "flag": "`true` or `false`", "date": "date",
         "time": "date and time", "file": "path", "size": "nominal size", "layers": "list",
+        "pieces": "list",
     }  # fmt: skip
     if key.kind in words:
         return words[key.kind]

@@ -7,7 +7,7 @@ from pathlib import Path
 import pytest
 
 import cladwatt
-from cladwatt.survey.keys import FRAME, LAYER, REGION, REGION_VALUES, SECTIONS
+from cladwatt.survey.keys import FRAME, LAYER, PIECE, REGION, REGION_VALUES, SECTIONS
 
 CLONE = Path(__file__).parent.parent
 PACKAGE = Path(cladwatt.__file__).parent
@@ -24,7 +24,7 @@ def test_every_key_is_on_the_page_of_inputs():
     page = inputs["page_text"]()
     keys = [key for part in SECTIONS if part.name != "frame" for key in part.keys]
     keys += [key for key in FRAME if key.default != "as set for the whole survey"]
-    keys += [*LAYER, *REGION, *REGION_VALUES.values()]
+    keys += [*LAYER, *PIECE, *REGION, *REGION_VALUES.values()]
     assert [key.usual for key in keys if f"| `{key.usual}` |" not in page] == []
 
 

@@ -77,6 +77,12 @@ UNITS: dict[str, tuple[Unit, ...]] = {
         Unit("kPa", 1e3, 0.0, "kPa"),
         Unit("bar", 1e5, 0.0, "bar"),
     ),
+    "steam pressure": (
+        Unit("bar", 1e5, 0.0, "bar"),
+        Unit("kPa", 1e3, 0.0, "kPa"),
+        Unit("MPa", 1e6, 0.0, "MPa"),
+        Unit("psi", 6894.757293168, 0.0, "psi"),
+    ),
     "angle": (Unit("deg", 1.0, 0.0, "degrees"),),
     "ratio": (Unit("", 1.0), Unit("percent", 0.01, 0.0, "%")),
     "percent": (Unit("percent", 1.0, 0.0, "%"),),
@@ -86,6 +92,12 @@ UNITS: dict[str, tuple[Unit, ...]] = {
     ),
     "power per length": (Unit("W_m", 1.0, 0.0, "W/m"),),
     "irradiance": (Unit("W_m2", 1.0, 0.0, "W/m2"),),
+    "film coefficient": (Unit("W_m2_K", 1.0, 0.0, "W/(m2 K)"),),
+    "mass flow": (Unit("kg_s", 1.0, 0.0, "kg/s"), Unit("kg_h", 1.0 / 3600.0, 0.0, "kg/h")),
+    "specific heat": (
+        Unit("J_kg_K", 1.0, 0.0, "J/(kg K)"),
+        Unit("kJ_kg_K", 1e3, 0.0, "kJ/(kg K)"),
+    ),
     "pixels": (Unit("px", 1.0, 0.0, "px"),),
 }
 

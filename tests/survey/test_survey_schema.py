@@ -135,7 +135,8 @@ def uncommented(text):
         "line_list = ", "frame_list = ", "nps = ", "pipe_outside_diameter_mm = ", "pipe_series = ",
         "u_pipe_outside_diameter_mm = ", "wall_temperature_C = ", "u_wall_temperature_C = ",
         "layers = ", "photo = ", "labels = ", "accuracy_coverage_factor = ", "tracer_", "u_tracer_",
-        "scale = ", "offset = ",
+        "scale = ", "offset = ", "spectral_response = ", "surroundings = ", "steam_pressure",
+        "u_steam_pressure",
     ):  # fmt: skip
         text = "\n".join(row for row in text.splitlines() if not row.startswith(line))
     return text

@@ -19,6 +19,8 @@ from cladwatt.units import Unit, units_of
 
 __all__ = [
     "CAMERA_PREFIX",
+    "LAYER",
+    "PIECE",
     "SECTIONS",
     "TOP_LEVEL",
     "UNKNOWN_WORD",
@@ -30,7 +32,7 @@ __all__ = [
 
 Kind = Literal[
     "text", "name", "flag", "choice", "date", "time", "file", "number", "integer", "quantity",
-    "size", "layers", "numbers",
+    "size", "layers", "pieces", "numbers",
 ]  # fmt: skip
 
 CAMERA_PREFIX = "camera_"
@@ -209,6 +211,11 @@ CAMERA = (
         "band_upper", "Long end of the band", "wavelength", lower=1e-6, upper=25e-6,
         default="14 µm", example="14.0",
     ),
+    Key(
+        "spectral_response", "file",
+        "CSV of the camera's response (columns wavelength_um, response), instead of the two ends",
+        example='"response.csv"',
+    ),
     _setting(
         "field_of_view", "Horizontal field of view", "angle", lower=0.5, upper=120.0, example="25"
     ),
@@ -268,6 +275,11 @@ CONDITIONS = (
         "surroundings_temperature", "What the pipe exchanges radiation with, sky left aside", u=2.0,
         default="the air temperature, u 2 K indoors, 10 K outdoors", lower=150.0, upper=800.0,
     ),
+    Key(
+        "surroundings", "pieces",
+        "What the pipe exchanges radiation with, piece by piece, instead of the key above",
+        example='[{ what = "wall", temperature_C = 18.0, view_factor = 1.0 }]',
+    ),
     _temperature(
         "reflected_temperature", "Reflected apparent temperature in the camera's band", u=2.0,
         default="the surroundings, u 2 K more indoors; the air, u 10 K outdoors",
@@ -301,7 +313,12 @@ CONDITIONS = (
     ),
     _temperature(
         "sky_total_temperature", "What the heat balance exchanges with in the sky", u=5.0,
-        lower=150.0, upper=330.0, example="-5.0",
+        lower=150.0, upper=330.0, example="-5.0", default="from cloud_cover where that is declared",
+    ),
+    Key(
+        "cloud_cover", "quantity",
+        "Share of the sky that is clouded; outdoors the total sky temperature follows from it",
+        "ratio", 0.0, 1.0, u=0.15, example="0.5",
     ),
     Key(
         "sky_view_factor", "quantity", "Share of the pipe's surroundings that is sky", "ratio",
@@ -314,6 +331,11 @@ CONDITIONS = (
     _flag("sun_on_pipe", "Whether the sun shone on the pipe"),
     _flag("rain_last_24h", "Whether it rained in the last 24 hours"),
     _flag("sun_last_24h", "Whether the sun shone on the pipe in the last 24 hours"),
+    _flag("surface_wet", "Whether the surface was wet when it was recorded"),
+    _flag(
+        "sheltered", "Whether walls or other pipes shelter the pipe from the wind: a wind speed"
+        " without its own u is taken as twice as uncertain",
+    ),
     _setting(
         "roll", "Direction of gravity in the frame: 0 is straight down, clockwise positive",
         "angle", lower=-180.0, upper=180.0, default="0", example="0",
@@ -382,8 +404,32 @@ FRAME = (
     *_in_a_frame(RECORDING, CAMERA_PREFIX),
 )  # fmt: skip
 
+PIECE = (
+    Key(
+        "what", "choice", "What this piece is",
+        choices=("sky", "ground", "wall", "roof", "floor", "neighbour", "other"), required=True,
+        example='"wall"',
+    ),
+    _temperature(
+        "temperature", "Of its surface; of the sky what the heat balance exchanges with", u=2.0,
+        lower=150.0, upper=1500.0, default="of the sky from cloud_cover where that is declared",
+        example="18.0",
+    ),
+    Key(
+        "view_factor", "quantity", "Its share of the pipe's surroundings; all sum to 1", "ratio",
+        0.0, 1.0, u=0.05, required=True, example="0.5",
+    ),
+)  # fmt: skip
+
 LAYER = (
-    Key("material", "name", "Name in the material tables, or unknown", required=True),
+    Key(
+        "kind", "choice", "Lagging or air between two surfaces", choices=("lagging", "air_gap"),
+        default="lagging", example='"lagging"',
+    ),
+    Key(
+        "material", "name", "Name in the material tables, or unknown; none for an air gap",
+        default="unknown", example='"mineral_wool"',
+    ),
     Key(
         "thickness", "quantity", "Of this layer", "length", 0.0, 1.0, lower_open=True,
         cut=(1e-4, 2.0), u_relative=0.05, ask=True, example="50",
@@ -397,6 +443,16 @@ LAYER = (
         "Mean temperature it is specified at: the table's curve is scaled to meet it",
         "temperature", lower=50.0, upper=1300.0,
         default="the specified conductivity holds at every temperature", example="50",
+    ),
+    Key(
+        "condition", "choice", "As found: dry, wet or frozen", choices=("dry", "wet", "ice"),
+        default="dry", example='"dry"',
+    ),
+    _emissivity(
+        "inner_emissivity", "Of an air gap: its face towards the pipe, total", "0.9, u 0.05"
+    ),
+    _emissivity(
+        "outer_emissivity", "Of an air gap: its face away from the pipe, total", "0.9, u 0.05"
     ),
 )  # fmt: skip
 
@@ -472,6 +528,35 @@ LINE = (
     _temperature(
         "wall_temperature", "Of the pipe wall, instead of the fluid's", u=2.0, example="160.0",
         lower=70.0, upper=1500.0,
+    ),
+    Key(
+        "steam_pressure", "quantity",
+        "Of saturated steam, instead of its temperature; steam_pressure_is must stand beside it",
+        "steam pressure", -1e5, 2.2e7, cut=(-1.1e5, 2.3e7), u=1e4, u_relative=0.02, example="7.0",
+    ),
+    Key(
+        "steam_pressure_is", "choice", "Over the air's pressure, or absolute; never guessed",
+        choices=("gauge", "absolute"), example='"gauge"',
+    ),
+    Key(
+        "inside_film", "quantity",
+        "Coefficient between fluid and pipe, on its outside surface, where it matters: gas, slow"
+        " water", "film coefficient", 0.1, 1e6, u_relative=0.3, default="neglected",
+        example="50",
+    ),
+    Key(
+        "flow", "quantity", "Of the fluid, for its fall of temperature along the line", "mass flow",
+        0.0, 1e5, lower_open=True, cut=(1e-9, 2e5), u_relative=0.1, example="0.5",
+    ),
+    Key(
+        "specific_heat", "quantity", "Of the fluid, for its fall of temperature", "specific heat",
+        100.0, 2e4, u_relative=0.03, example="4180",
+    ),
+    Key(
+        "supports_allowance", "quantity",
+        "Share of the sound loss that supports and spacers in the lagging add", "ratio", 0.0, 0.5,
+        u=0.01, u_relative=0.3, example="0.15",
+        default="0: the installation factor holds them",
     ),
     _setting(
         "inclination", "Of the axis: 0 horizontal, 90 vertical", "angle", lower=0.0, upper=90.0,

@@ -19,7 +19,7 @@ from cladwatt.quantities import Quantity
 from cladwatt.survey.fault_list import FaultList, shown
 from cladwatt.survey.keys import LAYER, UNKNOWN_WORD, Section
 from cladwatt.survey.model import Cladding, ConductivityCurve, Layer, Line, Tracing
-from cladwatt.survey.table_reader import Table, read_table
+from cladwatt.survey.table_reader import Table, read_list
 
 __all__ = ["build_line", "moved_total_emissivity"]
 
@@ -137,7 +137,7 @@ def _layers(table: Table, tables: MaterialTables, faults: FaultList) -> tuple[La
         if single:
             both = f"layers and {table.spelling(single[0])}"
             faults.add(table.place, "layers", f"{both} are both given", "expected one of them")
-        return _several_layers(table, raw, tables, faults)
+        return _several_layers(table, tables, faults)
     material = table.text("lagging_material")
     if material.lower() == _NO_LAGGING:
         for name in single[1:]:
@@ -151,33 +151,23 @@ def _layers(table: Table, tables: MaterialTables, faults: FaultList) -> tuple[La
     return () if layer is None else (layer,)
 
 
-def _several_layers(
-    table: Table, raw: object, tables: MaterialTables, faults: FaultList
-) -> tuple[Layer, ...]:
-    if not isinstance(raw, list) or not raw:
-        faults.add(
-            table.place, "layers", f"layers is {shown(raw)}",
-            "expected a list of tables, [{ material = ..., thickness_mm = ... }]",
-        )  # fmt: skip
-        return ()
-    layers = []
-    for number, item in enumerate(raw, start=1):
-        place = replace(
-            table.place,
-            prefix=table.place.where(f"layers[{number}]"),
-            line_of=lambda _key: table.place.line_of("layers"),
-        )
-        before = faults.errors
-        read = read_table(_LAYER_SECTION, item, place, faults)
-        layer = _layer(read, "", tables, faults) if faults.errors == before else None
-        if layer is not None:
-            layers.append(layer)
-    return tuple(layers)
+def _several_layers(table: Table, tables: MaterialTables, faults: FaultList) -> tuple[Layer, ...]:
+    found = [
+        _layer(one, "", tables, faults)
+        for one in read_list(_LAYER_SECTION, table, "layers", faults)
+    ]
+    return tuple(layer for layer in found if layer is not None)
 
 
 def _layer(table: Table, prefix: str, tables: MaterialTables, faults: FaultList) -> Layer | None:
     name = f"{prefix}material"
     material = table.text(name)
+    if not prefix and not material:
+        faults.add(
+            table.place, name, "material is missing",
+            f'expected a name in the material tables, or "{UNKNOWN_WORD}"',
+        )  # fmt: skip
+        return None
     declared = table.quantity(f"{prefix}conductivity")
     thickness = table.quantity(f"{prefix}thickness")
     curve, u_relative = None, 0.0

@@ -23,6 +23,7 @@ __all__ = [
     "Line",
     "Recording",
     "Site",
+    "SurroundingsPiece",
     "Tracing",
     "Window",
 ]
@@ -65,8 +66,12 @@ class Camera:
     serial: str = ""
     calibration_date: date | None = None
     band: tuple[float, float] = (7.5e-6, 14e-6)
-    """Lower and upper wavelength of the band. [m]"""
+    """Lower and upper wavelength of the band; of a spectral response, where it passes half of its
+    largest value. [m]"""
     band_source: str = "declared"
+    response: tuple[tuple[float, ...], tuple[float, ...]] | None = None
+    """Spectral response: wavelengths [m], increasing, and the relative response at each, linear
+    between and zero beyond; None where only the two ends of the band are known."""
     field_of_view_deg: float | None = None
     """Horizontal field of view."""
     noise: Quantity | None = None
@@ -102,12 +107,26 @@ class Recording:
 
 
 @dataclass(frozen=True)
+class SurroundingsPiece:
+    """One part of what the pipe exchanges radiation with, taken as black."""
+
+    what: Literal["sky", "ground", "wall", "roof", "floor", "neighbour", "other"]
+    temperature: Quantity
+    """[K]"""
+    view_factor: Quantity
+    """Share of the pipe's surroundings, 0..1; those of all pieces sum to 1 within 0.02."""
+
+
+@dataclass(frozen=True)
 class Conditions:
     """The conditions during one frame."""
 
     air_temperature: Quantity | None = None
     surroundings_temperature: Quantity | None = None
-    """Temperature of the radiative surroundings for the heat balance. [K]"""
+    """Temperature of the radiative surroundings for the heat balance; where they are declared in
+    pieces, that of uniform surroundings that give the same. [K]"""
+    surroundings_pieces: tuple[SurroundingsPiece, ...] = ()
+    """What the surroundings are made of, where declared piece by piece."""
     reflected_temperature: Quantity | None = None
     """Reflected apparent temperature in the camera's band. [K]"""
     relative_humidity: Quantity | None = None
@@ -127,11 +146,18 @@ class Conditions:
     """What the heat balance exchanges with. [K]"""
     sky_view_factor: Quantity | None = None
     """Share of the pipe's surroundings that is sky, 0..1."""
+    cloud_cover: Quantity | None = None
+    """Share of the sky that is clouded, 0..1; `sky_total_temperature` follows from it where no sky
+    or surroundings are declared."""
     solar_irradiance: Quantity | None = None
     """Irradiance absorbed over the projected area of the pipe. [W/m2]"""
     sun_on_pipe: bool | None = None
     rain_last_24h: bool | None = None
     sun_last_24h: bool | None = None
+    surface_wet: bool | None = None
+    """Whether the surface was wet when it was recorded."""
+    sheltered: bool | None = None
+    """Whether walls or other pipes shelter the pipe; widens a default u of the wind."""
     roll_deg: float = 0.0
     """Direction of gravity in the frame: 0 is straight down, positive clockwise."""
     window: Window | None = None
@@ -160,6 +186,20 @@ class Layer:
     conductivity: ConductivityCurve | None
     conductivity_factor: Quantity
     """Multiplies the curve; value 1, its u is the curve's relative uncertainty."""
+    kind: Literal["lagging", "air_gap"] = "lagging"
+    condition: Literal["dry", "wet", "ice"] = "dry"
+    """As found; `conductivity` is that of the dry material in any case."""
+    condition_factor: Quantity | None = None
+    """Conductivity as found over dry, lognormal between published bounds; None where dry, or
+    where no ratio is held for the material."""
+    inner_emissivity: Quantity | None = None
+    """Total emissivity of the face towards the pipe, of an air gap."""
+    outer_emissivity: Quantity | None = None
+    """Total emissivity of the face away from the pipe, of an air gap."""
+    density: Quantity | None = None
+    """[kg/m3]"""
+    specific_heat: Quantity | None = None
+    """[J/(kg K)]"""
 
 
 @dataclass(frozen=True)
@@ -215,6 +255,17 @@ class Line:
     hours_at_temperature: Quantity | None = None
     """Time at temperature before the survey. [h]"""
     note: str = ""
+    steam_pressure: Quantity | None = None
+    """Absolute pressure of saturated steam; `inside_temperature` follows from it. [Pa]"""
+    inside_film: Quantity | None = None
+    """Coefficient between fluid and pipe wall, on the pipe's outside surface; None where it is
+    neglected. [W/(m2 K)]"""
+    flow: Quantity | None = None
+    """Mass flow. [kg/s]"""
+    specific_heat: Quantity | None = None
+    """Of the fluid, for its fall of temperature along the line. [J/(kg K)]"""
+    supports_allowance: Quantity = field(default_factory=lambda: Quantity(0.0))
+    """Share of the sound loss that supports and spacers add to it."""
 
     @property
     def lagged_diameter(self) -> float | None:

@@ -6,6 +6,7 @@ from pathlib import Path
 
 from cladwatt.survey.keys import (
     LAYER,
+    PIECE,
     REGION,
     REGION_VALUES,
     ROLES,
@@ -100,8 +101,9 @@ def _value(key: Key, unit: Unit | None) -> Schema:
     if key.kind == "quantity":
         found = _quantity(key, unit)
     elif key.kind == "layers":
-        layer = _table(Section("layers", "One layer of lagging", LAYER))
-        found = {"type": "array", "items": layer, "minItems": 1}
+        found = _list_of(Section("layers", "One layer of lagging", LAYER))
+    elif key.kind == "pieces":
+        found = _list_of(Section("surroundings", "One piece of the surroundings", PIECE))
     elif key.kind in kinds:
         found = kinds[key.kind]
         if _takes_unknown(key):
@@ -109,6 +111,10 @@ def _value(key: Key, unit: Unit | None) -> Schema:
     else:
         found = {"type": "string"} | ({} if key.kind == "text" else {"minLength": 1})
     return {"description": _description(key, unit), **found}
+
+
+def _list_of(part: Section) -> Schema:
+    return {"type": "array", "items": _table(part), "minItems": 1}
 
 
 def _quantity(key: Key, unit: Unit | None) -> Schema:

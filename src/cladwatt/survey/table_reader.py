@@ -2,7 +2,7 @@
 
 import difflib
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from cladwatt.quantities import Quantity
 from cladwatt.survey.fault_list import FaultList, Place, shown
@@ -19,7 +19,7 @@ from cladwatt.survey.values import (
 )
 from cladwatt.units import Unit
 
-__all__ = ["Table", "nearest", "read_table"]
+__all__ = ["Table", "nearest", "read_list", "read_table"]
 
 
 def nearest(word: str, known: Iterable[str]) -> str:
@@ -144,6 +144,46 @@ def read_table(
     return Table(section, place, reader.plain, reader.written, reader.spelled)
 
 
+def read_list(section: Section, table: Table, name: str, faults: FaultList) -> list[Table]:
+    """Read the list of tables under one key of a table.
+
+    Parameters
+    ----------
+    section : Section
+        Accepted keys of each table in the list.
+    table : Table
+        Holds the list as written.
+    name : str
+        Its key.
+    faults : FaultList
+        Gets every fault; a list that is none, or empty, is one.
+
+    Returns
+    -------
+    list of Table
+        Without the tables that were at fault.
+    """
+    raw = table.get(name)
+    if not isinstance(raw, list) or not raw:
+        example = table.key(name).example
+        faults.add(
+            table.place, name, f"{name} is {shown(raw)}", f"expected a list of tables, {example}"
+        )
+        return []
+    found = []
+    for number, item in enumerate(raw, start=1):
+        place = replace(
+            table.place,
+            prefix=table.place.where(f"{name}[{number}]"),
+            line_of=lambda _key: table.place.line_of(name),
+        )
+        before = faults.errors
+        one = read_table(section, item, place, faults)
+        if faults.errors == before:
+            found.append(one)
+    return found
+
+
 class _Reader:
     def __init__(self, section: Section, place: Place, faults: FaultList) -> None:
         self.section, self.place, self.faults = section, place, faults
@@ -177,7 +217,7 @@ class _Reader:
         if key.kind == "quantity":
             value = parse_value(key, unit, name, raw)
             self.written[key.name] = value.over(self.written.get(key.name))
-        elif key.kind == "layers":
+        elif key.kind in ("layers", "pieces"):
             self.plain[key.name] = raw
         elif _is_unknown_word(key, raw):
             self.plain[key.name] = UNKNOWN
@@ -251,7 +291,7 @@ class _Reader:
 
 
 def _is_unknown_word(key: Key, raw: object) -> bool:
-    if key.kind in ("text", "name", "file", "choice", "layers"):
+    if key.kind in ("text", "name", "file", "choice", "layers", "pieces"):
         return False
     return isinstance(raw, str) and raw.strip().lower() == UNKNOWN_WORD
 
