@@ -5,7 +5,7 @@ from typing import Literal
 
 import numpy as np
 
-from cladwatt.synthetic.conduction_3d import ColumnModel
+from cladwatt.synthetic.columns import ColumnModel
 from cladwatt.types import FloatArray
 
 __all__ = ["DAMAGE_KINDS", "Damage", "DamageKind", "draw_damage", "lay_in"]
