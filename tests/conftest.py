@@ -1,6 +1,12 @@
-"""With CI set, a skipped test is a failure: there everything a test needs is installed."""
+"""What all tests share.
+
+With CI set, a skipped test is a failure: there everything a test needs is installed. Checks against
+the outside go through the fixture ``evidence``; ``--evidence FOLDER`` runs those alone and keeps
+what they compared.
+"""
 
 import os
+from pathlib import Path
 
 import pytest
 
@@ -40,3 +46,31 @@ def pytest_terminal_summary(
         terminalreporter.section("skipped although CI is set: failed")
         for line in _skipped:
             terminalreporter.line(line)
+
+
+def pytest_addoption(parser: pytest.Parser) -> None:
+    parser.addoption(
+        "--evidence",
+        metavar="FOLDER",
+        help="run only what is checked against the outside, and write the records to FOLDER",
+    )
+
+
+def pytest_collection_modifyitems(config: pytest.Config, items: list[pytest.Item]) -> None:
+    if config.getoption("--evidence"):
+        others = [item for item in items if "evidence" not in getattr(item, "fixturenames", ())]
+        config.hook.pytest_deselected(items=others)
+        items[:] = [item for item in items if item not in set(others)]
+
+
+@pytest.fixture
+def evidence(request: pytest.FixtureRequest):
+    """Assert against the outside; see ``tests/evidence``."""
+    # here, since this file also runs by itself (test_skips_with_ci.py)
+    from tests.evidence.recorder import Evidence, write_records
+
+    kept = Evidence()
+    yield kept
+    folder = request.config.getoption("--evidence")
+    if folder:
+        write_records(kept.records, Path(folder))

@@ -29,18 +29,21 @@ def drawn(example: dict[str, str]) -> np.ndarray:
 
 
 @pytest.mark.parametrize("example", EXAMPLES, ids=lambda example: example["id"])
-def test_propagation_reproduces_jcgm_101(example):
+def test_propagation_reproduces_jcgm_101(example, evidence):
     # half a unit of the last printed digit, plus three standard errors of this many draws
     y = drawn(example)
     u = float(example["standard_uncertainty"])
     error = 3 * u / np.sqrt(COUNT)
-    assert y.mean() == pytest.approx(float(example["mean"]), abs=0.005 * u + error)
-    assert y.std() == pytest.approx(u, rel=0.006)
+    check = "jcgm_101_" + example["id"].split()[0].replace(".", "_")
+    mean = float(example["mean"])
+    evidence(check, "mean", y.mean(), mean, abs=0.005 * u + error, scale=u)
+    evidence(check, "standard uncertainty", y.std(), u, rel=0.006)
     if example["low_95"]:
         low, high = np.percentile(y, [2.5, 97.5])
         digit = 0.05 if abs(float(example["high_95"])) > 10 else 0.005
-        assert low == pytest.approx(float(example["low_95"]), abs=digit + 6 * error)
-        assert high == pytest.approx(float(example["high_95"]), abs=digit + 6 * error)
+        for what, found in (("low_95", low), ("high_95", high)):
+            printed = float(example[what])
+            evidence(check, what.replace("_", " "), found, printed, abs=digit + 6 * error)
 
 
 def test_same_key_same_draws_whatever_was_asked_before():

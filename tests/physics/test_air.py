@@ -28,10 +28,18 @@ def column(name):
         ("prandtl", "Pr_calc", 1.0),
     ],
 )
-def test_air_against_recomputed_columns(quantity, name, unit):
+def test_air_against_recomputed_columns(quantity, name, unit, evidence):
     # air_properties_dry.csv, columns *_calc - Lemmon & Jacobsen equations
     found = getattr(air_properties(column("T_K")), quantity)
-    np.testing.assert_allclose(found, column(name) * unit, rtol=1.5e-3)
+    evidence(
+        "air_reference_equations", f"{quantity}, columns", found, column(name) * unit, rel=1.5e-3
+    )
+    # the table itself, by the reference equations alone: as far apart as stated below
+    printed = {"density": None}.get(quantity, name.replace("_calc", ""))
+    if printed:
+        apart = {"specific_heat": 0.002, "prandtl": 0.027}.get(quantity, 0.022)
+        evidence.recomputed("incropera_a_4", quantity, column(name), column(printed), rel=apart,
+                            by="equations of Lemmon and Jacobsen (CoolProp)")  # fmt: skip
 
 
 @pytest.mark.parametrize(
@@ -43,18 +51,17 @@ def test_air_against_recomputed_columns(quantity, name, unit):
         ("prandtl", "Pr", 1.0, 0.027),
     ],
 )
-def test_air_against_textbook_table(quantity, name, unit, tolerance):
+def test_air_against_textbook_table(quantity, name, unit, tolerance, evidence):
     # air_properties_dry.csv - Incropera Table A.4; the stated distance of that table from the
     # reference equations (k 2 %, mu 1.2 %, Pr 2.6 %) plus its rounding
     found = getattr(air_properties(column("T_K")), quantity)
-    np.testing.assert_allclose(found, column(name) * unit, rtol=tolerance)
+    evidence("incropera_a_4", quantity, found, column(name) * unit, rel=tolerance)
 
 
-def test_textbook_density_belongs_to_one_bar():
+def test_textbook_density_belongs_to_one_bar(evidence):
     # air_properties_dry.csv - Incropera Table A.4: densities agree at 1 bar within 0.3 %
-    np.testing.assert_allclose(
-        air_properties(column("T_K"), 1e5).density, column("rho_kg_m3"), rtol=3e-3
-    )
+    found = air_properties(column("T_K"), 1e5).density
+    evidence("incropera_a_4", "density", found, column("rho_kg_m3"), unit="kg/m3", rel=3e-3)
 
 
 @pytest.mark.parametrize(
@@ -75,12 +82,12 @@ def test_textbook_density_belongs_to_one_bar():
         ("prandtl", "PRANDTL"),
     ],
 )
-def test_air_against_coolprop(limits, pressure, tolerance, quantity, key):
+def test_air_against_coolprop(limits, pressure, tolerance, quantity, key, evidence):
     # CoolProp, Air: the stated accuracy of the fits
     temperature = np.linspace(*limits, 60)
     found = getattr(air_properties(temperature, pressure), quantity)
     expected = reference.PropsSI(key, "T", temperature, "P", pressure, "Air")
-    np.testing.assert_allclose(found, expected, rtol=tolerance)
+    evidence("air_reference_equations", quantity, found, expected, rel=tolerance)
 
 
 def test_expansion_and_kinematic_viscosity_follow_from_the_others():
@@ -92,7 +99,8 @@ def test_expansion_and_kinematic_viscosity_follow_from_the_others():
 
 
 @pytest.mark.parametrize("altitude", [-200.0, 0.0, 350.0, 1500.0, 4200.0, 10_000.0])
-def test_pressure_against_standard_atmosphere(altitude):
+def test_pressure_against_standard_atmosphere(altitude, evidence):
     # fluids.ATMOSPHERE_1976 - U.S. Standard Atmosphere 1976
     expected = fluids.ATMOSPHERE_1976(altitude).P
-    assert pressure_at_altitude(altitude) == pytest.approx(expected, rel=1e-5)
+    found = pressure_at_altitude(altitude)
+    evidence("standard_atmosphere", "pressure", found, expected, unit="Pa", rel=1e-5)

@@ -34,7 +34,7 @@ def transmission(distance, **changed):
 
 @pytest.mark.parametrize(("column", "limits"), BANDS.items())
 @pytest.mark.parametrize(("longest", "tolerance"), [(20, 7e-4), (50, 9e-4), (100, 2e-3)])
-def test_fit_against_lowtran_table(column, limits, longest, tolerance):
+def test_fit_against_lowtran_table(column, limits, longest, tolerance, evidence):
     # atmosphere_transmittance_lwir.csv - LOWTRAN 7 (AFGL-TR-88-0177); four printed decimals
     chosen = [row for row in TABLE if float(row["path_m"]) <= longest]
     found = air_path_transmission(
@@ -44,7 +44,7 @@ def test_fit_against_lowtran_table(column, limits, longest, tolerance):
         band_limits=limits,
     )
     expected = np.array([float(row[column]) for row in chosen])
-    assert np.abs(found - expected).max() <= tolerance
+    evidence("lowtran", f"transmission to {longest} m", found, expected, abs=tolerance)
 
 
 def test_absorption_grows_slower_than_the_exponential_law():

@@ -57,10 +57,11 @@ REYNOLDS = np.array([2.0, 20.0, 300.0, 2e3, 2e4, 1.5e5, 3e5])
         (lambda rayleigh, _: nusselt_morgan(rayleigh), ht.Nu_horizontal_cylinder_Morgan),
     ],
 )
-def test_natural_correlations_against_ht(prandtl, ours, theirs):
+def test_natural_correlations_against_ht(prandtl, ours, theirs, evidence):
     # ht library; it multiplies Gr by Pr itself and shortens one power in the seventh digit
     expected = [theirs(prandtl, rayleigh / prandtl) for rayleigh in RAYLEIGH]
-    np.testing.assert_allclose(ours(RAYLEIGH, prandtl), expected, rtol=1e-6)
+    found = ours(RAYLEIGH, prandtl)
+    evidence("ht_natural", theirs.__name__.removeprefix("Nu_"), found, expected, rel=1e-6)
 
 
 @pytest.mark.parametrize("prandtl", [0.69, 0.72, 5.0])
@@ -71,17 +72,18 @@ def test_natural_correlations_against_ht(prandtl, ours, theirs):
         (nusselt_zukauskas, ht.Nu_cylinder_Zukauskas),
     ],
 )
-def test_forced_correlations_against_ht(prandtl, ours, theirs):
+def test_forced_correlations_against_ht(prandtl, ours, theirs, evidence):
     # ht library
     expected = [theirs(reynolds, prandtl) for reynolds in REYNOLDS]
-    np.testing.assert_allclose(ours(REYNOLDS, prandtl), expected, rtol=1e-12)
+    found = ours(REYNOLDS, prandtl)
+    evidence("ht_forced", theirs.__name__.removeprefix("Nu_"), found, expected, rel=1e-12)
 
 
-def test_wall_correction_against_ht():
+def test_wall_correction_against_ht(evidence):
     # ht library
-    assert nusselt_zukauskas(7992.0, 0.707, prandtl_surface=0.69) == pytest.approx(
-        ht.Nu_cylinder_Zukauskas(7992.0, 0.707, 0.69), rel=1e-12
-    )
+    found = nusselt_zukauskas(7992.0, 0.707, prandtl_surface=0.69)
+    expected = ht.Nu_cylinder_Zukauskas(7992.0, 0.707, 0.69)
+    evidence("ht_forced", "wall correction", found, expected, rel=1e-12)
 
 
 @pytest.mark.parametrize(
@@ -92,12 +94,12 @@ def test_wall_correction_against_ht():
         ("h_Morgan_W_m2K", lambda rayleigh, _: nusselt_morgan(rayleigh)),
     ],
 )
-def test_natural_convection_grid(name, nusselt):
+def test_natural_convection_grid(name, nusselt, evidence):
     # natural_convection_grid.csv - the formulas with Lemmon-Jacobsen air, four digits
     rayleigh, prandtl, conductivity = grid_rayleigh()
-    np.testing.assert_allclose(rayleigh, NATURAL["Ra_D"], rtol=1.5e-3)
+    evidence("natural_grid", "Rayleigh number", rayleigh, NATURAL["Ra_D"], rel=1.5e-3)
     found = conductivity / NATURAL["D_m"] * nusselt(rayleigh, prandtl)
-    np.testing.assert_allclose(found, NATURAL[name], rtol=8e-4)
+    evidence("natural_grid", name.split("_")[1], found, NATURAL[name], unit="W/(m2 K)", rel=8e-4)
 
 
 def grid_rayleigh():
@@ -114,19 +116,21 @@ def grid_rayleigh():
     return rayleigh, air.prandtl, air.conductivity
 
 
-def test_default_model_on_the_natural_grid():
+def test_default_model_on_the_natural_grid(evidence):
     # natural_convection_grid.csv, Churchill-Chu column; still air
     air = NATURAL["T_air_C"] + 273.15
     found = convection_coefficient(
         air + NATURAL["dT_K"], air_temperature=air, diameter=NATURAL["D_m"]
     )
-    np.testing.assert_allclose(found, NATURAL["h_ChurchillChu_full_W_m2K"], rtol=8e-4)
+    expected = NATURAL["h_ChurchillChu_full_W_m2K"]
+    evidence("natural_grid", "default model", found, expected, unit="W/(m2 K)", rel=8e-4)
 
 
-def test_iso_indoor_rule_on_the_natural_grid():
+def test_iso_indoor_rule_on_the_natural_grid(evidence):
     # natural_convection_grid.csv, ISO 12241 column, four digits
     found = coefficient_iso12241_horizontal_indoor(NATURAL["dT_K"], NATURAL["D_m"])
-    np.testing.assert_allclose(found, NATURAL["h_ISO12241_horizontal_W_m2K"], rtol=5e-4)
+    expected = NATURAL["h_ISO12241_horizontal_W_m2K"]
+    evidence("natural_grid", "ISO 12241 indoors", found, expected, unit="W/(m2 K)", rel=5e-4)
 
 
 @pytest.mark.parametrize(
@@ -136,19 +140,20 @@ def test_iso_indoor_rule_on_the_natural_grid():
         ("h_Hilpert_W_m2K", nusselt_hilpert),
     ],
 )
-def test_forced_convection_grid(name, nusselt):
+def test_forced_convection_grid(name, nusselt, evidence):
     # forced_convection_grid.csv - the formulas with Lemmon-Jacobsen air at film temperature
     air = air_properties(0.5 * (FORCED["T_air_C"] + FORCED["T_surface_C"]) + 273.15)
     reynolds = reynolds_number(
         FORCED["wind_m_s"], length=FORCED["D_m"], kinematic_viscosity=air.kinematic_viscosity
     )
-    np.testing.assert_allclose(reynolds, FORCED["Re_film"], rtol=1e-3)
+    evidence("forced_grid", "Reynolds number", reynolds, FORCED["Re_film"], rel=1e-3)
     found = air.conductivity / FORCED["D_m"] * nusselt(reynolds, air.prandtl)
     is_given = np.isfinite(FORCED[name])
-    np.testing.assert_allclose(found[is_given], FORCED[name][is_given], rtol=1e-3)
+    found, expected = found[is_given], FORCED[name][is_given]
+    evidence("forced_grid", name.split("_")[1], found, expected, unit="W/(m2 K)", rel=1e-3)
 
 
-def test_zukauskas_on_the_forced_grid():
+def test_zukauskas_on_the_forced_grid(evidence):
     # forced_convection_grid.csv - Zukauskas, free-stream properties
     air = air_properties(FORCED["T_air_C"] + 273.15)
     surface = air_properties(FORCED["T_surface_C"] + 273.15)
@@ -157,22 +162,47 @@ def test_zukauskas_on_the_forced_grid():
     )
     nusselt = nusselt_zukauskas(reynolds, air.prandtl, prandtl_surface=surface.prandtl)
     found = air.conductivity / FORCED["D_m"] * nusselt
-    np.testing.assert_allclose(found, FORCED["h_Zukauskas_W_m2K"], rtol=1e-3)
+    expected = FORCED["h_Zukauskas_W_m2K"]
+    evidence("forced_grid", "Zukauskas", found, expected, unit="W/(m2 K)", rel=1e-3)
 
 
-def test_iso_outdoor_rule_and_its_disagreement():
+def test_iso_outdoor_rule_and_its_disagreement(evidence):
     # forced_convection_grid.csv, ISO 12241 outdoor column above v D = 0.08 m2/s only: the limit
     # between its branches was not confirmed
     is_clear = FORCED["wind_m_s"] * FORCED["D_m"] > 0.08
     found = coefficient_iso12241_outdoor(FORCED["wind_m_s"], FORCED["D_m"])[is_clear]
-    np.testing.assert_allclose(found, FORCED["h_ISO12241_outdoor_W_m2K"][is_clear], rtol=1e-3)
+    expected = FORCED["h_ISO12241_outdoor_W_m2K"][is_clear]
+    evidence("forced_grid", "ISO 12241 outdoors", found, expected, unit="W/(m2 K)", rel=1e-3)
     is_lagged = (FORCED["D_m"] > 0.1) & (FORCED["wind_m_s"] >= 2)
-    ratio = (
-        coefficient_iso12241_outdoor(FORCED["wind_m_s"], FORCED["D_m"])
-        / FORCED["h_ChurchillBernstein_W_m2K"]
-    )[is_lagged]
-    assert ratio.min() >= 1.3
-    assert ratio.max() <= 2.95
+    evidence.spread(
+        "iso_outdoor_crossflow",
+        "coefficient",
+        coefficient_iso12241_outdoor(FORCED["wind_m_s"], FORCED["D_m"])[is_lagged],
+        FORCED["h_ChurchillBernstein_W_m2K"][is_lagged],
+        low=1.3,
+        high=2.95,
+        unit="W/(m2 K)",
+    )
+
+
+@pytest.mark.parametrize(
+    ("smallest", "largest", "low", "high"),
+    [(0.03, 0.065, 1.07, 1.18), (0.11, 0.12, 1.0, 1.06), (0.2, 0.23, 0.91, 0.99)],
+)
+def test_iso_indoor_rule_and_its_disagreement(smallest, largest, low, high, evidence):
+    # natural_convection_grid.csv: above Churchill-Chu on small pipes, below it on large ones
+    is_meant = (NATURAL["D_m"] >= smallest) & (NATURAL["D_m"] <= largest)
+    air = NATURAL["T_air_C"][is_meant] + 273.15
+    difference, diameter = NATURAL["dT_K"][is_meant], NATURAL["D_m"][is_meant]
+    evidence.spread(
+        "iso_indoor_churchill",
+        f"diameter {1e3 * diameter.min():.0f} to {1e3 * diameter.max():.0f} mm",
+        coefficient_iso12241_horizontal_indoor(difference, diameter),
+        convection_coefficient(air + difference, air_temperature=air, diameter=diameter),
+        low=low,
+        high=high,
+        unit="W/(m2 K)",
+    )
 
 
 @pytest.mark.parametrize(
@@ -182,10 +212,10 @@ def test_iso_outdoor_rule_and_its_disagreement():
         (coefficient_iso12241_vertical_indoor, 1.60),
     ],
 )
-def test_iso_indoor_rule_steps_at_its_limit(rule, step):
+def test_iso_indoor_rule_steps_at_its_limit(rule, step, evidence):
     # ISO 12241:2008 clause 4.1.4: +17 % horizontal, +60 % vertical at L^3 dT = 10 m3 K
     below, above = rule(np.array([9.99, 10.01]), 1.0)
-    assert above / below == pytest.approx(step, abs=0.02)
+    evidence("iso_12241_step", "ratio across the step", above / below, step, abs=0.02)
     assert rule(-5.0, 0.1) == rule(5.0, 0.1)
 
 

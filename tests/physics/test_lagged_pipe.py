@@ -44,7 +44,7 @@ def hall(diameter=0.2, **changed):
 @pytest.mark.parametrize(
     "row", CASES, ids=lambda row: f"{row['pipe_OD_mm']}-{row['emissivity']}-{row['model']}"
 )
-def test_closed_loop_cases(row):
+def test_closed_loop_cases(row, evidence):
     # closed_loop_pipe_cases.csv - independent solution with Lemmon-Jacobsen air and g = 9.81;
     # the fits of the air properties (0.03 %) and g (0.034 %) move the coefficient by at most 5e-4
     value = {key: float(row[key]) for key in row if key not in ("model", "source", "provenance")}
@@ -67,12 +67,15 @@ def test_closed_loop_cases(row):
     )
     surface = state.surface_temperature
     rise = value["T_surface_C"] - value["T_air_C"]
-    assert surface - air == pytest.approx(rise, rel=5e-4)
-    assert state.heat_loss == pytest.approx(value["q_W_m"], rel=1e-4)
-    assert state.resistance == pytest.approx(value["R_insulation_mK_W"], rel=1e-5)
     convection, radiation = surface_coefficients(surface, exchange)
-    assert convection == pytest.approx(value["h_conv_W_m2K"], rel=5e-4)
-    assert radiation == pytest.approx(value["h_rad_W_m2K"], rel=2e-4)
+    for what, unit, found, expected, rel in (
+        ("surface over air", "K", surface - air, rise, 5e-4),
+        ("loss", "W/m", state.heat_loss, value["q_W_m"], 1e-4),
+        ("resistance", "m K/W", state.resistance, value["R_insulation_mK_W"], 1e-5),
+        ("convection", "W/(m2 K)", convection, value["h_conv_W_m2K"], 5e-4),
+        ("radiation", "W/(m2 K)", radiation, value["h_rad_W_m2K"], 2e-4),
+    ):
+        evidence("closed_loop", what, found, expected, unit=unit, rel=rel)
 
 
 def draws(count=400, seed=3):
@@ -126,12 +129,13 @@ def by_root_finding(inside, diameter, layers, exchange):
     return brentq(imbalance, 100.0, 1200.0, xtol=1e-12, rtol=1e-14)
 
 
-def test_many_at_once_against_brentq():
+def test_many_at_once_against_brentq(evidence):
     # scipy.optimize.brentq, one pipe at a time, marching the other way
     draw = draws()
     found = solve_lagged_pipe(*draw).surface_temperature
-    for index in range(0, 400, 8):
-        assert found[index] == pytest.approx(by_root_finding(*one(draw, index)), abs=1e-9)
+    chosen = range(0, 400, 8)
+    expected = [by_root_finding(*one(draw, index)) for index in chosen]
+    evidence("brentq", "surface temperature", found[list(chosen)], expected, unit="K", abs=1e-9)
 
 
 def test_balance_closes_to_rounding():

@@ -54,19 +54,22 @@ def integral(lower, upper, temperature, response=lambda _: 1):
 # --- constants ----------------------------------------------------------------------------------
 
 
-def test_constants_against_si():
+def test_constants_against_si(evidence):
     # radiation_constants.csv - SI 2019 / CODATA 2018
     table = {
         row["constant"].split(" =")[0]: float(row["value"])
         for row in rows("radiation_constants.csv")
     }
-    assert table["h"] == constants.PLANCK
-    assert table["c"] == constants.LIGHT_SPEED
-    assert table["k_B"] == constants.BOLTZMANN
-    assert pytest.approx(table["c1L"], rel=1e-10) == constants.FIRST_RADIATION_RADIANCE
-    assert pytest.approx(table["c1"], rel=1e-11) == constants.FIRST_RADIATION
-    assert pytest.approx(table["c2"], rel=1e-10) == constants.SECOND_RADIATION
-    assert pytest.approx(table["sigma"], rel=1e-11) == constants.STEFAN_BOLTZMANN
+    for name, found, rel in (
+        ("h", constants.PLANCK, 0.0),
+        ("c", constants.LIGHT_SPEED, 0.0),
+        ("k_B", constants.BOLTZMANN, 0.0),
+        ("c1L", constants.FIRST_RADIATION_RADIANCE, 1e-10),
+        ("c1", constants.FIRST_RADIATION, 1e-11),
+        ("c2", constants.SECOND_RADIATION, 1e-10),
+        ("sigma", constants.STEFAN_BOLTZMANN, 1e-11),
+    ):
+        evidence("radiation_constants", name, found, table[name], rel=rel)
 
 
 # --- Planck's law ---------------------------------------------------------------------------------
@@ -74,10 +77,11 @@ def test_constants_against_si():
 
 @pytest.mark.parametrize("temperature", [230.0, 300.0, 1000.0])
 @pytest.mark.parametrize("wavelength", [3e-6, 7.5e-6, 10e-6, 14e-6])
-def test_spectral_radiance_against_ht(wavelength, temperature):
+def test_spectral_radiance_against_ht(wavelength, temperature, evidence):
     expected = blackbody_spectral_radiance(temperature, wavelength)  # library ht
     # rel: ht may carry constants of an older adjustment, relative difference below 1e-6
-    assert planck_spectral_radiance(wavelength, temperature) == pytest.approx(expected, rel=3e-6)
+    found = planck_spectral_radiance(wavelength, temperature)
+    evidence("ht_planck", "spectral radiance", found, expected, unit="W/(m3 sr)", rel=3e-6)
 
 
 def fraction(wavelength_temperature):
@@ -98,7 +102,7 @@ MISPRINTS = {5200.0, 11500.0, 15000.0}
 
 
 @pytest.mark.parametrize("row", rows("blackbody_fraction.csv"), ids=lambda r: r["lambdaT_um_K"])
-def test_blackbody_fraction(row):
+def test_blackbody_fraction(row, evidence):
     # blackbody_fraction.csv - Incropera Table 12.2 / Cengel Table 12-2; six printed decimals.
     # Three rows are misprinted by +0.001 in all editions, as the recomputation shows.
     position = float(row["lambdaT_um_K"])
@@ -109,11 +113,11 @@ def test_blackbody_fraction(row):
     else:
         # The print runs smoothly up to 5e-5 too high (0.999905 at 100 000, where the series of
         # the integral gives 0.999855), so its last digit is not worth half a unit.
-        assert found == pytest.approx(printed, abs=6e-5)
+        evidence("blackbody_fraction", "fraction", found, printed, abs=6e-5, scale=1.0)
         assert found == pytest.approx(float(row["F_recomputed"]), abs=1e-7)
 
 
-def test_band_fractions_against_table():
+def test_band_fractions_against_table(evidence):
     # same table: a band holds the difference of two entries
     table = {
         float(row["lambdaT_um_K"]): float(row["F_0_to_lambdaT_published"])
@@ -127,10 +131,11 @@ def test_band_fractions_against_table():
     for lower, upper in pairwise(positions):
         band = Band.rectangular(lower * 1e-6 / temperature, upper * 1e-6 / temperature)
         share = float(band.radiance(temperature)) / total
-        assert share == pytest.approx(table[upper] - table[lower], abs=2e-5)
+        printed = table[upper] - table[lower]
+        evidence("blackbody_fraction", "share of a band", share, printed, abs=2e-5, scale=1.0)
 
 
-def test_worked_examples_of_radiation():
+def test_worked_examples_of_radiation(evidence):
     # radiation_examples.csv - Incropera Example 12.3, Kreith Example 9.1
     found = {}
     for example, temperature in (("R1", 2000.0), ("R2", 1400.0)):
@@ -155,24 +160,26 @@ def test_worked_examples_of_radiation():
             "percent_of_maximum_at_5_um": 100 * power(5.0) / power(peak),
         }
     for row in rows("radiation_examples.csv"):
-        assert found[row["id"]][row["quantity"]] == pytest.approx(
-            float(row["value"]), abs=float(row["half_last_digit"])
-        ), row["quantity"]
+        check = {"R1": "incropera_12_3", "R2": "kreith_9_1"}[row["id"]]
+        what, half = row["quantity"], float(row["half_last_digit"])
+        ours, printed = found[row["id"]][what], float(row["value"])
+        evidence(check, what.replace("_", " "), ours, printed, unit=row["unit"], abs=half)
 
 
 # --- band tables ----------------------------------------------------------------------------------
 
 
 @pytest.mark.parametrize("limits", [(7.5e-6, 14e-6), (8e-6, 14e-6), (7.5e-6, 13e-6), (8e-6, 12e-6)])
-def test_radiance_and_inverse_against_mpmath(limits):
+def test_radiance_and_inverse_against_mpmath(limits, evidence):
     band = Band.rectangular(*limits)
     for temperature in np.linspace(213.15, 1073.15, 24) + 0.0123:
         exact = integral(*limits, temperature)
-        assert float(band.radiance(temperature)) == pytest.approx(exact, rel=1e-7)
-        assert float(band.temperature(exact)) == pytest.approx(temperature, abs=1e-6)
+        found = band.radiance(temperature)
+        evidence("band_integral", "radiance", found, exact, unit="W/(m2 sr)", rel=1e-7)
+        evidence("band_integral", "back", band.temperature(exact), temperature, unit="K", abs=1e-6)
 
 
-def test_radiance_of_a_measured_response_against_mpmath():
+def test_radiance_of_a_measured_response_against_mpmath(evidence):
     # invented response: rises, has a plateau and a long tail
     wavelength = np.array([7.0, 8.0, 9.5, 12.0, 13.0, 15.0]) * 1e-6
     response = np.array([0.0, 0.8, 1.0, 0.9, 0.4, 0.0])
@@ -187,28 +194,32 @@ def test_radiance_of_a_measured_response_against_mpmath():
             integral(wavelength[i], wavelength[i + 1], temperature, lambda w, i=i: between(w, i))
             for i in range(5)
         )
-        assert float(band.radiance(temperature)) == pytest.approx(exact, rel=1e-7)
+        found = band.radiance(temperature)
+        evidence("band_integral", "a response", found, exact, unit="W/(m2 sr)", rel=1e-7)
 
 
 @pytest.mark.parametrize(
     "row", rows("band_radiance.csv"), ids=lambda r: f"{r['lambda1_um']}-{r['T_C']}"
 )
-def test_band_radiance_table(row):
+def test_band_radiance_table(row, evidence):
     # band_radiance.csv - Planck's law by adaptive quadrature, eight digits; derivative seven
     band = Band.rectangular(float(row["lambda1_um"]) * 1e-6, float(row["lambda2_um"]) * 1e-6)
     temperature = kelvin(row, "T_C")
     expected = float(row["L_band_W_m2_sr"])
-    assert float(band.radiance(temperature)) == pytest.approx(expected, rel=2e-7)
+    found = band.radiance(temperature)
+    evidence("band_radiance", "radiance", found, expected, unit="W/(m2 sr)", rel=2e-7)
     derivative = float(row["dL_dT_W_m2_sr_K"])
-    assert float(band.radiance_derivative(temperature)) == pytest.approx(derivative, rel=5e-7)
+    slope = band.radiance_derivative(temperature)
+    evidence("band_radiance", "slope", slope, derivative, unit="W/(m2 sr K)", rel=5e-7)
     exponent = temperature * float(band.radiance_derivative(temperature)) / expected
-    assert exponent == pytest.approx(float(row["exponent_n_TdLdT_over_L"]), abs=1.5e-5)
+    printed = float(row["exponent_n_TdLdT_over_L"])
+    evidence("band_radiance", "exponent", exponent, printed, abs=1.5e-5)
 
 
 @pytest.mark.parametrize(
     "row", [r for r in rows("sakuma_hattori.csv") if r["A_um"]], ids=lambda r: r["id"]
 )
-def test_sakuma_hattori_form_fits_our_radiance(row):
+def test_sakuma_hattori_form_fits_our_radiance(row, evidence):
     # sakuma_hattori.csv - Planckian form of CCT-WG5, fitted elsewhere; largest error as stated
     lower, upper = (float(text) * 1e-6 for text in row["id"].split("_")[2:4])
     band = Band.rectangular(lower, upper)
@@ -216,7 +227,8 @@ def test_sakuma_hattori_form_fits_our_radiance(row):
     a, b, c = (float(row[key]) for key in ("A_um", "B_um_K", "C"))
     inverse = 14387.7688 / (a * np.log(c / band.radiance(temperature) + 1)) - b / a
     stated = float(row["max_abs_error_K"])
-    assert np.abs(inverse - temperature).max() == pytest.approx(stated, rel=0.02)
+    largest = np.abs(inverse - temperature).max()
+    evidence("sakuma_hattori", "largest error of the form", largest, stated, unit="K", rel=0.02)
 
 
 def test_band_edges_shapes_and_nan():
@@ -282,23 +294,23 @@ def case_settings(row):
 
 
 @pytest.mark.parametrize("row", CASES)
-def test_measurement_equation_forward_and_back(row):
+def test_measurement_equation_forward_and_back(row, evidence):
     # measurement_equation_cases.csv - three-term equation, ISO 18434-1 / ASTM E1933
     settings = case_settings(row)
     truth = kelvin(row, "T_object_C")
     measured = lens_radiance(truth, band=LONG_WAVE, **settings)
-    assert float(measured) == pytest.approx(float(row["L_measured_W_m2_sr"]), rel=1e-6)
+    table = float(row["L_measured_W_m2_sr"])
+    evidence("measurement_equation", "radiance", measured, table, unit="W/(m2 sr)", rel=1e-6)
     apparent = kelvin(row, "T_apparent_C")
     half_last_digit = 0.5 * 10.0 ** -len(row["T_apparent_C"].partition(".")[2])
-    assert float(LONG_WAVE.temperature(measured)) == pytest.approx(
-        apparent, abs=half_last_digit + 1e-6
-    )
+    found, allowed = LONG_WAVE.temperature(measured), half_last_digit + 1e-6
+    evidence("measurement_equation", "apparent", found, apparent, unit="K", abs=allowed)
     corrected = correct_temperature(LONG_WAVE.temperature(measured), band=LONG_WAVE, **settings)
-    assert float(corrected) == pytest.approx(truth, abs=2e-5)
+    evidence("measurement_equation", "corrected", corrected, truth, unit="K", abs=2e-5)
 
 
 @pytest.mark.parametrize("row", CASES)
-def test_sensitivities(row):
+def test_sensitivities(row, evidence):
     # the derivatives of the same table, by central differences of ours
     settings = case_settings(row)
     measured = float(row["L_measured_W_m2_sr"])
@@ -326,11 +338,12 @@ def test_sensitivities(row):
     for name, (column, unit, step) in columns.items():
         rise = surface(**{name: settings[name] + step}) - surface(**{name: settings[name] - step})
         expected = float(row[column])
-        assert rise / (2 * step) * unit == pytest.approx(expected, rel=2e-3, abs=2e-4)
+        found, what = rise / (2 * step) * unit, f"sensitivity to {name.replace('_', ' ')}"
+        evidence("measurement_equation", what, found, expected, unit="K", rel=2e-3, abs=2e-4)
 
 
 @pytest.mark.parametrize("row", [r for r in CASES if float(r["tau_atm"]) == 1.0])
-def test_fourth_power_errs_as_published(row):
+def test_fourth_power_errs_as_published(row, evidence):
     found = surface_temperature_fourth_power(
         kelvin(row, "T_apparent_C"),
         emissivity=float(row["emissivity"]),
@@ -338,7 +351,8 @@ def test_fourth_power_errs_as_published(row):
     )
     # printed to 0.001 K from an apparent temperature printed to 0.0001 K, amplified by 1/emissivity
     tolerance = 6e-4 + 1e-4 / float(row["emissivity"])
-    assert float(found) == pytest.approx(kelvin(row, "T_object_if_T4_law_used_C"), abs=tolerance)
+    expected = kelvin(row, "T_object_if_T4_law_used_C")
+    evidence("measurement_equation", "fourth powers", found, expected, unit="K", abs=tolerance)
 
 
 def test_fourth_power_refuses_and_gives_nan():
@@ -467,7 +481,7 @@ def test_object_radiance_refuses(arguments, message):
 
 
 @pytest.mark.parametrize("row", rows("emissivity_reference_method_cases.csv"))
-def test_emissivity_from_reference(row):
+def test_emissivity_from_reference(row, evidence):
     # emissivity_reference_method_cases.csv - reference emitter, ISO 18434-1 / ASTM E1933
     found = emissivity_from_reference(
         kelvin(row, "T_apparent_surface_C"),
@@ -477,14 +491,15 @@ def test_emissivity_from_reference(row):
         reflected_temperature=kelvin(row, "T_reflected_C"),
     )
     # apparent temperatures printed to 0.0001 K over differences of some kelvins
-    assert float(found) == pytest.approx(float(row["eps_recovered_band"]), abs=1e-5)
+    evidence("emissivity_reference", "reference", found, float(row["eps_recovered_band"]), abs=1e-5)
     by_contact = emissivity_from_contact(
         kelvin(row, "T_apparent_surface_C"),
         kelvin(row, "T_true_C"),
         band=LONG_WAVE,
         reflected_temperature=kelvin(row, "T_reflected_C"),
     )
-    assert float(by_contact) == pytest.approx(float(row["eps_surface_true"]), abs=1e-5)
+    true = float(row["eps_surface_true"])
+    evidence("emissivity_reference", "contact", by_contact, true, abs=1e-5)
 
 
 def test_emissivity_through_air():
@@ -556,10 +571,10 @@ def test_foil_refuses_a_black_foil():
         (300.0, 2.0, 2.0, 2.0, 3.0),
     ],
 )
-def test_accuracy_statement(celsius, limit, percent, factor, expected):
+def test_accuracy_statement(celsius, limit, percent, factor, expected, evidence):
     # JCGM 100:2008, 4.3.7: rectangular distribution of half-width a has u = a / sqrt(3)
     found = accuracy_standard_uncertainty(celsius + 273.15, limit, percent, factor)
-    assert float(found) == pytest.approx(expected, rel=1e-12)
+    evidence("accuracy_statement", "standard uncertainty", found, expected, unit="K", rel=1e-12)
 
 
 def test_accuracy_statement_refuses():

@@ -187,11 +187,11 @@ def test_a_time_in_the_hour_the_clocks_change_is_asked_for(survey_folder):
     asks(survey_folder, "lies in the hour the clocks change")
 
 
-def test_air_pressure_follows_the_altitude(survey_folder):
+def test_air_pressure_follows_the_altitude(survey_folder, evidence):
     # ISO 2533:1975: 8.98763e4 Pa at a geometric altitude of 1000 m
     survey_folder.edit("altitude_m = 95", "altitude_m = 1000")
     pressure = read_survey(survey_folder.root).site.pressure
-    assert pressure.value == pytest.approx(89876.3, abs=0.05)
+    evidence("iso_2533", "pressure", pressure.value, 89876.3, unit="Pa", abs=0.05)
     assert pressure.is_default
 
 

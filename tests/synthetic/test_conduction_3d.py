@@ -114,7 +114,7 @@ def test_a_step_of_the_lagging_under_a_sheet_spreads_as_a_fin():
     assert np.max(np.abs(found - expected)) < 0.01 * (level[1] - level[0])
 
 
-def test_a_wet_sector_agrees_with_finite_elements():
+def test_a_wet_sector_agrees_with_finite_elements(evidence):
     # independent solver: scikit-fem, quadratic elements on a polar mesh
     import skfem
     from skfem.helpers import dot, grad
@@ -170,7 +170,8 @@ def test_a_wet_sector_agrees_with_finite_elements():
         3, 48, 10, factor=factor, thickness=np.full((3, 48), THICKNESS),
         exposed=np.zeros((3, 48), dtype=bool), sheet_conductance=0.0, inside_coefficient=1e9,
     )  # fmt: skip
-    assert solve_columns(model, linear_flux).heat_loss(0.015) == pytest.approx(expected, rel=2e-3)
+    found = solve_columns(model, linear_flux).heat_loss(0.015)
+    evidence("fem_wet_sector", "loss", found, expected, unit="W/m", rel=2e-3)
 
 
 def test_no_settling_is_said():
