@@ -38,7 +38,8 @@ VALUES = [
     f"u of a contact reading | {references.CONTACT_U} K |",
     f"what the cladding mirrors | {references.FOIL_U} K |",
     f"u of a background by its own emissivity | {references.BACKGROUND_EMISSIVITY_U} K |",
-    f"since tape changes the heat balance | {percent(references.TAPE_U_RELATIVE)} |",
+    f"since tape cools where it sticks, coated | {percent(references.TAPE_COOLING)} |",
+    f"since tape cools where it sticks, metal | {percent(references.TAPE_COOLING_METAL)} |",
     f"Less than {MINIMUM_SEPARATION:g} K from the reflected temperature",
     f"within {math.degrees(math.asin(strip.WIDEST_FRACTION)):.0f}° is used, and "
     f"{strip.EDGE_MARGIN_PX} px are kept clear",
@@ -101,7 +102,8 @@ def test_what_each_measurement_would_leave():
     names = {"advice.tape_patch": "tape patch", "advice.reflector": "foil",
              "advice.contact_temperature": "contact temperature",
              "advice.air_temperature": "air temperature", "advice.other_hour": "another hour",
-             "advice.wind": "wind", "advice.closer_frame": "closer frame"}  # fmt: skip
+             "advice.wind": "wind", "advice.closer_frame": "closer frame",
+             "advice.inside_temperature": "inside temperature"}  # fmt: skip
     missing = [
         f"{names[key]} {percent(left)}"
         for key, left in verdict._ADVICE.values()

@@ -9,6 +9,7 @@ from itertools import repeat
 from multiprocessing import get_context
 
 import numpy as np
+from threadpoolctl import threadpool_limits
 
 from cladwatt.assumptions import assumptions_of
 from cladwatt.errors import Fault, InputError
@@ -139,6 +140,13 @@ def assess_frame(survey: Survey, entry: FrameEntry, settings: Settings) -> Frame
     FrameResult
     """
     started = time.perf_counter()
+    # the last bits of a matrix product hang on the number of threads: always one
+    with threadpool_limits(limits=1, user_api="blas"):
+        result = _assess_one(survey, entry, settings)
+    return replace(result, seconds=time.perf_counter() - started)
+
+
+def _assess_one(survey: Survey, entry: FrameEntry, settings: Settings) -> FrameResult:
     try:
         frame = read_frame(entry, root=survey.root)
     except InputError as error:
@@ -160,7 +168,6 @@ def assess_frame(survey: Survey, entry: FrameEntry, settings: Settings) -> Frame
         regions=tuple(results),
         left_out=tuple(left_out_list),
         remarks=remarks,
-        seconds=time.perf_counter() - started,
     )
 
 
@@ -272,6 +279,13 @@ def _observe(
     """Read one region off the image, with the references on its line."""
     assert region.tag is not None
     line = survey.lines[region.tag]
+    frame = mirrored(
+        frame,
+        book,
+        region.id,
+        is_metal=line.cladding.is_metal,
+        indoors=entry.conditions.indoors is not False,
+    )
     line_draws, remarks = with_emissivity(
         draw_line(book, line, region), line.tag, frame, readings, book
     )
@@ -282,13 +296,7 @@ def _observe(
         left_out=widened(_covered(region, regions, masks, LEFT_OUT_ROLES), BLUR_MARGIN_PX),
         components=_covered(region, regions, masks, frozenset({"component"})),
         known_lengths=[r for r in regions if r.role == "known_length" and r.tag == region.tag],
-        frame=mirrored(
-            frame,
-            book,
-            region.id,
-            is_metal=line_draws.is_metal,
-            indoors=entry.conditions.indoors is not False,
-        ),
+        frame=frame,
         line_draws=line_draws,
         conditions=entry.conditions,
         camera=survey.camera,

@@ -154,7 +154,9 @@ def test_nothing_to_share():
 
 
 def test_advice_names_the_measurement_behind_the_largest_share():
-    advice = advice_of((("wind_speed", 0.7), ("air_temperature", 0.2)), wide(1.0), emissivity=0.9)
+    advice = advice_of(
+        (("wind_speed", 0.7), ("air_temperature", 0.2)), {}, wide(1.0), emissivity=0.9
+    )
     assert advice is not None
     assert advice.key == "advice.wind"
     promised = dict(advice.parameters)
@@ -173,17 +175,24 @@ def test_advice_names_the_measurement_behind_the_largest_share():
     ids=["nothing measurable", "all small", "reflector on paint", "no shares"],
 )
 def test_no_advice_where_no_measurement_helps(shares, emissivity):
-    assert advice_of(shares, wide(1.0), emissivity=emissivity) is None
+    assert advice_of(shares, {}, wide(1.0), emissivity=emissivity) is None
 
 
 def test_reflector_is_advised_on_metal():
-    advice = advice_of((("reflected_temperature", 0.8),), wide(1.0), emissivity=0.3)
+    advice = advice_of((("reflected_temperature", 0.8),), {}, wide(1.0), emissivity=0.3)
     assert advice is not None
     assert advice.key == "advice.reflector"
 
 
 def test_no_advice_without_a_loss():
     shares = (("wind_speed", 0.7),)
-    assert advice_of(shares, None, emissivity=0.9) is None
-    assert as_verdict(inputs(heat_loss=None), shares).advice is None
-    assert as_verdict(inputs(heat_loss=wide(0.5)), shares).advice is not None
+    assert advice_of(shares, {}, None, emissivity=0.9) is None
+    assert as_verdict(inputs(heat_loss=None), shares, {}).advice is None
+    assert as_verdict(inputs(heat_loss=wide(0.5)), shares, {}).advice is not None
+
+
+def test_a_measurement_promises_less_where_the_joint_estimate_knows_already():
+    shares = (("wind_speed", 0.7),)
+    fresh = dict(advice_of(shares, {}, wide(1.0), emissivity=0.9).parameters)
+    known = advice_of(shares, {"wind_speed": 0.1}, wide(1.0), emissivity=0.9)
+    assert known is None or dict(known.parameters)["width_then"] > fresh["width_then"]

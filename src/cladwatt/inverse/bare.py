@@ -36,13 +36,15 @@ PRIOR_BARE = 0.5
 SECTOR_SHARE = (0.15, 0.6)
 """Share of the circumference that a missing sector opens, all equally likely; assumption."""
 LEAST_PROBABILITY = 0.02
-EDGE_SIGMA = 3.0
-EDGE_SIGMA_SHARE = 0.03
-"""Scatter of what shows beside a pipe about background or lagging: 3 K and 3 % of the drop from
-fluid to air, since the cut face of what lagging is left may be cool too; assumption."""
+EDGE_SIGMA = 2.0
+EDGE_SIGMA_SHARE = 0.01
+"""Scatter of what shows beside a pipe about background or lagging: 2 K and 1 % of the drop from
+fluid to air; assumption."""
 LIKELIHOOD_FLOOR = 0.01
-LEAST_ROOM_PX = 2.0
-"""Between the two edges and halfway; with less the blur of the hot pipe decides. [px]"""
+BLUR_PX = 3.0
+"""How far the glow of the hot pipe reaches beyond its edge in the image. [px]"""
+FARTHEST_BESIDE = 0.97
+"""Up to where lagging is looked for, in half widths of the lagged pipe."""
 BACKGROUND_AT = 1.35
 """Where the background is looked for, in half widths."""
 
@@ -128,14 +130,13 @@ def bare_draws(seen: Seen, run: Run, sound_at: BoolArray, base: FloatArray) -> B
 def _edges_favour_bare(seen: Seen, run: Run, sound_at: BoolArray, thinner: float) -> float:
     """Return the likelihood of what shows beside the pipe, bare over missing sector.
 
-    `thinner` is the pipe's diameter over the lagged one's. Halfway between the pipe's edge and
-    the lagging's a bare stretch lets the background through, on both sides. With a sector missing
-    lagging goes on at one side at least, and shows its sound level there or, inside the opening,
-    something warmer.
+    `thinner` is the pipe's diameter over the lagged one's. Between the pipe's edge and the
+    lagging's a bare stretch lets the background through, on both sides. With a sector missing
+    lagging goes on at one side at least: somewhere there its sound level shows or, inside the
+    opening, something warmer, beside a cut face that may be as cool as the background.
     """
-    halfway = (1 + thinner) / 2
-    room_px = (1 - thinner) * seen.width / 4
-    if room_px < LEAST_ROOM_PX:
+    nearest = thinner + BLUR_PX / (seen.width / 2)
+    if nearest > FARTHEST_BESIDE:
         return 1.0
     within = np.arange(run.first, run.last + 1)
     sound = np.flatnonzero(sound_at)
@@ -143,15 +144,16 @@ def _edges_favour_bare(seen: Seen, run: Run, sound_at: BoolArray, thinner: float
     assert seen.line_draws.inside_temperature is not None
     drop = np.median(seen.line_draws.inside_temperature - seen.frame.air_temperature)
     scatter = EDGE_SIGMA + EDGE_SIGMA_SHARE * abs(float(drop))
+    positions = np.linspace(nearest, FARTHEST_BESIDE, 6)
     through, goes_on = [], []
     for side in (-1.0, 1.0):
-        shown = _beside(seen, side * halfway, within)
-        background = _beside(seen, side * BACKGROUND_AT, within)
-        lagging = _beside(seen, side * halfway, sound)
-        if not np.isfinite([shown, background, lagging]).all():
+        strongest = max(sign * _beside(seen, side * position, within) for position in positions)
+        background = sign * _beside(seen, side * BACKGROUND_AT, within)
+        lagging = sign * _beside(seen, side * (1 + thinner) / 2, sound)
+        if not np.isfinite([strongest, background, lagging]).all():
             continue
-        through.append(_likelihood((shown - background) / scatter))
-        goes_on.append(_likelihood(min(sign * (shown - lagging), 0.0) / scatter))
+        through.append(_likelihood((strongest - background) / scatter))
+        goes_on.append(_likelihood(min(strongest - lagging, 0.0) / scatter))
     if len(through) < 2:
         return 1.0
     sector = (goes_on[0] * goes_on[1] + goes_on[0] * through[1] + through[0] * goes_on[1]) / 3

@@ -52,8 +52,14 @@ def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionR
     seen = _shifted_seen(observed.seen, shift)
     balance = _shifted_balance(observed, shift, seen.perimeter)
     aged = next((u.aged[seen.region.id] for u in updates if seen.region.id in u.aged), None)
-    drivers = {name: shift(draws) for name, draws in _drivers(observed.seen).items()}
-    result = _concluded(seen, balance, image_loss, aged, drivers)
+    prior = _drivers(observed.seen)
+    drivers = {name: shift(draws) for name, draws in prior.items()}
+    narrowed = {
+        name: float(np.std(drivers[name]) / spread)
+        for name, draws in prior.items()
+        if (spread := np.std(draws)) > 0
+    }
+    result = _concluded(seen, balance, image_loss, aged, drivers, narrowed)
     if any(seen.region.id in update.doubted for update in updates):
         return replace(result, remarks=(*result.remarks, Remark("remark.specification_doubted")))
     return result
@@ -133,6 +139,7 @@ def _concluded(
     image_loss: Interval | None,
     aged_level: float | None,
     drivers: dict[str, FloatArray],
+    narrowed: dict[str, float],
 ) -> RegionResult:
     bounds, sound = balance.bounds, balance.sound
     mean_flux = bounds.applied(seen.mean_along(balance.flux))
@@ -173,10 +180,10 @@ def _concluded(
         specified_resistance=resistances.specified,
         resistance_ratio=resistances.ratio,
         effective_conductivity=resistances.effective_conductivity,
-        probability_damaged=None if local is None or aged is None else local + aged,
+        probability_damaged=None if local is None else local + (aged or 0.0),
         probability_local=local,
         probability_aged=aged,
-        verdict=as_verdict(inputs, shares, missing_of(seen)),
+        verdict=as_verdict(inputs, shares, narrowed, missing_of(seen)),
         stretches=stretches,
         variance_shares=shares,
         draws=draws,
@@ -287,13 +294,19 @@ def _reciprocal(interval: Interval) -> Interval:
 def _drivers(seen: Seen) -> dict[str, FloatArray]:
     """Return the draws behind each quantity that may carry variance."""
     frame, line = f"frame:{seen.region.frame_id}", f"line:{seen.line.tag}"
-    overridden = seen.region.band_emissivity is not None
+    overridden = seen.region.total_emissivity is not None
     cladding = seen.owner if overridden else line
     normal = seen.book.normal
     return {
         "band_emissivity": seen.line_draws.band_emissivity,
         "total_emissivity": normal(cladding, "total_emissivity"),
-        "reflected_temperature": normal(frame, "reflected_temperature"),
+        "inside_temperature": normal(line, "inside_temperature"),
+        "installation_factor": normal(line, "installation_factor"),
+        "conductivity": normal(line, "conductivity_factor_1"),
+        "thickness": normal(line, "thickness_1"),
+        "sound_scatter": normal(seen.owner, "sound_scatter"),
+        "mirrored_scene": normal(seen.owner, "mirrored_scene"),
+        "reflected_temperature": seen.frame.reflected_temperature,
         "surroundings_temperature": normal(frame, "surroundings_temperature"),
         "air_temperature": normal(frame, "air_temperature"),
         "wind_speed": normal(frame, "wind_speed"),

@@ -243,7 +243,9 @@ def _reflected(
     reflected = conditions.reflected_temperature
     if reflected is not None and reflected.source.startswith(SURROUNDINGS_AS_SOURCE):
         declared = conditions.surroundings_temperature
-        own = reflected.u if declared is None else math.sqrt(reflected.u**2 - declared.u**2)
+        own = (
+            reflected.u if declared is None else math.sqrt(max(reflected.u**2 - declared.u**2, 0.0))
+        )
         return np.asarray(surroundings + own * book.normal(owner, "reflected_temperature"))
     if reflected is not None:
         return _follow(book, owner, "reflected_temperature", reflected, air)
@@ -325,11 +327,11 @@ def draw_line(book: DrawBook, line: Line, region: Region | None = None) -> LineD
     owner = f"line:{line.tag}"
     cladding = line.cladding
     band_quantity, total_quantity = cladding.band_emissivity, cladding.total_emissivity
-    band_owner = owner
+    band_owner = total_owner = owner
     if region is not None and region.band_emissivity is not None:
         band_quantity, band_owner = region.band_emissivity, f"region:{region.id}"
     if region is not None and region.total_emissivity is not None:
-        total_quantity, band_owner = region.total_emissivity, f"region:{region.id}"
+        total_quantity, total_owner = region.total_emissivity, f"region:{region.id}"
     pipe = (
         None
         if line.pipe_outside_diameter is None
@@ -338,7 +340,7 @@ def draw_line(book: DrawBook, line: Line, region: Region | None = None) -> LineD
     layers = layer_draws(book, line, region)
     return LineDraws(
         band_emissivity=book.quantity(band_owner, "band_emissivity", band_quantity),
-        total_emissivity=_total_emissivity(book, band_owner, total_quantity),
+        total_emissivity=_total_emissivity(book, band_owner, total_owner, total_quantity),
         solar_absorptance=book.quantity(owner, "solar_absorptance", cladding.solar_absorptance),
         is_metal=cladding.is_metal,
         inside_temperature=(
@@ -354,14 +356,16 @@ def draw_line(book: DrawBook, line: Line, region: Region | None = None) -> LineD
     )
 
 
-def _total_emissivity(book: DrawBook, owner: str, quantity: Quantity) -> FloatArray:
+def _total_emissivity(
+    book: DrawBook, band_owner: str, owner: str, quantity: Quantity
+) -> FloatArray:
     """Draw the total emissivity, its error going partly with the band emissivity's."""
     from cladwatt.inverse.draws import quantity_draws
 
     own = math.sqrt(1 - EMISSIVITY_CORRELATION**2)
-    normal = EMISSIVITY_CORRELATION * book.normal(owner, "band_emissivity") + own * book.normal(
-        owner, "total_emissivity"
-    )
+    normal = EMISSIVITY_CORRELATION * book.normal(
+        band_owner, "band_emissivity"
+    ) + own * book.normal(owner, "total_emissivity")
     return quantity_draws(quantity, lambda: normal, book.count)
 
 

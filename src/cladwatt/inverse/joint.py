@@ -153,25 +153,34 @@ def _updated(regions: list[str], observed: FloatArray, book: DrawBook, owner: st
     mean = observed[core].mean(axis=0)
     covariance = np.atleast_2d(np.cov(observed[core], rowvar=False, bias=True))
     doubt = _doubt(mean, np.diag(covariance))
-    combinations = list(product(STATES, repeat=len(regions)))
-    weights = _weights(combinations, mean, covariance, doubt)
+    numbers = np.array(list(product(range(len(STATES)), repeat=len(regions))))
+    means = np.array([state.mean for state in STATES])[numbers]
+    variances = np.square([state.sigma for state in STATES])[numbers]
+    variances = variances + doubt[np.arange(len(regions)), numbers]
+    priors = np.prod(np.array([state.prior for state in STATES])[numbers], axis=1)
+    weights = _weights(means, variances, priors, mean, covariance)
     dealt = np.searchsorted(np.cumsum(weights), book.uniform(owner, "lagging_state"))
-    dealt = np.minimum(dealt, len(combinations) - 1)
-    scatter = np.stack(
-        [book.normal(f"region:{region}", "sound_scatter") for region in regions], axis=1
-    )
+    dealt = np.minimum(dealt, len(numbers) - 1)
+    scatter = _keyed(book, regions, "sound_scatter")
+    disagreement = np.sqrt(doubt.max(axis=1)) * _keyed(book, regions, "disagreement")
     moves: list[tuple[IntArray, FloatArray, FloatArray]] = []
     for number in np.unique(dealt):
-        states = combinations[int(number)]
         chosen = np.flatnonzero(dealt == number)
-        sigma = np.sqrt(np.array([state.sigma for state in states]) ** 2 + doubt)
-        target = np.array([state.mean for state in states]) + sigma * scatter[chosen]
-        inverse = np.linalg.inv(covariance + np.diag(sigma**2))
-        moves.append((chosen, target - observed[chosen], np.asarray(inverse, dtype=float)))
-    is_aged = np.array([[state.aged for state in states] for states in combinations])
+        total = covariance + np.diag(variances[number])
+        target = means[number] + np.sqrt(variances[number]) * scatter[chosen]
+        # what image and specification disagree by stays as uncertainty of both
+        widening = disagreement[chosen] @ np.linalg.pinv(covariance) @ total
+        innovation = target - observed[chosen] + widening
+        moves.append((chosen, innovation, np.asarray(np.linalg.inv(total), dtype=float)))
+    is_aged = np.array([state.aged for state in STATES])[numbers]
     aged = dict(zip(regions, (weights @ is_aged).tolist(), strict=True))
-    doubted = frozenset(region for region, own in zip(regions, doubt, strict=True) if own > 0)
+    doubted = frozenset(r for r, own in zip(regions, doubt, strict=True) if own.max() > 0)
     return JointUpdate(aged, doubted, observed, core, tuple(moves))
+
+
+def _keyed(book: DrawBook, regions: list[str], quantity: str) -> FloatArray:
+    """Return standard normal draws of each region's own, (count, n_regions)."""
+    return np.stack([book.normal(f"region:{region}", quantity) for region in regions], axis=1)
 
 
 def _core_of(observed: FloatArray) -> BoolArray:
@@ -182,30 +191,30 @@ def _core_of(observed: FloatArray) -> BoolArray:
 
 
 def _doubt(mean: FloatArray, variance: FloatArray) -> FloatArray:
-    """Return the variance to add to every state where none of them fits a region.
+    """Return the variance to add to the nearest state of regions that no state fits.
 
-    There the specification is wrong, or the image is; the two then share the disagreement.
+    There the specification is wrong, or the image is; the two share the disagreement, which is
+    also kept as uncertainty. (n_regions, n_states)
     """
-    added = np.zeros(mean.size)
+    added = np.zeros((mean.size, len(STATES)))
     for index, (level, own) in enumerate(zip(mean, variance, strict=True)):
-        away = min(abs(level - state.mean) / math.sqrt(own + state.sigma**2) for state in STATES)
-        if away > LARGEST_DISAGREEMENT:
-            distance = min(abs(level - state.mean) for state in STATES)
-            added[index] = (distance / LARGEST_DISAGREEMENT) ** 2
+        sigmas = [abs(level - state.mean) / math.sqrt(own + state.sigma**2) for state in STATES]
+        nearest = int(np.argmin(sigmas))
+        if sigmas[nearest] > LARGEST_DISAGREEMENT:
+            distance = abs(level - STATES[nearest].mean)
+            added[index, nearest] = (distance / LARGEST_DISAGREEMENT) ** 2
     return added
 
 
 def _weights(
-    combinations: list[tuple[_State, ...]],
+    means: FloatArray,
+    variances: FloatArray,
+    priors: FloatArray,
     mean: FloatArray,
     covariance: FloatArray,
-    doubt: FloatArray,
 ) -> FloatArray:
-    """Return the posterior weight of each combination."""
-    means = np.array([[state.mean for state in states] for states in combinations])
-    variances = np.array([[state.sigma**2 for state in states] for states in combinations])
-    priors = np.array([math.prod(state.prior for state in states) for states in combinations])
-    total = covariance + np.einsum("ci,ij->cij", variances + doubt, np.eye(mean.size))
+    """Return the posterior weight of each combination of states."""
+    total = covariance + np.einsum("ci,ij->cij", variances, np.eye(mean.size))
     away = means - mean
     solved = np.linalg.solve(total, away[:, :, None])[:, :, 0]
     logarithm = -0.5 * np.einsum("ci,ci->c", away, solved)

@@ -38,8 +38,9 @@ BACKGROUND_EMISSIVITY_U = 0.3
 """Error of a painted or brick background of known temperature by its emissivity. [K]"""
 BEYOND = 3.5
 """Standard uncertainties beyond which a reading is broken and poisons all that it touches. [-]"""
-TAPE_U_RELATIVE = 0.04
-"""Tape changes the heat balance where it sticks; assumption."""
+TAPE_COOLING, TAPE_COOLING_METAL = 0.02, 0.08
+"""Tape radiates more than what it sticks on and is cooler than the surface beside it, most on
+bright metal: the emissivity found is too high by a half-normal share of this scale; assumption."""
 
 
 @dataclass(frozen=True)
@@ -211,7 +212,7 @@ def with_emissivity(
         if lacking is not None:
             remarks.append(_set_aside(reading, lacking))
             continue
-        found = _emissivity(reading, frame, book)
+        found = _emissivity(reading, frame, line, book)
         usable = np.isfinite(found) & (found > 0.01) & (found < 1.0)
         if usable.mean() < 0.5:
             remarks.append(_set_aside(reading, "surface within 10 K of the reflected temperature"))
@@ -231,7 +232,9 @@ def _lacking(reading: ReferenceReading) -> str | None:
     return None if np.isfinite(reading.beside) else "no usable pixels of the pipe beside it"
 
 
-def _emissivity(reading: ReferenceReading, frame: FrameDraws, book: DrawBook) -> FloatArray:
+def _emissivity(
+    reading: ReferenceReading, frame: FrameDraws, line: LineDraws, book: DrawBook
+) -> FloatArray:
     """Return draws of the emissivity beside a patch or at a contact reading; NaN where none."""
     owner = f"region:{reading.region.id}"
     seen = reading.reading + frame.calibration_offset(np.array([reading.reading]))[:, 0]
@@ -258,7 +261,8 @@ def _emissivity(reading: ReferenceReading, frame: FrameDraws, book: DrawBook) ->
         transmission=frame.transmission,
         atmosphere_temperature=frame.air_temperature,
     )
-    return emissivity * (1 + TAPE_U_RELATIVE * book.normal(owner, "heat_balance"))
+    cooling = TAPE_COOLING_METAL if line.is_metal else TAPE_COOLING
+    return emissivity * (1 - cooling * np.abs(book.normal(owner, "heat_balance")))
 
 
 def _weighed(declared: FloatArray, found: FloatArray) -> FloatArray:

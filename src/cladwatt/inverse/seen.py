@@ -19,6 +19,9 @@ from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["FrameImage", "Seen"]
 
+COMPONENT_END_U = 0.02
+"""Standard uncertainty of where a drawn component ends along the pipe; assumption. [m]"""
+
 
 @dataclass(frozen=True)
 class FrameImage:
@@ -122,8 +125,12 @@ class Seen:
         Gaps behind other things count: the pipe goes on there, at the mean of the rest.
         """
         total = float(np.sum(self.strip.length[~self.component_at]))
-        scale = 1 + self.strip.scale_uncertainty * self.book.normal(self.owner, "scale")
-        return np.asarray(total * scale * self.diameter / np.median(self.diameter))
+        ends = COMPONENT_END_U * np.count_nonzero(np.diff(self.component_at)) ** 0.5
+        relative = math.hypot(self.strip.scale_uncertainty, ends / max(total, ends))
+        length = total * (1 + relative * self.book.normal(self.owner, "scale"))
+        if self.strip.scaled_by_diameter:
+            length = length * self.diameter / np.median(self.diameter)
+        return np.asarray(length)
 
     def dew_point(self) -> float | None:
         """Return the dew point of the declared air; None where no humidity is known. [K]"""

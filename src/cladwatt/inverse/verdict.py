@@ -32,6 +32,7 @@ _ADVICE: dict[str, tuple[str, float]] = {
     "surroundings_temperature": ("advice.other_hour", 0.5),
     "wind_speed": ("advice.wind", 0.4),
     "transmission": ("advice.closer_frame", 0.4),
+    "inside_temperature": ("advice.inside_temperature", 0.4),
 }
 _FIND_OUT = {
     "missing.inside_temperature": "advice.inside_temperature",
@@ -127,13 +128,14 @@ def variance_shares(
     loss : (count,) array
         Draws of the loss; NaN left out.
     drivers : mapping of name to (count,) array
-        The standard normal draws behind each quantity, independent of each other.
+        The draws behind each quantity, moved by the joint estimate like the loss.
 
     Returns
     -------
     tuple of (name, share)
-        Squared correlations, largest first: first-order indices of a linear model; what
-        bends or interacts is not in them.
+        Squared correlations, largest first: what of the variance a linear model of that quantity
+        alone explains. Independent quantities add up to one less what bends or interacts; the
+        joint estimate makes them hang together, and shares then overlap.
 
     References
     ----------
@@ -152,13 +154,19 @@ def variance_shares(
 
 
 def advice_of(
-    shares: tuple[tuple[str, float], ...], heat_loss: Interval | None, *, emissivity: float
+    shares: tuple[tuple[str, float], ...],
+    narrowed: Mapping[str, float],
+    heat_loss: Interval | None,
+    *,
+    emissivity: float,
 ) -> Remark | None:
     """Return the one measurement that would narrow the loss most, with the widths it promises.
 
     Parameters
     ----------
     shares : tuple of (name, share)
+    narrowed : mapping of name to float
+        What is left of each quantity's declared uncertainty after the joint estimate.
     heat_loss : Interval or None
     emissivity : float
 
@@ -175,6 +183,9 @@ def advice_of(
     for name, share in shares:
         if name in _ADVICE and share >= 0.1:
             key, left = _ADVICE[name]
+            # the measurement adds to what the joint estimate knows of the quantity already
+            measured = left / math.sqrt(1 - left**2)
+            left = 1 / math.hypot(1.0, narrowed.get(name, 1.0) / measured)
             if key == "advice.reflector" and emissivity > 0.9:
                 continue
             then = now * math.sqrt(max(1 - share * (1 - left**2), 0.02))
@@ -186,7 +197,10 @@ def advice_of(
 
 
 def as_verdict(
-    inputs: VerdictInputs, shares: tuple[tuple[str, float], ...], missing: tuple[Remark, ...] = ()
+    inputs: VerdictInputs,
+    shares: tuple[tuple[str, float], ...],
+    narrowed: Mapping[str, float],
+    missing: tuple[Remark, ...] = (),
 ) -> Verdict:
     """Return the full verdict with its advice.
 
@@ -195,6 +209,8 @@ def as_verdict(
     inputs : VerdictInputs
     shares : tuple of (name, share)
         As `variance_shares` gives them.
+    narrowed : mapping of name to float
+        As for `advice_of`.
     missing : tuple of Remark
         What is unknown; finding that out comes before any measurement.
     """
@@ -202,4 +218,5 @@ def as_verdict(
     for remark in missing:
         if remark.key in _FIND_OUT:
             return Verdict(level, reason, Remark(_FIND_OUT[remark.key]))
-    return Verdict(level, reason, advice_of(shares, inputs.heat_loss, emissivity=inputs.emissivity))
+    advice = advice_of(shares, narrowed, inputs.heat_loss, emissivity=inputs.emissivity)
+    return Verdict(level, reason, advice)

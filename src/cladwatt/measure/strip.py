@@ -45,6 +45,8 @@ class Strip:
         Relative standard uncertainty of every length, common to all stations.
     nearer : float
         Factor by which lengths shrink since the near surface is what is drawn.
+    scaled_by_diameter : bool
+        Whether lengths hang on the pipe's diameter rather than on a marked length.
     receding_angle : float
         Angle between the axis and the image plane as the growth of the width shows it. [rad]
     """
@@ -59,6 +61,7 @@ class Strip:
     sample_y: FloatArray
     scale_uncertainty: float
     nearer: float
+    scaled_by_diameter: bool
     receding_angle: float
 
     @property
@@ -155,6 +158,7 @@ def straighten(
         sample_y=y + across[:, None] * half * normal_y,
         scale_uncertainty=scale_u,
         nearer=1 - nearer,
+        scaled_by_diameter=known_length is None,
         receding_angle=math.atan(focal * _width_growth(along, width)),
     )
 
