@@ -29,9 +29,7 @@ RECORDED_ONLY = frozenset(
 
 NOT_TAKEN = frozenset(
     {
-        "distance", "u_relative_pipe_outside_diameter", "u_relative_lagging_thickness",
-        "u_relative_conductivity", "tape_emissivity", "foil_emissivity", "water_film_emissivity",
-        "u_contact_reading",
+        "distance", "tape_emissivity", "foil_emissivity", "water_film_emissivity",
     }
 )  # fmt: skip
 """Defaults that nothing looks up; the key list or the method says what holds."""
@@ -171,11 +169,12 @@ def _default(key: Key) -> str:
 
 def _u(key: Key, unit: Unit) -> str:
     parts = []
-    if key.u:
-        parts.append(f"{key.u / unit.factor:.3g} {_difference(unit)}".strip())
-    if key.u_relative:
-        parts.append(f"{100 * key.u_relative:.3g} %")
-    source = "" if "no source" in key.u_source else f" ({key.u_source})"
+    u, share, said = key.usual_u()
+    if u:
+        parts.append(f"{u / unit.factor:.3g} {_difference(unit)}".strip())
+    if share:
+        parts.append(f"{100 * share:.3g} %")
+    source = "" if "no source" in said else f" ({said})"
     return " or ".join(parts) + source if key.kind == "quantity" else ""
 
 

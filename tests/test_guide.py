@@ -32,9 +32,10 @@ def test_what_is_kept_only_is_used_by_nothing():
     attributes = {"latitude": "latitude_deg", "longitude": "longitude_deg", "roll": "roll_deg",
                   "wind_angle": "wind_angle_deg", "tracer_clock_position": "clock_position",
                   "tracer_temperature": "tracing.temperature",
-                  "tracer_power": "tracing.power"}  # fmt: skip
+                  "tracer_power": "tracing.power", "flow": "line.flow",
+                  "specific_heat": "line.specific_heat"}  # fmt: skip
     names = [attributes.get(name, name) for name in inputs["RECORDED_ONLY"]]
-    taken = re.compile("|".join(rf"\.{re.escape(name)}\b" for name in names))
+    taken = re.compile("|".join(rf"(?:\.|\b(?=line\.)){re.escape(name)}\b" for name in names))
     sources = [PACKAGE / "assess.py"]
     for part in ("physics", "measure", "inverse", "report"):
         sources += (PACKAGE / part).glob("*.py")

@@ -105,6 +105,7 @@ def _lagging(
 ) -> LaggingMaterial:
     service: float | None = None
     wet: tuple[float, float] | None = None
+    density, specific_heat = _heat_capacity(key, about, shorts, faults)
     if about is not None:
         service = about.record.number("maximum_service_temperature_C")
         low, high = about.record.number("wet_ratio_low"), about.record.number("wet_ratio_high")
@@ -133,7 +134,35 @@ def _lagging(
         service_source=source_of(about, shorts, "service_source") if about and service else "",
         wet_source=source_of(about, shorts, "wet_source") if about and wet else "",
         aliases=about.record.names("aliases") if about else (),
+        density=density,
+        specific_heat=specific_heat,
     )
+
+
+def _heat_capacity(
+    key: str, about: Placed | None, shorts: Mapping[str, str], faults: list[Fault]
+) -> tuple[Quantity | None, Quantity | None]:
+    """Return density and specific heat; an own row without their u is taken as good to a tenth."""
+    if about is None:
+        return None, None
+    source = source_of(about, shorts, "heat_source") or source_of(about, shorts)
+    confidence = cast(Confidence, about.record.text("heat_confidence") or "declared")
+    found: list[Quantity | None] = []
+    for name in ("density_kg_per_m3", "specific_heat_J_per_kg_K"):
+        value, u = about.record.number(name), about.record.number(f"u_{name}")
+        if value is None and u is not None:
+            faults.append(
+                about.fault(f"{key}: u_{name}", f"it stands without {name}", "expected both")
+            )
+        found.append(
+            None
+            if value is None
+            else Quantity(
+                value, 0.1 * value if u is None else u, 0.3 * value, 3.0 * value,
+                source=source, confidence=confidence,
+            )
+        )  # fmt: skip
+    return found[0], found[1]
 
 
 def build_claddings(

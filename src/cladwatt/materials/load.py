@@ -2,7 +2,7 @@
 
 import difflib
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from functools import lru_cache
 from pathlib import Path
 
@@ -13,10 +13,17 @@ from cladwatt.materials.build import (
     build_defaults,
     build_lagging,
 )
+from cladwatt.materials.fittings import build_fittings
 from cladwatt.materials.formats import TABLE_FORMATS
 from cladwatt.materials.pipes import build_pipe_sizes, parse_nps
 from cladwatt.materials.placed import Placed
-from cladwatt.materials.rows import AirRow, CladdingMaterial, LaggingMaterial, PipeSize
+from cladwatt.materials.rows import (
+    AirRow,
+    CladdingMaterial,
+    Fitting,
+    LaggingMaterial,
+    PipeSize,
+)
 from cladwatt.materials.table_text import parse_table, read_table_text
 from cladwatt.quantities import Quantity
 
@@ -34,6 +41,7 @@ _KEY_COLUMN = {
     "lagging_materials": "material",
     "claddings": "cladding",
     "defaults": "quantity",
+    "fittings": "fitting",
     "sources": "source",
     "air_properties": "temperature_K",
 }
@@ -57,6 +65,8 @@ class MaterialTables:
         The same as text, for printing.
     user_files : tuple of Path
         The user's files that were read.
+    fittings : mapping of key to Fitting
+        Flanges, valves and hangers; those of the user last.
     """
 
     lagging: Mapping[str, LaggingMaterial]
@@ -66,6 +76,7 @@ class MaterialTables:
     defaults: Mapping[str, Quantity]
     rows: Mapping[str, TableRows]
     user_files: tuple[Path, ...] = ()
+    fittings: Mapping[str, Fitting] = field(default_factory=dict)
 
 
 def load_tables(extra_folder: Path | None = None) -> MaterialTables:
@@ -123,6 +134,7 @@ def _merged_tables(extra_folder: Path | None) -> MaterialTables:
         defaults=build_defaults(placed["defaults"], shorts, faults),
         rows={name: _text_rows(name, placed[name]) for name in TABLE_NAMES},
         user_files=tuple(user_files),
+        fittings=build_fittings(placed["fittings"], shorts, faults),
     )
     if faults:
         raise TableError(*faults)

@@ -1,13 +1,24 @@
 """Typed rows of the material tables, in SI."""
 
 from dataclasses import dataclass
-from typing import Literal
+from typing import Literal, get_args
 
 from cladwatt.quantities import Quantity
 
-__all__ = ["AirRow", "CladdingMaterial", "Confidence", "LaggingMaterial", "PipeSize"]
+__all__ = [
+    "COUNTS_AS",
+    "AirRow",
+    "CladdingMaterial",
+    "Confidence",
+    "CountsAs",
+    "Fitting",
+    "LaggingMaterial",
+    "PipeSize",
+]
 
 Confidence = Literal["declared", "high", "medium", "low"]
+CountsAs = Literal["bare_pipe", "lagged_pipe", "line_share"]
+COUNTS_AS: tuple[CountsAs, ...] = get_args(CountsAs)
 
 
 @dataclass(frozen=True)
@@ -36,6 +47,9 @@ class LaggingMaterial:
         Lowest and highest published ratio of wet to dry conductivity; None where unknown.
     service_source, wet_source : str
         Where these two come from.
+    density, specific_heat : Quantity or None
+        Of the dry lagging, for the time it takes to follow; None where unknown.
+        [kg/m3], [J/(kg K)]
     """
 
     key: str
@@ -51,6 +65,8 @@ class LaggingMaterial:
     service_source: str = ""
     wet_source: str = ""
     aliases: tuple[str, ...] = ()
+    density: Quantity | None = None
+    specific_heat: Quantity | None = None
 
 
 @dataclass(frozen=True)
@@ -117,6 +133,32 @@ class PipeSize:
     u_relative: float
     source: str
     confidence: Confidence
+
+
+@dataclass(frozen=True)
+class Fitting:
+    """What one fitting of a line counts as.
+
+    Parameters
+    ----------
+    key : str
+        Of the row.
+    kind : str
+        ``flange`` (a pair), ``valve`` or ``hanger``, or what a user's own table adds.
+    lagged : bool
+        Whether the fitting itself is lagged.
+    counts_as : {"bare_pipe", "lagged_pipe", "line_share"}
+        What `amount` is: metres of bare pipe of the same size and temperature, metres of the
+        lagged line beside it, or a share of the whole line's loss.
+    amount : Quantity
+        With the spread of what is printed. [m] or [-]
+    """
+
+    key: str
+    kind: str
+    lagged: bool
+    counts_as: CountsAs
+    amount: Quantity
 
 
 @dataclass(frozen=True)

@@ -9,6 +9,7 @@ from collections.abc import Mapping
 from typing import Literal, TypeVar
 
 from cladwatt.errors import Fault, InputError, TableError
+from cladwatt.materials.fittings import fitting_kind
 from cladwatt.materials.load import (
     TABLE_NAMES,
     MaterialTables,
@@ -17,7 +18,14 @@ from cladwatt.materials.load import (
     shipped_tables,
 )
 from cladwatt.materials.pipes import parse_nps
-from cladwatt.materials.rows import AirRow, CladdingMaterial, LaggingMaterial, PipeSize
+from cladwatt.materials.rows import (
+    AirRow,
+    CladdingMaterial,
+    CountsAs,
+    Fitting,
+    LaggingMaterial,
+    PipeSize,
+)
 from cladwatt.materials.table_text import normalised_key
 from cladwatt.quantities import Quantity
 
@@ -25,12 +33,15 @@ __all__ = [
     "TABLE_NAMES",
     "AirRow",
     "CladdingMaterial",
+    "Fitting",
     "LaggingMaterial",
     "MaterialTables",
     "PipeSize",
     "TableRows",
     "cladding_material",
     "default_quantity",
+    "fitting_equivalent_length",
+    "hanger_share",
     "lagging_material",
     "load_tables",
     "pipe_outside_diameter",
@@ -111,6 +122,80 @@ def default_quantity(name: str, tables: MaterialTables | None = None) -> Quantit
     if name not in defaults:
         raise InputError(f"there is no default {name!r}; accepted are {', '.join(defaults)}")
     return defaults[name]
+
+
+def fitting_equivalent_length(
+    kind: str,
+    lagged: bool,
+    *,
+    counts_as: CountsAs | None = None,
+    tables: MaterialTables | None = None,
+) -> Fitting:
+    """Return the pipe length a flange pair or valve counts as.
+
+    Parameters
+    ----------
+    kind : str
+        ``flange``, ``valve`` or what a user's own table adds; ``gate valve`` and the like too.
+    lagged : bool
+        Whether the fitting itself is lagged.
+    counts_as : {"bare_pipe", "lagged_pipe"}, optional
+        Whose length is wanted. By default bare pipe for a bare fitting, where that is held, and
+        the lagged line beside it for a lagged one.
+    tables : MaterialTables, optional
+        The survey's tables; what ships where left out.
+
+    Returns
+    -------
+    Fitting
+        Its `amount` is the length. [m]
+
+    Raises
+    ------
+    TableError
+        If there is none; the message lists what there is.
+
+    Examples
+    --------
+    >>> fitting_equivalent_length("gate valve", lagged=False).amount.value
+    1.0
+    """
+    rows = (tables or shipped_tables()).fittings.values()
+    lengths = [row for row in rows if row.counts_as != "line_share"]
+    wanted = fitting_kind(kind)
+    fit = [row for row in lengths if row.kind == wanted and row.lagged is lagged]
+    order = (counts_as,) if counts_as else ("lagged_pipe",) if lagged else _BARE_ORDER
+    for counted in order:
+        # a user's row stands last and goes first
+        for row in reversed(fit):
+            if row.counts_as == counted:
+                return row
+    known = dict.fromkeys(f"{row.kind} {'lagged' if row.lagged else 'bare'}" for row in lengths)
+    raise TableError(
+        Fault(
+            "fittings.csv",
+            f"fitting {kind!r}, {'lagged' if lagged else 'bare'}",
+            f"no equivalent length{f' of {counts_as}' if counts_as else ''} is held for it",
+            f"accepted are {', '.join(known)}; a row in tables/fittings.csv beside the survey adds "
+            "one",
+        )
+    )
+
+
+_BARE_ORDER: tuple[CountsAs, ...] = ("bare_pipe", "lagged_pipe")
+
+
+def hanger_share(*, indoors: bool, tables: MaterialTables | None = None) -> Quantity:
+    """Return the share of a line's loss that its hangers add. [-]
+
+    Parameters
+    ----------
+    indoors : bool
+    tables : MaterialTables, optional
+        The survey's tables; what ships where left out.
+    """
+    rows = (tables or shipped_tables()).fittings
+    return rows["hanger_indoors" if indoors else "hanger_outdoors"].amount
 
 
 def pipe_size(

@@ -163,7 +163,15 @@ def _read_entry(entry: Entry, reader: _Reader) -> _Read:
     raw = {k: v for k, v in raw.items() if not (isinstance(v, dict) and k in reader.wide)}
     if not isinstance(entry.raw, dict):
         raw = entry.raw  # type: ignore[assignment]
-    table = read_table(section("frame"), raw, place, reader.faults, ask=False, partial=True)
+    table = read_table(
+        section("frame"),
+        raw,
+        place,
+        reader.faults,
+        ask=False,
+        partial=True,
+        defaults=reader.tables.defaults,
+    )
     if not is_usable_id(identity):
         reader.faults.add(
             place, "id", f"the frame's id is {shown(identity)}",

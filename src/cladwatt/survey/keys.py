@@ -11,10 +11,12 @@ camera had been told.
 """
 
 import math
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from functools import cached_property
 from typing import Literal
 
+from cladwatt.quantities import Quantity
 from cladwatt.units import Unit, units_of
 
 __all__ = [
@@ -66,6 +68,9 @@ class Key:
         Standard uncertainty where none is declared: the larger of the two counts. [SI], [-]
     u_source : str
         Where that comes from.
+    u_row : str
+        Row of the table ``defaults`` that takes the place of `u`, or of `u_relative` where its name
+        begins with ``u_relative_``; with it goes the row's source.
     default : str
         What holds where the key is missing, in words; empty for nothing.
     ask : bool
@@ -88,6 +93,7 @@ class Key:
     u: float = 0.0
     u_relative: float = 0.0
     u_source: str = _PRACTICE
+    u_row: str = ""
     default: str = ""
     ask: bool = False
     required: bool = False
@@ -113,9 +119,31 @@ class Key:
         """The usual spelling."""
         return self.spellings[0][0]
 
-    def default_u(self, value: float) -> float:
-        """Return the standard uncertainty where none is declared. [SI]"""
-        return max(self.u, self.u_relative * abs(value))
+    def default_u(self, value: float, defaults: Mapping[str, Quantity] | None = None) -> float:
+        """Return the standard uncertainty where none is declared. [SI]
+
+        Parameters
+        ----------
+        value : float
+            [SI]
+        defaults : mapping of name to Quantity, optional
+            The survey's table of defaults; what ships where left out.
+        """
+        u, share, _ = self.usual_u(defaults)
+        return max(u, share * abs(value))
+
+    def usual_u(self, defaults: Mapping[str, Quantity] | None = None) -> tuple[float, float, str]:
+        """Return `u`, `u_relative` and their source, the row of the table of defaults in force."""
+        if not self.u_row:
+            return self.u, self.u_relative, self.u_source
+        if defaults is None:
+            from cladwatt.materials.load import shipped_tables
+
+            defaults = shipped_tables().defaults
+        row = defaults[self.u_row]
+        if self.u_row.startswith("u_relative_"):
+            return self.u, row.value, row.source
+        return row.value, self.u_relative, row.source
 
 
 @dataclass(frozen=True)
@@ -432,11 +460,12 @@ LAYER = (
     ),
     Key(
         "thickness", "quantity", "Of this layer", "length", 0.0, 1.0, lower_open=True,
-        cut=(1e-4, 2.0), u_relative=0.05, ask=True, example="50",
+        cut=(1e-4, 2.0), u_row="u_relative_lagging_thickness", ask=True, example="50",
     ),
     Key(
         "conductivity", "quantity", "As specified, instead of the table's", "conductivity", 0.0,
-        5.0, lower_open=True, u_relative=0.1, default="the material's table", example="0.038",
+        5.0, lower_open=True, u_row="u_relative_conductivity", default="the material's table",
+        example="0.038",
     ),
     _setting(
         "conductivity_temperature",
@@ -472,7 +501,7 @@ LINE = (
     ),
     Key(
         "pipe_outside_diameter", "quantity", "Of the bare pipe, without lagging", "length", 0.003,
-        4.0, cut=(0.001, 5.0), u=3e-4, u_relative=0.005, u_source="pipe tolerance: " + _PRACTICE,
+        4.0, cut=(0.001, 5.0), u=3e-4, u_row="u_relative_pipe_outside_diameter",
         example="114.3",
     ),
     Key(
@@ -481,11 +510,11 @@ LINE = (
     ),
     Key(
         "lagging_thickness", "quantity", "Of a single layer", "length", 0.0, 1.0, lower_open=True,
-        cut=(1e-4, 2.0), u_relative=0.05, ask=True, example="50",
+        cut=(1e-4, 2.0), u_row="u_relative_lagging_thickness", ask=True, example="50",
     ),
     Key(
         "lagging_conductivity", "quantity", "As specified, instead of the table's", "conductivity",
-        0.0, 5.0, lower_open=True, u_relative=0.1, default="the material's table",
+        0.0, 5.0, lower_open=True, u_row="u_relative_conductivity", default="the material's table",
         example="0.038",
     ),
     _setting(
@@ -614,13 +643,14 @@ REGION = (
     ),
     Key(
         "lagging_thickness", "quantity", "Overrides that of a single-layer line", "length",
-        0.0, 1.0, lower_open=True, cut=(1e-4, 2.0), u_relative=0.05, default="the line's",
+        0.0, 1.0, lower_open=True, cut=(1e-4, 2.0), u_row="u_relative_lagging_thickness",
+        default="the line's",
     ),
 )  # fmt: skip
 
 REGION_VALUES: dict[str, Key] = {
     "foil": _temperature("value", "Reflected apparent temperature read on the foil", u=1.0),
-    "contact": _temperature("value", "Contact reading", u=1.5),
+    "contact": _temperature("value", "Contact reading", u=0.0, u_row="u_contact_reading"),
     "background": _temperature("value", "Temperature of this background", u=1.5),
     "tape": replace(_emissivity("value", "Emissivity of the tape or paint", ""), u=0.015),
     "known_length": Key(

@@ -6,7 +6,7 @@ The rule of RFC 7946 that coordinates are longitude and latitude does not apply.
 
 import json
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 from pathlib import Path
 from typing import cast
@@ -35,7 +35,13 @@ _SMALLEST_AREA = 9.0
 """Three by three pixels: one measuring spot. [px2]"""
 
 
-def parse_regions(data: bytes, path: str, frame_id: str, faults: FaultList) -> list[Region]:
+def parse_regions(
+    data: bytes,
+    path: str,
+    frame_id: str,
+    faults: FaultList,
+    defaults: Mapping[str, Quantity] | None = None,
+) -> list[Region]:
     """Return the regions of one frame's file that can be used.
 
     Parameters
@@ -49,6 +55,8 @@ def parse_regions(data: bytes, path: str, frame_id: str, faults: FaultList) -> l
     faults : FaultList
         Gets one fault or more for each feature that is left out. A file that cannot be read at
         all is a fault of the frame.
+    defaults : mapping of name to Quantity, optional
+        The survey's table of defaults, for readings without uncertainty.
 
     Returns
     -------
@@ -63,7 +71,7 @@ def parse_regions(data: bytes, path: str, frame_id: str, faults: FaultList) -> l
         return []
     regions = []
     for number, feature in enumerate(features, start=1):
-        region = _region(feature, number, whole, faults)
+        region = _region(feature, number, whole, faults, defaults)
         if region is not None:
             regions.append(region)
     return regions
@@ -120,7 +128,13 @@ def _once_each(pairs: list[tuple[str, object]]) -> dict[str, object]:
     return found
 
 
-def _region(feature: object, number: int, whole: Place, faults: FaultList) -> Region | None:
+def _region(
+    feature: object,
+    number: int,
+    whole: Place,
+    faults: FaultList,
+    defaults: Mapping[str, Quantity] | None,
+) -> Region | None:
     place = replace(whole, prefix=f"feature {number}", region_id=f"feature {number}")
     if not isinstance(feature, dict) or feature.get("type") != "Feature":
         kind = feature.get("type") if isinstance(feature, dict) else feature
@@ -140,7 +154,9 @@ def _region(feature: object, number: int, whole: Place, faults: FaultList) -> Re
         label = shown(identity.strip())
         place = replace(place, prefix=f"feature {number} (id {label})", region_id=identity.strip())
     before = faults.errors
-    table = read_table(_section(named.get("role")), named, place, faults, ask=False)
+    table = read_table(
+        _section(named.get("role")), named, place, faults, ask=False, defaults=defaults
+    )
     shape = _shape(feature.get("geometry"), table, place, faults)
     _check_role(table, place, faults)
     if faults.errors > before or shape is None:

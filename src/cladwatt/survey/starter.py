@@ -109,7 +109,7 @@ def _key_text(key: Key, written: str | None = None) -> str:
         lines.append(f"{key.usual} = {written}")
         return "\n".join(lines)
     lines.append(f"#{key.usual} = {key.example or chr(34) * 2}")
-    if key.kind == "quantity" and (key.u or key.u_relative):
+    if key.kind == "quantity" and any(key.usual_u()[:2]):
         lines.append(f"#u_{key.usual} = {_default_u(key, key.units[0])}")
     return "\n".join(lines)
 

@@ -6,7 +6,8 @@ from datetime import date
 from pathlib import Path
 
 from cladwatt.errors import Fault
-from cladwatt.materials.load import MaterialTables
+from cladwatt.materials.load import MaterialTables, shipped_tables
+from cladwatt.quantities import Quantity
 from cladwatt.survey.model import Camera, FrameEntry, Line, Site
 from cladwatt.survey.region import Region
 
@@ -49,6 +50,11 @@ class Survey:
     faults: tuple[Fault, ...] = ()
     digests: Mapping[str, str] = field(default_factory=dict)
     tables: MaterialTables | None = field(default=None, repr=False, compare=False)
+
+    @property
+    def defaults(self) -> Mapping[str, Quantity]:
+        """What is taken where nothing is declared, by name. [SI]"""
+        return (self.tables or shipped_tables()).defaults
 
     def regions_of(self, frame_id: str) -> tuple[Region, ...]:
         """Return the regions drawn on one frame."""

@@ -134,7 +134,7 @@ class _Document:
         lines, dropped, written = self._lines(head)
         usable = {frame.id: frame for frame in frames.entries}
         regions = read_all_regions(
-            self.source, frames.entries, frames.dropped, lines, dropped, self.faults
+            self.source, frames.entries, frames.dropped, lines, dropped, self.tables, self.faults
         )
         check_dates(head, camera, frames.entries, self.faults)
         wrong = check_temperatures(lines, written, usable, regions, frames.wide_air, self.faults)
@@ -189,7 +189,12 @@ class _Document:
         part = section(name)
         raw = self.document.get(name, {})
         return read_table(
-            part, raw, self._place(name, 0, name), self.faults, ask=ask and name != "recording"
+            part,
+            raw,
+            self._place(name, 0, name),
+            self.faults,
+            ask=ask and name != "recording",
+            defaults=self.tables.defaults,
         )
 
     def _entries(self, name: str) -> list[Entry]:
@@ -251,7 +256,14 @@ class _Document:
         if tag is not None:
             place = replace(place, prefix=f"{place.prefix} ({tag[:60]})")
         before = self.faults.errors
-        table = read_table(section("line"), entry.raw, place, self.faults, ask=False)
+        table = read_table(
+            section("line"),
+            entry.raw,
+            place,
+            self.faults,
+            ask=False,
+            defaults=self.tables.defaults,
+        )
         if self.faults.errors == before:
             self._ask_of_line(table)
         return table, self.faults.errors == before

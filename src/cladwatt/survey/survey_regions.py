@@ -5,6 +5,7 @@ from dataclasses import replace
 from pathlib import Path
 
 from cladwatt.errors import FaultyInputError
+from cladwatt.materials.load import MaterialTables
 from cladwatt.quantities import Quantity
 from cladwatt.survey.fault_list import FaultList, Place, shown
 from cladwatt.survey.line_builder import moved_total_emissivity
@@ -36,6 +37,7 @@ def read_all_regions(
     dropped_frames: Mapping[str, str],
     lines: Mapping[str, Line],
     dropped_lines: Mapping[str, str],
+    tables: MaterialTables,
     faults: FaultList,
 ) -> list[Region]:
     """Return the regions that can be used, in the order of the frames.
@@ -48,6 +50,8 @@ def read_all_regions(
     dropped_frames, dropped_lines : mapping of str to str
         Why a frame or line is left out; its regions go with it.
     lines : mapping of str to Line
+    tables : MaterialTables
+        Hold the uncertainty of readings that declare none.
     faults : FaultList
     """
     files = _files(source, faults)
@@ -56,7 +60,7 @@ def read_all_regions(
     seen: dict[str, str] = {}
     for frame in frames:
         path = files.pop(frame.id, None)
-        regions = _of_frame(frame, path, source, faults)
+        regions = _of_frame(frame, path, source, tables, faults)
         for region in regions:
             place = region_place(region, None if path is None else source.name(path))
             checked = _checked(region, place, seen, lines, dropped_lines, faults)
@@ -87,7 +91,11 @@ def _files(source: Source, faults: FaultList) -> dict[str, Path]:
 
 
 def _of_frame(
-    frame: FrameEntry, path: Path | None, source: Source, faults: FaultList
+    frame: FrameEntry,
+    path: Path | None,
+    source: Source,
+    tables: MaterialTables,
+    faults: FaultList,
 ) -> list[Region]:
     regions: list[Region] = []
     if path is not None:
@@ -97,7 +105,7 @@ def _of_frame(
         except FaultyInputError as error:
             faults.faults.extend(replace(f, frame_id=frame.id) for f in error.faults)
             return []
-        regions = parse_regions(data, name, frame.id, faults)
+        regions = parse_regions(data, name, frame.id, faults, tables.defaults)
     if frame.labels is not None:
         regions += _of_labels(frame, source, faults)
     if path is None and frame.labels is None:

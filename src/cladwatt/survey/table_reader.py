@@ -40,6 +40,8 @@ class Table:
     plain: Mapping[str, object]
     written: Mapping[str, Written]
     spelled: Mapping[str, str]
+    defaults: Mapping[str, Quantity] | None = None
+    """The survey's table of defaults, for uncertainties nobody declared; what ships where None."""
 
     def get(self, name: str) -> object:
         """Return a plain value or None."""
@@ -84,7 +86,7 @@ class Table:
     def quantity(self, name: str) -> Quantity | None:
         """Return a quantity; None where missing or unknown."""
         written = self.written.get(name)
-        return None if written is None else to_quantity(self.key(name), written)
+        return None if written is None else to_quantity(self.key(name), written, self.defaults)
 
     def over(self, wide: "Table", *, prefix: str = "") -> "Table":
         """Return `wide` with what this table declares under the same names (after `prefix`)."""
@@ -100,7 +102,7 @@ class Table:
                 written[name] = self.written[own].over(wide.written.get(name))
                 if own in self.spelled:
                     spelled[name] = self.spelled[own]
-        return Table(wide.section, self.place, plain, written, spelled)
+        return Table(wide.section, self.place, plain, written, spelled, self.defaults)
 
 
 def read_table(
@@ -111,6 +113,7 @@ def read_table(
     *,
     ask: bool = True,
     partial: bool = False,
+    defaults: Mapping[str, Quantity] | None = None,
 ) -> Table:
     """Read a table by its section's keys.
 
@@ -128,6 +131,8 @@ def read_table(
         Whether missing keys that have no default are put as questions.
     partial : bool
         Whether a ``u_`` may stand without its value (it then refines the survey-wide one).
+    defaults : mapping of name to Quantity, optional
+        The survey's table of defaults.
 
     Returns
     -------
@@ -141,7 +146,7 @@ def read_table(
     for name, value in raw.items():
         reader.take(str(name), value)
     reader.finish(ask=ask and bool(raw), partial=partial)
-    return Table(section, place, reader.plain, reader.written, reader.spelled)
+    return Table(section, place, reader.plain, reader.written, reader.spelled, defaults)
 
 
 def read_list(section: Section, table: Table, name: str, faults: FaultList) -> list[Table]:
@@ -178,7 +183,7 @@ def read_list(section: Section, table: Table, name: str, faults: FaultList) -> l
             line_of=lambda _key: table.place.line_of(name),
         )
         before = faults.errors
-        one = read_table(section, item, place, faults)
+        one = read_table(section, item, place, faults, defaults=table.defaults)
         if faults.errors == before:
             found.append(one)
     return found

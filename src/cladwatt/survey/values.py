@@ -2,6 +2,7 @@
 
 import math
 import re
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 from datetime import date, datetime
 
@@ -172,10 +173,12 @@ def parse_u(unit: Unit, name: str, raw: object) -> float:
     return u
 
 
-def to_quantity(key: Key, written: Written) -> Quantity | None:
+def to_quantity(
+    key: Key, written: Written, defaults: Mapping[str, Quantity] | None = None
+) -> Quantity | None:
     """Return the quantity with bounds, and the default uncertainty where none was declared.
 
-    None where it is unknown.
+    None where it is unknown. `defaults` is the survey's table of defaults.
     """
     if written.value is None or isinstance(written.value, Unknown):
         return None
@@ -183,8 +186,8 @@ def to_quantity(key: Key, written: Written) -> Quantity | None:
     lower, upper = key.cut if key.cut is not None else (key.lower, key.upper)
     u, source = written.u, "declared"
     if u is None:
-        u = key.default_u(value)
-        source = f"declared; u by default: {key.u_source}" if u else "declared"
+        u = key.default_u(value, defaults)
+        source = f"declared; u by default: {key.usual_u(defaults)[2]}" if u else "declared"
     return Quantity(value, u, lower=min(lower, value), upper=max(upper, value), source=source)
 
 

@@ -1,0 +1,159 @@
+"""Equivalent lengths of fittings, and the heat capacity of lagging."""
+
+import csv
+from pathlib import Path
+
+import pytest
+
+from cladwatt.errors import TableError
+from cladwatt.materials.tables import (
+    fitting_equivalent_length,
+    hanger_share,
+    lagging_material,
+    load_tables,
+)
+
+PUBLISHED = Path(__file__).parents[1] / "published"
+TABLES = load_tables()
+HEAD = "fitting,kind,lagged,counts_as,low,high\n,,,,see unit,see unit\n"
+
+
+def retyped():
+    with (PUBLISHED / "fittings_retyped.csv").open(encoding="utf-8", newline="") as file:
+        return list(csv.DictReader(file))
+
+
+@pytest.mark.parametrize("row", retyped(), ids=lambda row: row["item"])
+def test_a_fitting_holds_what_is_printed(row):
+    # source and provenance stand in the row
+    if row["kind"] == "hanger":
+        amount = hanger_share(indoors=row["lagged"] == "indoors")
+    else:
+        fitting = fitting_equivalent_length(
+            row["kind"], row["lagged"] == "yes", counts_as=row["counts_as"]
+        )
+        amount = fitting.amount
+    low, high = float(row["low"]), float(row["high"])
+    assert amount.value == pytest.approx((low + high) / 2)
+    if high > low:
+        assert (amount.lower, amount.upper, amount.shape) == (low, high, "rectangular")
+    else:
+        assert amount.u > 0
+    assert amount.is_default
+    assert amount.confidence in ("low", "medium")
+
+
+@pytest.mark.parametrize(
+    ("kind", "lagged", "counts_as"),
+    [("Gate valve", False, "bare_pipe"), ("flange pair", False, "bare_pipe"),
+     ("valve", True, "lagged_pipe"), ("flange", True, "lagged_pipe")],
+)  # fmt: skip
+def test_what_a_fitting_counts_as_unless_said(kind, lagged, counts_as):
+    assert fitting_equivalent_length(kind, lagged).counts_as == counts_as
+
+
+def test_a_bare_fitting_loses_more_than_a_lagged_one():
+    for kind in ("valve", "flange"):
+        bare = fitting_equivalent_length(kind, False, counts_as="lagged_pipe").amount
+        assert bare.lower > fitting_equivalent_length(kind, True).amount.upper
+
+
+def test_a_fitting_nobody_holds_is_named_with_what_there_is():
+    with pytest.raises(TableError, match=r"'strainer', bare: no equivalent length.*accepted are v"):
+        fitting_equivalent_length("strainer", False)
+    with pytest.raises(TableError, match="no equivalent length of bare_pipe is held"):
+        fitting_equivalent_length("valve", True, counts_as="bare_pipe")
+    with pytest.raises(TableError, match="'hanger', lagged: no equivalent length"):
+        fitting_equivalent_length("hanger", True)
+
+
+@pytest.fixture
+def own(tmp_path):
+    folder = tmp_path / "tables"
+    folder.mkdir()
+
+    def write(name, text):
+        (folder / f"{name}.csv").write_text(text, encoding="utf-8")
+        return folder
+
+    return write
+
+
+def test_an_own_fitting_is_added_and_goes_first(own):
+    text = HEAD + "our strainer,strainer,no,bare_pipe,0.8,1.2\nours,valve,no,bare_pipe,2,2\n"
+    tables = load_tables(own("fittings", text))
+    strainer = fitting_equivalent_length("Strainer", False, tables=tables)
+    assert strainer.amount.value == pytest.approx(1.0)
+    assert strainer.amount.source == "tables/fittings.csv"
+    assert fitting_equivalent_length("valve", False, tables=tables).amount.value == 2
+    assert fitting_equivalent_length("valve", False).amount.value == 1
+
+
+@pytest.mark.parametrize(
+    ("row", "message"),
+    [
+        ("x,valve,no,bare_pip,1,2", "found 'bare_pip'; expected one of bare_pipe, lagged_pipe, "
+         "line_share (nearest: bare_pipe)"),
+        ("x,valve,no,bare_pipe,2,1", "found 2 and 1; expected low <= high"),
+        ("x,valve,perhaps,bare_pipe,1,2", "lagged"),
+        ("x,valve,no,bare_pipe,1,2000", "high"),
+    ],
+)  # fmt: skip
+def test_a_faulty_fitting_is_said(own, row, message):
+    with pytest.raises(TableError) as caught:
+        load_tables(own("fittings", HEAD + row + "\n"))
+    assert message in str(caught.value)
+
+
+# heat capacity
+
+
+@pytest.mark.parametrize("key", sorted(TABLES.lagging))
+def test_each_lagging_has_density_and_specific_heat(key):
+    density, specific_heat = TABLES.lagging[key].density, TABLES.lagging[key].specific_heat
+    assert 30 <= density.value <= 260
+    assert 0.05 <= density.u / density.value <= 0.35
+    assert 800 <= specific_heat.value <= 1600
+    assert 0.03 <= specific_heat.u / specific_heat.value <= 0.2
+    assert density.source
+    assert density.is_default
+    assert specific_heat.confidence in ("medium", "low")
+
+
+@pytest.mark.parametrize(
+    ("key", "library_name"),
+    [
+        ("mineral_wool_pipe_section", "Mineral wool, felted, 100 kg/m^3"),
+        ("rock_wool_100", "Mineral wool, felted, 100 kg/m^3"),
+        ("cellular_glass", "Cellular glass"),
+        ("cellular_glass_c552", "Cellular glass"),
+        ("elastomeric_foam", "Sealant, elastomeric foam, flexible"),
+        ("polyurethane_foam", "Sealant, polyurethane (PU) foam"),
+    ],
+)
+def test_heat_capacity_against_the_ht_library(key, library_name):
+    # ht 1.2, insulation.rho_material and Cp_material: building materials, after ASHRAE, ISO 10456
+    from ht.insulation import Cp_material, rho_material
+
+    material = lagging_material(key)
+    density, specific_heat = material.density, material.specific_heat
+    assert abs(rho_material(library_name) - density.value) <= 2 * density.u
+    assert abs(Cp_material(library_name) - specific_heat.value) <= 2 * specific_heat.u
+
+
+def test_an_own_material_may_say_its_heat_capacity(own):
+    own("lagging_conductivity", "material,temperature_C,conductivity_W_per_m_K,u_relative\n"
+        ",°C,W/(m K),1\nfelt,20,0.04,0.05\n")  # fmt: skip
+    folder = own("lagging_materials", "material,density_kg_per_m3,specific_heat_J_per_kg_K\n"
+                 ",kg/m3,J/(kg K)\nfelt,200,\n")  # fmt: skip
+    felt = lagging_material("felt", load_tables(folder))
+    assert (felt.density.value, felt.density.u) == (200, 20)
+    assert felt.specific_heat is None
+
+
+def test_a_lone_uncertainty_of_an_own_material_is_said(own):
+    own("lagging_conductivity", "material,temperature_C,conductivity_W_per_m_K,u_relative\n"
+        ",°C,W/(m K),1\nfelt,20,0.04,0.05\n")  # fmt: skip
+    folder = own("lagging_materials", "material,u_density_kg_per_m3\n,kg/m3\nfelt,20\n")
+    with pytest.raises(TableError, match="it stands without density_kg_per_m3"):
+        load_tables(folder)
