@@ -429,7 +429,7 @@ def test_a_region_wholly_covered_is_left_out_with_its_reason(folder):
     result = assess(folder.only("a"), settings=SETTINGS)
     (left,) = result.left_out
     assert (left.what, left.id) == ("region", "a1")
-    assert "stations hold usable pixels" in left.message
+    assert "100% of it lies under other regions (x1)" in left.message
     assert [region.region_id for region in result.regions] == ["a2"]
 
 

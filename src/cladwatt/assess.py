@@ -12,7 +12,7 @@ import numpy as np
 from threadpoolctl import threadpool_limits
 
 from cladwatt.assumptions import assumptions_of
-from cladwatt.errors import Fault, InputError
+from cladwatt.errors import Fault, InputError, RegionError
 from cladwatt.inverse.conditions import FrameDraws, draw_frame, draw_line, mirrored
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.observe import Observed, observe_region
@@ -47,6 +47,8 @@ BLUR_MARGIN_PX = 2.0
 """How far left-out areas are widened: their rims are blurred into the pipe. [px]"""
 FEWEST_DRAWS = 40
 """With fewer no draw lies beyond the 2.5 and 97.5 percentiles."""
+HIDDEN_SHARE = 0.9
+"""A region covered by others beyond this share is refused."""
 LEFT_OUT_ROLES = frozenset({"pipe", "leave_out", "foil", "tape", "contact"})
 """Whatever else is drawn over a pipe may not be used for it; crossing pipes hide each other."""
 
@@ -279,6 +281,8 @@ def _observe(
     """Read one region off the image, with the references on its line."""
     assert region.tag is not None
     line = survey.lines[region.tag]
+    covered = _covered(region, regions, masks, LEFT_OUT_ROLES)
+    _refuse_hidden(region, regions, masks, covered)
     frame = mirrored(
         frame,
         book,
@@ -293,7 +297,7 @@ def _observe(
         region,
         line,
         image=image,
-        left_out=widened(_covered(region, regions, masks, LEFT_OUT_ROLES), BLUR_MARGIN_PX),
+        left_out=widened(covered, BLUR_MARGIN_PX),
         components=_covered(region, regions, masks, frozenset({"component"})),
         known_lengths=[r for r in regions if r.role == "known_length" and r.tag == region.tag],
         frame=frame,
@@ -303,6 +307,31 @@ def _observe(
         book=book,
     )
     return observed, remarks
+
+
+def _refuse_hidden(
+    region: Region, regions: list[Region], masks: dict[str, BoolArray], covered: BoolArray
+) -> None:
+    """Refuse a region that others hide, naming them: most likely one pipe was drawn twice."""
+    own = masks[region.id]
+    share = float(covered[own].mean()) if own.any() else 0.0
+    if share < HIDDEN_SHARE:
+        return
+    others = [
+        other.id
+        for other in regions
+        if other.id != region.id and other.role in LEFT_OUT_ROLES and masks[other.id][own].any()
+    ]
+    raise RegionError(
+        Fault(
+            f"regions/{region.frame_id}.geojson",
+            f"feature {region.feature} (id '{region.id}')",
+            f"{share:.0%} of it lies under other regions ({', '.join(others)})",
+            "expected pipes drawn once each; delete one, or leave out only what is in front",
+            frame_id=region.frame_id,
+            region_id=region.id,
+        )
+    )
 
 
 def _covered(

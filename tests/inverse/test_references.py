@@ -271,3 +271,25 @@ def test_references_narrow_the_loss_of_the_region(bench, hall_with, paint, drawn
     assert after.relative_width < 0.6 * before.relative_width
     assert after.low < truth < after.high
     assert abs(after.median - truth) < 0.5 * abs(before.median - truth)
+
+
+def test_a_contact_reading_far_from_the_declared_emissivity_is_set_aside(bench, drawn_box, keys):
+    """300 K too hot: a slip of the pen, which would make every loss of the line absurd."""
+    contact = drawn_box("c1", "contact", *TAPE_BOX, tag="HS-1", value=Quantity(SURFACE + 300, 1.5))
+    readings = read_references(bench.lens(SURFACE), [bench.region, contact])
+    before = bench.line_draws()
+    line, remarks = with_emissivity(before, "HS-1", bench.frame_draws(), readings, bench.book)
+    assert keys(remarks) == {"remark.reading_not_used"}
+    assert np.array_equal(line.band_emissivity, before.band_emissivity)
+
+
+def test_a_foil_far_from_the_declared_reflected_temperature_is_set_aside(
+    bench, hall_with, drawn_box, keys
+):
+    vague_hall = bench.but(conditions=hall_with(reflected_temperature=Quantity(296.15, 2.0)))
+    lens = bench.lens(SURFACE)
+    put(lens, FOIL_BOX, foil_value(bench, 320.0))  # drawn on a pipe, say
+    foil = drawn_box("foil", "foil", *FOIL_BOX)
+    frame, remarks = used(read_references(lens, [foil]), vague_hall)
+    assert keys(remarks) == {"remark.reading_not_used"}
+    assert np.median(frame.reflected_temperature) == pytest.approx(296.15, abs=0.1)

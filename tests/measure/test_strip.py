@@ -141,3 +141,11 @@ def test_scale_uncertainty_grows_for_thin_pipes():
     thin = strip_of(pipe([(10, 100), (210, 100)], (10.0,))).scale_uncertainty
     wide = strip_of(pipe([(10, 100), (210, 100)], (80.0,))).scale_uncertainty
     assert thin > 2 * wide > 0
+
+
+def test_absurd_known_length_is_not_believed():
+    strip = strip_of(pipe([(10, 100), (210, 100)], (40.0,)))
+    marked = Region(
+        "k", "f", "known_length", "A", centreline=((50, 100), (150, 100)), value=Quantity(70.0)
+    )
+    assert known_length_factor(strip, marked) is None

@@ -80,6 +80,10 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
     masked = float(1 - np.isfinite(seen.lens).mean())
     if masked > 0.02:
         remarks.append(Remark("remark.masked_share", (("share", masked),)))
+    if seen.known_lengths and seen.strip.scaled_by_diameter:
+        reason = "it does not lie beside this pipe, or is far off what the diameter gives"
+        parameters = (("id", ", ".join(seen.known_lengths)), ("reason", reason))
+        remarks.append(Remark("remark.reading_not_used", parameters))
     if seen.strip.receding_angle > NOTICEABLE_ANGLE:
         angle = float(np.degrees(seen.strip.receding_angle))
         remarks.append(Remark("remark.foreshortening", (("angle_deg", angle),)))
@@ -110,5 +114,6 @@ def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
         "indicative.not_steady": _still_heating(seen.line)
         or (conditions.indoors is False and bool(conditions.rain_last_24h)),
         "indicative.below_dew_point": bool(below > 0.05),
+        "indicative.mostly_masked": bool(np.isfinite(seen.lens).mean() < 0.5),
     }
     return tuple(Remark(key) for key, holds in reasons.items() if holds)

@@ -159,6 +159,7 @@ def observe_region(
         line_draws=line_draws,
         conditions=conditions,
         camera=camera,
+        known_lengths=tuple(marked.id for marked in known_lengths),
         image=image,
         book=book,
     )

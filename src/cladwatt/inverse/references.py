@@ -155,6 +155,12 @@ def with_frame_references(
         if reflected is None:
             remarks.append(_set_aside(reading, "no usable pixels"))
             continue
+        apart = _apart(frame.reflected_temperature, reflected)
+        if apart is not None:
+            remarks.append(
+                _set_aside(reading, f"it is {apart:.1f} K off the declared reflected temperature")
+            )
+            continue
         combined = _weighed(frame.reflected_temperature, reflected)
         frame = replace(frame, reflected_temperature=combined)
         middle = float(np.median(combined)) - ZERO_CELSIUS
@@ -217,6 +223,10 @@ def with_emissivity(
         if usable.mean() < 0.5:
             remarks.append(_set_aside(reading, "surface within 10 K of the reflected temperature"))
             continue
+        off = _apart(line.band_emissivity, found[usable])
+        if off is not None:
+            remarks.append(_set_aside(reading, f"its emissivity is {off:.2f} off the declared one"))
+            continue
         combined = np.where(usable, _weighed(line.band_emissivity, found), line.band_emissivity)
         line = replace(line, band_emissivity=np.clip(combined, 0.01, 0.999))
         remarks.append(Remark("remark.tape_used", (("emissivity", float(np.median(combined))),)))
@@ -263,6 +273,13 @@ def _emissivity(
     )
     cooling = TAPE_COOLING_METAL if line.is_metal else TAPE_COOLING
     return emissivity * (1 - cooling * np.abs(book.normal(owner, "heat_balance")))
+
+
+def _apart(declared: FloatArray, found: FloatArray) -> float | None:
+    """Return how far a reading is off, None where both uncertainties explain it."""
+    off = abs(float(np.nanmedian(found)) - float(np.median(declared)))
+    scatter = math.hypot(float(np.nanstd(found)), float(np.std(declared)))
+    return off if off > BEYOND * scatter else None
 
 
 def _weighed(declared: FloatArray, found: FloatArray) -> FloatArray:

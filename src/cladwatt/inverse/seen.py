@@ -61,6 +61,8 @@ class Seen:
     diameter : (count,) array
         Over the cladding; a rough guess for the convection law alone where `diameter_known` is
         False. [m]
+    known_lengths : tuple of str
+        Ids of the known lengths marked on this line.
     gain : bool
         Whether the line is colder than the air.
     """
@@ -80,6 +82,7 @@ class Seen:
     line_draws: LineDraws
     conditions: Conditions
     camera: Camera
+    known_lengths: tuple[str, ...]
     image: FrameImage
     book: DrawBook
 

@@ -22,6 +22,8 @@ EDGE_MARGIN_PX = 1.5
 """Kept clear of the drawn edge on either side: optical blur and an outline error of a pixel."""
 OUTLINE_ERROR_PX = 0.7
 """Standard uncertainty of a drawn edge; common practice, no source. [px]"""
+LARGEST_FACTOR = 3.0
+"""A known length further off than this is not believed."""
 UNKNOWN_VIEW_DEG = 35.0
 """Horizontal field of view where none is declared; assumption."""
 
@@ -240,7 +242,8 @@ def known_length_factor(strip: Strip, marked: Region) -> float | None:
     Returns
     -------
     float or None
-        None where the strip has no scale, or the marked ends do not lie beside it.
+        None where the strip has no scale, the marked ends do not lie beside it, or the length is
+        off by more than a factor of three from what the diameter gives.
     """
     if marked.value is None or marked.centreline is None or not np.isfinite(strip.station).all():
         return None
@@ -254,7 +257,10 @@ def known_length_factor(strip: Strip, marked: Region) -> float | None:
     first, last = sorted(ends)
     by_width = strip.length[first:last] / strip.nearer
     measured = float(np.sum(by_width))
-    return marked.value.value / measured if measured > 0 else None
+    if not measured > 0:
+        return None
+    factor = marked.value.value / measured
+    return factor if 1 / LARGEST_FACTOR < factor < LARGEST_FACTOR else None
 
 
 def sample_strip(image: FloatArray, strip: Strip) -> FloatArray:
