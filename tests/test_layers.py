@@ -18,13 +18,18 @@ FLOORS = {
     "inverse": 4,
     "results": 5,
     "report": 6,
-    "assess": 7, "assumptions": 7, "synthetic": 7,
+    "assess": 7, "assumptions": 7, "explain": 7, "synthetic": 7,
     "faces": 8, "__main__": 8, "__init__": 8,
 }  # fmt: skip
 """Floor of every part of the package, by the name behind ``cladwatt.``."""
 
 # within one floor these do not know each other
-APART = {("materials", "survey"), ("assess", "synthetic"), ("assumptions", "synthetic")}
+APART = {
+    ("materials", "survey"),
+    ("assess", "synthetic"),
+    ("assumptions", "synthetic"),
+    ("explain", "synthetic"),
+}
 
 OUTSIDE = {"physics": {"numpy", "scipy"}, "materials": set(), "errors": set(), "quantities": set(),
            "flags": set(), "units": set(), "types": {"numpy"}}  # fmt: skip

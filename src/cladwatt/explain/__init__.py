@@ -1,0 +1,1 @@
+"""One number of a region step by step, from the recorded value to the resistance."""
