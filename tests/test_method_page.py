@@ -10,9 +10,10 @@ from cladwatt import Settings
 from cladwatt.inverse import (
     bare,
     cautions,
-    conditions,
+    frame_draws,
     hidden_side,
     joint,
+    line_draws,
     null,
     observe,
     references,
@@ -20,12 +21,16 @@ from cladwatt.inverse import (
     stretches,
     verdict,
 )
+from cladwatt.materials.load import shipped_tables
 from cladwatt.measure import strip
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.physics.field_methods import MINIMUM_SEPARATION
 
 FOLDER = Path(cladwatt.__file__).parent / "guide"
 PAGE = " ".join((FOLDER / "method.md").read_text(encoding="utf-8").split())
+DEFAULTS = shipped_tables().defaults
+FOIL, TAPE = DEFAULTS["foil_emissivity"], DEFAULTS["tape_emissivity"]
+CONTACT_U = DEFAULTS["u_contact_reading"]
 
 
 def percent(share: float) -> str:
@@ -33,9 +38,9 @@ def percent(share: float) -> str:
 
 
 VALUES = [
-    f"emissivity of foil | {references.FOIL_EMISSIVITY.value}, u {references.FOIL_EMISSIVITY.u} |",
-    f"emissivity of tape | {references.TAPE_EMISSIVITY.value}, u {references.TAPE_EMISSIVITY.u} |",
-    f"u of a contact reading | {references.CONTACT_U} K |",
+    f"emissivity of foil | {FOIL.value}, u {FOIL.u} |",
+    f"emissivity of tape | {TAPE.value}, u {TAPE.u} |",
+    f"u of a contact reading | {CONTACT_U.value} K |",
     f"what the cladding mirrors | {references.FOIL_U} K |",
     f"u of a background by its own emissivity | {references.BACKGROUND_EMISSIVITY_U} K |",
     f"since tape cools where it sticks, coated | {percent(references.TAPE_COOLING)} |",
@@ -46,9 +51,9 @@ VALUES = [
     f"u of a drawn edge | {strip.OUTLINE_ERROR_PX} px |",
     f"where none is declared | {strip.UNKNOWN_VIEW_DEG:.0f}°,",
     f"{percent(observe.COMPONENT_MARGIN)} of the width, at least 3 px |",
-    f"u of the law in still air | {percent(conditions.CONVECTION_SIGMA_STILL)} |",
-    f"u of the law in wind | {percent(conditions.CONVECTION_SIGMA_WIND)} |",
-    f"band and total emissivity | {conditions.EMISSIVITY_CORRELATION} |",
+    f"u of the law in still air | {percent(frame_draws.CONVECTION_SIGMA_STILL)} |",
+    f"u of the law in wind | {percent(frame_draws.CONVECTION_SIGMA_WIND)} |",
+    f"band and total emissivity | {line_draws.EMISSIVITY_CORRELATION} |",
     f"where no diameter is known | {observe.UNKNOWN_DIAMETER} m,",
     f"({Settings().draws} draws by default)",
     f"by {stretches.CANDIDATE_SIGMA} u are candidates",
@@ -91,7 +96,7 @@ def test_words_for_numbers():
     assert "Five bands of angle" in PAGE
     assert joint.MOST_TOGETHER == 5
     assert "More than five regions in a frame are taken in groups of five" in PAGE
-    assert conditions.SHARED_SHARE == 2 / 3
+    assert frame_draws.SHARED_SHARE == 2 / 3
     assert "| 2/3 of the variance |" in PAGE
     assert verdict.SPOTS_ACROSS == 3
     assert verdict.LEAST_GAIN == 0.1

@@ -13,8 +13,9 @@ from threadpoolctl import threadpool_limits
 
 from cladwatt.assumptions import assumptions_of
 from cladwatt.errors import Fault, InputError, RegionError
-from cladwatt.inverse.conditions import FrameDraws, draw_frame, draw_line, mirrored
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.frame_draws import FrameDraws, band_of, draw_frame, mirrored
+from cladwatt.inverse.line_draws import draw_line
 from cladwatt.inverse.observe import Observed, observe_region
 from cladwatt.inverse.references import (
     ReferenceReading,
@@ -27,7 +28,7 @@ from cladwatt.inverse.result import RegionResult, interval_of
 from cladwatt.inverse.seen import FrameImage
 from cladwatt.measure.noise import FrameNoise, estimate_noise
 from cladwatt.measure.outline import region_mask, widened
-from cladwatt.physics.radiometry import Band, lens_radiance
+from cladwatt.physics.radiometry import lens_radiance
 from cladwatt.quantities import Remark
 from cladwatt.results.assessment import Assessment, FrameResult, LeftOut, LineTotal, Settings
 from cladwatt.results.versions import library_versions
@@ -198,7 +199,7 @@ def _sound_regions(
 
 def _lens_image(survey: Survey, entry: FrameEntry, frame: Frame) -> FrameImage:
     """Undo the camera's own settings: what reached the lens, as a blackbody's temperature."""
-    band = Band.rectangular(*survey.camera.band)
+    band = band_of(survey.camera)
     recording = entry.recording
     radiance = lens_radiance(
         frame.temperature,
@@ -235,12 +236,13 @@ def _assess_regions(
         survey.camera,
         survey.site,
         _distance(survey, frame, pipes),
+        survey.defaults["distance"],
     )
     if draws is None:
         remark = Remark("missing.air_temperature")
         return [], [LeftOut("region", region.id, entry.id, "", remark) for region in pipes]
     image = _lens_image(survey, entry, frame)
-    readings = read_references(image.lens_temperature, regions)
+    readings = read_references(image.lens_temperature, regions, survey.defaults)
     draws, remarks = with_frame_references(draws, readings, book)
     masks = {region.id: region_mask(region, frame.temperature.shape) for region in regions}
     left_out = [

@@ -14,8 +14,9 @@ import numpy as np
 import pytest
 
 from cladwatt.inverse.conclude import conclude
-from cladwatt.inverse.conditions import FrameDraws, LineDraws, draw_frame, draw_line
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.frame_draws import FrameDraws, draw_frame
+from cladwatt.inverse.line_draws import LineDraws, draw_line
 from cladwatt.inverse.observe import Observed, observe_region
 from cladwatt.inverse.region_estimate import estimate_regions
 from cladwatt.inverse.result import RegionResult

@@ -14,9 +14,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from cladwatt.inverse.face import surface_temperature_draws
+from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.stretches import Run
-from cladwatt.physics.lagged_pipe import surface_heat_flux
 from cladwatt.quantities import Quantity
 from cladwatt.types import BoolArray, FloatArray, IntArray
 
@@ -114,7 +114,7 @@ def bare_draws(seen: Seen, run: Run, sound_at: BoolArray, base: FloatArray) -> B
     probability = pipe_seen * odds / (1 + odds)
     wall = inside - WALL_DROP * drop * book.uniform(seen.owner, "bare_wall")
     ends = np.exp(ENDS_U * book.normal(seen.owner, "bare_ends"))
-    bare = surface_heat_flux(wall, bare_line.exchange(seen.frame, pipe)) * ends
+    bare = outer_flux(wall, bare_line.exchange(seen.frame, pipe), seen.humidity) * ends
     all_round = bare * pipe / line.lagged_diameter
     share = SECTOR_SHARE[0] + np.ptp(SECTOR_SHARE) * book.uniform(owner, "sector_share")
     sector = share * all_round + (1 - share) * base

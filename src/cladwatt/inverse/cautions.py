@@ -8,7 +8,7 @@ from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.quantities import Remark
 from cladwatt.survey.model import Line
 
-__all__ = ["cautions_of", "missing_of", "remarks_of", "verdict_caps"]
+__all__ = ["cautions_of", "missing_of", "refusals_of", "remarks_of", "verdict_caps"]
 
 TOUCH_CAUTION = ZERO_CELSIUS + 48.9
 """120 °F, above which the US DOE steam tip sheet 2 advises to insulate. [K]"""
@@ -16,6 +16,9 @@ SLOWEST_DIFFUSIVITY = 2.5e-7
 """Of dense lagging: 0.06 W/(m K) at 240 kg/m3 and 1000 J/(kg K), common practice. [m2/s]"""
 TRUSTED_EMISSIVITY = 0.5
 """Below this single pixels are left to the mean across: what they mirror weighs too much. [-]"""
+MIRRORED_LEAST, MIRRORED_SHARE = 1.5, 0.4
+"""A band of angle stands out by a mirrored neighbour beyond this [K] and this share of what the
+surface is above the air; assumption."""
 NOTICEABLE_ANGLE = 0.2
 """Foreshortening is mentioned beyond this: it shortens lengths by 2 %. [rad]"""
 
@@ -84,6 +87,11 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
         reason = "it does not lie beside this pipe, or is far off what the diameter gives"
         parameters = (("id", ", ".join(seen.known_lengths)), ("reason", reason))
         remarks.append(Remark("remark.reading_not_used", parameters))
+    tracer = seen.line.tracing
+    if tracer.kind != "none" and tracer.power is not None:
+        remarks.append(Remark("remark.tracer_heat", (("power_W_per_m", tracer.power.value),)))
+    if _mirrors_a_neighbour(seen):
+        remarks.append(Remark("remark.mirrored_neighbour"))
     if seen.strip.receding_angle > NOTICEABLE_ANGLE:
         angle = float(np.degrees(seen.strip.receding_angle))
         remarks.append(Remark("remark.foreshortening", (("angle_deg", angle),)))
@@ -103,6 +111,38 @@ def _still_heating(line: Line) -> bool:
     return line.hours_at_temperature.value * 3600 < thickness**2 / SLOWEST_DIFFUSIVITY
 
 
+def _mirrors_a_neighbour(seen: Seen) -> bool:
+    """Return whether a band of angle stands out all along metal, as a mirrored neighbour does.
+
+    Uneven convection makes top and bottom of a pipe differ by some 15 % of what the surface is
+    above the air, damage stands out at some stations only; a line beside it is mirrored along
+    its whole length at one angle. The limits are assumptions, no source.
+    """
+    if not seen.line.cladding.is_metal or seen.line.tracing.kind != "none":
+        return False
+    bands = seen.face.temperature[:, seen.usable]
+    if bands.shape[0] < 3:
+        return False
+    along = np.median(bands, axis=1)
+    standing_out = float(np.abs(along - np.median(along)).max())
+    above = abs(float(np.median(along)) - float(np.median(seen.frame.air_temperature)))
+    return standing_out > max(MIRRORED_LEAST, MIRRORED_SHARE * above)
+
+
+def refusals_of(seen: Seen) -> tuple[Remark, ...]:
+    """Return the reasons that allow no number at all.
+
+    Water evaporates from a wet surface that is warmer than the dew point, and takes heat that
+    the image does not show.
+    """
+    reasons = []
+    if not seen.diameter_known:
+        reasons.append(Remark("not_quantified.no_diameter"))
+    if seen.conditions.surface_wet and not seen.below_dew_point[seen.usable].all():
+        reasons.append(Remark("not_quantified.wet_surface"))
+    return tuple(reasons)
+
+
 def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
     """Return the reasons that allow an indicative verdict at most."""
     conditions = seen.conditions
@@ -113,6 +153,7 @@ def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
         "indicative.traced": seen.line.tracing.kind != "none",
         "indicative.not_steady": _still_heating(seen.line)
         or (conditions.indoors is False and bool(conditions.rain_last_24h)),
+        "indicative.sun_before": conditions.indoors is False and bool(conditions.sun_last_24h),
         "indicative.below_dew_point": bool(below > 0.05),
         "indicative.mostly_masked": bool(np.isfinite(seen.lens).mean() < 0.5),
     }

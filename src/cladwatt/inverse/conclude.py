@@ -6,10 +6,17 @@ from typing import NamedTuple
 
 import numpy as np
 
-from cladwatt.inverse.cautions import cautions_of, missing_of, remarks_of, verdict_caps
+from cladwatt.inverse.cautions import (
+    cautions_of,
+    missing_of,
+    refusals_of,
+    remarks_of,
+    verdict_caps,
+)
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
 from cladwatt.inverse.observe import Balance, Observed
+from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.result import (
     Interval,
     RegionResult,
@@ -19,11 +26,10 @@ from cladwatt.inverse.result import (
     interval_of,
 )
 from cladwatt.inverse.seen import Seen
-from cladwatt.inverse.sound import SoundDraws
+from cladwatt.inverse.sound import SoundDraws, film_resistance
 from cladwatt.inverse.station_table import station_table
 from cladwatt.inverse.stretch_results import stretches_of
 from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
-from cladwatt.physics.lagged_pipe import surface_heat_flux
 from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray
 
@@ -164,7 +170,7 @@ def _concluded(
         spot_pixels=seen.camera.spot_pixels,
         infeasible_share=balance.infeasible,
         caps=verdict_caps(seen),
-        refusals=() if seen.diameter_known else (Remark("not_quantified.no_diameter"),),
+        refusals=refusals_of(seen),
     )
     resistances = _resistances(seen, draws.get("heat_loss"), sound)
     return replace(
@@ -267,6 +273,9 @@ def _resistances(seen: Seen, loss: FloatArray | None, sound: SoundDraws | None) 
     towards = np.sign(line.inside_temperature - seen.frame.air_temperature)
     with np.errstate(divide="ignore", invalid="ignore"):
         conductance = np.where(drop * towards > 0, np.maximum(loss / drop, 0.0), np.nan)
+        film = film_resistance(line)
+        if film is not None:  # what is between fluid and wall is not the lagging's
+            conductance = conductance / np.maximum(1 - conductance * film, 1e-6)
     specified = None if sound is None else sound.specified_resistance
     effective = None
     if line.pipe_diameter is not None and line.lagged_diameter is not None:
@@ -330,7 +339,7 @@ def _visible_rise(seen: Seen, balance: Balance) -> float:
     )[:, 0]
     exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
     temperature = np.fmax(temperature, COLDEST)
-    cooler, warmer = (surface_heat_flux(temperature[:, side], exchange) for side in (0, 1))
+    cooler, warmer = (outer_flux(temperature[:, side], exchange, seen.humidity) for side in (0, 1))
     slope = float(np.median(warmer - cooler))
     if not slope > 0:
         return 0.0

@@ -9,16 +9,20 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cladwatt.inverse.conditions import FrameDraws, LineDraws
+from cladwatt.inverse.frame_draws import FrameDraws
+from cladwatt.inverse.line_draws import LineDraws
+from cladwatt.inverse.outer_balance import may_condense, outer_flux
 from cladwatt.measure.face_bands import FaceBands
 from cladwatt.physics.emissivity import directional_emissivity
-from cladwatt.physics.lagged_pipe import SurfaceExchange, surface_heat_flux
+from cladwatt.physics.lagged_pipe import SurfaceExchange
 from cladwatt.physics.radiometry import object_radiance
 from cladwatt.types import FloatArray, FloatLike
 
 __all__ = ["COLDEST", "FaceDraws", "face_draws", "surface_temperature_draws"]
 
 NODES = 17
+WATER_FILM_EMISSIVITY = 0.96
+"""Of water and ice in the band: 0.95 to 0.98, Incropera et al., table A.11."""
 COLDEST = 150.0
 """What a surface counts as for its heat flux where a draw leaves it less radiance than that, or
 none: colder than any pipe, so that such draws stay recognisable and in step along the strip. [K]"""
@@ -63,7 +67,7 @@ def face_draws(
     flux = None
     if frame.wind_speed is not None:
         exchange = _beside(line.exchange(frame, diameter))
-        flux = surface_heat_flux(np.fmax(temperature, COLDEST), exchange)
+        flux = outer_flux(np.fmax(temperature, COLDEST), exchange, _humidity(frame, line))
     shares = face.extent / face.extent.sum()
     weights = np.concatenate(
         [
@@ -101,13 +105,32 @@ def surface_temperature_draws(
     frame : FrameDraws
     line : LineDraws
     """
+    dry = _seen_through(lens_temperature, view_angle, frame, line, line.band_emissivity)
+    dew = frame.dew_point
+    if dew is None or not may_condense(frame, line):
+        return dry
+    # below the dew point the surface shows a film of water, whatever is under it
+    film = np.maximum(line.band_emissivity, WATER_FILM_EMISSIVITY)
+    wet = _seen_through(lens_temperature, view_angle, frame, replace(line, is_metal=False), film)
+    below = dew[:, None, None]
+    return np.asarray(np.where((dry < below) & (wet < below), wet, dry))
+
+
+def _seen_through(
+    lens_temperature: FloatArray,
+    view_angle: FloatArray,
+    frame: FrameDraws,
+    line: LineDraws,
+    emissivity: FloatArray,
+) -> FloatArray:
+    """Take the radiance at the lens apart for one near-normal emissivity per draw."""
     band = frame.band
     true_lens = lens_temperature + frame.calibration_offset(lens_temperature)
-    emissivity = directional_emissivity(line.band_emissivity[:, None], view_angle, line.is_metal)
+    towards_camera = directional_emissivity(emissivity[:, None], view_angle, line.is_metal)
     air_radiance = band.radiance(frame.air_temperature)[:, None, None]
     surface = object_radiance(
         band.radiance(true_lens)[:, None, :],
-        emissivity=emissivity[:, :, None],
+        emissivity=towards_camera[:, :, None],
         reflected_radiance=band.radiance(frame.reflected_temperature)[:, None, None],
         transmission=frame.transmission[:, None, None],
         atmosphere_radiance=air_radiance,
@@ -117,6 +140,13 @@ def surface_temperature_draws(
         window_reflected_radiance=air_radiance,
     )
     return band.temperature(surface)
+
+
+def _humidity(frame: FrameDraws, line: LineDraws) -> FloatArray | None:
+    """Return the air's humidity where its vapour may condense on the line, (count, 1, 1)."""
+    if frame.relative_humidity is None or not may_condense(frame, line):
+        return None
+    return frame.relative_humidity[:, None, None]
 
 
 def _beside(exchange: SurfaceExchange) -> SurfaceExchange:

@@ -4,8 +4,8 @@ from typing import NamedTuple
 
 import numpy as np
 
+from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.seen import Seen
-from cladwatt.physics.lagged_pipe import surface_heat_flux
 from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["Bounds", "flux_bounds"]
@@ -60,7 +60,7 @@ def flux_bounds(seen: Seen) -> Bounds:
     if inside is None:
         return Bounds(-unbounded, unbounded)
     exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
-    bare = surface_heat_flux(inside, exchange)
+    bare = outer_flux(inside, exchange, seen.humidity)
     sun = np.asarray(exchange.absorbed_solar)
     air, surroundings = seen.frame.air_temperature, seen.frame.surroundings_temperature
     hot = inside >= np.maximum(air, surroundings)

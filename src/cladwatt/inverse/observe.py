@@ -1,18 +1,19 @@
 """What the image says of one region by itself: its strip, contrasts, levels, and their draws."""
 
 from collections.abc import Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
 from cladwatt.errors import Fault, RegionError
 from cladwatt.inverse.bare import bare_draws, with_bare
-from cladwatt.inverse.conditions import FrameDraws, LineDraws
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.face import face_draws
 from cladwatt.inverse.feasibility import Bounds, flux_bounds
+from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.hidden_side import HiddenSide, evenness_of, whole_flux
 from cladwatt.inverse.joint import LevelEvidence
+from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.null import NullModel, null_of
 from cladwatt.inverse.seen import FrameImage, Seen
 from cladwatt.inverse.sound import SoundDraws, sound_draws
@@ -132,6 +133,7 @@ def observe_region(
         If nothing usable is left of the region.
     """
     strip = _strip(region, line, image, known_lengths, camera)
+    line_draws = _further_along(line, line_draws, frame, strip)
     lens = sample_strip(np.where(left_out, np.nan, image.lens_temperature), strip)
     component_at = _component_stations(strip, components)
     lens[:, _bulged(component_at, strip)] = np.nan
@@ -164,6 +166,26 @@ def observe_region(
         book=book,
     )
     return Observed(seen, _balance(seen))
+
+
+def _further_along(line: Line, line_draws: LineDraws, frame: FrameDraws, strip: Strip) -> LineDraws:
+    """Cool the fluid by what the line loses, as specified, up to the middle of the strip.
+
+    Only where flow and specific heat are declared and the region's stations are.
+    """
+    inside = line_draws.inside_temperature
+    station = float(np.mean(strip.station)) if np.isfinite(strip.station).all() else 0.0
+    if inside is None or line.flow is None or line.specific_heat is None or station <= 0:
+        return line_draws
+    sound = sound_draws(line_draws, frame)
+    if sound is None:
+        return line_draws
+    capacity = line.flow.value * line.specific_heat.value
+    outside = frame.air_temperature
+    length = capacity * (inside - outside) / sound.heat_loss
+    return replace(
+        line_draws, inside_temperature=outside + (inside - outside) * np.exp(-station / length)
+    )
 
 
 def _strip(

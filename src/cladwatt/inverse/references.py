@@ -6,13 +6,15 @@ the inverse of the variances. A reading that cannot say anything is set aside wi
 """
 
 import math
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cladwatt.inverse.conditions import FrameDraws, LineDraws
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.frame_draws import FrameDraws
+from cladwatt.inverse.line_draws import LineDraws
+from cladwatt.materials.load import shipped_tables
 from cladwatt.measure.outline import region_mask, widened
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.physics.field_methods import (
@@ -26,12 +28,6 @@ from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["ReferenceReading", "read_references", "with_emissivity", "with_frame_references"]
 
-FOIL_EMISSIVITY = Quantity(0.07, 0.03, lower=0.01, upper=0.3)
-"""Bright aluminium foil: Incropera et al., table A.11 gives 0.07; its u is an assumption."""
-TAPE_EMISSIVITY = Quantity(0.95, 0.02, lower=0.8, upper=0.99)
-"""Black vinyl electrical tape, 0.93 to 0.97 in handbooks."""
-CONTACT_U = 1.5
-"""A contact probe reads towards air; common practice, no source. [K]"""
 FOIL_U = 0.5
 """Mean over the half space against what this cladding reflects; assumption. [K]"""
 BACKGROUND_EMISSIVITY_U = 0.3
@@ -54,7 +50,9 @@ class ReferenceReading:
 
 
 def read_references(
-    lens_temperature: FloatArray, regions: Sequence[Region]
+    lens_temperature: FloatArray,
+    regions: Sequence[Region],
+    defaults: Mapping[str, Quantity] | None = None,
 ) -> tuple[ReferenceReading, ...]:
     """Read every reference region of a frame.
 
@@ -64,6 +62,9 @@ def read_references(
         Blackbody-equivalent temperature at the lens, NaN where masked. [K]
     regions : sequence of Region
         All regions of the frame.
+    defaults : mapping of str to Quantity, optional
+        Emissivity of tape and foil and u of a contact reading where the regions do not say;
+        the shipped table's where not given.
 
     Returns
     -------
@@ -79,12 +80,24 @@ def read_references(
         inside = core if np.isfinite(lens_temperature[core]).sum() >= 4 else mask
         readings.append(
             ReferenceReading(
-                region,
+                _filled(region, defaults or shipped_tables().defaults),
                 _median(lens_temperature, inside),
                 _beside(lens_temperature, mask, region, regions),
             )
         )
     return tuple(readings)
+
+
+def _filled(region: Region, defaults: Mapping[str, Quantity]) -> Region:
+    """Fill in what a reference region does not say of itself."""
+    if region.role == "foil" and region.band_emissivity is None:
+        return replace(region, band_emissivity=defaults["foil_emissivity"])
+    if region.role == "tape" and region.value is None:
+        return replace(region, value=defaults["tape_emissivity"])
+    if region.role == "contact" and region.value is not None and region.value.u == 0:
+        # no probe is exact: it reads towards air
+        return replace(region, value=replace(region.value, u=defaults["u_contact_reading"].value))
+    return region
 
 
 def _median(image: FloatArray, mask: BoolArray) -> float:
@@ -177,7 +190,8 @@ def _foil(frame: FrameDraws, reading: ReferenceReading, book: DrawBook) -> Float
     if not np.isfinite(reading.reading):
         return None
     seen = reading.reading + frame.calibration_offset(np.array([reading.reading]))[:, 0]
-    emissivity = reading.region.band_emissivity or FOIL_EMISSIVITY
+    emissivity = reading.region.band_emissivity
+    assert emissivity is not None
     return spread + reflected_temperature_from_foil(
         seen,
         band=frame.band,
@@ -251,8 +265,6 @@ def _emissivity(
     if reading.region.role == "contact":
         contact = reading.region.value
         assert contact is not None
-        if contact.u == 0:
-            contact = replace(contact, u=CONTACT_U)
         return emissivity_from_contact(
             seen,
             book.quantity(owner, "value", contact),
@@ -261,12 +273,14 @@ def _emissivity(
             transmission=frame.transmission,
             atmosphere_temperature=frame.air_temperature,
         )
+    tape = reading.region.value
+    assert tape is not None
     beside = reading.beside + frame.calibration_offset(np.array([reading.beside]))[:, 0]
     emissivity = emissivity_from_reference(
         beside,
         seen,
         band=frame.band,
-        reference_emissivity=book.quantity(owner, "value", reading.region.value or TAPE_EMISSIVITY),
+        reference_emissivity=book.quantity(owner, "value", tape),
         reflected_temperature=frame.reflected_temperature,
         transmission=frame.transmission,
         atmosphere_temperature=frame.air_temperature,

@@ -6,9 +6,11 @@ from functools import cached_property
 
 import numpy as np
 
-from cladwatt.inverse.conditions import FrameDraws, LineDraws
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.face import FaceDraws
+from cladwatt.inverse.frame_draws import FrameDraws
+from cladwatt.inverse.line_draws import LineDraws
+from cladwatt.inverse.outer_balance import may_condense
 from cladwatt.measure.face_bands import FaceBands
 from cladwatt.measure.noise import FrameNoise
 from cladwatt.measure.strip import Strip
@@ -154,6 +156,11 @@ class Seen:
     def median_temperature(self) -> FloatArray:
         """Median surface temperature per station, NaN in gaps, (n_stations,). [K]"""
         return np.asarray(np.median(self.drawn.surface_temperature, axis=0))
+
+    @property
+    def humidity(self) -> FloatArray | None:
+        """Humidity of the air where its vapour may condense on the line, (count,)."""
+        return self.frame.relative_humidity if may_condense(self.frame, self.line_draws) else None
 
     @property
     def perimeter(self) -> FloatArray:

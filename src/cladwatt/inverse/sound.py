@@ -4,11 +4,18 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cladwatt.inverse.conditions import FrameDraws, LineDraws
-from cladwatt.physics.lagged_pipe import solve_lagged_pipe
+from cladwatt.inverse.frame_draws import FrameDraws
+from cladwatt.inverse.line_draws import LineDraws
+from cladwatt.inverse.outer_balance import may_condense, outer_flux
+from cladwatt.physics.lagged_pipe import LaggingLayer, SurfaceExchange, solve_lagged_pipe
+from cladwatt.physics.surface_balance import surface_heat_flux
 from cladwatt.types import FloatArray
 
-__all__ = ["SoundDraws", "sound_draws"]
+__all__ = ["SoundDraws", "film_resistance", "sound_draws"]
+
+ROUNDS = 12
+TOLERANCE = 1e-3
+"""Largest change of the loss in the last round, relative."""
 
 
 @dataclass(frozen=True)
@@ -16,11 +23,11 @@ class SoundDraws:
     """Draws of the reference, each (count,)."""
 
     heat_loss: FloatArray
-    """Specified times the installation factor. [W/m]"""
+    """Specified times the installation factor, with supports. [W/m]"""
     specified_loss: FloatArray
     """At laboratory conductivity. [W/m]"""
     specified_resistance: FloatArray
-    """[m K/W]"""
+    """Of the lagging. [m K/W]"""
 
 
 def sound_draws(line: LineDraws, frame: FrameDraws) -> SoundDraws | None:
@@ -38,26 +45,69 @@ def sound_draws(line: LineDraws, frame: FrameDraws) -> SoundDraws | None:
 
     Notes
     -----
-    The installation factor multiplies the conductivity of every layer.
+    The installation factor multiplies the conductivity of every layer; the allowance for
+    supports multiplies the loss.
     """
     known = (line.inside_temperature, line.layers, line.lagged_diameter, line.pipe_diameter)
     if any(part is None for part in known) or frame.wind_speed is None:
         return None
-    assert line.inside_temperature is not None
     assert line.layers is not None
-    assert line.lagged_diameter is not None
-    assert line.pipe_diameter is not None
-    exchange = line.exchange(frame, line.lagged_diameter)
-    specified = solve_lagged_pipe(
-        line.inside_temperature, line.pipe_diameter, line.layers, exchange
-    )
+    specified, resistance = _solved(line, frame, line.layers)
     installed = tuple(
         replace(layer, factor=np.asarray(layer.factor) * line.installation_factor)
         for layer in line.layers
     )
-    sound = solve_lagged_pipe(line.inside_temperature, line.pipe_diameter, installed, exchange)
+    sound, _ = _solved(line, frame, installed)
     return SoundDraws(
-        heat_loss=sound.heat_loss,
-        specified_loss=specified.heat_loss,
-        specified_resistance=specified.resistance,
+        heat_loss=sound * (1 + line.supports_allowance),
+        specified_loss=specified,
+        specified_resistance=resistance,
     )
+
+
+def film_resistance(line: LineDraws) -> FloatArray | None:
+    """Return the resistance between fluid and pipe wall, None where neglected. [m K/W]"""
+    if line.film_coefficient is None or line.pipe_diameter is None:
+        return None
+    return np.asarray(1 / (np.pi * line.pipe_diameter * line.film_coefficient))
+
+
+def _solved(
+    line: LineDraws, frame: FrameDraws, layers: tuple[LaggingLayer, ...]
+) -> tuple[FloatArray, FloatArray]:
+    """Return loss and lagging's resistance with film and condensation, by repeated substitution.
+
+    What condenses is heat brought to the surface, like sun; the drop over the film takes the
+    wall away from the fluid. Both change little from round to round.
+    """
+    assert line.inside_temperature is not None
+    assert line.pipe_diameter is not None
+    assert line.lagged_diameter is not None
+    exchange = line.exchange(frame, line.lagged_diameter)
+    humidity = frame.relative_humidity if may_condense(frame, line) else None
+    film = film_resistance(line)
+    state = solve_lagged_pipe(line.inside_temperature, line.pipe_diameter, layers, exchange)
+    if film is None and humidity is None:
+        return state.heat_loss, state.resistance
+    loss, brought, wall = state.heat_loss, np.zeros(frame.count), line.inside_temperature
+    for _ in range(ROUNDS):
+        if humidity is not None:
+            latent = _condensed(state.surface_temperature, exchange, humidity)
+            brought = 0.5 * (brought + latent)
+        if film is not None:
+            wall = line.inside_temperature - film * loss
+        warmed = replace(exchange, absorbed_solar=exchange.absorbed_solar + brought)
+        state = solve_lagged_pipe(wall, line.pipe_diameter, layers, warmed)
+        change = np.abs(state.heat_loss - loss)
+        loss = state.heat_loss
+        if np.max(change) <= TOLERANCE * np.max(np.abs(loss)):
+            break
+    return loss, state.resistance
+
+
+def _condensed(
+    surface_temperature: FloatArray, exchange: SurfaceExchange, humidity: FloatArray
+) -> FloatArray:
+    """Return the heat that condensing vapour brings, (count,). [W/m2]"""
+    dry = surface_heat_flux(surface_temperature, exchange)
+    return np.asarray(dry - outer_flux(surface_temperature, exchange, humidity))

@@ -5,8 +5,9 @@ import math
 import numpy as np
 import pytest
 
-from cladwatt.inverse.conditions import draw_frame, draw_line, layer_draws, mirrored
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.frame_draws import draw_frame, mirrored
+from cladwatt.inverse.line_draws import draw_line, layer_draws
 from cladwatt.physics.constants import STANDARD_PRESSURE
 from cladwatt.quantities import Quantity
 from cladwatt.survey.model import AccuracyStatement, Camera, Conditions, Site, Window
