@@ -1,20 +1,27 @@
 """Convection coefficient of a pipe in air: free, forced and mixed.
 
 The single correlations live in `natural_convection`, `forced_convection` and `iso12241`, and are
-offered from here as well.
+offered from here as well; `convection_laws` puts them together under names.
 """
 
 from typing import Final
 
 import numpy as np
-from numpy.polynomial import Polynomial
 
 from cladwatt.errors import InputError
-from cladwatt.physics.air import AIR_TEMPERATURE_RANGE, AirProperties, air_properties
-from cladwatt.physics.constants import GRAVITY, STANDARD_PRESSURE
+from cladwatt.physics.air import AIR_TEMPERATURE_RANGE, air_properties
+from cladwatt.physics.constants import STANDARD_PRESSURE
+from cladwatt.physics.convection_laws import (
+    CONVECTION_LAWS,
+    CONVECTION_MODELS,
+    AirStream,
+    ConvectionLaw,
+    ConvectionModel,
+)
 from cladwatt.physics.forced_convection import (
     nusselt_churchill_bernstein,
     nusselt_hilpert,
+    nusselt_whitaker,
     nusselt_zukauskas,
     reynolds_number,
 )
@@ -23,6 +30,7 @@ from cladwatt.physics.iso12241 import (
     coefficient_iso12241_outdoor,
     coefficient_iso12241_vertical_indoor,
 )
+from cladwatt.physics.moist_air import moist_air_properties, vapour_mole_fraction
 from cladwatt.physics.natural_convection import (
     nusselt_churchill_chu_horizontal,
     nusselt_churchill_chu_horizontal_laminar,
@@ -31,10 +39,15 @@ from cladwatt.physics.natural_convection import (
     nusselt_morgan,
     rayleigh_number,
 )
+from cladwatt.physics.yawed_wind import wind_across
 from cladwatt.types import BoolArray, FloatArray, FloatLike
 
 __all__ = [
+    "CONVECTION_MODELS",
     "VERTICAL_LENGTH",
+    "ConvectionModel",
+    "air_stream",
+    "check_inclination",
     "coefficient_iso12241_horizontal_indoor",
     "coefficient_iso12241_outdoor",
     "coefficient_iso12241_vertical_indoor",
@@ -47,6 +60,7 @@ __all__ = [
     "nusselt_hilpert",
     "nusselt_kuehn_goldstein",
     "nusselt_morgan",
+    "nusselt_whitaker",
     "nusselt_zukauskas",
     "outside_validity",
     "rayleigh_number",
@@ -56,8 +70,6 @@ __all__ = [
 #: Height assumed for a vertical run where none is declared. [m]
 VERTICAL_LENGTH: Final = 2.0
 
-_RAYLEIGH_LIMIT: Final = 1e12
-_REYNOLDS_LIMIT: Final = 1e7
 _PECLET_LIMIT: Final = 0.2
 
 
@@ -91,6 +103,54 @@ def mixed_nusselt(
     return np.asarray(total ** (1.0 / exponent))
 
 
+def air_stream(
+    surface_temperature: FloatLike,
+    *,
+    air_temperature: FloatLike,
+    diameter: FloatLike,
+    wind_speed: FloatLike = 0.0,
+    pressure: FloatLike = STANDARD_PRESSURE,
+    wind_angle_deg: FloatLike = 90.0,
+    relative_humidity: FloatLike | None = None,
+) -> AirStream:
+    """Air around a pipe as the correlations take it.
+
+    Parameters
+    ----------
+    surface_temperature, air_temperature, diameter, wind_speed, pressure : float or array
+        As for `convection_coefficient`.
+    wind_angle_deg, relative_humidity : float or array
+        As for `convection_coefficient`.
+
+    Returns
+    -------
+    AirStream
+        With the wind's part across the pipe, and temperatures held within the range of
+        `air_properties`.
+    """
+    surface = np.asarray(surface_temperature, dtype=np.float64)
+    ambient = np.asarray(air_temperature, dtype=np.float64)
+    film = np.clip(0.5 * (surface + ambient), *AIR_TEMPERATURE_RANGE)
+    fraction: FloatLike = 0.0
+    if relative_humidity is not None:
+        fraction = vapour_mole_fraction(ambient, relative_humidity, pressure)
+    is_across = not np.any(np.asarray(wind_angle_deg) != 90.0)
+    return AirStream(
+        difference=np.abs(surface - ambient),
+        diameter=diameter,
+        speed=wind_speed if is_across else wind_across(wind_speed, wind_angle_deg),
+        film=(
+            air_properties(film, pressure)
+            if relative_humidity is None
+            else moist_air_properties(film, pressure, fraction)
+        ),
+        ambient=np.clip(ambient, *AIR_TEMPERATURE_RANGE),
+        surface=np.clip(surface, *AIR_TEMPERATURE_RANGE),
+        pressure=pressure,
+        vapour_fraction=fraction,
+    )
+
+
 def convection_coefficient(
     surface_temperature: FloatLike,
     *,
@@ -100,6 +160,10 @@ def convection_coefficient(
     pressure: FloatLike = STANDARD_PRESSURE,
     inclination_deg: FloatLike = 0.0,
     vertical_length: FloatLike = VERTICAL_LENGTH,
+    wind_angle_deg: FloatLike = 90.0,
+    wind_uphill: FloatLike = 0.0,
+    relative_humidity: FloatLike | None = None,
+    model: ConvectionModel = "churchill",
 ) -> FloatArray:
     """Mean convection coefficient around a pipe in still or moving air.
 
@@ -112,13 +176,22 @@ def convection_coefficient(
     diameter : float or array
         Over the cladding. [m]
     wind_speed : float or array
-        At the pipe, taken as across it. [m/s]
+        At the pipe: behind a wall or between other pipes that is the wind there. [m/s]
     pressure : float or array
         Absolute. [Pa]
     inclination_deg : float or array
         Of the axis against the horizontal, 0 to 90. [deg]
     vertical_length : float or array
         Height over which the boundary layer of a vertical run grows. [m]
+    wind_angle_deg : float or array
+        Between wind and axis, 0 (along) to 90 (across); see `wind_across`. [deg]
+    wind_uphill : float or array
+        1 where the wind's part along the axis of an inclined run blows up the run, -1 down, 0 where
+        that is not known: then the flows are taken as crossing. [-]
+    relative_humidity : float or array, optional
+        Of the air, 0 to 1; dry where left out, which errs by about 1 % at 30 °C. [-]
+    model : str
+        One of `CONVECTION_MODELS`.
 
     Returns
     -------
@@ -127,11 +200,15 @@ def convection_coefficient(
 
     Notes
     -----
-    Horizontal: Churchill and Chu [1]_ with Churchill and Bernstein [3]_, exponent 4. Vertical:
-    Churchill and Chu's vertical face [2]_, exponent 3. The wind crosses the plume in both, so the
-    two add [4]_. Between the two the coefficients are weighted with cos^2 and sin^2 of the
-    inclination, which is an assumption of this package. Published correlations differ by 10 to
-    20 %.
+    The default, Churchill and Chu [1]_ with Churchill and Bernstein [3]_: one smooth formula each
+    over every pipe met in a plant, while the others step at the joins of their ranges. Vertical:
+    Churchill and Chu's vertical face [2]_. Horizontal exponent 4, vertical 3 [4]_: the wind crosses
+    the plume in both, so the two add. Between the two the coefficients are weighted with cos^2 and
+    sin^2 of the inclination, which is an assumption of this package. Where the wind's part along an
+    inclined run blows against the plume, the difference of the cubes takes the place of their sum
+    in proportion to cos^2 of the wind's angle (assumption), and never less than half of the larger
+    is taken: the difference vanishes where both are equal, which no flow does. `correlation_spread`
+    says how far published correlations differ.
 
     A vertical run of 2 m with 10 K or more on it is turbulent over most of its height, and the
     coefficient then hardly depends on the height: 1 m and 6 m both stay within 5 % of it.
@@ -152,18 +229,32 @@ def convection_coefficient(
     >>> round(float(h))
     6
     """
-    surface = np.asarray(surface_temperature, dtype=np.float64)
-    ambient = np.asarray(air_temperature, dtype=np.float64)
-    air = air_properties(_film_temperature(surface, ambient), pressure)
-    difference = np.abs(surface - ambient)
-    per_length = air.conductivity / diameter
-    forced = _forced(air, wind_speed, diameter)
-    horizontal = per_length * _fourth_power_sum(forced, _natural(air, difference, diameter))
+    stream = air_stream(
+        surface_temperature,
+        air_temperature=air_temperature,
+        diameter=diameter,
+        wind_speed=wind_speed,
+        pressure=pressure,
+        wind_angle_deg=wind_angle_deg,
+        relative_humidity=relative_humidity,
+    )
+    law = CONVECTION_LAWS[model]
+    natural = law.natural(stream)
+    forced = None if law.forced is None else law.forced(stream)
+    horizontal = natural if forced is None else _fourth_power_sum(forced, natural)
     if not np.any(inclination_deg):
         return np.asarray(horizontal)
-    natural = air.conductivity / vertical_length * _vertical(air, difference, vertical_length)
-    vertical = mixed_nusselt(per_length * forced, natural, exponent=3.0)
+    vertical = law.vertical(stream, vertical_length)
+    if forced is not None:
+        opposed: FloatLike = 0.0
+        if np.any(wind_uphill):
+            rising = np.sign(np.asarray(surface_temperature) - np.asarray(air_temperature))
+            is_against = np.asarray(wind_uphill) * rising < 0
+            opposed = np.where(is_against, np.cos(np.deg2rad(wind_angle_deg)) ** 2, 0.0)
+        vertical = _along(forced, vertical, opposed)
     share = np.sin(np.deg2rad(inclination_deg)) ** 2
+    if not law.is_blended:
+        share = np.where(np.asarray(inclination_deg) > 45.0, 1.0, 0.0)
     return np.asarray(horizontal + share * (vertical - horizontal))
 
 
@@ -176,6 +267,9 @@ def outside_validity(
     pressure: FloatLike = STANDARD_PRESSURE,
     inclination_deg: FloatLike = 0.0,
     vertical_length: FloatLike = VERTICAL_LENGTH,
+    wind_angle_deg: FloatLike = 90.0,
+    relative_humidity: FloatLike | None = None,
+    model: ConvectionModel = "churchill",
 ) -> BoolArray:
     """Where `convection_coefficient` leaves the range its correlations are stated for.
 
@@ -183,32 +277,53 @@ def outside_validity(
     ----------
     surface_temperature, air_temperature, diameter, wind_speed, pressure : float or array
         As for `convection_coefficient`.
-    inclination_deg, vertical_length : float or array
+    inclination_deg, vertical_length, wind_angle_deg, relative_humidity : float or array
         As for `convection_coefficient`.
+    model : str
+        One of `CONVECTION_MODELS`.
 
     Returns
     -------
     array of bool
-        True where the film temperature is outside the air properties' range, Ra above 1e12 (on
-        the height for inclined runs), Re above 1e7, or forced flow carries the heat at Re Pr
-        below 0.2. NaN counts as outside.
+        True where the film temperature is outside the air properties' range, Ra outside that of the
+        law (on the height for inclined runs), Re above that of the law, or forced flow carries the
+        heat below it or at Re Pr below 0.2. A law for still air is outside in any wind. NaN counts
+        as outside.
+
+    Notes
+    -----
+    A slim vertical run, D/H below 35 / Gr^(1/4), loses more than the face; that stands in
+    `correlation_spread` and is not flagged here.
     """
-    surface = np.asarray(surface_temperature, dtype=np.float64)
-    ambient = np.asarray(air_temperature, dtype=np.float64)
-    film = 0.5 * (surface + ambient)
-    air = air_properties(_film_temperature(surface, ambient), pressure)
-    difference = np.abs(surface - ambient)
-    length = np.where(np.asarray(inclination_deg) != 0.0, vertical_length, diameter)
-    rayleigh = _rayleigh(air, difference, length)
-    reynolds = reynolds_number(
-        wind_speed, length=diameter, kinematic_viscosity=air.kinematic_viscosity
+    stream = air_stream(
+        surface_temperature,
+        air_temperature=air_temperature,
+        diameter=diameter,
+        wind_speed=wind_speed,
+        pressure=pressure,
+        wind_angle_deg=wind_angle_deg,
+        relative_humidity=relative_humidity,
     )
-    is_forced = _forced(air, wind_speed, diameter) > _natural(air, difference, diameter)
+    law = CONVECTION_LAWS[model]
+    film = 0.5 * (np.asarray(surface_temperature) + np.asarray(air_temperature))
     lowest, highest = AIR_TEMPERATURE_RANGE
-    inside = (film >= lowest) & (film <= highest) & (rayleigh <= _RAYLEIGH_LIMIT)
-    inside &= reynolds <= _REYNOLDS_LIMIT
-    inside &= ~is_forced | (reynolds * air.prandtl >= _PECLET_LIMIT)
-    return np.asarray(~inside)
+    inside = (film >= lowest) & (film <= highest)
+    is_inclined = np.asarray(inclination_deg) != 0.0
+    rayleigh = stream.rayleigh(np.where(is_inclined, vertical_length, diameter))
+    # below the range of free flow there is no difference to speak of, and no heat
+    inside &= rayleigh <= np.where(is_inclined, law.vertical_range[1], law.rayleigh_range[1])
+    return np.asarray(~(inside & _forced_inside(stream, law)))
+
+
+def _forced_inside(stream: AirStream, law: ConvectionLaw) -> BoolArray:
+    air = stream.free if law.free_stream else stream.film
+    reynolds = stream.reynolds(air)
+    lowest, highest = law.reynolds_range
+    inside = reynolds <= highest
+    if law.forced is not None:
+        is_forced = law.forced(stream) > law.natural(stream)
+        inside &= ~is_forced | ((reynolds * air.prandtl >= _PECLET_LIMIT) & (reynolds >= lowest))
+    return np.asarray(inside)
 
 
 def check_inclination(inclination_deg: FloatLike) -> None:
@@ -232,65 +347,14 @@ def check_inclination(inclination_deg: FloatLike) -> None:
         )
 
 
-def _film_temperature(surface: FloatArray, ambient: FloatArray) -> FloatArray:
-    return np.clip(0.5 * (surface + ambient), *AIR_TEMPERATURE_RANGE)
-
-
-# The factors of the Prandtl number hardly change for air (0.69 to 0.76), so that a cubic replaces
-# their fractional powers to better than 1e-6: the balance is evaluated millions of times.
-def _cubic_of_prandtl(nusselt_factor: FloatArray, prandtl: FloatArray) -> tuple[float, ...]:
-    cubic = Polynomial.fit(prandtl, nusselt_factor, 3).convert()
-    return tuple(float(coefficient) for coefficient in cubic.coef)
-
-
-_PRANDTL = np.linspace(0.68, 0.78, 41)
-_FORCED_FACTOR = _cubic_of_prandtl(
-    0.62 * np.cbrt(_PRANDTL) / (1.0 + (0.4 / _PRANDTL) ** (2 / 3)) ** 0.25, _PRANDTL
-)
-_HORIZONTAL_FACTOR = _cubic_of_prandtl(
-    0.387 / (1.0 + (0.559 / _PRANDTL) ** (9 / 16)) ** (8 / 27), _PRANDTL
-)
-_VERTICAL_FACTOR = _cubic_of_prandtl(
-    0.387 / (1.0 + (0.492 / _PRANDTL) ** (9 / 16)) ** (8 / 27), _PRANDTL
-)
-
-
-def _cubic(x: FloatArray, coefficients: tuple[float, ...]) -> FloatArray:
-    c0, c1, c2, c3 = coefficients
-    return c0 + x * (c1 + x * (c2 + x * c3))
-
-
-def _rayleigh(air: AirProperties, difference: FloatArray, length: FloatLike) -> FloatArray:
-    return rayleigh_number(
-        difference,
-        length=length,
-        expansion=air.expansion,
-        kinematic_viscosity=air.kinematic_viscosity,
-        prandtl=air.prandtl,
-        gravity=GRAVITY,
-    )
-
-
-def _natural(air: AirProperties, difference: FloatArray, diameter: FloatLike) -> FloatArray:
-    sixth_root = np.cbrt(np.sqrt(_rayleigh(air, difference, diameter)))
-    root = 0.60 + _cubic(air.prandtl, _HORIZONTAL_FACTOR) * sixth_root
-    return np.asarray(root * root)
-
-
-def _vertical(air: AirProperties, difference: FloatArray, length: FloatLike) -> FloatArray:
-    sixth_root = np.cbrt(np.sqrt(_rayleigh(air, difference, length)))
-    root = 0.825 + _cubic(air.prandtl, _VERTICAL_FACTOR) * sixth_root
-    return np.asarray(root * root)
-
-
-def _forced(air: AirProperties, wind_speed: FloatLike, diameter: FloatLike) -> FloatArray:
-    if not np.any(wind_speed):
-        return np.asarray(0.3)
-    reynolds = np.asarray(wind_speed, dtype=np.float64) * diameter / air.kinematic_viscosity
-    # x^(5/8) by square roots: x^(1/2) x^(1/8)
-    half = np.sqrt(reynolds / 282_000.0)
-    rise = (1.0 + half * np.sqrt(np.sqrt(half))) ** 0.8
-    return np.asarray(0.3 + _cubic(air.prandtl, _FORCED_FACTOR) * np.sqrt(reynolds) * rise)
+def _along(forced: FloatArray, natural: FloatArray, opposed: FloatLike) -> FloatArray:
+    """Mix along a vertical run, the flows opposed by a share from 0 to 1."""
+    aiding = mixed_nusselt(forced, natural, exponent=3.0)
+    if not np.any(opposed):
+        return aiding
+    against = mixed_nusselt(forced, natural, exponent=3.0, aiding=False)
+    total = np.cbrt(aiding**3 + opposed * (against**3 - aiding**3))
+    return np.asarray(np.maximum(total, 0.5 * np.maximum(forced, natural)))
 
 
 def _fourth_power_sum(forced: FloatArray, natural: FloatArray) -> FloatArray:

@@ -7,6 +7,7 @@ from cladwatt.types import FloatArray, FloatLike
 __all__ = [
     "nusselt_churchill_bernstein",
     "nusselt_hilpert",
+    "nusselt_whitaker",
     "nusselt_zukauskas",
     "reynolds_number",
 ]
@@ -133,3 +134,31 @@ def nusselt_hilpert(reynolds: FloatLike, prandtl: FloatLike) -> FloatArray:
     part = np.searchsorted(_HILPERT_LIMITS, number)
     power = number ** _HILPERT_EXPONENTS[part]
     return np.asarray(_HILPERT_FACTORS[part] * power * np.cbrt(prandtl))
+
+
+def nusselt_whitaker(
+    reynolds: FloatLike, prandtl: FloatLike, *, viscosity_ratio: FloatLike = 1.0
+) -> FloatArray:
+    """Cross flow on a cylinder, 1 < Re < 1e5, 0.67 < Pr < 300; properties of the free stream.
+
+    Parameters
+    ----------
+    reynolds, prandtl : float or array
+        On the diameter, at the air's temperature. [-]
+    viscosity_ratio : float or array
+        Dynamic viscosity at the air's over that at the surface's temperature. [-]
+
+    Returns
+    -------
+    array
+        (0.4 Re^(1/2) + 0.06 Re^(2/3)) Pr^0.4 (mu/mu_s)^(1/4). [-]
+
+    References
+    ----------
+    .. [1] Whitaker, *Forced convection heat transfer correlations for flow in pipes, past flat
+       plates, single cylinders, single spheres, and for flow in packed beds and tube bundles*,
+       AIChE Journal 18 (1972) 361-371.
+    """
+    number = np.asarray(reynolds, dtype=np.float64)
+    growth = 0.4 * np.sqrt(number) + 0.06 * np.cbrt(number) ** 2
+    return np.asarray(growth * np.asarray(prandtl) ** 0.4 * np.asarray(viscosity_ratio) ** 0.25)

@@ -2,19 +2,22 @@
 
 from dataclasses import dataclass
 from math import pi
-from typing import Literal, NamedTuple
+from typing import NamedTuple
 
 import numpy as np
 
 from cladwatt.errors import InputError
 from cladwatt.physics.constants import STANDARD_PRESSURE
-from cladwatt.physics.convection import check_inclination, convection_coefficient
-from cladwatt.physics.iso12241 import (
-    coefficient_iso12241_horizontal_indoor,
-    coefficient_iso12241_vertical_indoor,
+from cladwatt.physics.convection import (
+    CONVECTION_MODELS,
+    ConvectionModel,
+    check_inclination,
+    convection_coefficient,
+    outside_validity,
 )
 from cladwatt.physics.radiation import radiative_coefficient, radiative_flux
-from cladwatt.types import FloatArray, FloatLike
+from cladwatt.physics.yawed_wind import check_wind_angle
+from cladwatt.types import BoolArray, FloatArray, FloatLike
 
 __all__ = [
     "ConvectionModel",
@@ -24,9 +27,8 @@ __all__ = [
     "surface_coefficients",
     "surface_fluxes",
     "surface_heat_flux",
+    "surface_outside_validity",
 ]
-
-ConvectionModel = Literal["churchill", "iso12241_indoor"]
 
 
 @dataclass(frozen=True)
@@ -53,16 +55,23 @@ class SurfaceExchange:
         Multiplies the convection coefficient: the uncertainty of the correlation. [-]
     absorbed_solar : float or array
         Absorbed on average over the circumference. [W/m2]
-    convection_model : {"churchill", "iso12241_indoor"}
-        Correlations of `convection.convection_coefficient`, or the simplified rule for still air
-        indoors, which steps at its branch limit and leaves pressure out.
+    convection_model : str
+        One of `convection.CONVECTION_MODELS`. The simplified rule for still air indoors,
+        ``iso12241_indoor``, steps at its branch limit and leaves pressure and humidity out.
+    wind_angle_deg : float or array
+        Between wind and axis, 0 (along) to 90 (across). [deg]
+    wind_uphill : float or array
+        1 where the wind along an inclined run blows up the run, -1 down, 0 not known. [-]
+    relative_humidity : float or array, optional
+        Of the air, 0 to 1; dry where left out. [-]
 
     Raises
     ------
     InputError
         If a temperature, the diameter, the pressure or the convection factor is not above 0, the
-        emissivity outside 0 to 1, the wind negative, the inclination outside 0 to 90, or the
-        indoor rule asked for with wind. NaN passes, and comes out as NaN.
+        emissivity or the humidity outside 0 to 1, the wind negative, the inclination or the wind's
+        angle outside 0 to 90, the model unknown, or the indoor rule asked for with wind. NaN
+        passes, and comes out as NaN.
     """
 
     air_temperature: FloatLike
@@ -75,6 +84,9 @@ class SurfaceExchange:
     convection_factor: FloatLike = 1.0
     absorbed_solar: FloatLike = 0.0
     convection_model: ConvectionModel = "churchill"
+    wind_angle_deg: FloatLike = 90.0
+    wind_uphill: FloatLike = 0.0
+    relative_humidity: FloatLike | None = None
 
     def __post_init__(self) -> None:
         for name in ("air_temperature", "surroundings_temperature"):
@@ -85,10 +97,14 @@ class SurfaceExchange:
         check_inclination(self.inclination_deg)
         if np.any(np.asarray(self.wind_speed) < 0):
             raise InputError(f"wind_speed is {np.min(self.wind_speed)} m/s; expected 0 or more")
-        emissivity = np.asarray(self.total_emissivity)
-        if np.any((emissivity < 0) | (emissivity > 1)):
+        check_wind_angle(self.wind_angle_deg)
+        _check_share("total_emissivity", self.total_emissivity)
+        if self.relative_humidity is not None:
+            _check_share("relative_humidity", self.relative_humidity)
+        if self.convection_model not in CONVECTION_MODELS:
             raise InputError(
-                f"total_emissivity is {np.min(emissivity)} to {np.max(emissivity)}; expected 0 to 1"
+                f"convection_model is {self.convection_model!r}; expected one of"
+                f" {', '.join(CONVECTION_MODELS)}"
             )
         if self.convection_model == "iso12241_indoor" and np.any(self.wind_speed):
             raise InputError(
@@ -210,27 +226,55 @@ def bare_pipe_loss(pipe_temperature: FloatLike, exchange: SurfaceExchange) -> Fl
     return np.asarray(pi * surface_heat_flux(pipe_temperature, exchange) * exchange.diameter)
 
 
+def surface_outside_validity(
+    surface_temperature: FloatLike, exchange: SurfaceExchange
+) -> BoolArray:
+    """Where the correlations of convection are used beyond what they are stated for.
+
+    Parameters
+    ----------
+    surface_temperature : float or array
+        [K]
+    exchange : SurfaceExchange
+
+    Returns
+    -------
+    array of bool
+        See `convection.outside_validity`.
+    """
+    return outside_validity(
+        surface_temperature,
+        air_temperature=exchange.air_temperature,
+        diameter=exchange.diameter,
+        wind_speed=exchange.wind_speed,
+        pressure=exchange.pressure,
+        inclination_deg=exchange.inclination_deg,
+        wind_angle_deg=exchange.wind_angle_deg,
+        relative_humidity=exchange.relative_humidity,
+        model=exchange.convection_model,
+    )
+
+
 def _convection(surface: FloatArray, exchange: SurfaceExchange) -> FloatArray:
-    if exchange.convection_model == "churchill":
-        coefficient = convection_coefficient(
-            surface,
-            air_temperature=exchange.air_temperature,
-            diameter=exchange.diameter,
-            wind_speed=exchange.wind_speed,
-            pressure=exchange.pressure,
-            inclination_deg=exchange.inclination_deg,
-        )
-    else:
-        coefficient = _iso_indoor(surface - exchange.air_temperature, exchange)
+    coefficient = convection_coefficient(
+        surface,
+        air_temperature=exchange.air_temperature,
+        diameter=exchange.diameter,
+        wind_speed=exchange.wind_speed,
+        pressure=exchange.pressure,
+        inclination_deg=exchange.inclination_deg,
+        wind_angle_deg=exchange.wind_angle_deg,
+        wind_uphill=exchange.wind_uphill,
+        relative_humidity=exchange.relative_humidity,
+        model=exchange.convection_model,
+    )
     return coefficient * exchange.convection_factor
 
 
-def _iso_indoor(difference: FloatArray, exchange: SurfaceExchange) -> FloatArray:
-    horizontal = coefficient_iso12241_horizontal_indoor(difference, exchange.diameter)
-    if not np.any(exchange.inclination_deg):
-        return horizontal
-    vertical = coefficient_iso12241_vertical_indoor(difference, exchange.diameter)
-    return np.asarray(np.where(np.asarray(exchange.inclination_deg) > 45.0, vertical, horizontal))
+def _check_share(name: str, value: FloatLike) -> None:
+    share = np.asarray(value)
+    if np.any((share < 0) | (share > 1)):
+        raise InputError(f"{name} is {np.min(share)} to {np.max(share)}; expected 0 to 1")
 
 
 def _check_above_zero(name: str, value: FloatLike, unit: str) -> None:
