@@ -72,5 +72,6 @@ def evidence(request: pytest.FixtureRequest):
     kept = Evidence()
     yield kept
     folder = request.config.getoption("--evidence")
-    if folder:
+    # what is expected to fail is a known misprint: said in the catalogue, compared with nothing
+    if folder and not request.node.get_closest_marker("xfail"):
         write_records(kept.records, Path(folder))

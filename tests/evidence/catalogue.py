@@ -4,12 +4,13 @@ import csv
 import tomllib
 from collections import Counter
 from dataclasses import dataclass
+from fnmatch import fnmatchcase
 from pathlib import Path
 
 HERE = Path(__file__).parent
 PUBLISHED = HERE.parent / "published"
 
-KINDS = ("published", "library", "computed")
+KINDS = ("published", "library", "computed", "sources")
 BASES = ("seen", "memory", "exact")
 
 
@@ -26,7 +27,7 @@ class Check:
     topic : str
         Heading of the summary.
     kind : str
-        "published", "library" or "computed".
+        "published", "library", "computed", or "sources": several that differ, side by side.
     basis : str
         Of what is published: "seen", "memory" (quoted from it) or "exact" (by definition).
     work : str
@@ -65,25 +66,24 @@ def _from_file(name: str, select: dict[str, str]) -> tuple[str, str]:
         rows = [
             row
             for row in csv.DictReader(file)
-            if all(row[key].startswith(start) for key, start in select.items())
+            if all(fnmatchcase(row[key], pattern) for key, pattern in select.items())
         ]
     assert rows, f"no row of {name} has {select}"
     sources = list(dict.fromkeys(row["source"] for row in rows))
     ways = Counter(row["provenance"] for row in rows)
     if len(ways) == 1:
         return "; ".join(sources), next(iter(ways))
-    parts = [f"{way} ({count} rows)" for way, count in ways.items()]
+    parts = [f"{way} ({count} of {len(rows)} rows)" for way, count in ways.items()]
     return "; ".join(sources), "; ".join(parts)
 
 
-def _read() -> tuple[tuple[str, ...], dict[str, Check]]:
-    text = (HERE / "catalogue.toml").read_text(encoding="utf-8")
-    tables = tomllib.loads(text)
-    return tuple(tables.pop("topics")), tables
+_TABLES = tomllib.loads((HERE / "catalogue.toml").read_text(encoding="utf-8"))
 
-
-TOPICS, _TABLES = _read()
+TOPICS: tuple[str, ...] = tuple(_TABLES.pop("topics"))
 """Headings of the summary, in their order."""
+
+NO_PRINT: dict[str, str] = _TABLES.pop("no_print")
+"""Why a topic has no print to be checked against, by topic."""
 
 
 def _check(key: str, table: dict) -> Check:

@@ -13,19 +13,22 @@ from tests.evidence.catalogue import CHECKS
 ROUNDING = 1e-9
 """Relative differences below this are rounding; which value is worst then says nothing."""
 
+TEMPERATURE_SCALE = 30.0
+"""A temperature held to so many kelvin is ranked over this, not over its distance from zero. [K]"""
+
 
 @dataclass(frozen=True)
 class Record:
     """One assertion: how many values, and the worst of them."""
 
     check: str
-    role: str  # "check", "spread" or "recomputation"
+    role: str  # "check", "spread", "recomputation" or "beside"
     what: str
     unit: str
     count: int
     expected: float
     computed: float
-    difference: float  # over the expected value, or the scale given
+    difference: float  # over the expected value, or the scale given if larger
     allowed: str
     share: float  # of what is allowed
     by: str = ""
@@ -52,7 +55,8 @@ class Evidence:
         """Assert that ours agrees with theirs.
 
         Allowed is `rel` times the expected value or `abs`, the larger where both are given. The
-        difference is shown over `scale`, or over the expected value.
+        difference is shown over the expected value, or over `scale` where that is larger: for
+        values that may be zero.
         """
         self._agree("check", check, what, found, expected, unit, rel, abs, scale)
 
@@ -102,6 +106,35 @@ class Evidence:
         assert ratio.min() >= low, f"{check}, {what}: ratio {ratio.min():g} below {low:g}"
         assert ratio.max() <= high, f"{check}, {what}: ratio {ratio.max():g} above {high:g}"
 
+    def beside(
+        self,
+        check: str,
+        subject: str,
+        printed: tuple[float, float],
+        ours: float,
+        u: float,
+        *,
+        source: str,
+        provenance: str,
+        unit: str = "",
+    ) -> None:
+        """Put our value beside one of several sources that differ.
+
+        What was seen must be met by our 95 % interval; what is quoted from memory is shown only.
+        """
+        low, high = printed
+        nearest = min(max(ours, low), high)
+        share = abs(ours - nearest) / (2 * u)
+        words = f"{low:g}" if low == high else f"{low:g} to {high:g}"
+        self._keep(
+            Record(
+                check, "beside", subject, unit, 1, nearest, ours, ours / nearest - 1, words, share,
+                f"{source} ({provenance.split(':')[0].split(',')[0]})",
+            )
+        )  # fmt: skip
+        if provenance.startswith("seen"):
+            assert share <= 1.0, f"{subject}: {source} prints {words}; ours is {ours:g}, u {u:g}"
+
     def _agree(self, role, check, what, found, expected, unit, rel, absolute, scale, by=""):
         assert rel is not None or absolute is not None, "a tolerance is needed"
         ours, theirs = _pairs(found, expected)
@@ -112,7 +145,9 @@ class Evidence:
             within = np.maximum(within, np.broadcast_to(absolute, theirs.shape).ravel())
         away = np.abs(ours - theirs)
         share = np.divide(away, within, out=np.where(away > 0, np.inf, 0.0), where=within > 0)
-        over = np.abs(theirs) if scale is None else np.full_like(theirs, scale)
+        over = np.maximum(np.abs(theirs), 0.0 if scale is None else scale)
+        if scale is None and rel is None and unit == "K":
+            over = np.minimum(over, TEMPERATURE_SCALE)
         size = np.divide(away, over, out=np.where(away > 0, np.inf, 0.0), where=over > 0)
         size[size < ROUNDING] = 0.0
         worst = int(np.argmax(size)) if size.any() else 0

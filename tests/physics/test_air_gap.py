@@ -1,4 +1,5 @@
 import csv
+from functools import partial
 from math import log, pi
 from pathlib import Path
 
@@ -27,42 +28,50 @@ with (Path(__file__).parents[1] / "published" / "air_gap.csv").open(
 SHIELD = {"inner_temperature": 393.15, "outer_temperature": 308.15}
 
 
-def test_textbook_shield_around_a_tube():
+def test_textbook_shield_around_a_tube(evidence):
     # Incropera et al., example 9.5: tube of 100 mm at 120 °C in a shield of 120 mm at 35 °C:
     # Ra 171, k_eff 0.0343 W/(m K), 100 W/m by the gas (from memory; recomputed here by hand below)
     # its air table is that of 1 bar
     rayleigh = annulus_rayleigh(0.1, 0.12, **SHIELD, pressure=1e5)
-    assert float(rayleigh) == pytest.approx(171.0, rel=0.01)
+    evidence("incropera_9_5", "Rayleigh number", rayleigh, 171.0, rel=0.01)
     ratio = float(annulus_conductivity_ratio(171.0, 0.7))
-    assert ratio * 0.030 == pytest.approx(0.0343, abs=0.00005)
-    assert 2 * pi * ratio * 0.030 * 85.0 / log(1.2) == pytest.approx(100.0, abs=0.5)
+    by_hand = 0.386 * (0.7 / (0.861 + 0.7) * 171.0) ** 0.25
+    for compare, factor in (
+        (evidence, ratio),
+        (partial(evidence.recomputed, by="formula by hand"), by_hand),
+    ):
+        k, loss = factor * 0.030, 2 * pi * factor * 0.030 * 85.0 / log(1.2)
+        compare("incropera_9_5", "conductivity", k, 0.0343, unit="W/(m K)", abs=0.00005)
+        compare("incropera_9_5", "by the gas", loss, 100.0, unit="W/m", abs=0.5)
     radiation = annulus_radiative_conductance(
         0.1, 0.12, **SHIELD, inner_emissivity=0.8, outer_emissivity=0.1
     )
     total = air_gap_conductance(
         0.1, 0.12, **SHIELD, inner_emissivity=0.8, outer_emissivity=0.1, pressure=1e5
     )
-    assert float(total - radiation) * 85.0 == pytest.approx(100.0, rel=0.02)
+    found = (total - radiation) * 85.0
+    evidence("incropera_9_5", "by the gas, own properties", found, 100.0, unit="W/m", rel=0.02)
 
 
 @pytest.mark.parametrize("row", SOLUTIONS, ids=lambda row: row["id"])
-def test_numerical_solutions_of_the_annulus(row):
+def test_numerical_solutions_of_the_annulus(row, evidence):
     # Kuehn and Goldstein 1976, air in an annulus; the correlation is to hold some per cent
     ratio, on_gap = float(row["ratio"]), float(row["rayleigh_on_gap"])
     inner = 1.0 / (ratio - 1.0)
     outer = inner * ratio
     length = 2 * log(ratio) ** (4 / 3) / (inner**-0.6 + outer**-0.6) ** (5 / 3)
     found = float(annulus_conductivity_ratio(on_gap * length**3, 0.7))
-    assert found == pytest.approx(float(row["value"]), rel=0.05)
+    evidence("kuehn_goldstein", "over conduction", found, float(row["value"]), rel=0.05)
 
 
-def test_rayleigh_by_the_properties_of_a_library():
+def test_rayleigh_by_the_properties_of_a_library(evidence):
     mean = 350.65
     density, heat, k, mu = (PropsSI(key, "T", mean, "P", 101_325, "Air") for key in "DCLV")
     ri, ro = 0.06, 0.085
     length = 2 * log(ro / ri) ** (4 / 3) / (ri**-0.6 + ro**-0.6) ** (5 / 3)
     expected = 9.80665 / mean * 85.0 * length**3 * density**2 * heat / (mu * k)
-    assert float(annulus_rayleigh(0.12, 0.17, **SHIELD)) == pytest.approx(expected, rel=5e-3)
+    found = annulus_rayleigh(0.12, 0.17, **SHIELD)
+    evidence("annulus_rayleigh", "Rayleigh number", found, expected, rel=5e-3)
     # the direction of the heat does not matter
     other = annulus_rayleigh(0.12, 0.17, inner_temperature=308.15, outer_temperature=393.15)
     assert float(other) == pytest.approx(float(annulus_rayleigh(0.12, 0.17, **SHIELD)))
@@ -75,7 +84,7 @@ def test_a_narrow_gap_only_conducts():
 
 
 @pytest.mark.parametrize(("eps_1", "eps_2"), [(0.9, 0.9), (0.1, 0.9), (0.9, 0.1), (0.3, 0.05)])
-def test_radiation_against_the_radiosities(eps_1, eps_2):
+def test_radiation_against_the_radiosities(eps_1, eps_2, evidence):
     # net-radiation method with F11 = 0, F12 = 1, F21 = r1/r2, F22 = 1 - r1/r2, solved as a matrix
     r1, r2, hot, cold = 0.05, 0.08, 450.0, 330.0
     factors = np.array([[0.0, 1.0], [r1 / r2, 1.0 - r1 / r2]])
@@ -91,7 +100,7 @@ def test_radiation_against_the_radiosities(eps_1, eps_2):
         inner_emissivity=eps_1,
         outer_emissivity=eps_2,
     )
-    assert float(found) * (hot - cold) == pytest.approx(loss, rel=1e-9)
+    evidence("annulus_radiosity", "loss", found * (hot - cold), loss, unit="W/m", rel=1e-9)
 
 
 def test_exchange_factor_in_its_limits():

@@ -41,38 +41,53 @@ def flux(surface_C, air_C=25.0, humidity=0.65, coefficient=5.0, **others):
     )
 
 
-def test_diffusivity_of_the_textbook_table():
+def test_diffusivity_of_the_textbook_table(evidence):
     # Incropera et al., table A.8; the measurements themselves scatter by 7 % (Massman 1998)
     row = PRINTED["D_298"]
     found = float(vapour_diffusivity(float(row["temperature_K"])))
-    assert found == pytest.approx(float(row["value"]), rel=float(row["tolerance_percent"]) / 100)
+    printed, rel = float(row["value"]), float(row["tolerance_percent"]) / 100
+    evidence("incropera_a_8", "diffusivity", found, printed, unit="m2/s", rel=rel)
+    # Fuller, Schettler and Giddings 1966: diffusion volumes 19.7 of air, 13.1 of water
+    mass = 2 / (1 / 28.97 + 1 / 18.015)
+    fuller = 1.43e-7 * 298**1.75 / (1.01325 * mass**0.5 * (19.7 ** (1 / 3) + 13.1 ** (1 / 3)) ** 2)
+    evidence.recomputed("incropera_a_8", "diffusivity", fuller, printed, unit="m2/s", rel=rel,
+                        by="relation of Fuller, Schettler and Giddings")  # fmt: skip
     assert float(vapour_diffusivity(298.0, 5e4)) == pytest.approx(found * 101_325 / 5e4)
 
 
 @pytest.mark.parametrize(("key", "celsius"), [("hfg_0C", 0.0), ("hig_0C", -1e-3)])
-def test_latent_heats_at_the_ice_point(key, celsius):
+def test_latent_heats_at_the_ice_point(key, celsius, evidence):
     # ASHRAE Fundamentals, Psychrometrics
     row = PRINTED[key]
     half = float(row["half_last_digit"])
-    assert float(latent_heat(ZERO + celsius)) == pytest.approx(float(row["value"]), abs=half)
+    found, printed, what = latent_heat(ZERO + celsius), float(row["value"]), row["quantity"]
+    evidence("ashrae_latent", what.replace("_", " "), found, printed, unit="J/kg", abs=half)
+    # at the triple point, 0.01 K on
+    steam, water = (PropsSI("H", "T", 273.16, "Q", q, "Water") for q in (1, 0))
+    solid = 1e3 * _Ice(ZERO, 0.101325)["h"]
+    other = steam - (solid if key == "hig_0C" else water)
+    evidence.recomputed("ashrae_latent", what.replace("_", " "), other, printed, unit="J/kg",
+                        abs=half, by="CoolProp, iapws")  # fmt: skip
 
 
 # stated bounds: 0.1 % where vapour condenses, 0.2 % and 0.6 % where hot water would evaporate
 @pytest.mark.parametrize(
     ("celsius", "bound"), [(1, 1e-3), (10, 1e-3), (25, 1e-3), (45, 1e-3), (60, 2e-3), (100, 6e-3)]
 )
-def test_heat_of_evaporation_against_the_equation_of_state(celsius, bound):
+def test_heat_of_evaporation_against_the_equation_of_state(celsius, bound, evidence):
     steam, water = (PropsSI("H", "T", ZERO + celsius, "Q", q, "Water") for q in (1, 0))
-    assert float(latent_heat(ZERO + celsius)) == pytest.approx(steam - water, rel=bound)
+    found = latent_heat(ZERO + celsius)
+    evidence("coolprop_latent", "evaporation", found, steam - water, unit="J/kg", rel=bound)
 
 
 @pytest.mark.parametrize("celsius", [-1.0, -10.0, -30.0])
-def test_heat_of_sublimation_against_the_equation_of_ice(celsius):
+def test_heat_of_sublimation_against_the_equation_of_ice(celsius, evidence):
     # ice Ih by IAPWS R10-06, vapour by IAPWS-95 as an almost ideal gas
     kelvin = ZERO + celsius
     ice = _Ice(kelvin, 0.101325)["h"]
     vapour = PropsSI("Hmass", "T", 273.16, "Q", 1, "Water") / 1e3 - 1.86 * (273.16 - kelvin)
-    assert float(latent_heat(kelvin)) == pytest.approx(1e3 * (vapour - ice), rel=1.5e-3)
+    found, expected = latent_heat(kelvin), 1e3 * (vapour - ice)
+    evidence("iapws_ice", "sublimation", found, expected, unit="J/kg", rel=1.5e-3)
     assert IAPWS95(T=273.16, x=1).h == pytest.approx(
         PropsSI("Hmass", "T", 273.16, "Q", 1, "Water") / 1e3, rel=1e-5
     )
@@ -81,9 +96,10 @@ def test_heat_of_sublimation_against_the_equation_of_ice(celsius):
 @pytest.mark.parametrize(
     ("celsius", "ice"), [(-20.0, True), (-5.0, True), (5.0, False), (30.0, False)]
 )
-def test_vapour_pressure_at_the_surface_against_psychrolib(celsius, ice):
+def test_vapour_pressure_at_the_surface_against_psychrolib(celsius, ice, evidence):
     found = float(surface_vapour_pressure(ZERO + celsius))
-    assert found == pytest.approx(psychrolib.GetSatVapPres(celsius), rel=1e-5)
+    expected = psychrolib.GetSatVapPres(celsius)
+    evidence("psychrolib_saturation", "at a surface", found, expected, unit="Pa", rel=1e-5)
     over_water = PropsSI("P", "T", max(ZERO + celsius, 273.16), "Q", 1, "Water")
     assert (found < over_water) or not ice
 
@@ -92,7 +108,7 @@ def test_vapour_pressure_at_the_surface_against_psychrolib(celsius, ice):
     ("surface", "air", "humidity"),
     [(5.0, 25.0, 0.65), (10.0, 30.0, 0.8), (2.0, 15.0, 0.7), (12.0, 25.0, 0.6), (18.0, 35.0, 0.9)],
 )
-def test_against_the_humidity_ratio_form(surface, air, humidity):
+def test_against_the_humidity_ratio_form(surface, air, humidity, evidence):
     # ASHRAE Fundamentals, chapter Mass Transfer: m = h (W_air - W_surface) / (c_p Le^(2/3)) with
     # moist air's c_p per dry air; humidity ratios by psychrolib; Le^(2/3) = 0.9 as printed there
     wet = psychrolib.GetHumRatioFromRelHum(air, humidity, 101_325.0)
@@ -102,11 +118,12 @@ def test_against_the_humidity_ratio_form(surface, air, humidity):
         PropsSI("H", "T", ZERO + surface, "Q", 1, "Water")
         - PropsSI("H", "T", ZERO + surface, "Q", 0, "Water")
     )
-    assert float(flux(surface, air, humidity)) == pytest.approx(-heat, rel=0.05)
+    found = flux(surface, air, humidity)
+    evidence("humidity_ratio_form", "latent heat", found, -heat, unit="W/m2", rel=0.05)
 
 
 @pytest.mark.parametrize(("surface", "air", "humidity"), [(5.0, 25.0, 0.65), (8.0, 30.0, 0.6)])
-def test_total_by_the_enthalpy_potential(surface, air, humidity):
+def test_total_by_the_enthalpy_potential(surface, air, humidity, evidence):
     # Merkel's enthalpy potential (Lewis number one): q = h / c_p (h_air - h_saturated); CoolProp
     def enthalpy(celsius, share):
         return HAPropsSI("H", "T", ZERO + celsius, "P", 101_325, "R", share)
@@ -115,7 +132,7 @@ def test_total_by_the_enthalpy_potential(surface, air, humidity):
     total = 5.0 / moist * (enthalpy(air, humidity) - enthalpy(surface, 1.0))
     found = 5.0 * (air - surface) - float(flux(surface, air, humidity))
     # Le^(2/3) = 0.9 instead of one makes the latent half 11 % more
-    assert found == pytest.approx(total, rel=0.08)
+    evidence("enthalpy_potential", "total heat", found, total, unit="W/m2", rel=0.08)
     assert found > total
 
 
@@ -164,7 +181,7 @@ def test_evaporation_is_the_same_law_with_the_other_sign():
     assert taken[3] > 5.0 * 6.0 * (340.15 - 293.15)
 
 
-def test_a_wet_bulb_is_where_evaporation_takes_what_convection_brings():
+def test_a_wet_bulb_is_where_evaporation_takes_what_convection_brings(evidence):
     # the wet-bulb temperature of a ventilated thermometer: psychrolib 2.5
     for air, humidity in ((20.0, 0.5), (30.0, 0.3), (35.0, 0.6)):
         wet = psychrolib.GetTWetBulbFromRelHum(air, humidity, 101_325.0)
@@ -175,7 +192,8 @@ def test_a_wet_bulb_is_where_evaporation_takes_what_convection_brings():
             convection_coefficient=30.0,
         )
         # adiabatic saturation is Lewis number one: Le^(2/3) = 0.9 takes a little over 10 % more
-        assert float(taken) == pytest.approx(30.0 * (air - wet), rel=0.15)
+        brought = 30.0 * (air - wet)
+        evidence("wet_bulb", "heat taken", taken, brought, unit="W/m2", rel=0.15)
 
 
 def test_boiling_has_no_number_and_a_hot_dry_surface_none_to_give():

@@ -118,18 +118,28 @@ def test_broadcasts_and_mixes():
     assert np.isnan(directional_emissivity(np.nan, 0.3, True))
 
 
+def nearest(value, row):
+    return min(max(value, float(row["low"])), float(row["high"]))
+
+
 def test_ratio_against_published_ranges(evidence):
     # emissivity_angular_summary.csv - Incropera section 12.5 ranges; Munis & Marshall 1985
     table = {row["statement"]: row for row in rows("emissivity_angular_summary.csv")}
     coat = table["non-conductors, hemispherical/normal ratio"]
     metal = table["conductors, hemispherical/normal ratio"]
     found = float(hemispherical_to_normal_ratio(0.9, False))
-    assert float(coat["low"]) - 0.005 <= found <= float(coat["high"])
     # normal above hemispherical "by 5 %", near n = 1.5
     glassy = float(table["weakly absorbing glassy materials, hemispherical below normal by"]["low"])
     evidence("munis_marshall", "hemispherical over normal", found, glassy, abs=0.005)
     bright = float(hemispherical_to_normal_ratio(0.05, True))
-    assert float(metal["low"]) <= bright <= float(metal["high"])
+    # against the nearest value of the range; the first is rounded to two digits
+    evidence("incropera_12_5", "coat", found, nearest(found, coat), abs=0.005)
+    evidence("incropera_12_5", "bright metal", bright, nearest(bright, metal), abs=0.0)
+    for start, row in (("dielectric n=1.5", coat), ("metal", metal)):
+        named = [other for other in ANGULAR if other["material"].startswith(start)]
+        for ratio in sorted({float(other["ratio_hemispherical_to_normal"]) for other in named}):
+            evidence.recomputed("incropera_12_5", start, ratio, nearest(ratio, row), abs=0.005,
+                                by="quadrature of Fresnel's relations")  # fmt: skip
     weathered = hemispherical_to_normal_ratio(np.linspace(0.05, 0.9, 30), True)
     assert np.all(np.diff(weathered) < 0)
 

@@ -28,50 +28,56 @@ with (Path(__file__).parents[1] / "published" / "inside_film.csv").open(
 
 
 def printed(example, quantity):
+    """What is printed, with its unit and tolerance, as the evidence takes it."""
     row = PRINTED[example, quantity]
-    value = float(row["published"])
-    return pytest.approx(value, rel=float(row["tolerance_percent"]) / 100)
+    rel = float(row["tolerance_percent"]) / 100
+    return float(row["published"]), {"unit": row["unit"].removeprefix("-"), "rel": rel}
 
 
-def test_air_heated_in_a_tube():
+def test_air_heated_in_a_tube(evidence):
     # Holman, example 6-1: gas law for the density, mu 2.57e-5, k 0.0386, Pr 0.681
     density = 2 * 101_320.0 / (287.0 * 473.0)
     reynolds = density * 10.0 * 0.0254 / 2.57e-5
-    assert reynolds == printed("H6.1", "reynolds")
-    nusselt = float(nusselt_dittus_boelter(14756.0, 0.681, heated=True))
-    assert nusselt == printed("H6.1", "nusselt")
-    assert nusselt * 0.0386 / 0.0254 == printed("H6.1", "coefficient")
+    number, how = printed("H6.1", "reynolds")
+    evidence.recomputed("holman_6_1", "reynolds", reynolds, number, **how, by="formula by hand")
+    ours = float(nusselt_dittus_boelter(14756.0, 0.681, heated=True))
+    theirs = ht.turbulent_Dittus_Boelter(14756.0, 0.681, True, revised=True)
+    for what, factor in (("nusselt", 1.0), ("coefficient", 0.0386 / 0.0254)):
+        number, how = printed("H6.1", what)
+        evidence("holman_6_1", what, ours * factor, number, **how)
+        evidence.recomputed("holman_6_1", what, theirs * factor, number, **how, by="ht")
 
 
-def test_film_in_a_chain_of_resistances():
+def test_film_in_a_chain_of_resistances(evidence):
     # Cengel, example 3-8: steam 320 °C, h 60 in 5 cm; wall and 3 cm of glass wool; h 18; air 5 °C
     film = film_resistance(0.05, 60.0)
-    assert float(film) == printed("D1", "film_resistance")
+    number, how = printed("D1", "film_resistance")
+    evidence("cengel_3_8", "film resistance", film, number, **how)
     others = cylinder_resistance(0.05, 0.055, 80.0) + cylinder_resistance(0.055, 0.115, 0.05)
     loss = 315.0 / (film + others + film_resistance(0.115, 18.0))
     drop = 593.15 - wall_temperature(593.15, loss, film)
-    assert float(drop) == printed("D1", "film_drop")
+    number, how = printed("D1", "film_drop")
+    evidence("cengel_3_8", "film drop", drop, number, **how)
 
 
 @pytest.mark.parametrize("reynolds", [4e3, 1e4, 5e4, 3e5, 2e6])
 @pytest.mark.parametrize("prandtl", [0.7, 1.0, 2.0, 7.0, 90.0])
-def test_turbulent_flow_against_ht(reynolds, prandtl):
+def test_turbulent_flow_against_ht(reynolds, prandtl, evidence):
     friction = float(friction_factor_smooth(reynolds))
-    assert float(nusselt_gnielinski(reynolds, prandtl)) == pytest.approx(
-        ht.turbulent_Gnielinski(reynolds, prandtl, friction), rel=1e-9
-    )
+    found = nusselt_gnielinski(reynolds, prandtl)
+    expected = ht.turbulent_Gnielinski(reynolds, prandtl, friction)
+    evidence("ht_inside", "Gnielinski", found, expected, rel=1e-9)
     for heated in (True, False):
-        assert float(nusselt_dittus_boelter(reynolds, prandtl, heated=heated)) == pytest.approx(
-            ht.turbulent_Dittus_Boelter(reynolds, prandtl, heated, revised=True), rel=1e-9
-        )
+        found = nusselt_dittus_boelter(reynolds, prandtl, heated=heated)
+        expected = ht.turbulent_Dittus_Boelter(reynolds, prandtl, heated, revised=True)
+        evidence("ht_inside", "Dittus and Boelter", found, expected, rel=1e-9)
 
 
 @pytest.mark.parametrize("reynolds", [1e4, 1e5, 1e6, 5e6])
-def test_friction_against_fluids(reynolds):
+def test_friction_against_fluids(reynolds, evidence):
     # Petukhov's form against Colebrook's equation for a smooth wall
-    assert float(friction_factor_smooth(reynolds)) == pytest.approx(
-        fluids.friction_factor(reynolds, eD=0.0), rel=0.02
-    )
+    found, expected = friction_factor_smooth(reynolds), fluids.friction_factor(reynolds, eD=0.0)
+    evidence("fluids_friction", "friction factor", found, expected, rel=0.02)
 
 
 @pytest.mark.parametrize("reynolds", [1e4, 1e5, 1e6])

@@ -339,7 +339,10 @@ def test_sensitivities(row, evidence):
         rise = surface(**{name: settings[name] + step}) - surface(**{name: settings[name] - step})
         expected = float(row[column])
         found, what = rise / (2 * step) * unit, f"sensitivity to {name.replace('_', ' ')}"
-        evidence("measurement_equation", what, found, expected, unit="K", rel=2e-3, abs=2e-4)
+        # derivatives of some kelvins; one of them is zero
+        evidence(
+            "measurement_equation", what, found, expected, unit="K", rel=2e-3, abs=2e-4, scale=1
+        )
 
 
 @pytest.mark.parametrize("row", [r for r in CASES if float(r["tau_atm"]) == 1.0])

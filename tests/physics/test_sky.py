@@ -25,32 +25,47 @@ with (Path(__file__).parents[1] / "published" / "sky_temperature.csv").open(
     STATED = {row["id"]: row for row in csv.DictReader(file)}
 
 
+def nearest(found, row):
+    return min(max(found, float(row["low"])), float(row["high"]))
+
+
+def brutsaert(air, vapour):
+    """Clear sky by vapour pressure in hPa: Water Resources Research 11 (1975) 742."""
+    return air * (1.24 * (vapour / air) ** (1 / 7)) ** 0.25
+
+
 @pytest.mark.parametrize("key", ["hot_moist", "cold_dry"])
-def test_depression_lies_where_the_textbook_says(key):
+def test_depression_lies_where_the_textbook_says(key, evidence):
     # Duffie and Beckman, section 3.9: 5 K in a hot moist to 30 K in a cold dry climate
     row = STATED[key]
     air, dew = float(row["air_C"]) + ZERO, float(row["dew_point_C"]) + ZERO
-    assert float(row["low"]) <= air - float(sky_temperature(air, dew)) <= float(row["high"])
+    found = air - float(sky_temperature(air, dew))
+    evidence("duffie_beckman", key.replace("_", " "), found, nearest(found, row), unit="K", abs=0.0)
 
 
-def test_a_cold_clear_sky_is_about_230_K():
+def test_a_cold_clear_sky_is_about_230_K(evidence):
     # Incropera et al., environmental radiation: 230 K under a cold, clear sky
     row = STATED["coldest"]
     found = float(sky_temperature(float(row["air_C"]) + ZERO, float(row["dew_point_C"]) + ZERO))
-    assert float(row["low"]) <= found <= float(row["high"])
+    evidence("incropera_cold_sky", "sky", found, nearest(found, row), unit="K", abs=0.0)
+    other = 0.0552 * (float(row["air_C"]) + ZERO) ** 1.5
+    evidence.recomputed("incropera_cold_sky", "sky", other, nearest(other, row), unit="K", abs=0.0,
+                        by="Swinbank's relation")  # fmt: skip
 
 
 @pytest.mark.parametrize("air_C", [5.0, 10.0, 15.0, 20.0, 25.0])
-def test_three_relations_agree_within_their_scatter(air_C):
+def test_three_relations_agree_within_their_scatter(air_C, evidence):
     # Swinbank (1963) by air temperature; Brutsaert, Water Resources Research 11 (1975) 742-744:
     # eps = 1.24 (e/T)^(1/7), e in hPa; humidity usual where Swinbank measured
     air = air_C + ZERO
     sky = float(sky_temperature(air, dew_point(air, 0.6)))
     vapour = float(vapour_pressure(air, 0.6)) / 100.0
-    brutsaert = air * (1.24 * (vapour / air) ** (1 / 7)) ** 0.25
     u = float(sky_temperature_uncertainty(air, dew_point(air, 0.6)))
-    assert sky == pytest.approx(brutsaert, abs=2 * u)
-    assert sky == pytest.approx(float(clear_sky_temperature_swinbank(air)), abs=2 * u)
+    for what, other in (
+        ("Brutsaert", brutsaert(air, vapour)),
+        ("Swinbank", clear_sky_temperature_swinbank(air)),
+    ):
+        evidence("sky_relations", what, sky, other, unit="K", abs=2 * u)
 
 
 def test_against_the_night_relation_of_another_paper():

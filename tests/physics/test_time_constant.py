@@ -28,7 +28,7 @@ WOOL = {"conductivity": 0.05, "volumetric_heat_capacity": 84e3, "surface_coeffic
 
 
 @pytest.mark.parametrize("row", ROOTS, ids=lambda row: row["id"])
-def test_first_roots_of_the_book(row):
+def test_first_roots_of_the_book(row, evidence):
     # Carslaw and Jaeger, appendix IV; each recomputed from its own equation with mpmath
     parameter, printed = float(row["parameter"]), float(row["root"])
     half = float(row["half_last_digit"])
@@ -48,7 +48,8 @@ def test_first_roots_of_the_book(row):
             printed,
         )
         tolerance = half
-    assert float(exact) == pytest.approx(printed, abs=half)
+    what = f"{row['kind']} {row['parameter']}"
+    evidence.recomputed("carslaw_jaeger", what, float(exact), printed, abs=half, by="mpmath")
     thickness = (outer - inner) / 2
     response = lagging_step_response(
         inner,
@@ -57,7 +58,8 @@ def test_first_roots_of_the_book(row):
         volumetric_heat_capacity=1.0,
         surface_coefficient=biot / thickness,
     )
-    assert 1.0 / np.sqrt(float(response.time_constant)) == pytest.approx(printed, abs=tolerance)
+    found = 1.0 / np.sqrt(float(response.time_constant))
+    evidence("carslaw_jaeger", what, found, printed, abs=tolerance)
 
 
 def finite_elements(edges, conductivities, capacities, coefficient, skin):
@@ -86,24 +88,26 @@ def finite_elements(edges, conductivities, capacities, coefficient, skin):
 
 @pytest.mark.parametrize("skin", [0.0, 2900.0, 40e3])
 @pytest.mark.parametrize(("inner", "outer"), [(0.0337, 0.1337), (0.114, 0.214), (0.5, 0.56)])
-def test_one_material_against_finite_elements(inner, outer, skin):
+def test_one_material_against_finite_elements(inner, outer, skin, evidence):
     response = lagging_step_response(inner, outer, **WOOL, surface_heat_capacity=skin)
     expected = finite_elements(np.array([inner, outer]) / 2, [0.05], [84e3], 8.0, skin)
-    assert float(response.time_constant) == pytest.approx(expected, rel=1e-6)
+    found = response.time_constant
+    evidence("fem_time_constant", "one material", found, expected, unit="s", rel=1e-6)
 
 
-def test_two_layers_against_finite_elements():
+def test_two_layers_against_finite_elements(evidence):
     # calcium silicate under mineral wool, with a steel sheet
     layers = ([0.06, 0.08], [240e3, 84e3])
     found = layered_step_response(
         [0.168, 0.248, 0.328], *layers, surface_coefficient=9.0, surface_heat_capacity=2900.0
     )
     expected = finite_elements(np.array([0.084, 0.124, 0.164]), *layers, 9.0, 2900.0)
-    assert float(found.time_constant) == pytest.approx(expected, rel=1e-3)
+    constant = found.time_constant
+    evidence("fem_time_constant", "two layers", constant, expected, unit="s", rel=1e-3)
 
 
 @pytest.mark.parametrize("skin", [0.0, 2900.0])
-def test_the_whole_step_against_a_network_of_many_cells(skin):
+def test_the_whole_step_against_a_network_of_many_cells(skin, evidence):
     # 200 cells of equal thickness, the matrix exponential of it: no modes are used
     inner, outer, cells = 0.057, 0.107, 200
     faces = np.linspace(inner, outer, cells + 1)
@@ -126,7 +130,9 @@ def test_the_whole_step_against_a_network_of_many_cells(skin):
     for share in (0.2, 0.05, 0.01):
         time = float(time_until_within(response, share))
         now = steady - expm(matrix / capacity[:, None] * time) @ steady
-        assert 1.0 - now[-1] / steady[-1] == pytest.approx(share, rel=0.03)
+        # ours is the share asked for, theirs what the network still lacks by then
+        left = 1.0 - now[-1] / steady[-1]
+        evidence("cell_network", "share still to come", share, left, abs=0.03 * share)
 
 
 def test_layers_of_one_material_are_one_layer():
