@@ -14,6 +14,7 @@ __all__ = [
     "nusselt_kuehn_goldstein",
     "nusselt_morgan",
     "rayleigh_number",
+    "slenderness_factor_popiel",
 ]
 
 # Upper limits of Ra, factor and exponent of each of Morgan's ranges.
@@ -178,6 +179,37 @@ def nusselt_kuehn_goldstein(rayleigh: FloatLike, prandtl: FloatLike) -> FloatArr
     turbulent = 0.1 * np.cbrt(number)
     layer = (laminar**15 + turbulent**15) ** (1 / 15)
     return np.asarray(2.0 / np.log1p(2.0 / layer))
+
+
+def slenderness_factor_popiel(
+    grashof: FloatLike, prandtl: FloatLike, *, slenderness: FloatLike
+) -> FloatArray:
+    """Nusselt number of a slim vertical cylinder over that of a vertical face.
+
+    Parameters
+    ----------
+    grashof : float or array
+        On the height, laminar; used beyond, it errs to the high side. [-]
+    prandtl : float or array
+        0.01 to 100. [-]
+    slenderness : float or array
+        Height over diameter. [-]
+
+    Returns
+    -------
+    array
+        1 and more. [-]
+
+    References
+    ----------
+    .. [1] Popiel, Wojtkowiak, Bober, *Laminar free convective heat transfer from isothermal
+       vertical slender cylinder*, Experimental Thermal and Fluid Science 32 (2007) 607-613.
+    """
+    air = np.asarray(prandtl, dtype=np.float64)
+    factor = 0.0571322 + 0.20305 * air**-0.43
+    exponent = 0.9165 - 0.0043 * np.sqrt(air) + 0.01333 * np.log(air) + 0.0004809 / air
+    thickness = np.sqrt(32.0) * np.asarray(grashof, dtype=np.float64) ** -0.25 * slenderness
+    return np.asarray(1.0 + factor * thickness**exponent)
 
 
 def _sixth_root(rayleigh: FloatLike) -> FloatArray:
