@@ -6,8 +6,8 @@ import numpy as np
 
 from cladwatt.assess import _distance, _lens_image, _observe, _sound_regions
 from cladwatt.errors import InputError
-from cladwatt.inverse.conditions import FrameDraws, draw_frame
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.frame_draws import FrameDraws, draw_frame
 from cladwatt.inverse.observe import Observed
 from cladwatt.inverse.references import read_references, with_frame_references
 from cladwatt.inverse.seen import FrameImage
@@ -95,7 +95,7 @@ class _Scene:
     ) -> None:
         self.survey, self.entry, self.regions = survey, entry, regions
         self.image = _lens_image(survey, entry, frame)
-        self.readings = read_references(self.image.lens_temperature, regions)
+        self.readings = read_references(self.image.lens_temperature, regions, survey.defaults)
         pipes = [one for one in regions if one.role == "pipe"]
         self.distance = _distance(survey, frame, pipes)
         self.masks = {one.id: region_mask(one, frame.temperature.shape) for one in regions}
@@ -118,8 +118,9 @@ class _Scene:
     def _frame(self, book: DrawBook) -> FrameDraws | None:
         survey, entry = self.survey, self.entry
         return draw_frame(
-            book, entry.id, entry.conditions, survey.camera, survey.site, self.distance
-        )
+            book, entry.id, entry.conditions, survey.camera, survey.site, self.distance,
+            survey.defaults["distance"],
+        )  # fmt: skip
 
     def _narrowed(
         self, nominal: FrameDraws, region: Region, by_reference: dict[str, str]

@@ -6,7 +6,8 @@ import numpy as np
 
 from cladwatt.explain.nominal import NominalRegion
 from cladwatt.explain.steps import Pad, Section, median_of, source_of
-from cladwatt.inverse.conditions import FrameDraws, LineDraws
+from cladwatt.inverse.frame_draws import FrameDraws
+from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.physics.atmosphere import _coefficients, air_path_transmission
 from cladwatt.physics.band import Band
 from cladwatt.physics.emissivity import (

@@ -17,9 +17,9 @@ from cladwatt.explain.steps import BandOfAngle, Explanation, Pad, Reported, Sect
 from cladwatt.explain.surface_steps import exchange_steps, surface_section
 from cladwatt.inverse.cautions import missing_of
 from cladwatt.inverse.face import surface_temperature_draws
+from cladwatt.inverse.frame_draws import band_of
 from cladwatt.inverse.hidden_side import HiddenSide, evenness_of
 from cladwatt.inverse.observe import Balance, Observed
-from cladwatt.physics.band import Band
 from cladwatt.quantities import Remark
 from cladwatt.results.assessment import Settings
 from cladwatt.survey.region import Region
@@ -105,7 +105,7 @@ def _some(pipes: dict[str, Region]) -> str:
 def _without_air(survey: Survey, region: Region, nominal: NominalRegion) -> Explanation:
     """Return what can be said where no air temperature is known: the settings, no more."""
     nothing = math.nan
-    band = Band.rectangular(*survey.camera.band)
+    band = band_of(survey.camera)
     return Explanation(
         survey=survey.name,
         region_id=region.id,

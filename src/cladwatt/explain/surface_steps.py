@@ -5,7 +5,8 @@ import re
 import numpy as np
 
 from cladwatt.explain.steps import Pad, Section, median_of, source_of
-from cladwatt.inverse.conditions import FrameDraws, LineDraws
+from cladwatt.inverse.frame_draws import FrameDraws
+from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.seen import Seen
 from cladwatt.physics.air import (
     _CONDUCTIVITY,
