@@ -19,19 +19,14 @@ PAGE = Path(__file__).parent.parent / "src/cladwatt/guide/inputs.md"
 
 RECORDED_ONLY = frozenset(
     {
-        "wind_angle", "roll", "sun_last_24h", "tracer_clock_position",
+        "wind_angle", "roll", "tracer_clock_position",
         "tracer_temperature", "tracer_power", "pipe_material", "latitude", "longitude", "lagged",
-        "access", "cloud_cover", "surface_wet", "inside_film", "flow", "specific_heat",
-        "supports_allowance", "condition", "inner_emissivity", "outer_emissivity",
+        "access", "condition", "lagging_condition",
     }
 )  # fmt: skip
 """Read, checked and kept, but no number of this version depends on them."""
 
-NOT_TAKEN = frozenset(
-    {
-        "distance", "tape_emissivity", "foil_emissivity", "water_film_emissivity",
-    }
-)  # fmt: skip
+NOT_TAKEN = frozenset({"water_film_emissivity"})
 """Defaults that nothing looks up; the key list or the method says what holds."""
 
 HEAD = """\

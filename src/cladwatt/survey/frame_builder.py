@@ -1,6 +1,5 @@
 """Site, camera, settings and conditions from their tables, and one frame from its own."""
 
-import math
 from dataclasses import replace
 from datetime import date, datetime, timedelta, timezone, tzinfo
 from typing import Literal
@@ -17,6 +16,8 @@ from cladwatt.survey.model import (
     Site,
     Window,
 )
+from cladwatt.survey.response_file import Response, half_response_band
+from cladwatt.survey.surroundings_builder import build_surroundings
 from cladwatt.survey.table_reader import Table
 
 __all__ = [
@@ -28,9 +29,6 @@ __all__ = [
     "zone_of",
     "zoned",
 ]
-
-_AS_AIR = "as the air"
-"""Begins the source of a default that follows the air temperature."""
 
 
 def build_site(table: Table, tables: MaterialTables, faults: FaultList) -> Site:
@@ -62,8 +60,13 @@ def build_site(table: Table, tables: MaterialTables, faults: FaultList) -> Site:
     )
 
 
-def build_camera(table: Table, tables: MaterialTables, faults: FaultList) -> Camera:
-    """Return the camera; what is not declared of band and accuracy comes from the tables."""
+def build_camera(
+    table: Table, tables: MaterialTables, faults: FaultList, response: Response | None = None
+) -> Camera:
+    """Return the camera; what is not declared of band and accuracy comes from the tables.
+
+    `response` is its spectral response where it names the file of one.
+    """
     lower, upper = table.number("band_lower"), table.number("band_upper")
     if (lower is None) != (upper is None):
         name = "band_lower" if lower is not None else "band_upper"
@@ -81,6 +84,9 @@ def build_camera(table: Table, tables: MaterialTables, faults: FaultList) -> Cam
             f"the band runs from {lower * 1e6:g} to {upper * 1e6:g} µm",
             "expected band_lower < band_upper",
         )  # fmt: skip
+    if response is not None:
+        lower, upper = half_response_band(response)
+        band_source = f"declared: {table.text('spectral_response')}, where it passes a half"
     calibrated = table.get("calibration_date")
     spot = table.number("spot_pixels")
     return Camera(
@@ -89,6 +95,7 @@ def build_camera(table: Table, tables: MaterialTables, faults: FaultList) -> Cam
         calibration_date=calibrated if isinstance(calibrated, date) else None,
         band=(lower, upper),
         band_source=band_source,
+        response=response,
         field_of_view_deg=table.number("field_of_view"),
         noise=table.quantity("noise"),
         accuracy=_accuracy(table, tables),
@@ -179,36 +186,54 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
 
     Indoors the surroundings are taken at the air's temperature with 2 K of their own
     uncertainty, and the wind as a draught. Outdoors, or where neither is said, there is no
-    default wind and the surroundings carry 10 K; a declared sky temperature takes the place of
-    the default.
+    default wind and the surroundings carry 10 K; a sky temperature, declared or by the clouds,
+    or surroundings in pieces take the place of the default.
     """
     indoors = table.flag("indoors")
     _ask_outdoors(table, faults)
     air = table.quantity("air_temperature")
-    surroundings = _surroundings(table, air, tables)
+    humidity = _default(table, "relative_humidity", "relative_humidity", tables)
+    around = build_surroundings(table, air, humidity, tables, faults)
     return Conditions(
         air_temperature=air,
-        surroundings_temperature=surroundings,
-        reflected_temperature=_reflected(table, air, surroundings, tables),
-        relative_humidity=_default(table, "relative_humidity", "relative_humidity", tables),
+        surroundings_temperature=around.temperature,
+        surroundings_pieces=around.pieces,
+        reflected_temperature=around.reflected,
+        relative_humidity=humidity,
         distance=table.quantity("distance"),
         atmosphere_transmission=table.quantity("atmosphere_transmission"),
         wind_speed=(
             _default(table, "wind_speed", "air_speed_indoors", tables)
             if indoors
-            else table.quantity("wind_speed")
+            else _wind(table, tables)
         ),
         wind_angle_deg=table.quantity("wind_angle"),
         indoors=indoors,
         sky_band_temperature=table.quantity("sky_band_temperature"),
-        sky_total_temperature=table.quantity("sky_total_temperature"),
-        sky_view_factor=_sky_view(table),
+        sky_total_temperature=around.sky_total,
+        sky_view_factor=around.sky_view,
+        cloud_cover=table.quantity("cloud_cover"),
         solar_irradiance=table.quantity("solar_irradiance"),
         sun_on_pipe=table.flag("sun_on_pipe"),
         rain_last_24h=table.flag("rain_last_24h"),
         sun_last_24h=table.flag("sun_last_24h"),
+        surface_wet=table.flag("surface_wet"),
+        sheltered=table.flag("sheltered"),
         roll_deg=table.number("roll") or 0.0,
         window=_window(table, faults),
+    )
+
+
+def _wind(table: Table, tables: MaterialTables) -> Quantity | None:
+    """Return the declared wind; a default u is wider where the pipe is sheltered."""
+    wind = table.quantity("wind_speed")
+    if wind is None or not table.flag("sheltered") or table.written["wind_speed"].u is not None:
+        return wind
+    share = default_quantity("u_relative_wind_speed_sheltered", tables)
+    return replace(
+        wind,
+        u=max(wind.u, share.value * wind.value),
+        source=f"declared; u by default, sheltered: {share.source}",
     )
 
 
@@ -233,60 +258,6 @@ def _default(table: Table, name: str, default: str, tables: MaterialTables) -> Q
     if table.has(name):
         return table.quantity(name)
     return default_quantity(default, tables)
-
-
-def _as_air(table: Table, air: Quantity | None, tables: MaterialTables) -> Quantity | None:
-    """Return the air temperature with the uncertainty of the surroundings alone."""
-    if air is None:
-        return None
-    where = "indoors" if table.flag("indoors") else "outdoors"
-    difference = default_quantity(f"surroundings_minus_air_{where}", tables)
-    return Quantity(
-        air.value + difference.value,
-        difference.u,
-        lower=air.value + min(difference.lower, -5 * difference.u),
-        upper=air.value + max(difference.upper, 5 * difference.u),
-        source=f"{_AS_AIR}, u {difference.u:g} K {where}: {difference.source}",
-        confidence="low",
-    )
-
-
-def _surroundings(table: Table, air: Quantity | None, tables: MaterialTables) -> Quantity | None:
-    if table.has("surroundings_temperature"):
-        return table.quantity("surroundings_temperature") or _as_air(table, air, tables)
-    if table.has("sky_total_temperature") and not table.is_unknown("sky_total_temperature"):
-        return None
-    return _as_air(table, air, tables)
-
-
-def _reflected(
-    table: Table, air: Quantity | None, surroundings: Quantity | None, tables: MaterialTables
-) -> Quantity | None:
-    if table.has("reflected_temperature") and not table.is_unknown("reflected_temperature"):
-        return table.quantity("reflected_temperature")
-    if table.has("sky_band_temperature") and not table.is_unknown("sky_band_temperature"):
-        return None
-    if table.flag("indoors") and surroundings is not None and not surroundings.is_default:
-        return replace(
-            surroundings,
-            u=math.hypot(surroundings.u, 2.0),
-            source="as the declared surroundings, u 2 K more: common practice, no source",
-            confidence="low",
-        )
-    return _as_air(table, air, tables)
-
-
-def _sky_view(table: Table) -> Quantity | None:
-    if table.has("sky_view_factor"):
-        return table.quantity("sky_view_factor")
-    if not (table.has("sky_band_temperature") or table.has("sky_total_temperature")):
-        return None
-    return Quantity(
-        0.5, 0.15, lower=0.0, upper=1.0,
-        source="a level pipe in the open sees the sky from half round: geometry; u: common"
-        " practice, no source",
-        confidence="low",
-    )  # fmt: skip
 
 
 def _window(table: Table, faults: FaultList) -> Window | None:

@@ -20,6 +20,7 @@ from cladwatt.survey.frame_builder import (
 from cladwatt.survey.keys import CAMERA_PREFIX, UNKNOWN_WORD, section
 from cladwatt.survey.line_list import Entry, entries_of_csv, repeated
 from cladwatt.survey.model import FrameEntry
+from cladwatt.survey.surroundings_builder import read_pieces, without_rivals
 from cladwatt.survey.survey_source import Source
 from cladwatt.survey.table_reader import Table, read_table
 from cladwatt.survey.values import Problem
@@ -172,6 +173,7 @@ def _read_entry(entry: Entry, reader: _Reader) -> _Read:
         partial=True,
         defaults=reader.tables.defaults,
     )
+    table = read_pieces(table, reader.faults)
     if not is_usable_id(identity):
         reader.faults.add(
             place, "id", f"the frame's id is {shown(identity)}",
@@ -226,7 +228,7 @@ def _build(one: _Read, reader: _Reader) -> FrameEntry | None:
     recording = build_recording(
         table.over(reader.wide["recording"], prefix=CAMERA_PREFIX), faults, prefix=CAMERA_PREFIX
     )
-    merged = table.over(reader.wide["conditions"])
+    merged = table.over(without_rivals(table, reader.wide["conditions"]))
     _check_lone_u(merged, reader)
     conditions = build_conditions(merged, reader.tables, faults)
     frame_format = build_format(table.over(reader.wide["format"]), faults)

@@ -524,6 +524,10 @@ LINE = (
         default="the specified conductivity holds at every temperature", example="50",
     ),
     Key(
+        "lagging_condition", "choice", "As found: dry, wet or frozen",
+        choices=("dry", "wet", "ice"), default="dry", example='"dry"',
+    ),
+    Key(
         "layers", "layers", "Several layers from the inside out, instead of the keys above",
         example='[{ material = "mineral_wool", thickness_mm = 50 }]',
     ),
@@ -599,7 +603,9 @@ LINE = (
         "tracer_clock_position", "Where the tracer lies, 12 is up, looking along the line", "none",
         lower=0.0, upper=12.0, example="6",
     ),
-    _temperature("tracer_temperature", "Of the tracer", u=5.0, example="120.0"),
+    _temperature(
+        "tracer_temperature", "Of the tracer", u=5.0, example="120.0", lower=230.0, upper=900.0
+    ),
     Key(
         "tracer_power", "quantity", "Of an electric tracer", "power per length", 0.0, 500.0,
         u_relative=0.1, example="20",

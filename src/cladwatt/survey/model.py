@@ -23,6 +23,7 @@ __all__ = [
     "Line",
     "Recording",
     "Site",
+    "SurroundingsKind",
     "SurroundingsPiece",
     "Tracing",
     "Window",
@@ -106,11 +107,14 @@ class Recording:
     """[K]"""
 
 
+SurroundingsKind = Literal["sky", "ground", "wall", "roof", "floor", "neighbour", "other"]
+
+
 @dataclass(frozen=True)
 class SurroundingsPiece:
     """One part of what the pipe exchanges radiation with, taken as black."""
 
-    what: Literal["sky", "ground", "wall", "roof", "floor", "neighbour", "other"]
+    what: SurroundingsKind
     temperature: Quantity
     """[K]"""
     view_factor: Quantity

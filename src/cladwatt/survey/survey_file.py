@@ -13,7 +13,9 @@ from cladwatt.survey.frame_list import read_frames
 from cladwatt.survey.keys import SECTIONS, TOP_LEVEL, section
 from cladwatt.survey.line_builder import build_line
 from cladwatt.survey.line_list import Entry, line_entries_of_csv, repeated
-from cladwatt.survey.model import Line
+from cladwatt.survey.model import Line, Site
+from cladwatt.survey.response_file import read_response
+from cladwatt.survey.surroundings_builder import read_pieces
 from cladwatt.survey.survey import Survey
 from cladwatt.survey.survey_checks import check_dates, check_temperatures
 from cladwatt.survey.survey_regions import read_all_regions
@@ -124,14 +126,17 @@ class _Document:
         head = self._section("survey")
         site_table = self._section("site")
         site = build_site(site_table, self.tables, self.faults)
-        camera = build_camera(self._section("camera"), self.tables, self.faults)
+        described = self._section("camera")
+        response = read_response(self.source, described, self.faults)
+        camera = build_camera(described, self.tables, self.faults, response)
         wide = {
             name: self._section(name, ask=False) for name in ("recording", "conditions", "format")
         }
+        wide["conditions"] = read_pieces(wide["conditions"], self.faults)
         frames = read_frames(
             self._entries("frame"), head, site_table, wide, self.source, self.tables, self.faults
         )
-        lines, dropped, written = self._lines(head)
+        lines, dropped, written = self._lines(head, site)
         usable = {frame.id: frame for frame in frames.entries}
         regions = read_all_regions(
             self.source, frames.entries, frames.dropped, lines, dropped, self.tables, self.faults
@@ -211,7 +216,9 @@ class _Document:
             for index, item in enumerate(raw)
         ]
 
-    def _lines(self, head: Table) -> tuple[dict[str, Line], dict[str, str], dict[str, Table]]:
+    def _lines(
+        self, head: Table, site: Site
+    ) -> tuple[dict[str, Line], dict[str, str], dict[str, Table]]:
         """Return the usable lines, why others were dropped, and the tables of the usable."""
         entries = self._entries("line")
         entries += self._listed(head)
@@ -226,7 +233,7 @@ class _Document:
                 self._tag_twice(table, [other for other, _ in tables])
                 dropped[tag] = "its tag stands in the line list more than once"
                 continue
-            line = build_line(table, self.tables, self.faults)
+            line = build_line(table, self.tables, self.faults, site_pressure=site.pressure)
             if line is None or not sound or not tag:
                 dropped[tag] = "the line list is at fault there"
                 continue
@@ -271,7 +278,8 @@ class _Document:
     def _ask_of_line(self, table: Table) -> None:
         """Ask for what no default may replace, with what makes it needless left aside."""
         names = []
-        if not table.has("fluid_temperature") and not table.has("wall_temperature"):
+        inside = ("fluid_temperature", "wall_temperature", "steam_pressure")
+        if not any(table.has(name) for name in inside):
             names.append("fluid_temperature")
         if not table.has("layers") and table.text("lagging_material").lower() != "none":
             if not table.has("lagging_material") and not table.has("lagging_conductivity"):
