@@ -29,49 +29,65 @@ def rows(quantity):
 
 
 @rows("factor")
-def test_conversion_factors_of_the_standard(row):
+def test_conversion_factors_of_the_standard(row, evidence):
     # ISO 10456, table 4
     found = float(moisture_conversion_factor(float(row["moisture"]), float(row["coefficient"])))
-    assert found == pytest.approx(float(row["printed"]), abs=float(row["tolerance"]))
+    printed, allowed = float(row["printed"]), float(row["tolerance"])
+    evidence("iso_10456", row["id"].replace("_", " "), found, printed, abs=allowed)
 
 
 @rows("ratio")
-def test_a_published_multiplier_lies_between_the_bounds(row):
+def test_a_published_multiplier_lies_between_the_bounds(row, evidence):
     dry, moisture = float(row["dry_conductivity_W_per_m_K"]), float(row["moisture"])
     bounds = moist_conductivity_bounds(dry, moisture, 320.0)
-    assert float(bounds.low) < dry * float(row["printed"]) < float(bounds.high)
+    printed = dry * float(row["printed"])
+    assert float(bounds.low) < printed < float(bounds.high)
+    inside = min(max(printed, float(bounds.low)), float(bounds.high))
+    evidence("moist_article", "conductivity", inside, printed, unit="W/(m K)", abs=0.0)
     # and so does the standard's factor for mineral wool
     assert bounds.low < dry * moisture_conversion_factor(moisture, 4.0) < bounds.high
 
 
 @rows("saturated_ratio")
-def test_wetted_lagging_stays_below_pores_full_of_water(row):
+def test_wetted_lagging_stays_below_pores_full_of_water(row, evidence):
     dry = float(row["dry_conductivity_W_per_m_K"])
     bounds = moist_conductivity_bounds(dry, float(row["moisture"]), 298.15)
-    assert dry < dry * float(row["printed"]) < float(bounds.high)
+    printed = dry * float(row["printed"])
+    assert dry < printed < float(bounds.high)
+    check = "gusyachkin" if row["source"].startswith("Gusyachkin") else "energies_15_2626"
+    below = min(printed, float(bounds.high))
+    evidence(check, "conductivity", below, printed, unit="W/(m K)", abs=0.0)
 
 
 @pytest.mark.parametrize("kelvin", [274.0, 283.15, 298.15, 323.15, 353.15, 370.0])
-def test_water_against_two_libraries(kelvin):
+def test_water_against_two_libraries(kelvin, evidence):
     # the reference data are stated to hold 0.7 %
     found = float(water_conductivity(kelvin))
-    assert found == pytest.approx(PropsSI("L", "T", kelvin, "P", 101_325, "Water"), rel=7e-3)
-    assert found == pytest.approx(IAPWS95(T=kelvin, P=0.101325).k, rel=7e-3)
+    for check, expected in (
+        ("coolprop_water", PropsSI("L", "T", kelvin, "P", 101_325, "Water")),
+        ("iapws_water", IAPWS95(T=kelvin, P=0.101325).k),
+    ):
+        evidence(check, "conductivity", found, expected, unit="W/(m K)", rel=7e-3)
 
 
 @rows("ice_conductivity")
-def test_ice_at_the_melting_point(row):
+def test_ice_at_the_melting_point(row, evidence):
     # sources differ by a tenth, so no tighter
-    assert float(ice_conductivity(273.15)) == pytest.approx(
-        float(row["printed"]), abs=float(row["tolerance"])
-    )
+    printed, how = float(row["printed"]), {"unit": "W/(m K)", "abs": float(row["tolerance"])}
+    evidence("ashrae_ice", "conductivity", ice_conductivity(273.15), printed, **how)
+    evidence.recomputed("ashrae_ice", "conductivity", fukusako(0.0), printed, **how,
+                        by="Fukusako's relation")  # fmt: skip
+
+
+def fukusako(celsius):
+    """Int. J. Thermophysics 11 (1990) 353-372."""
+    return 1.16 * (1.91 - 8.66e-3 * celsius + 2.97e-5 * celsius**2)
 
 
 @pytest.mark.parametrize("celsius", [-1.0, -10.0, -20.0, -40.0])
-def test_ice_against_a_second_relation(celsius):
-    # Fukusako, Int. J. Thermophysics 11 (1990) 353-372: 1.16 (1.91 - 8.66e-3 t + 2.97e-5 t^2)
-    other = 1.16 * (1.91 - 8.66e-3 * celsius + 2.97e-5 * celsius**2)
-    assert float(ice_conductivity(273.15 + celsius)) == pytest.approx(other, rel=0.1)
+def test_ice_against_a_second_relation(celsius, evidence):
+    found, other = ice_conductivity(273.15 + celsius), fukusako(celsius)
+    evidence("fukusako_ice", "conductivity", found, other, unit="W/(m K)", rel=0.1)
 
 
 def test_bounds_meet_where_there_is_one_material():

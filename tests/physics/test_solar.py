@@ -39,7 +39,7 @@ def unix(times):
 
 
 @pytest.mark.parametrize("row", EXAMPLES, ids=lambda row: row["id"])
-def test_textbook_positions(row):
+def test_textbook_positions(row, evidence):
     # Duffie and Beckman, example 1.6.2; half the last digit, and for the azimuth what the book's
     # rounded zenith does to it
     angles = {key: float(row[key]) for key in ("latitude_deg", "declination_deg", "hour_angle_deg")}
@@ -57,60 +57,67 @@ def test_textbook_positions(row):
             np.rad2deg(np.arctan2(west, to_south)),
         ),
     }[row["quantity"]]
-    printed = pytest.approx(float(row["value_deg"]), abs=1.001 * float(row["tolerance_deg"]))
-    assert found == printed
-    assert other == printed
+    printed, what = float(row["value_deg"]), row["quantity"].replace("_", " ")
+    how = {"unit": "°", "abs": 1.001 * float(row["tolerance_deg"])}
+    evidence("duffie_beckman_1_6_2", what, found, printed, **how)
+    evidence.recomputed("duffie_beckman_1_6_2", what, other, printed, **how, by="vectors by hand")
 
 
 @pytest.mark.parametrize(("latitude", "longitude"), PLACES)
 @pytest.mark.parametrize("year", [1995, 2024, 2045])
-def test_against_pvlib(latitude, longitude, year):
+def test_against_pvlib(latitude, longitude, year, evidence):
     # NREL's solar position algorithm in pvlib, good to 0.0003 degrees
     times = pd.date_range(f"{year}-01-03", f"{year}-12-28", periods=400, tz="UTC")
     expected = pvlib.solarposition.get_solarposition(times, latitude, longitude)
     found = sun_position(unix(times), latitude_deg=latitude, longitude_deg=longitude)
-    assert found.elevation_deg == pytest.approx(expected["elevation"].to_numpy(), abs=0.05)
+    elevation = expected["elevation"].to_numpy()
+    how = {"unit": "°", "abs": 0.05, "scale": 90.0}
+    evidence("pvlib_sun", "elevation", found.elevation_deg, elevation, **how)
     turn = found.azimuth_deg - expected["azimuth"].to_numpy()
     across = (np.mod(turn + 180.0, 360.0) - 180.0) * np.cos(np.deg2rad(found.elevation_deg))
-    assert np.max(np.abs(across)) < 0.05
+    evidence("pvlib_sun", "across", across, np.zeros_like(across), **how)
 
 
 @pytest.mark.parametrize(("latitude", "longitude"), PLACES)
-def test_against_fluids(latitude, longitude):
+def test_against_fluids(latitude, longitude, evidence):
     for moment in (datetime(2023, 6, 21, 15, 30, tzinfo=UTC), datetime(2026, 2, 1, 3, tzinfo=UTC)):
         other = fluids.solar_position(moment, latitude, longitude)
         found = sun_position(moment.timestamp(), latitude_deg=latitude, longitude_deg=longitude)
-        assert float(found.elevation_deg) == pytest.approx(other[3], abs=0.05)
-        assert float(found.azimuth_deg) == pytest.approx(other[4], abs=0.05)
+        how = {"unit": "°", "abs": 0.05, "scale": 90.0}
+        evidence("fluids_sun", "elevation", found.elevation_deg, other[3], **how)
+        evidence("fluids_sun", "azimuth", found.azimuth_deg, other[4], **how)
 
 
-def test_irradiance_outside_the_atmosphere_against_pvlib():
+def test_irradiance_outside_the_atmosphere_against_pvlib(evidence):
     # leap years shift the date by less than 1.3 days, 0.06 % a day at most
     times = pd.date_range("2025-01-01T12", "2025-12-31T12", freq="D", tz="UTC")
     expected = pvlib.irradiance.get_extra_radiation(
         np.arange(1, 366), solar_constant=SOLAR_CONSTANT, method="spencer"
     )
-    assert extraterrestrial_irradiance(unix(times)) == pytest.approx(expected, rel=1e-3)
+    found = extraterrestrial_irradiance(unix(times))
+    evidence("pvlib_irradiance", "outside the air", found, expected, unit="W/m2", rel=1e-3)
 
 
-def test_clear_sky_against_pvlib():
+def test_clear_sky_against_pvlib(evidence):
     elevation = np.array([-10.0, 0.5, 5.0, 20.0, 45.0, 70.0, 90.0])
     expected = pvlib.clearsky.haurwitz(pd.Series(90.0 - elevation))["ghi"].to_numpy()
-    assert clear_sky_irradiance_haurwitz(elevation) == pytest.approx(expected, abs=1e-9)
+    found = clear_sky_irradiance_haurwitz(elevation)
+    how = {"unit": "W/m2", "abs": 1e-9, "scale": 1.0}
+    evidence("pvlib_irradiance", "clear sky", found, expected, **how)
     # a thousand watts per square metre and a little more with the sun overhead
     assert 1000.0 < float(clear_sky_irradiance_haurwitz(90.0)) < 1070.0
 
 
-def test_diffuse_share_against_pvlib():
+def test_diffuse_share_against_pvlib(evidence):
     kt = np.array([0.05, 0.21, 0.3, 0.5, 0.65, 0.79, 0.85])
     outside = pvlib.irradiance.get_extra_radiation(100)
     level = outside * np.cos(np.deg2rad(40.0))
     expected = pvlib.irradiance.erbs(kt * level, 40.0, 100)["dhi"] / (kt * level)
-    assert diffuse_fraction_erbs(kt) == pytest.approx(expected, rel=1e-9)
+    evidence("pvlib_irradiance", "diffuse share", diffuse_fraction_erbs(kt), expected, rel=1e-9)
 
 
 @pytest.mark.parametrize(("normal_elevation", "normal_azimuth"), [(90, 0), (30, 200), (-40, 120)])
-def test_element_against_pvlib(normal_elevation, normal_azimuth):
+def test_element_against_pvlib(normal_elevation, normal_azimuth, evidence):
     expected = pvlib.irradiance.get_total_irradiance(
         surface_tilt=90 - normal_elevation,
         surface_azimuth=normal_azimuth,
@@ -130,11 +137,11 @@ def test_element_against_pvlib(normal_elevation, normal_azimuth):
         diffuse_horizontal=120.0,
         albedo=0.25,
     )
-    assert float(found) == pytest.approx(float(expected), rel=1e-9)
+    evidence("pvlib_irradiance", "plane", found, float(expected), unit="W/m2", rel=1e-9)
 
 
 @pytest.mark.parametrize(("axis", "inclination"), [(0, 0), (75, 0), (130, 35), (0, 90)])
-def test_pipe_is_the_mean_of_its_elements(axis, inclination):
+def test_pipe_is_the_mean_of_its_elements(axis, inclination, evidence):
     # pvlib's plane-of-array irradiance averaged over 720 directions around the axis
     a, i = np.deg2rad(axis), np.deg2rad(inclination)
     side = np.array([np.cos(a), -np.sin(a), 0.0])  # east, north, up
@@ -162,7 +169,8 @@ def test_pipe_is_the_mean_of_its_elements(axis, inclination):
         axis_azimuth_deg=axis,
         inclination_deg=inclination,
     )
-    assert float(found) == pytest.approx(0.4 * float(np.mean(flat["poa_global"])), rel=1e-4)
+    expected = 0.4 * float(np.mean(flat["poa_global"]))
+    evidence("pvlib_irradiance", "pipe", found, expected, unit="W/m2", rel=1e-4)
 
 
 def test_shade_of_a_pipe():
