@@ -415,10 +415,9 @@ def test_a_component_is_named_and_its_stations_left_out(folder):
     whole = assess(folder.only("c"), settings=SETTINGS).regions[0]
     folder.draw(drawn("v1", "c", "component", (80.0, 10.0, 120.0, 50.0), kind="valve"))
     result = assess(folder.only("c"), settings=SETTINGS)
-    (left,) = result.left_out
-    assert (left.what, left.id, left.remark.key) == (
-        "component", "v1", "remark.component_not_assessed",
-    )  # fmt: skip
+    assert result.left_out == ()
+    (valve,) = result.frames[0].components
+    assert (valve.region_id, valve.kind, valve.lagged, valve.reason) == ("v1", "valve", False, None)
     (region,) = result.regions
     assert region.length.median < 0.82 * whole.length.median
     assert all(stretch.probability < 0.5 for stretch in region.stretches)  # the hot band is gone

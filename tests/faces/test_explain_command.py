@@ -23,7 +23,7 @@ from cladwatt.faces.cli.messages import ExitCode
 from cladwatt.results.assessment import Settings
 from cladwatt.survey.survey_file import read_survey
 
-cladwatt_assess = importlib.import_module("cladwatt.assess")
+cladwatt_assess = importlib.import_module("cladwatt.frame_assessment")
 SAMPLE = Path(__file__).parent.parent.parent / "sample_data"
 CONSTANTS = 3e-6
 

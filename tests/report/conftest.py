@@ -120,7 +120,7 @@ def assessment(*, extra=()):
                level="indicative",
                reason=Remark("indicative.interval_wide", (("relative_width", 0.63),)),
                advice=Remark("advice.wind"), damaged=0.99,
-               remarks=(Remark("remark.component_not_assessed"),)),
+               remarks=(Remark("not_quantified.component_hanger"),)),
         region("north-3", stretches=(), damaged=0.06, stations=stations(bump=(-9, -8))),
     )  # fmt: skip
     second = (
@@ -135,7 +135,7 @@ def assessment(*, extra=()):
     )  # fmt: skip
     left_out = (
         LeftOut("frame", "f07", "f07", "frames/f07.csv:12: row 12 has 319 values; expected 320"),
-        LeftOut("component", "valve-2", "f03", "", Remark("remark.component_not_assessed")),
+        LeftOut("component", "valve-2", "f03", "", Remark("not_quantified.component_hanger")),
     )
     return Assessment(
         survey_name="Holm Quay winter walk-down", place="Holm Quay dye works", date="2026-01-14",

@@ -4,8 +4,13 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cladwatt.assess import _distance, _lens_image, _observe, _sound_regions
 from cladwatt.errors import InputError
+from cladwatt.frame_assessment import (
+    fitting_regions,
+    lens_image,
+    observe_with_references,
+    pipe_distance,
+)
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.frame_draws import FrameDraws, draw_frame
 from cladwatt.inverse.observe import Observed
@@ -75,7 +80,7 @@ def nominal_region(survey: Survey, region: Region, settings: Settings) -> Nomina
     """
     entry = survey.frame(region.frame_id)
     frame = read_frame(entry, root=survey.root)
-    regions, left_out = _sound_regions(survey, entry, frame)
+    regions, left_out = fitting_regions(survey, entry, frame)
     if region not in regions:
         concerned = (one.message for one in left_out if one.id in (region.id, entry.id))
         raise InputError("\n".join(concerned))
@@ -94,10 +99,10 @@ class _Scene:
         settings: Settings,
     ) -> None:
         self.survey, self.entry, self.regions = survey, entry, regions
-        self.image = _lens_image(survey, entry, frame)
+        self.image = lens_image(survey, entry, frame)
         self.readings = read_references(self.image.lens_temperature, regions, survey.defaults)
         pipes = [one for one in regions if one.role == "pipe"]
-        self.distance = _distance(survey, frame, pipes)
+        self.distance = pipe_distance(survey, frame, pipes)
         self.masks = {one.id: region_mask(one, frame.temperature.shape) for one in regions}
         self.book = DrawBook(settings.seed, settings.draws)
 
@@ -109,7 +114,7 @@ class _Scene:
             return NominalRegion(self.entry, self.image, self.distance, None, by_reference)
         if self.readings:
             frame, region = self._narrowed(frame, region, by_reference)
-        observed, _ = _observe(
+        observed, _ = observe_with_references(
             self.survey, self.entry, region, self.regions, self.masks, self.image, frame, (),
             NominalBook(0, 1),
         )  # fmt: skip
@@ -137,7 +142,7 @@ class _Scene:
             nominal = replace(nominal, reflected_temperature=_median(after.reflected_temperature))
         if any(r.region.tag == region.tag and r.region.role in ("tape", "contact")
                for r in self.readings):  # fmt: skip
-            observed, remarks = _observe(
+            observed, remarks = observe_with_references(
                 self.survey, self.entry, region, self.regions, self.masks, self.image, after,
                 self.readings, self.book,
             )  # fmt: skip

@@ -4,7 +4,6 @@ import math
 
 import numpy as np
 
-from cladwatt.assess import assess_frame
 from cladwatt.errors import FaultyInputError, InputError
 from cladwatt.explain.lagging_steps import lagging_sections, result_section
 from cladwatt.explain.nominal import NominalRegion, nominal_region
@@ -15,6 +14,7 @@ from cladwatt.explain.recorded_steps import (
 )
 from cladwatt.explain.steps import BandOfAngle, Explanation, Pad, Reported, Section
 from cladwatt.explain.surface_steps import exchange_steps, surface_section
+from cladwatt.frame_assessment import assess_frame
 from cladwatt.inverse.cautions import missing_of
 from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.frame_draws import band_of

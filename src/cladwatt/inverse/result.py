@@ -9,6 +9,7 @@ from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray, IntArray
 
 __all__ = [
+    "ComponentResult",
     "Interval",
     "RegionResult",
     "StationTable",
@@ -184,3 +185,21 @@ class RegionResult:
     """Corrected median temperature straightened, (n_across, n_stations), NaN where left out. [K]"""
     draws: dict[str, FloatArray] = field(default_factory=dict, repr=False, compare=False)
     """Draws by quantity: heat_loss, total_loss, sound_loss, excess, length, ... (n_draws,)."""
+
+
+@dataclass(frozen=True)
+class ComponentResult:
+    """What a flange, valve or hanger in view loses; None where `reason` says why not."""
+
+    region_id: str
+    frame_id: str
+    tag: str
+    kind: str
+    lagged: bool
+    surface_temperature: Interval | None
+    """[K]"""
+    equivalent_length: Interval | None
+    """Of bare pipe for a bare component, of the line as clad for a lagged one. [m]"""
+    heat_loss: Interval | None
+    """[W]"""
+    reason: Remark | None

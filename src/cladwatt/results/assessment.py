@@ -4,6 +4,7 @@ from dataclasses import dataclass, field
 from typing import Literal
 
 from cladwatt.inverse.result import (
+    ComponentResult,
     Interval,
     RegionResult,
     StationTable,
@@ -17,6 +18,7 @@ from cladwatt.quantities import Remark
 __all__ = [
     "Assessment",
     "Assumption",
+    "ComponentResult",
     "FrameResult",
     "Interval",
     "LeftOut",
@@ -53,6 +55,7 @@ class FrameResult:
     regions: tuple[RegionResult, ...]
     left_out: tuple[LeftOut, ...]
     remarks: tuple[Remark, ...] = ()
+    components: tuple[ComponentResult, ...] = ()
     seconds: float = field(default=0.0, compare=False)
     """How long it took; told by the run, not kept, so that equal runs leave equal files."""
 

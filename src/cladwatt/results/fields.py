@@ -10,6 +10,7 @@ from decimal import Decimal
 from cladwatt.results.assessment import (
     Assessment,
     Assumption,
+    ComponentResult,
     LineTotal,
     RegionResult,
     StationTable,
@@ -105,6 +106,13 @@ _LINE = {
     "total_loss": Field("W", "heat loss over the drawn regions of the line"),
     "excess": Field("W", "loss found minus sound loss over the drawn regions"),
 }
+_COMPONENT = {
+    "surface_temperature": Field("°C", "temperature of the component as seen"),
+    "equivalent_length": Field(
+        "m", "pipe it counts as: bare for a bare one, clad for a lagged one"
+    ),
+    "heat_loss": Field("W", "what the component loses"),
+}
 _ASSESSMENT = {
     "total_loss": Field("W", "heat loss of all hot regions"),
     "total_gain": Field("W", "heat gain of all chilled regions, positive"),
@@ -120,6 +128,7 @@ FIELDS: dict[type, dict[str, Field]] = {
     Stretch: _STRETCH,
     RegionResult: _REGION,
     LineTotal: _LINE,
+    ComponentResult: _COMPONENT,
     Assessment: _ASSESSMENT,
     Assumption: _ASSUMPTION,
 }

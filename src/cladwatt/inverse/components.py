@@ -1,0 +1,160 @@
+"""Flanges, valves and hangers: estimated on their own, never taken for damaged lagging.
+
+What a component loses is an equivalent length of pipe, as printed, times what a metre of such
+pipe loses at the temperature the image shows: bare pipe for a bare component, the clad line for a
+lagged one. A hanger has no equivalent length; what is printed of it is a share of a line's loss.
+"""
+
+import math
+from dataclasses import replace
+
+import numpy as np
+
+from cladwatt.errors import TableError
+from cladwatt.inverse.bare import BARE_EMISSIVITY
+from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.face import surface_temperature_draws
+from cladwatt.inverse.frame_draws import FrameDraws
+from cladwatt.inverse.line_draws import LineDraws
+from cladwatt.inverse.outer_balance import may_condense, outer_flux
+from cladwatt.inverse.result import ComponentResult, Interval, interval_of
+from cladwatt.inverse.seen import FrameImage
+from cladwatt.materials.fittings import fitting_kind
+from cladwatt.materials.load import MaterialTables
+from cladwatt.materials.tables import fitting_equivalent_length
+from cladwatt.measure.outline import region_mask, widened
+from cladwatt.quantities import Remark
+from cladwatt.survey.region import Region
+from cladwatt.types import FloatArray
+
+__all__ = ["estimate_component", "unknown_component"]
+
+SHAPE_U = 0.3
+"""Relative standard uncertainty of an equivalent length for the component at hand: printed ones
+differ by more than their own spread says; assumption."""
+
+
+def estimate_component(
+    region: Region,
+    *,
+    image: FrameImage,
+    frame: FrameDraws,
+    line: LineDraws,
+    book: DrawBook,
+    tables: MaterialTables | None,
+) -> ComponentResult:
+    """Estimate what one component loses.
+
+    Parameters
+    ----------
+    region : Region
+        Role ``component``, with `kind` and `lagged`; not lagged where it does not say.
+    image : FrameImage
+    frame : FrameDraws
+    line : LineDraws
+        Of the line it sits on.
+    book : DrawBook
+    tables : MaterialTables or None
+        The survey's, for equivalent lengths.
+
+    Returns
+    -------
+    ComponentResult
+        Without numbers, and with the reason, where the kind, a size or the wind is unknown or
+        nothing usable is seen.
+    """
+    lagged = bool(region.lagged)
+    seen = _seen(region, image)
+    emissivity = line.band_emissivity
+    if not lagged:
+        emissivity = book.quantity(f"region:{region.id}", "bare_emissivity", BARE_EMISSIVITY)
+    if not np.isfinite(seen):
+        return unknown_component(region, "not_quantified.component_unseen")
+    temperature = _temperature(seen, frame, line, emissivity, is_metal=lagged and line.is_metal)
+    surface = interval_of(temperature)
+    diameter = line.lagged_diameter if lagged else line.pipe_diameter
+    if diameter is None or frame.wind_speed is None:
+        return unknown_component(region, "not_quantified.component_no_size", surface)
+    try:
+        fitting = fitting_equivalent_length(
+            region.kind,
+            lagged,
+            counts_as="lagged_pipe" if lagged else "bare_pipe",
+            tables=tables,
+        )
+    except TableError:
+        hanger = fitting_kind(region.kind) == "hanger"
+        key = (
+            "not_quantified.component_hanger" if hanger else "not_quantified.component_kind_unknown"
+        )
+        return unknown_component(region, key, surface)
+    clad = line if lagged else _bare(line, emissivity)
+    exchange = clad.exchange(frame, diameter)
+    humidity = frame.relative_humidity if may_condense(frame, line) else None
+    per_metre = math.pi * diameter * outer_flux(temperature, exchange, humidity)
+    owner = f"region:{region.id}"
+    length = book.quantity(owner, "equivalent_length", fitting.amount)
+    length = length * np.exp(SHAPE_U * book.normal(owner, "shape"))
+    return ComponentResult(
+        region_id=region.id,
+        frame_id=region.frame_id,
+        tag=region.tag or "",
+        kind=region.kind,
+        lagged=lagged,
+        surface_temperature=surface,
+        equivalent_length=interval_of(length),
+        heat_loss=interval_of(length * per_metre),
+        reason=None,
+    )
+
+
+def _seen(region: Region, image: FrameImage) -> float:
+    """Return the median at the lens inside the drawn outline, clear of its rim. [K]"""
+    mask = region_mask(region, image.lens_temperature.shape)
+    core = mask & ~widened(~mask, 1.0)
+    values = image.lens_temperature[core if core.any() else mask]
+    values = values[np.isfinite(values)]
+    return float(np.median(values)) if values.size else math.nan
+
+
+def _bare(line: LineDraws, emissivity: FloatArray) -> LineDraws:
+    return replace(line, band_emissivity=emissivity, total_emissivity=emissivity, is_metal=False)
+
+
+def _temperature(
+    seen: float, frame: FrameDraws, line: LineDraws, emissivity: FloatArray, *, is_metal: bool
+) -> FloatArray:
+    """Return draws of the component's temperature, no hotter than the fluid. [K]"""
+    read = replace(line, band_emissivity=emissivity, is_metal=is_metal)
+    drawn = surface_temperature_draws(np.array([seen]), np.zeros(1), frame, read)[:, 0, 0]
+    coldest = np.nanmin(drawn) if np.isfinite(drawn).any() else frame.air_temperature
+    drawn = np.where(np.isfinite(drawn), drawn, coldest)
+    inside = line.inside_temperature
+    if inside is None:
+        return np.asarray(drawn)
+    hot = inside >= frame.air_temperature
+    return np.asarray(np.where(hot, np.minimum(drawn, inside), np.maximum(drawn, inside)))
+
+
+def unknown_component(region: Region, key: str, surface: Interval | None = None) -> ComponentResult:
+    """Return a component without numbers, and why.
+
+    Parameters
+    ----------
+    region : Region
+    key : str
+        Of the reason.
+    surface : Interval, optional
+        Its temperature, where that much is known. [K]
+    """
+    return ComponentResult(
+        region_id=region.id,
+        frame_id=region.frame_id,
+        tag=region.tag or "",
+        kind=region.kind,
+        lagged=bool(region.lagged),
+        surface_temperature=surface,
+        equivalent_length=None,
+        heat_loss=None,
+        reason=Remark(key),
+    )
