@@ -198,10 +198,20 @@ def _assess_regions(
             )
         ),
         components=tuple(
-            _component(survey, region, image, draws, readings, book) for region in components
+            _component(survey, _with_tag(region, pipes, masks), image, draws, readings, book)
+            for region in components
         ),
         left_out=tuple(left_out),
     )
+
+
+def _with_tag(component: Region, pipes: list[Region], masks: dict[str, BoolArray]) -> Region:
+    """Return a component with the tag of the pipe it covers most of, where it names none."""
+    if component.tag is not None or not pipes:
+        return component
+    own = masks[component.id]
+    most = max(pipes, key=lambda pipe: int(masks[pipe.id][own].sum()))
+    return replace(component, tag=most.tag) if masks[most.id][own].any() else component
 
 
 def _component(
