@@ -155,11 +155,12 @@ def heat_up(
     ends = time * (np.arange(steps + 1) / steps) ** 2
     capacity = model.heat_capacity * cell_volumes(model)
     solver: Solver | None = None
-    for step in np.diff(ends):
+    for number, step in enumerate(np.diff(ends), start=1):
         stored = np.zeros((n_x, n_phi, n_r + 1))
         stored[..., :n_r] = np.where(model.exposed[..., None], 0.0, capacity / step)
         before = np.concatenate([cells, surface[..., None]], axis=-1)
-        for _ in range(2):
+        # conductivity and surface flux lag by one step; the last one is gone over again
+        for _ in range(2 if number == steps else 1):
             parts, diagonal, source = _balance(model, surface_flux, cells, surface)
             start = np.concatenate([cells, surface[..., None]], axis=-1)
             diagonal, source = diagonal + stored, source + stored * before

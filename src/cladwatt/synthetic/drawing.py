@@ -6,6 +6,7 @@ import numpy as np
 
 from cladwatt.quantities import Quantity
 from cladwatt.survey.region import Region
+from cladwatt.synthetic.bodies import PlacedBody, body_numbers
 from cladwatt.synthetic.geometry import PipeAxis, View
 from cladwatt.synthetic.pipes import PipeTruth
 from cladwatt.synthetic.plant import PlantFrame
@@ -77,15 +78,18 @@ def _pipe_region(
     return region, (start, end)
 
 
-def _component(pipe: PipeTruth, frame: PlantFrame, view: View) -> Region | None:
-    if pipe.component is None:
-        return None
-    radius = float(pipe.skin.radius.max())
-    ends = (pipe.component[0] - 0.02, pipe.component[1] + 0.02)
+def _component(
+    body: PlacedBody, pipe: PipeTruth, number: int, frame: PlantFrame, view: View
+) -> Region:
+    """Return a body, drawn a little wider than it is."""
+    one = body.plant
+    shown = pipe.skin.radius[body.covers(pipe.station)]
+    radius = max(float(shown.max()), float(pipe.skin.radius[0].max()))
+    ends = (body.start - 0.02, body.end + 0.02)
     vertices = [_vertex(pipe.axis, view, s, radius, np.zeros(2)) for s in ends]
     return Region(
-        id=f"{pipe.plant.id}-{pipe.plant.component}", frame_id=frame.id, role="component",
-        tag=pipe.plant.tag, kind=pipe.plant.component, lagged=pipe.plant.component != "flange",
+        id=f"{pipe.plant.id}-{one.kind}" + (f"-{number}" if number > 1 else ""),
+        frame_id=frame.id, role="component", tag=pipe.plant.tag, kind=one.kind, lagged=one.lagged,
         centreline=tuple(v[0] for v in vertices),
         widths=tuple(round(1.15 * v[1], 2) for v in vertices),
     )  # fmt: skip
@@ -167,13 +171,18 @@ def draw_regions(
         The regions, pipes first.
     """
     by_id = {pipe.plant.id: pipe for pipe in pipes}
-    regions, beside = [], []
+    regions: list[Region] = []
+    beside: list[Region | None] = []
     drawn = {}
     for pipe in pipes:
         region, ends = _pipe_region(pipe, frame, view, random)
         regions.append(region)
         drawn[region.id] = ends
-        beside += [_component(pipe, frame, view), _tape(pipe, frame, view)]
+        beside += [
+            _component(body, pipe, number, frame, view)
+            for body, number in zip(pipe.bodies, body_numbers(pipe.bodies), strict=True)
+        ]
+        beside.append(_tape(pipe, frame, view))
         if pipe.plant.crossed_by:
             beside.append(_crossing(pipe, by_id[pipe.plant.crossed_by], frame, view))
     if frame.foil:

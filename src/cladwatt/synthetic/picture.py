@@ -14,21 +14,14 @@ from cladwatt.synthetic.geometry import View
 from cladwatt.synthetic.pipes import PipeTruth
 from cladwatt.synthetic.plant import Plant, PlantFrame
 from cladwatt.synthetic.render import AirPath, render
+from cladwatt.synthetic.response import true_band
 from cladwatt.synthetic.scene import Neighbour, Scene
 from cladwatt.synthetic.truth import FrameTruth
 from cladwatt.types import FloatArray
 
-__all__ = ["take_picture", "true_band"]
+__all__ = ["take_picture"]
 
 _FOIL_EMISSIVITY = 0.05
-
-
-def true_band() -> Band:
-    """Return the camera's real band, softer at its ends than the declared one."""
-    return Band.from_response(
-        np.array([7.3e-6, 7.8e-6, 8.5e-6, 11.0e-6, 13.0e-6, 13.7e-6, 14.2e-6]),
-        np.array([0.0, 0.75, 0.95, 1.0, 0.92, 0.7, 0.0]),
-    )
 
 
 def make_scene(frame: PlantFrame, truth: FrameTruth, band: Band) -> Scene:

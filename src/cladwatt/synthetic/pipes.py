@@ -1,30 +1,35 @@
 """One pipe of one frame: built, damaged, solved, and made ready to be seen."""
 
-from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cladwatt.physics.constants import STANDARD_PRESSURE
-from cladwatt.physics.convection import convection_coefficient
-from cladwatt.physics.radiation import radiative_flux
-from cladwatt.synthetic.conduction_3d import ColumnModel, Solution, solve_columns
+from cladwatt.synthetic.bodies import PlacedBody, bodies_on, body_radius, lay_bodies
+from cladwatt.synthetic.columns import ColumnModel, Solution
+from cladwatt.synthetic.conduction_3d import heat_up, solve_columns
 from cladwatt.synthetic.damage import Damage, DamageKind, draw_damage, lay_in
+from cladwatt.synthetic.exchange import (
+    WATER_EMISSIVITY,
+    Weather,
+    absorbed_sun,
+    surface_flux,
+    water_share,
+)
 from cladwatt.synthetic.fields import smooth_field
 from cladwatt.synthetic.geometry import PipeAxis, View
 from cladwatt.synthetic.plant import PlantLine, PlantPipe
 from cladwatt.synthetic.render import Patch, Skin
-from cladwatt.synthetic.truth import FrameTruth, LineTruth
+from cladwatt.synthetic.truth import RADIAL_CELLS, FrameTruth, LineTruth
 from cladwatt.types import BoolArray, FloatArray
 
-__all__ = ["COMPONENT_LENGTHS", "PipeTruth", "build_pipe"]
+__all__ = ["PipeTruth", "build_pipe"]
 
 _CELL_LENGTH = 0.015
-_AROUND, _RADIAL = 24, 5
+_AROUND = 24
 _SCATTER = 0.03
 """Relative scatter of sound lagging along the pipe."""
-COMPONENT_LENGTHS = {"support": 0.12, "flange": 0.10}
-"""Length of a component along the pipe. [m]"""
+_TRACER_SPREAD, _TRACER_SHARE = 0.30, 0.85
+"""Over what angle a tracer warms the inside of the lagging, and how near to its temperature."""
 TAPE_LENGTH = 0.10
 _TAPE_EMISSIVITY = 0.95
 
@@ -43,8 +48,8 @@ class PipeTruth:
         Stations of the near surface between which the inspector means to draw. [m]
     damage : Damage
         What is wrong with it.
-    component : (float, float) or None
-        Stations of the component. [m]
+    bodies : tuple of PlacedBody
+        Components on it.
     tape : Patch or None
         The tape on it.
     station : (n_x,) array
@@ -53,8 +58,15 @@ class PipeTruth:
         [m]
     heat_loss, surface_temperature, resistance : (n_x,) array
         Truth along the pipe. [W/m], [K], [m K/W]
+    inside_heat : (n_x,) array
+        What fluid and tracer give off there; differs from the loss by what flows lengthwise, and
+        while it warms up. [W/m]
+    tracer_heat : (n_x,) array or None
+        Of the loss, what the tracer gives straight to the lagging. [W/m]
+    water_share : (n_x,) array
+        Share of the surface under water.
     sound_loss, specified_loss : float
-        In the same conditions. [W/m]
+        In the same conditions, all at rest. [W/m]
     skin : Skin
         What the camera sees.
     """
@@ -63,13 +75,16 @@ class PipeTruth:
     axis: PipeAxis
     drawn: tuple[float, float]
     damage: Damage
-    component: tuple[float, float] | None
+    bodies: tuple[PlacedBody, ...]
     tape: Patch | None
     station: FloatArray
     cell_length: float
     heat_loss: FloatArray
     surface_temperature: FloatArray
     resistance: FloatArray
+    inside_heat: FloatArray
+    tracer_heat: FloatArray | None
+    water_share: FloatArray
     sound_loss: float
     specified_loss: float
     skin: Skin
@@ -82,11 +97,11 @@ class PipeTruth:
 
     @property
     def is_component(self) -> BoolArray:
-        """Columns of the component, (n_x,)."""
-        if self.component is None:
-            return np.zeros(self.station.size, dtype=bool)
-        inside: BoolArray = (self.station > self.component[0]) & (self.station < self.component[1])
-        return inside
+        """Columns of any component, (n_x,)."""
+        taken = np.zeros(self.station.size, dtype=bool)
+        for body in self.bodies:
+            taken |= body.covers(self.station)
+        return taken
 
 
 def _axis(pipe: PlantPipe, view: View, distance_ratio: float) -> PipeAxis:
@@ -107,86 +122,72 @@ def _facing(axis: PipeAxis) -> float:
     return float(np.arctan2(towards @ np.cross(direction, zero), towards @ zero))
 
 
-def _flux(
-    model: ColumnModel, line: LineTruth, frame: FrameTruth, inclination_deg: float
-) -> Callable[[FloatArray], FloatArray]:
-    """Return the surface balance of a pipe."""
-    n_phi = model.exposed.shape[1]
-    angle = (np.arange(n_phi) + 0.5) * 2 * np.pi / n_phi
-    amplitude = frame.unevenness * np.cos(np.radians(inclination_deg))
-    uneven = 1 + amplitude * np.cos(angle - frame.unevenness_angle)
-    emissivity = np.where(model.exposed, line.bare_emissivity, line.total_emissivity)
-    # one coefficient for a ring of the pipe: the correlation is a mean around it
-    share = model.surface_area / model.surface_area.sum(axis=1, keepdims=True)
-    diameter = 2 * (share * model.surface_radius).sum(axis=1, keepdims=True)
-
-    def flux(temperature: FloatArray) -> FloatArray:
-        mean = (share * temperature).sum(axis=1, keepdims=True)
-        coefficient = frame.convection_factor * uneven * convection_coefficient(
-            mean, air_temperature=frame.air_temperature, diameter=diameter,
-            wind_speed=frame.wind_speed, pressure=STANDARD_PRESSURE,
-            inclination_deg=inclination_deg,
-        )  # fmt: skip
-        radiation = radiative_flux(
-            temperature, emissivity=emissivity,
-            surroundings_temperature=frame.surroundings_temperature,
-        )  # fmt: skip
-        result: FloatArray = coefficient * (temperature - frame.air_temperature) + radiation
-        return result
-
-    return flux
-
-
 def _model(
     line: LineTruth, plant: PlantLine, frame: FrameTruth, shape: tuple[int, int], length: float,
     factor: FloatArray,
 ) -> ColumnModel:  # fmt: skip
+    inside: float | FloatArray = line.fluid_temperature
+    warmth = _tracer_warmth(plant, shape[1])
+    if warmth is not None and line.tracer_temperature is not None:
+        inside = inside + (line.tracer_temperature - inside) * _TRACER_SHARE * warmth
     return ColumnModel(
-        inside_temperature=line.fluid_temperature,
+        inside_temperature=inside,
         inside_coefficient=plant.inside_coefficient,
         pipe_radius=line.pipe_diameter / 2,
         thickness=np.full(shape, line.thickness),
         cell_length=length,
         conductivity_curve=line.curve.conductivity,
         factor=np.broadcast_to(
-            line.conductivity_factor * factor[:, None, None], (*shape, _RADIAL)
+            line.conductivity_factor * factor[:, None, None], (*shape, RADIAL_CELLS)
         ).copy(),
         sheet_conductance=plant.sheet_conductivity * plant.cladding_thickness_mm / 1000,
         exposed=np.zeros(shape, dtype=bool),
         air_temperature=frame.air_temperature,
+        gap=line.gap,
+        gap_coefficient=line.gap_coefficient,
+        heat_capacity=plant.heat_capacity,
     )
 
 
-def _plain_loss(line: LineTruth, plant: PlantLine, frame: FrameTruth, factor: float) -> float:
-    """Return the loss of the undamaged pipe with a conductivity factor. [W/m]"""
+def _tracer_warmth(plant: PlantLine, n_phi: int) -> FloatArray | None:
+    """Return how near each column's inside is to the tracer, (n_phi,); 3 o'clock is angle pi/2."""
+    if plant.tracer_clock is None:
+        return None
+    angle = (np.arange(n_phi) + 0.5) * 2 * np.pi / n_phi
+    apart = np.angle(np.exp(1j * (angle - plant.tracer_clock / 6 * np.pi)))
+    warmth: FloatArray = np.exp(-0.5 * (apart / _TRACER_SPREAD) ** 2)
+    return warmth
+
+
+def _plain_loss(
+    line: LineTruth, plant: PlantLine, frame: FrameTruth, factor: float, weather: Weather
+) -> float:
+    """Return the loss of the undamaged pipe at rest with a conductivity factor. [W/m]"""
     model = _model(line, plant, frame, (2, _AROUND), 1.0, np.full(2, factor))
-    solution = solve_columns(model, _flux(model, line, frame, plant.inclination_deg))
-    return float(solution.heat_loss(1.0)[0])
+    mean = Weather(
+        *(None if part is None else part.mean(axis=0, keepdims=True).repeat(2, axis=0)
+          for part in (weather.sun, weather.rain))
+    )  # fmt: skip
+    flux = surface_flux(model, line, frame, plant.inclination_deg, mean)
+    return float(solve_columns(model, flux).heat_loss(1.0)[0])
 
 
-def _with_component(
-    pipe: PlantPipe, model: ColumnModel, drawn: tuple[float, float]
-) -> tuple[ColumnModel, tuple[float, float] | None]:
-    """Lay the component into the columns; a shoe conducts, a flange pair is bare."""
-    if not pipe.component:
-        return model, None
-    middle = drawn[0] + pipe.component_at * (drawn[1] - drawn[0])
-    half = COMPONENT_LENGTHS[pipe.component] / 2
-    place = (middle - half, middle + half)
-    if pipe.component == "flange":
-        return lay_in(Damage("bare", *place), model), place
-    shoe = Damage("wet", *place, severity=12.0, angle=np.pi, half_angle=0.6)
-    growth = lay_in(
-        shoe, replace(model, inside_temperature=300.0, factor=np.ones_like(model.factor))
-    )
-    return replace(model, factor=model.factor * growth.factor), place
+def _weather(
+    axis: PipeAxis, shape: tuple[int, int], line: LineTruth, frame: FrameTruth,
+    random: np.random.Generator,
+) -> Weather:  # fmt: skip
+    sun = absorbed_sun(axis, shape, frame, line.solar_absorptance)
+    if not frame.wet:
+        return Weather(sun)
+    patches = smooth_field(shape, (6.0, 2.0), random, periodic=(False, True))
+    return Weather(sun, np.clip(0.6 + 0.4 * patches, 0.0, 1.0))
 
 
 def _room(
-    pipe: PlantPipe, drawn: tuple[float, float], component: tuple[float, float] | None
+    pipe: PlantPipe, drawn: tuple[float, float], bodies: tuple[PlacedBody, ...]
 ) -> tuple[float, float]:
     """Return the longest part of the drawn pipe free of what hides or replaces its lagging."""
-    blocked = [] if component is None else [(component[0] - 0.05, component[1] + 0.05)]
+    blocked = [(body.start - 0.05, body.end + 0.05) for body in bodies]
     if pipe.clear is not None:
         length = drawn[1] - drawn[0]
         blocked.append((drawn[0] + pipe.clear[0] * length, drawn[0] + pipe.clear[1] * length))
@@ -230,33 +231,49 @@ def build_pipe(
     axis = _axis(pipe, view, frame.distance_ratio)
     n_x = int(np.clip(round(axis.length / _CELL_LENGTH), 60, 260))
     length = axis.length / n_x
-    outer = line.pipe_diameter / 2 + line.thickness
+    outer = line.pipe_diameter / 2 + line.thickness + line.gap
     drawn = (
         axis.surface_station(view, pipe.drawn[0] * axis.length, outer),
         axis.surface_station(view, pipe.drawn[1] * axis.length, outer),
     )
     scatter = 1 + _SCATTER * smooth_field((n_x,), (0.15 / length,), random)
     sound = _model(line, plant, frame, (n_x, _AROUND), length, line.installation_factor * scatter)
-    with_component, component = _with_component(pipe, sound, drawn)
-    damage = draw_damage(kind, _room(pipe, drawn, component), random, facing=_facing(axis))
-    model = lay_in(damage, with_component)
+    bodies = bodies_on(pipe.components, drawn)
+    # bodies and weather draw from streams of their own, so that a seed keeps its pipes
+    made, wetted = random.spawn(2)
+    with_bodies = lay_bodies(bodies, sound, made)
+    damage = draw_damage(kind, _room(pipe, drawn, bodies), random, facing=_facing(axis))
+    model = lay_in(damage, with_bodies)
     if damage.kind in ("open_joint", "bare", "missing_sector"):
         first = round(damage.start / length)
         last = max(round(damage.end / length), first + 1)
         damage = replace(damage, start=first * length, end=last * length)
-    solution = solve_columns(model, _flux(model, line, frame, plant.inclination_deg))
+    weather = _weather(axis, (n_x, _AROUND), line, frame, wetted)
+    flux = surface_flux(model, line, frame, plant.inclination_deg, weather)
+    if line.hours_at_temperature is None:
+        solution = solve_columns(model, flux)
+    else:
+        solution = heat_up(model, flux, 3600 * line.hours_at_temperature)
     tape = _tape(pipe, axis, drawn)
     heat_loss = solution.heat_loss(length)
     share = model.surface_area / model.surface_area.sum(axis=1, keepdims=True)
     surface = (share * solution.surface_temperature).sum(axis=1)
+    warmth = _tracer_warmth(plant, _AROUND)
+    given = solution.inside_heat / length
+    water = np.zeros((n_x, _AROUND))
+    if weather.rain is not None or line.fluid_temperature < frame.air_temperature:
+        water = water_share(solution.surface_temperature, frame, weather.rain)
     return PipeTruth(
-        plant=pipe, axis=axis, drawn=drawn, damage=damage, component=component, tape=tape,
+        plant=pipe, axis=axis, drawn=drawn, damage=damage, bodies=bodies, tape=tape,
         station=model.station, cell_length=length, heat_loss=heat_loss,
         surface_temperature=surface,
         resistance=(line.fluid_temperature - surface) / heat_loss,
-        sound_loss=_plain_loss(line, plant, frame, line.installation_factor),
-        specified_loss=_plain_loss(line, plant, frame, 1.0),
-        skin=_skin(pipe, plant, line, axis, model, solution, component, tape, random),
+        inside_heat=given.sum(axis=1),
+        tracer_heat=None if warmth is None else (warmth * given).sum(axis=1),
+        water_share=(share * water).sum(axis=1),
+        sound_loss=_plain_loss(line, plant, frame, line.installation_factor, weather),
+        specified_loss=_plain_loss(line, plant, frame, 1.0, weather),
+        skin=_skin(plant, line, axis, model, solution, water, bodies, tape, random),
     )  # fmt: skip
 
 
@@ -269,8 +286,8 @@ def _tape(pipe: PlantPipe, axis: PipeAxis, drawn: tuple[float, float]) -> Patch 
 
 
 def _skin(
-    pipe: PlantPipe, plant: PlantLine, line: LineTruth, axis: PipeAxis, model: ColumnModel,
-    solution: Solution, component: tuple[float, float] | None, tape: Patch | None,
+    plant: PlantLine, line: LineTruth, axis: PipeAxis, model: ColumnModel,
+    solution: Solution, water: FloatArray, bodies: tuple[PlacedBody, ...], tape: Patch | None,
     random: np.random.Generator,
 ) -> Skin:  # fmt: skip
     n_x, n_phi = model.exposed.shape
@@ -280,13 +297,16 @@ def _skin(
     emissivity = np.clip(line.band_emissivity * (1 + plant.patchy * patches), 0.02, 0.985)
     radius = model.surface_radius.copy()
     # compressed lagging keeps its outline: dents are too shallow to be seen
-    radius[~model.exposed] = line.pipe_diameter / 2 + line.thickness
-    if component is not None and pipe.component == "flange":
-        inside = (model.station > component[0]) & (model.station < component[1])
-        radius[inside] = 0.85 * line.pipe_diameter
+    outer = line.pipe_diameter / 2 + line.thickness + line.gap
+    radius[~model.exposed] = outer
+    for body in bodies:
+        shown = body_radius(body, line.pipe_diameter / 2, outer)
+        if shown is not None:
+            radius[body.covers(model.station)] = shown
+    emissivity = np.where(model.exposed, line.bare_emissivity, emissivity)
     return Skin(
         axis=axis, radius=radius, temperature=solution.surface_temperature,
-        emissivity=np.where(model.exposed, line.bare_emissivity, emissivity),
+        emissivity=emissivity + water * (WATER_EMISSIVITY - emissivity),
         exposed=model.exposed, face_temperature=solution.cell_temperature.mean(axis=-1),
         is_metal=plant.is_metal, mirror=plant.mirror,
         patches=() if tape is None else (tape,),

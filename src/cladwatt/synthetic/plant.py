@@ -1,14 +1,24 @@
 """The invented plant of the sample: what is declared of it, and where the camera stood."""
 
 import tomllib
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import cache
 from importlib.resources import files
 from typing import Any
 
 from cladwatt.synthetic.damage import DamageKind
 
-__all__ = ["Declared", "Plant", "PlantFrame", "PlantLine", "PlantPipe", "load_plant"]
+__all__ = [
+    "Declared",
+    "Plant",
+    "PlantComponent",
+    "PlantFrame",
+    "PlantLayer",
+    "PlantLine",
+    "PlantPiece",
+    "PlantPipe",
+    "load_plant",
+]
 
 
 @dataclass(frozen=True)
@@ -17,6 +27,35 @@ class Declared:
 
     value: float
     u: float
+
+
+@dataclass(frozen=True)
+class PlantLayer:
+    """One layer of lagging, from the inside out; without a material an air gap."""
+
+    material: str
+    thickness_mm: Declared
+    inner_emissivity: float = 0.9
+    outer_emissivity: float = 0.9
+
+
+@dataclass(frozen=True)
+class PlantPiece:
+    """One part of what a pipe exchanges radiation with."""
+
+    what: str
+    temperature_C: Declared
+    view_factor: float
+
+
+@dataclass(frozen=True)
+class PlantComponent:
+    """A body on a pipe."""
+
+    kind: str
+    at: float
+    """Its middle, as a share of the drawn part."""
+    lagged: bool
 
 
 @dataclass(frozen=True)
@@ -36,6 +75,12 @@ class PlantLine:
     mirror: float
     is_metal: bool
     inclination_deg: float
+    layers: tuple[PlantLayer, ...] = ()
+    """Instead of material and thickness; an air gap comes last."""
+    tracer_clock: float | None = None
+    """Where a steam tracer lies, in hours."""
+    heat_capacity: float = 0.0
+    """Of the lagging, for a line that warms up. [J/(m3 K)]"""
 
 
 @dataclass(frozen=True)
@@ -47,12 +92,13 @@ class PlantPipe:
     ends: tuple[tuple[float, float, float], ...]
     drawn: tuple[float, float]
     only: tuple[DamageKind, ...]
-    component: str
-    component_at: float
+    components: tuple[PlantComponent, ...]
     crossed_by: str
     clear: tuple[float, float] | None
     """Shares of the drawn part where no damage may lie."""
     tape: float | None
+    kinds: tuple[DamageKind, ...] = ()
+    """In a corner frame: what it may have, drawn by lot."""
 
 
 @dataclass(frozen=True)
@@ -71,6 +117,13 @@ class PlantFrame:
     neighbour: tuple[float, ...]
     foil: tuple[float, ...]
     pipes: tuple[PlantPipe, ...]
+    pieces: tuple[PlantPiece, ...] = ()
+    sun: tuple[float, ...] = ()
+    """Towards the sun, in camera coordinates; empty where it does not shine on the pipes."""
+    wet: bool = False
+    """Whether rain stands on the cladding."""
+    is_corner: bool = False
+    """Whether it was added to show a rarer case."""
 
 
 @dataclass(frozen=True)
@@ -95,7 +148,7 @@ def _declared(table: dict[str, Any]) -> dict[str, Declared]:
 def _line(table: dict[str, Any]) -> PlantLine:
     return PlantLine(
         tag=table["tag"], area=table["area"], fluid=table["fluid"],
-        material=table["lagging_material"], cladding=table["cladding"],
+        material=table.get("lagging_material", ""), cladding=table["cladding"],
         quantities=_declared(table),
         cladding_thickness_mm=float(table["cladding_thickness_mm"]),
         sheet_conductivity=float(table["sheet_conductivity"]),
@@ -103,7 +156,22 @@ def _line(table: dict[str, Any]) -> PlantLine:
         patchy=float(table["patchy"]), mirror=float(table["mirror"]),
         is_metal=bool(table.get("is_metal", False)),
         inclination_deg=float(table.get("inclination_deg", 0.0)),
+        layers=tuple(_layer(layer) for layer in table.get("layers", ())),
+        tracer_clock=table.get("tracer_clock"),
+        heat_capacity=float(table.get("heat_capacity", 0.0)),
     )  # fmt: skip
+
+
+def _layer(table: dict[str, Any]) -> PlantLayer:
+    value, u = table["thickness_mm"]
+    faces = {key: float(table[key]) for key in ("inner_emissivity", "outer_emissivity")
+             if key in table}  # fmt: skip
+    return PlantLayer(table.get("material", ""), Declared(float(value), float(u)), **faces)
+
+
+def _piece(table: dict[str, Any]) -> PlantPiece:
+    value, u = table["temperature_C"]
+    return PlantPiece(table["what"], Declared(float(value), float(u)), float(table["view_factor"]))
 
 
 def _pipe(table: dict[str, Any]) -> PlantPipe:
@@ -112,10 +180,13 @@ def _pipe(table: dict[str, Any]) -> PlantPipe:
         ends=tuple((float(x), float(y), float(z)) for x, y, z in table["ends"]),
         drawn=(float(table["drawn"][0]), float(table["drawn"][1])),
         only=tuple(table.get("only", ())),
-        component=table.get("component", ""), component_at=float(table.get("component_at", 0.0)),
+        components=tuple(
+            PlantComponent(one["kind"], float(one["at"]), bool(one["lagged"]))
+            for one in table.get("components", ())
+        ),
         crossed_by=table.get("crossed_by", ""),
         clear=tuple(table["clear"]) if "clear" in table else None,
-        tape=table.get("tape"),
+        tape=table.get("tape"), kinds=tuple(table.get("kinds", ())),
     )  # fmt: skip
 
 
@@ -127,17 +198,37 @@ def _frame(table: dict[str, Any]) -> PlantFrame:
         conditions=_declared(table), scene=(float(above), float(beside), float(below)),
         neighbour=tuple(table.get("neighbour", ())), foil=tuple(table.get("foil", ())),
         pipes=tuple(_pipe(pipe) for pipe in table["pipes"]),
+        pieces=tuple(_piece(piece) for piece in table.get("pieces", ())),
+        sun=tuple(float(part) for part in table.get("sun", ())), wet=bool(table.get("wet", False)),
     )  # fmt: skip
 
 
+def _read(name: str) -> dict[str, Any]:
+    return tomllib.loads(files("cladwatt.synthetic").joinpath(name).read_text(encoding="utf-8"))
+
+
 @cache
-def load_plant() -> Plant:
-    """Return the plant that ships with the package."""
-    text = files("cladwatt.synthetic").joinpath("plant.toml").read_text(encoding="utf-8")
-    table = tomllib.loads(text)
+def load_plant(corners: bool = True) -> Plant:
+    """Return the plant that ships with the package.
+
+    Parameters
+    ----------
+    corners : bool
+        With the frames of rarer cases: sun, condensation, tracing, layers, fittings, warming up,
+        rain.
+
+    Returns
+    -------
+    Plant
+        The plant.
+    """
+    table, more = _read("plant.toml"), _read("corners.toml") if corners else {}
+    lines = [*table["line"], *more.get("line", ())]
+    frames = [_frame(frame) for frame in table["frame"]]
+    frames += [replace(_frame(frame), is_corner=True) for frame in more.get("frame", ())]
     return Plant(
         table["survey"],
         table["camera"],
-        {line["tag"]: _line(line) for line in table["line"]},
-        tuple(_frame(frame) for frame in table["frame"]),
+        {line["tag"]: _line(line) for line in lines},
+        tuple(frames),
     )

@@ -17,8 +17,16 @@ from cladwatt.synthetic.geometry import View
 from cladwatt.synthetic.picture import take_picture
 from cladwatt.synthetic.pipes import PipeTruth, build_pipe
 from cladwatt.synthetic.plant import Declared, Plant, PlantFrame, load_plant
+from cladwatt.synthetic.response import RESPONSE_FILE, response_text
 from cladwatt.synthetic.survey_text import survey_text
-from cladwatt.synthetic.truth import FrameTruth, LineTruth, draw_frame, draw_line, draw_shared
+from cladwatt.synthetic.truth import (
+    ConvectionLaw,
+    FrameTruth,
+    LineTruth,
+    draw_frame,
+    draw_line,
+    draw_shared,
+)
 from cladwatt.synthetic.truth_files import (
     STATION_HEADER,
     TRUTH_README,
@@ -28,14 +36,21 @@ from cladwatt.synthetic.truth_files import (
 )
 from cladwatt.types import FloatArray
 
-__all__ = ["SampleFrame", "assign_damage", "make_frames", "write_sample"]
+__all__ = ["SampleFrame", "SampleOptions", "assign_damage", "make_frames", "write_sample"]
 
 _KINDS: tuple[DamageKind, ...] = (
     "bare", "open_joint", "missing_sector", "wet", "wet_underside", "compressed", "void",
     "aged", "aged",
 )  # fmt: skip
+_SUN = Declared(600.0, 90.0)
+"""Irradiance where every outdoor frame is put in the sun. [W/m2]"""
 _WEATHER = {"air_temperature_C": 1.5, "wind_speed_m_s": 0.3}
 """How far the declared conditions of one draw differ from those of the plant file."""
+_SHIFTED = {
+    "air_temperature_C", "surroundings_temperature_C", "reflected_temperature_C",
+    "sky_total_temperature_C", "sky_band_temperature_C",
+}  # fmt: skip
+"""What follows the air from day to day."""
 
 
 @dataclass(frozen=True)
@@ -50,7 +65,34 @@ class SampleFrame:
     """(rows, cols). [K]"""
 
 
-def assign_damage(plant: Plant, random: np.random.Generator) -> dict[str, DamageKind]:
+@dataclass(frozen=True)
+class SampleOptions:
+    """What a survey is to be like; the rule is the sample that ships.
+
+    Parameters
+    ----------
+    corners : bool
+        With the frames of rarer cases after the others, whose bytes do not depend on it.
+    convection : {"churchill", "morgan_zukauskas"}
+        Correlations the air obeys.
+    convection_bias : float
+        Multiplies every convection coefficient.
+    damaged : float
+        Times the usual number of damaged pipes in the plain frames, 0 or more.
+    sun : bool
+        Sun on every outdoor frame.
+    """
+
+    corners: bool = True
+    convection: ConvectionLaw = "churchill"
+    convection_bias: float = 1.0
+    damaged: float = 1.0
+    sun: bool = False
+
+
+def assign_damage(
+    plant: Plant, random: np.random.Generator, share: float = 1.0
+) -> dict[str, DamageKind]:
     """Give every kind of damage to a pipe, and leave near half of the pipes sound.
 
     Parameters
@@ -59,19 +101,35 @@ def assign_damage(plant: Plant, random: np.random.Generator) -> dict[str, Damage
         The plant.
     random : numpy.random.Generator
         Source of randomness.
+    share : float
+        Times the usual number of damaged pipes, as far as there are pipes that can be.
 
     Returns
     -------
     dict of str to str
-        Kind by region id.
+        Kind by region id. Corner frames come after the others and by a lot of their own.
     """
-    pipes = [pipe for frame in plant.frames for pipe in frame.pipes]
-    kinds: dict[str, DamageKind] = {pipe.id: "sound" for pipe in pipes}
-    for kind in _KINDS:
-        free = [pipe.id for pipe in pipes
+    plain = [pipe for frame in plant.frames if not frame.is_corner for pipe in frame.pipes]
+    corner = [pipe for frame in plant.frames if frame.is_corner for pipe in frame.pipes]
+    kinds: dict[str, DamageKind] = {pipe.id: "sound" for pipe in (*plain, *corner)}
+    for kind in _dealt(random, share):
+        free = [pipe.id for pipe in plain
                 if kinds[pipe.id] == "sound" and (not pipe.only or kind in pipe.only)]  # fmt: skip
-        kinds[str(random.choice(free))] = kind
+        if free:
+            kinds[str(random.choice(free))] = kind
+    for pipe in corner:
+        if pipe.kinds:
+            kinds[pipe.id] = pipe.kinds[int(random.integers(len(pipe.kinds)))]
     return kinds
+
+
+def _dealt(random: np.random.Generator, share: float) -> tuple[DamageKind, ...]:
+    """Return the kinds to deal out."""
+    if share == 1.0:
+        return _KINDS
+    number = round(share * len(_KINDS))
+    rounds = [random.permutation(len(_KINDS)) for _ in range(number // len(_KINDS) + 1)]
+    return tuple(_KINDS[int(i)] for i in np.concatenate(rounds)[:number])
 
 
 def _weather(frame: PlantFrame, random: np.random.Generator) -> PlantFrame:
@@ -80,16 +138,33 @@ def _weather(frame: PlantFrame, random: np.random.Generator) -> PlantFrame:
     shift = round(
         float(np.clip(random.standard_normal(), -2, 2)) * _WEATHER["air_temperature_C"], 1
     )
-    for key in ("air_temperature_C", "surroundings_temperature_C", "reflected_temperature_C"):
+    for key in _SHIFTED & conditions.keys():
         conditions[key] = replace(conditions[key], value=round(conditions[key].value + shift, 1))
+    pieces = tuple(
+        replace(piece, temperature_C=replace(
+            piece.temperature_C, value=round(piece.temperature_C.value + shift, 1)
+        ))
+        for piece in frame.pieces
+    )  # fmt: skip
     if not frame.indoors:
         wind = conditions["wind_speed_m_s"]
         speed = round(wind.value * float(np.exp(_WEATHER["wind_speed_m_s"] * random.normal())), 1)
         conditions["wind_speed_m_s"] = Declared(speed, round(0.2 * speed + 0.1, 2))
-    return replace(frame, conditions=conditions)
+    return replace(frame, conditions=conditions, pieces=pieces)
 
 
-def make_frames(plant: Plant, seed: int) -> tuple[dict[str, LineTruth], Iterator[SampleFrame]]:
+def _in_the_sun(frame: PlantFrame, random: np.random.Generator) -> PlantFrame:
+    """Return an outdoor frame with the sun behind the camera, somewhere above."""
+    if frame.indoors or frame.sun:
+        return frame
+    across, height = random.uniform(-1.0, 1.0), random.uniform(0.4, 1.2)
+    conditions = frame.conditions | {"solar_irradiance_W_m2": _SUN}
+    return replace(frame, conditions=conditions, sun=(float(across), -float(height), -1.0))
+
+
+def make_frames(
+    plant: Plant, seed: int, options: SampleOptions = SampleOptions()
+) -> tuple[dict[str, LineTruth], Iterator[SampleFrame]]:
     """Make the survey of one seed, frame by frame.
 
     Parameters
@@ -98,6 +173,8 @@ def make_frames(plant: Plant, seed: int) -> tuple[dict[str, LineTruth], Iterator
         The plant.
     seed : int
         Same seed, same survey.
+    options : SampleOptions
+        What it is to be like.
 
     Returns
     -------
@@ -108,13 +185,16 @@ def make_frames(plant: Plant, seed: int) -> tuple[dict[str, LineTruth], Iterator
     """
     survey, lines, *frames = np.random.SeedSequence(seed).spawn(2 + len(plant.frames))
     random = np.random.default_rng(survey)
-    shared, kinds = draw_shared(random), assign_damage(plant, random)
+    shared = replace(draw_shared(random), law=options.convection, bias=options.convection_bias)
+    kinds = assign_damage(plant, random, options.damaged)
     children = zip(plant.lines.items(), lines.spawn(len(plant.lines)), strict=True)
     truths = {tag: draw_line(line, np.random.default_rng(child)) for (tag, line), child in children}
 
     def frame_of(plain: PlantFrame, child: np.random.SeedSequence) -> SampleFrame:
         random = np.random.default_rng(child)
         frame = _weather(plain, random)
+        if options.sun:
+            frame = _in_the_sun(frame, random.spawn(1)[0])
         truth = draw_frame(frame, shared, random)
         view = View(frame.rows, frame.cols, float(plant.camera["field_of_view_deg"]))
         pipes = [
@@ -129,12 +209,12 @@ def make_frames(plant: Plant, seed: int) -> tuple[dict[str, LineTruth], Iterator
     return truths, (frame_of(*pair) for pair in zip(plant.frames, frames, strict=True))
 
 
-def _write_into(folder: Path, seed: int) -> None:
+def _write_into(folder: Path, seed: int, options: SampleOptions) -> None:
     """Write all files of the sample into an empty folder."""
-    plant = load_plant()
+    plant = load_plant(options.corners)
     for name in ("frames", "regions", "truth"):
         (folder / name).mkdir()
-    lines, frames = make_frames(plant, seed)
+    lines, frames = make_frames(plant, seed, options)
     regions, stations = [], [STATION_HEADER]
     truths: dict[str, FrameTruth] = {}
     plants = []
@@ -151,6 +231,7 @@ def _write_into(folder: Path, seed: int) -> None:
             drawn = frame.drawn.drawn[pipe.plant.id]
             regions.append(region_truth(pipe, name, drawn))
             stations.extend(station_rows(pipe, name, drawn))
+    _write_text(folder / RESPONSE_FILE, response_text())
     _write_text(folder / "survey.toml", survey_text(plant, tuple(plants), seed))
     _write_text(folder / "truth" / "README.txt", TRUTH_README)
     _write_text(folder / "truth" / "truth.json", truth_json(seed, regions, truths, lines))
@@ -162,7 +243,7 @@ def _write_text(path: Path, text: str) -> None:
     path.write_bytes(text.encode("utf-8"))
 
 
-def write_sample(folder: Path, seed: int = 7) -> None:
+def write_sample(folder: Path, seed: int = 7, options: SampleOptions = SampleOptions()) -> None:
     """Write a survey of the invented plant, with its truth beside it.
 
     The folder appears whole or not at all.
@@ -174,6 +255,8 @@ def write_sample(folder: Path, seed: int = 7) -> None:
     seed : int
         0 or more. Same seed, same bytes; another seed places other damage in the same plant and
         draws other conditions.
+    options : SampleOptions
+        What the survey is to be like.
 
     Raises
     ------
@@ -190,7 +273,7 @@ def write_sample(folder: Path, seed: int = 7) -> None:
         target.parent.mkdir(parents=True, exist_ok=True)
         work = Path(tempfile.mkdtemp(prefix=f".{target.name[:40]}.", dir=target.parent))
         try:
-            _write_into(work, seed)
+            _write_into(work, seed, options)
             _put_in_place(work, target)
         finally:
             shutil.rmtree(work, ignore_errors=True)

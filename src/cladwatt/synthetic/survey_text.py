@@ -1,7 +1,15 @@
 """The sample's survey file, as a careful inspector would have written it."""
 
 from cladwatt.synthetic.frame_files import FRAME_FILES
-from cladwatt.synthetic.plant import Declared, Plant, PlantFrame, PlantLine
+from cladwatt.synthetic.plant import (
+    Declared,
+    Plant,
+    PlantFrame,
+    PlantLayer,
+    PlantLine,
+    PlantPiece,
+)
+from cladwatt.synthetic.response import RESPONSE_FILE
 
 __all__ = ["survey_text"]
 
@@ -28,6 +36,7 @@ field_of_view_deg = {field_of_view_deg}
 noise_K = {noise_K}
 accuracy_K = {accuracy_K}                    # limit of error, the larger of the two
 accuracy_of_reading_percent = {accuracy_of_reading_percent}
+spectral_response = "{response}"   # the type's, from its maker's sheet
 
 # What the camera had been told when it recorded: undone before anything else.
 [recording]
@@ -41,20 +50,60 @@ def _pair(key: str, declared: Declared) -> str:
     return f"{key} = {declared.value:g}\nu_{key} = {declared.u:g}"
 
 
-def _line(line: PlantLine) -> str:
-    parts = [
-        "[[line]]", f'tag = "{line.tag}"', f'area = "{line.area}"', f'fluid = "{line.fluid}"',
-        _pair("fluid_temperature_C", line.quantities["fluid_temperature_C"]),
-        _pair("pipe_outside_diameter_mm", line.quantities["pipe_outside_diameter_mm"]),
+def _layer(layer: PlantLayer) -> str:
+    depth = (
+        f"thickness_mm = {layer.thickness_mm.value:g}, u_thickness_mm = {layer.thickness_mm.u:g}"
+    )
+    if layer.material:
+        return f'  {{ material = "{layer.material}", {depth} }},'
+    return (
+        f'  {{ kind = "air_gap", {depth}, inner_emissivity = {layer.inner_emissivity:g}, '
+        f"outer_emissivity = {layer.outer_emissivity:g} }},"
+    )
+
+
+def _lagging(line: PlantLine) -> list[str]:
+    if line.layers:
+        return ["layers = [", *(_layer(layer) for layer in line.layers), "]"]
+    return [
         f'lagging_material = "{line.material}"',
         _pair("lagging_thickness_mm", line.quantities["lagging_thickness_mm"]),
+    ]
+
+
+def _inside(line: PlantLine) -> list[str]:
+    known = line.quantities
+    if "steam_pressure_bar" not in known:
+        return [_pair("fluid_temperature_C", known["fluid_temperature_C"])]
+    return [_pair("steam_pressure_bar", known["steam_pressure_bar"]), 'steam_pressure_is = "gauge"']
+
+
+def _line(line: PlantLine) -> str:
+    known = line.quantities
+    parts = [
+        "[[line]]", f'tag = "{line.tag}"', f'area = "{line.area}"', f'fluid = "{line.fluid}"',
+        *_inside(line),
+        _pair("pipe_outside_diameter_mm", known["pipe_outside_diameter_mm"]), *_lagging(line),
         f'cladding = "{line.cladding}"', f"cladding_thickness_mm = {line.cladding_thickness_mm:g}",
-        _pair("emissivity", line.quantities["emissivity"]),
-        _pair("total_emissivity", line.quantities["total_emissivity"]),
+        _pair("emissivity", known["emissivity"]),
+        _pair("total_emissivity", known["total_emissivity"]),
     ]  # fmt: skip
     if line.inclination_deg:
         parts.append(f"inclination_deg = {line.inclination_deg:g}")
+    if line.tracer_clock is not None:
+        parts.append(f'tracing = "steam"\ntracer_clock_position = {line.tracer_clock:g}')
+        parts.append(_pair("tracer_temperature_C", known["tracer_temperature_C"]))
+    if "hours_at_temperature" in known:
+        parts.append(_pair("hours_at_temperature", known["hours_at_temperature"]))
     return "\n".join(parts)
+
+
+def _piece(piece: PlantPiece) -> str:
+    known = piece.temperature_C
+    return (
+        f'  {{ what = "{piece.what}", temperature_C = {known.value:g}, '
+        f"u_temperature_C = {known.u:g}, view_factor = {piece.view_factor:g} }},"
+    )
 
 
 def _frame(frame: PlantFrame, date: str) -> str:
@@ -65,6 +114,12 @@ def _frame(frame: PlantFrame, date: str) -> str:
         f"indoors = {str(frame.indoors).lower()}",
         *(_pair(key, declared) for key, declared in frame.conditions.items()),
     ]  # fmt: skip
+    if frame.pieces:
+        parts += ["surroundings = [", *(_piece(piece) for piece in frame.pieces), "]"]
+    if frame.sun:
+        parts += ["sun_on_pipe = true", "sun_last_24h = true"]
+    if frame.wet:
+        parts += ["surface_wet = true", "rain_last_24h = true"]
     return "\n".join(parts)
 
 
@@ -87,7 +142,7 @@ def survey_text(plant: Plant, frames: tuple[PlantFrame, ...], seed: int) -> str:
     """
     date = plant.survey["date"]
     return "\n\n".join([
-        _HEAD.format(seed=seed, **plant.survey, **plant.camera).rstrip(),
+        _HEAD.format(seed=seed, response=RESPONSE_FILE, **plant.survey, **plant.camera).rstrip(),
         "# ---- the line list " + "-" * 60,
         *(_line(line) for line in plant.lines.values()),
         "# ---- the frames " + "-" * 63,

@@ -1,20 +1,40 @@
 """What was really so: draws of everything declared, and of what nobody declares."""
 
-from dataclasses import dataclass
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+from typing import Any, Literal
 
 import numpy as np
 from scipy.special import ndtr
 
-from cladwatt.materials.tables import lagging_material
+from cladwatt.materials.tables import cladding_material, lagging_material
 from cladwatt.physics.atmosphere import air_path_transmission
 from cladwatt.physics.conduction import ConductivityIntegral
-from cladwatt.physics.constants import ZERO_CELSIUS
+from cladwatt.physics.constants import STANDARD_PRESSURE, ZERO_CELSIUS
+from cladwatt.physics.steam import saturation_temperature
+from cladwatt.synthetic.layered import LayeredCurve, gap_coefficient
+from cladwatt.synthetic.outdoors import draw_reflected, draw_surroundings
 from cladwatt.synthetic.plant import Declared, PlantFrame, PlantLine
+from cladwatt.types import FloatArray
 
-__all__ = ["FrameTruth", "LineTruth", "Shared", "draw_frame", "draw_line", "draw_shared"]
+__all__ = [
+    "RADIAL_CELLS",
+    "ConvectionLaw",
+    "FrameTruth",
+    "LineTruth",
+    "Shared",
+    "draw_frame",
+    "draw_line",
+    "draw_shared",
+]
+
+ConvectionLaw = Literal["churchill", "morgan_zukauskas"]
+RADIAL_CELLS = 5
+"""Cells from the pipe to the cladding."""
 
 _BAND_LIMITS = (7.5e-6, 14e-6)
 INSTALLATION_FACTOR = Declared(1.15, 0.08)
+_BARE_EMISSIVITY = Declared(0.82, 0.06)
 
 
 @dataclass(frozen=True)
@@ -23,6 +43,10 @@ class Shared:
 
     calibration: float
     convection: float
+    law: ConvectionLaw = "churchill"
+    """Correlations the air obeys."""
+    bias: float = 1.0
+    """Multiplies every convection coefficient."""
 
 
 @dataclass(frozen=True)
@@ -37,7 +61,16 @@ class LineTruth:
     bare_emissivity: float
     conductivity_factor: float
     installation_factor: float
-    curve: ConductivityIntegral
+    curve: ConductivityIntegral | LayeredCurve
+    solar_absorptance: float = 0.0
+    gap: float = 0.0
+    """Air gap under the cladding. [m]"""
+    gap_coefficient: Callable[[FloatArray], FloatArray] | None = None
+    tracer_temperature: float | None = None
+    hours_at_temperature: float | None = None
+    layer_thickness: tuple[float, ...] = ()
+    layer_factor: tuple[float, ...] = ()
+    """Of each layer of lagging where there are several; of its conductivity."""
 
 
 @dataclass(frozen=True)
@@ -59,6 +92,13 @@ class FrameTruth:
     """Where it is largest. [rad]"""
     calibration: float
     """Share of the camera's limit, -1 to 1."""
+    sun: tuple[float, ...] = ()
+    """Towards the sun, in camera coordinates."""
+    solar_irradiance: float = 0.0
+    """On the pipe's projected area. [W/m2]"""
+    wet: bool = False
+    """Whether rain stands on the cladding."""
+    convection_law: ConvectionLaw = "churchill"
 
 
 def draw_shared(random: np.random.Generator) -> Shared:
@@ -93,22 +133,74 @@ def draw_line(line: PlantLine, random: np.random.Generator) -> LineTruth:
         The draw; band and total emissivity are off together, with correlation 0.7.
     """
     known = line.quantities
-    material = lagging_material(line.material)
     band = _draw(known["emissivity"], random, 0.02, 0.985)
     off = (band - known["emissivity"].value) / known["emissivity"].u
     rest = float(np.sqrt(1 - 0.7**2) * random.standard_normal())
     total = known["total_emissivity"].value + known["total_emissivity"].u * (0.7 * off + rest)
-    return LineTruth(
-        fluid_temperature=ZERO_CELSIUS + _draw(known["fluid_temperature_C"], random),
-        pipe_diameter=_draw(known["pipe_outside_diameter_mm"], random) / 1000,
-        thickness=_draw(known["lagging_thickness_mm"], random, 5.0) / 1000,
-        band_emissivity=band,
+    fluid = _fluid_temperature(line, random)
+    diameter = _draw(known["pipe_outside_diameter_mm"], random) / 1000
+    lagging = _layered(line, diameter, random) if line.layers else _single(line, random)
+    absorptance = cladding_material(line.cladding).solar_absorptance
+    plain = LineTruth(
+        fluid_temperature=fluid, pipe_diameter=diameter, band_emissivity=band,
         total_emissivity=float(np.clip(total, 0.02, 0.985)),
-        bare_emissivity=_draw(Declared(0.82, 0.06), random, 0.5, 0.97),
-        conductivity_factor=_draw(Declared(1.0, material.u_relative), random, 0.5, 2.0),
+        **lagging,
         installation_factor=_draw(INSTALLATION_FACTOR, random, 0.8, 3.0),
-        curve=ConductivityIntegral(list(material.temperature), list(material.conductivity)),
+    )  # fmt: skip
+    # what came later is drawn last, so that a seed keeps its lines
+    hours = known.get("hours_at_temperature")
+    tracer = known.get("tracer_temperature_C")
+    return replace(
+        plain,
+        solar_absorptance=_draw(Declared(absorptance.value, absorptance.u), random, 0.05, 0.97),
+        hours_at_temperature=None if hours is None else _draw(hours, random, 0.05),
+        tracer_temperature=None if tracer is None else ZERO_CELSIUS + _draw(tracer, random),
     )
+
+
+def _fluid_temperature(line: PlantLine, random: np.random.Generator) -> float:
+    """Draw what flows in the pipe; steam boils at what its gauge shows over the air's pressure."""
+    if "fluid_temperature_C" in line.quantities:
+        return ZERO_CELSIUS + _draw(line.quantities["fluid_temperature_C"], random)
+    gauge = 1e5 * _draw(line.quantities["steam_pressure_bar"], random)
+    return float(saturation_temperature(gauge + STANDARD_PRESSURE + 200 * random.standard_normal()))
+
+
+def _single(line: PlantLine, random: np.random.Generator) -> dict[str, Any]:
+    """Draw lagging of one layer."""
+    material = lagging_material(line.material)
+    return {
+        "thickness": _draw(line.quantities["lagging_thickness_mm"], random, 5.0) / 1000,
+        "bare_emissivity": _draw(_BARE_EMISSIVITY, random, 0.5, 0.97),
+        "conductivity_factor": _draw(Declared(1.0, material.u_relative), random, 0.5, 2.0),
+        "curve": ConductivityIntegral(list(material.temperature), list(material.conductivity)),
+    }
+
+
+def _layered(line: PlantLine, diameter: float, random: np.random.Generator) -> dict[str, Any]:
+    """Draw lagging of several layers and the air gap over it."""
+    solid = [layer for layer in line.layers if layer.material]
+    materials = [lagging_material(layer.material) for layer in solid]
+    thickness = tuple(_draw(layer.thickness_mm, random, 2.0) / 1000 for layer in solid)
+    factors = tuple(_draw(Declared(1.0, m.u_relative), random, 0.5, 2.0) for m in materials)
+    curves = tuple(ConductivityIntegral(list(m.temperature), list(m.conductivity))
+                   for m in materials)  # fmt: skip
+    found: dict[str, Any] = {
+        "thickness": sum(thickness),
+        "bare_emissivity": _draw(_BARE_EMISSIVITY, random, 0.5, 0.97),
+        "conductivity_factor": 1.0,
+        "curve": LayeredCurve.stacked(diameter / 2, thickness, curves, factors, RADIAL_CELLS),
+        "layer_thickness": thickness,
+        "layer_factor": factors,
+    }
+    for layer in line.layers:
+        if not layer.material:
+            gap = _draw(layer.thickness_mm, random, 1.0) / 1000
+            found["gap"] = gap
+            found["gap_coefficient"] = gap_coefficient(
+                gap, layer.inner_emissivity, layer.outer_emissivity
+            )
+    return found
 
 
 def draw_frame(frame: PlantFrame, shared: Shared, random: np.random.Generator) -> FrameTruth:
@@ -138,19 +230,32 @@ def draw_frame(frame: PlantFrame, shared: Shared, random: np.random.Generator) -
     transmission = float(air_path_transmission(
         path, air_temperature=air, relative_humidity=humidity, band_limits=_BAND_LIMITS
     ))  # fmt: skip
+    # what came later draws from a stream of its own, so that a seed keeps its frames
+    (more,) = random.spawn(1)
+    surroundings = draw_surroundings(frame, air, humidity, more)
+    if surroundings is None:
+        surroundings = ZERO_CELSIUS + _draw(known["surroundings_temperature_C"], random)
+    reflected = draw_reflected(frame, air, more)
+    if reflected is None:
+        reflected = ZERO_CELSIUS + _draw(known["reflected_temperature_C"], random)
+    sun = known.get("solar_irradiance_W_m2") if frame.sun else None
     return FrameTruth(
         air_temperature=air,
-        surroundings_temperature=ZERO_CELSIUS + _draw(known["surroundings_temperature_C"], random),
-        reflected_temperature=ZERO_CELSIUS + _draw(known["reflected_temperature_C"], random),
+        surroundings_temperature=surroundings,
+        reflected_temperature=reflected,
         relative_humidity=humidity,
         wind_speed=_draw(known["wind_speed_m_s"], random, 0.0),
         distance_ratio=path / distance.value,
         transmission=min(1.0, transmission * (1 + 0.15 * (1 - transmission) * random.normal())),
         convection_factor=float(
-            np.exp(spread * np.sqrt(0.5) * (shared.convection + own_convection))
+            shared.bias * np.exp(spread * np.sqrt(0.5) * (shared.convection + own_convection))
         ),
         unevenness=float(random.uniform(0.10, 0.20)),
         # still air cools the underside best, wind the side it meets
         unevenness_angle=float(np.pi if frame.indoors else random.uniform(0, 2 * np.pi)),
         calibration=float(2 * ndtr(np.sqrt(0.5) * (shared.calibration + own_calibration)) - 1),
+        sun=frame.sun,
+        solar_irradiance=0.0 if sun is None else _draw(sun, more, 0.0),
+        wet=frame.wet,
+        convection_law=shared.law,
     )

@@ -7,6 +7,8 @@ from typing import Any
 import numpy as np
 
 from cladwatt.physics.constants import ZERO_CELSIUS
+from cladwatt.physics.humidity import dew_point
+from cladwatt.synthetic.bodies import PlacedBody, body_numbers
 from cladwatt.synthetic.pipes import PipeTruth
 from cladwatt.synthetic.truth import FrameTruth, LineTruth
 
@@ -31,12 +33,16 @@ truth.json          by region: kind of damage, whether it counts as damaged (loc
                     ageing throughout that raises the loss more than 10 % above sound), length of
                     the drawn part, mean loss along it without components, what the same pipe
                     would lose if sound and as specified, local stretches; by frame and line: the
-                    real conditions behind the declared ones
+                    real conditions behind the declared ones; by component: the heat it gives
+                    off, and the length of sound lagged pipe that would give as much
 truth_stations.csv  along every drawn part: loss, mean surface temperature around the pipe,
                     resistance of the lagging. Stations run from the first drawn vertex.
 
-A loss is heat given off to the room, negative on a chilled line. "without components" leaves out
-the pipe under a drawn flange or support.
+A loss is heat given off to the room, negative on a chilled line. It is what leaves the surface:
+condensing water brings heat, drying water takes it, and what the sun leaves in the cladding is
+taken off. "without components" leaves out the pipe under a drawn flange, valve or support. On a
+traced line a part of the loss comes from the tracer; on a line that has just come to temperature
+the loss still grows, while the sound one is that at rest.
 """
 
 
@@ -101,6 +107,39 @@ def region_truth(pipe: PipeTruth, frame_id: str, drawn: tuple[float, float]) -> 
             float(pipe.surface_temperature[counted].mean()) - ZERO_CELSIUS, 3
         ),
         "stretches": stretches,
+        "components": [
+            _component(pipe, body, number, drawn)
+            for body, number in zip(pipe.bodies, body_numbers(pipe.bodies), strict=True)
+        ],
+        "water_on_surface": round(float(pipe.water_share[counted].mean()), 4),
+        "inside_heat_W_per_m": _rounded(float(pipe.inside_heat[counted].mean())),
+    } | _tracer(pipe, counted)
+
+
+def _tracer(pipe: PipeTruth, counted: Any) -> dict[str, float]:
+    if pipe.tracer_heat is None:
+        return {}
+    return {"tracer_heat_W_per_m": _rounded(float(pipe.tracer_heat[counted].mean()))}
+
+
+def _component(
+    pipe: PipeTruth, body: PlacedBody, number: int, drawn: tuple[float, float]
+) -> dict[str, Any]:
+    taken = body.covers(pipe.station)
+    heat = float(pipe.heat_loss[taken].sum()) * pipe.cell_length
+    length = float(np.count_nonzero(taken)) * pipe.cell_length
+    return {
+        "region_id": f"{pipe.plant.id}-{body.plant.kind}" + (f"-{number}" if number > 1 else ""),
+        "kind": body.plant.kind,
+        "lagged": body.plant.lagged,
+        "start_m": round(body.start - drawn[0], 4),
+        "end_m": round(body.end - drawn[0], 4),
+        "heat_loss_W": _rounded(heat),
+        "surface_temperature_C": round(
+            float(pipe.surface_temperature[taken].mean()) - ZERO_CELSIUS, 3
+        ),
+        "equivalent_lagged_length_m": _rounded(heat / pipe.sound_loss, 4),
+        "added_lagged_length_m": _rounded(heat / pipe.sound_loss - length, 4),
     }
 
 
@@ -122,7 +161,8 @@ STATION_HEADER = (
 
 
 def _conditions(truth: FrameTruth) -> dict[str, float]:
-    return {
+    dew = float(dew_point(truth.air_temperature, truth.relative_humidity))
+    found = {
         "air_temperature_C": round(truth.air_temperature - ZERO_CELSIUS, 3),
         "surroundings_temperature_C": round(truth.surroundings_temperature - ZERO_CELSIUS, 3),
         "reflected_temperature_C": round(truth.reflected_temperature - ZERO_CELSIUS, 3),
@@ -131,11 +171,15 @@ def _conditions(truth: FrameTruth) -> dict[str, float]:
         "atmosphere_transmission": round(truth.transmission, 5),
         "convection_factor": round(truth.convection_factor, 4),
         "calibration_share_of_limit": round(truth.calibration, 4),
+        "dew_point_C": round(dew - ZERO_CELSIUS, 3),
     }
+    if truth.sun:
+        found["solar_irradiance_W_m2"] = round(truth.solar_irradiance, 2)
+    return found
 
 
-def _line(truth: LineTruth) -> dict[str, float]:
-    return {
+def _line(truth: LineTruth) -> dict[str, Any]:
+    found: dict[str, Any] = {
         "fluid_temperature_C": round(truth.fluid_temperature - ZERO_CELSIUS, 3),
         "pipe_outside_diameter_mm": round(truth.pipe_diameter * 1000, 3),
         "lagging_thickness_mm": round(truth.thickness * 1000, 3),
@@ -144,7 +188,18 @@ def _line(truth: LineTruth) -> dict[str, float]:
         "bare_pipe_emissivity": round(truth.bare_emissivity, 4),
         "conductivity_factor": round(truth.conductivity_factor, 4),
         "installation_factor": round(truth.installation_factor, 4),
+        "solar_absorptance": round(truth.solar_absorptance, 4),
     }
+    if truth.layer_thickness:
+        found["layer_thickness_mm"] = [round(1000 * part, 3) for part in truth.layer_thickness]
+        found["layer_conductivity_factor"] = [round(part, 4) for part in truth.layer_factor]
+    if truth.gap:
+        found["air_gap_mm"] = round(1000 * truth.gap, 3)
+    if truth.tracer_temperature is not None:
+        found["tracer_temperature_C"] = round(truth.tracer_temperature - ZERO_CELSIUS, 3)
+    if truth.hours_at_temperature is not None:
+        found["hours_at_temperature"] = round(truth.hours_at_temperature, 4)
+    return found
 
 
 def truth_json(
