@@ -3,7 +3,7 @@
 from cladwatt.measure.strip import UNKNOWN_VIEW_DEG
 from cladwatt.quantities import Quantity
 from cladwatt.results.assessment import Assumption
-from cladwatt.survey.model import Conditions, Line
+from cladwatt.survey.model import Conditions, Line, SurroundingsPiece
 from cladwatt.survey.survey import Survey
 
 __all__ = ["assumptions_of"]
@@ -19,6 +19,7 @@ _CONDITION_UNITS = {
     "sky_band_temperature": "K",
     "sky_total_temperature": "K",
     "sky_view_factor": "-",
+    "cloud_cover": "-",
     "solar_irradiance": "W/m2",
 }
 
@@ -76,7 +77,12 @@ def _line(line: Line) -> list[Assumption]:
     named: list[tuple[str, Quantity | None, str]] = [
         ("pipe_outside_diameter", line.pipe_outside_diameter, "m"),
         ("inside_temperature", line.inside_temperature, "K"),
+        ("steam_pressure", line.steam_pressure, "Pa"),
+        ("inside_film", line.inside_film, "W/(m2 K)"),
+        ("flow", line.flow, "kg/s"),
+        ("specific_heat", line.specific_heat, "J/(kg K)"),
         ("installation_factor", line.installation_factor, "-"),
+        ("supports_allowance", line.supports_allowance, "-"),
         ("band_emissivity", cladding.band_emissivity, "-"),
         ("total_emissivity", cladding.total_emissivity, "-"),
         ("cladding_thickness", cladding.thickness, "m"),
@@ -111,9 +117,29 @@ def _conditions(survey: Survey) -> list[Assumption]:
             if value is not None:
                 by_value.setdefault(value, []).append(frame.id)
         for value, frames in by_value.items():
-            everywhere = len(frames) == len(survey.frames)
-            owner = "all frames" if everywhere else "frame " + ", ".join(frames)
-            rows.append(_row(owner, name, value, unit))
+            rows.append(_row(_frames_named(survey, frames), name, value, unit))
+    return rows + _pieces(survey)
+
+
+def _frames_named(survey: Survey, frames: list[str]) -> str:
+    everywhere = len(frames) == len(survey.frames)
+    return "all frames" if everywhere else "frame " + ", ".join(frames)
+
+
+def _pieces(survey: Survey) -> list[Assumption]:
+    """List surroundings declared in pieces, once for all frames that share them."""
+    by_pieces: dict[tuple[SurroundingsPiece, ...], list[str]] = {}
+    for frame in survey.frames:
+        pieces = frame.conditions.surroundings_pieces
+        if pieces:
+            by_pieces.setdefault(pieces, []).append(frame.id)
+    rows = []
+    for pieces, frames in by_pieces.items():
+        owner = _frames_named(survey, frames)
+        for number, piece in enumerate(pieces, start=1):
+            name = f"surroundings_{number}_{piece.what}"
+            rows.append(_row(owner, f"{name}_temperature", piece.temperature, "K"))
+            rows.append(_row(owner, f"{name}_view_factor", piece.view_factor, "-"))
     return rows
 
 
