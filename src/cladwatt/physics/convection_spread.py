@@ -1,6 +1,7 @@
 """How far published correlations of convection differ under given conditions."""
 
 from collections.abc import Sequence
+from dataclasses import replace
 from typing import Final
 
 import numpy as np
@@ -13,6 +14,11 @@ from cladwatt.physics.natural_convection import (
     slenderness_factor_popiel,
 )
 from cladwatt.physics.surface_balance import SurfaceExchange
+from cladwatt.physics.yawed_wind import (
+    yaw_factor_ieee738,
+    yaw_factor_morgan,
+    yaw_factor_smooth,
+)
 from cladwatt.types import BoolArray, FloatArray, FloatLike
 
 __all__ = ["CROSS_FLOW_FLOOR", "STILL_AIR_FLOOR", "correlation_spread", "iso_outdoor_ratio"]
@@ -66,6 +72,8 @@ def correlation_spread(surface_temperature: FloatLike, exchange: SurfaceExchange
     assert forced is not None
     across = forced(stream)
     u_across = np.maximum(_deviation(_crossing(stream)), CROSS_FLOW_FLOOR)
+    if np.any(np.asarray(exchange.wind_angle_deg) != 90.0):
+        u_across = np.hypot(u_across, _deviation(_yawed(exchange)))
     natural = CONVECTION_LAWS["churchill"].natural(stream)
     u_natural = np.maximum(_deviation(_horizontal(stream)), STILL_AIR_FLOOR)
     level = _mixed(across, u_across, natural, u_natural, 4.0)
@@ -159,6 +167,17 @@ def _crossing(stream: AirStream) -> list[_Member]:
         reynolds = stream.reynolds(stream.free if law.free_stream else stream.film)
         members.append((law.forced(stream), _within(reynolds, law.reynolds_range)))
     return members
+
+
+def _yawed(exchange: SurfaceExchange) -> list[_Member]:
+    angle = np.asarray(exchange.wind_angle_deg, dtype=np.float64)
+    forced = CONVECTION_LAWS["churchill"].forced
+    assert forced is not None
+    square = forced(_stream(exchange.air_temperature, replace(exchange, wind_angle_deg=90.0)))
+    # the ratio hardly depends on the surface's temperature
+    own = forced(_stream(exchange.air_temperature, exchange)) / square
+    rules = (yaw_factor_smooth, yaw_factor_morgan, yaw_factor_ieee738)
+    return [(own, own > 0.0), *((np.asarray(rule(angle)), angle >= 0.0) for rule in rules)]
 
 
 def _within(number: FloatArray, limits: tuple[float, float]) -> BoolArray:
