@@ -20,7 +20,7 @@ PAGE = Path(__file__).parent.parent / "src/cladwatt/guide/inputs.md"
 RECORDED_ONLY = frozenset(
     {
         "wind_angle", "roll", "tracer_clock_position",
-        "tracer_temperature", "tracer_power", "pipe_material", "latitude", "longitude", "lagged",
+        "tracer_temperature", "tracer_power", "pipe_material", "latitude", "longitude",
         "access", "condition", "lagging_condition",
     }
 )  # fmt: skip
