@@ -1,5 +1,6 @@
 """Steps through the lagging: as specified, sound, and as found."""
 
+import math
 from dataclasses import replace
 from itertools import pairwise
 
@@ -7,14 +8,12 @@ import numpy as np
 
 from cladwatt.explain.steps import Pad, Section, source_of
 from cladwatt.explain.surface_steps import exchange_steps
+from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.seen import Seen
-from cladwatt.physics.lagged_pipe import (
-    LaggedPipeState,
-    LaggingLayer,
-    lagging_resistance_from_surface,
-    solve_lagged_pipe,
-)
-from cladwatt.survey.model import Line
+from cladwatt.inverse.sound import SoundDraws, film_resistance
+from cladwatt.physics.conduction import ConductivityIntegral, cylinder_resistance
+from cladwatt.physics.lagged_pipe import LaggingLayer, lagging_resistance_from_surface
+from cladwatt.types import FloatArray
 
 __all__ = ["lagging_sections", "result_section"]
 
@@ -22,137 +21,186 @@ CARSLAW = "Carslaw and Jaeger, section 1.6"
 ISO_12241 = "ISO 12241, hollow cylinder"
 
 
-def lagging_sections(seen: Seen) -> tuple[Section, ...]:
+def lagging_sections(seen: Seen, sound: SoundDraws) -> tuple[Section, Section]:
     """Return the lagging as specified and as sound, solved in the frame's conditions.
 
     Parameters
     ----------
     seen : Seen
         With one draw.
-
-    Returns
-    -------
-    tuple of Section
-        Empty where inside temperature, lagging or diameter is unknown.
+    sound : SoundDraws
+        What the engine found.
     """
     line = seen.line_draws
-    if line.inside_temperature is None or line.layers is None or line.lagged_diameter is None:
-        return ()
-    specified, sound = Pad(), Pad()
-    inside = seen.line.inside_temperature
-    assert inside is not None
-    specified.given("inside_temperature", "T_in", line.inside_temperature, "K", inside.source)
-    if seen.region.outside_diameter is not None and line.pipe_diameter is not None:
-        pipe = seen.line.pipe_outside_diameter
-        assert pipe is not None
-        specified.given("pipe_diameter", "d", line.pipe_diameter, "m", pipe.source)
-        for number, (declared, layer) in enumerate(zip(seen.line.layers, line.layers, strict=True)):
-            source = source_of(declared.thickness, "")
-            symbol = f"t_{number + 1}"
-            specified.given("layer_thickness", symbol, layer.thickness, "m", source)
-    _through(specified, seen, line.layers, "_spec")
-    factor = seen.line.installation_factor.source
-    sound.given("installation_factor", "f_inst", line.installation_factor, "-", factor)
+    assert line.layers is not None
     installed = tuple(
         replace(layer, factor=np.asarray(layer.factor) * line.installation_factor)
         for layer in line.layers
     )
-    _through(sound, seen, installed, "_sound")
-    _closed(sound, seen, installed)
-    return specified.section("specified"), sound.section("sound")
+    pad = Pad()
+    _given(pad, seen)
+    _Through(pad, seen, line.layers, sound.specified_loss, "_spec").write()
+    specified = pad.section("specified")
+    pad = Pad()
+    factor = seen.line.installation_factor.source
+    pad.given("installation_factor", "f_inst", line.installation_factor, "-", factor)
+    through = sound.heat_loss / (1 + line.supports_allowance)
+    _Through(pad, seen, installed, through, "_sound").write()
+    if line.supports_allowance.any():
+        source = seen.line.supports_allowance.source
+        pad.given("supports_allowance", "s_sup", line.supports_allowance, "-", source)
+        pad.found("sound_loss", "q'_sound", sound.heat_loss, "W/m", "(1 + s_sup) q'_lag_sound",
+                  "s_sup q'_lag_sound")  # fmt: skip
+    return specified, pad.section("sound")
 
 
-def _solved(seen: Seen, layers: tuple[LaggingLayer, ...]) -> LaggedPipeState:
+def _given(pad: Pad, seen: Seen) -> None:
+    """Write down the inside of the pipe, and what an overridden diameter has left out."""
     line = seen.line_draws
-    assert line.inside_temperature is not None
-    assert line.pipe_diameter is not None
-    assert line.lagged_diameter is not None
-    exchange = line.exchange(seen.frame, line.lagged_diameter)
-    return solve_lagged_pipe(line.inside_temperature, line.pipe_diameter, layers, exchange)
+    _inside(pad, seen)
+    film = film_resistance(line)
+    if seen.region.outside_diameter is not None:
+        source = source_of(seen.line.pipe_outside_diameter, "")
+        pad.given("pipe_diameter", "d", _known(line.pipe_diameter), "m", source)
+        assert line.layers is not None
+        for number, layer in enumerate(line.layers, start=1):
+            source = source_of(seen.line.layers[number - 1].thickness, "")
+            pad.given("layer_thickness", f"t_{number}", layer.thickness, "m", source)
+    if film is not None:
+        source = source_of(seen.line.inside_film, "")
+        pad.given("film_coefficient", "h_in", _known(line.film_coefficient), "W/(m² K)", source)
+        pad.found("film_resistance", "R_film", film, "m K/W", "1 / (pi d h_in)", "d h_in")
 
 
-def _through(pad: Pad, seen: Seen, layers: tuple[LaggingLayer, ...], suffix: str) -> None:
-    """Write down the solved temperatures, each layer's resistance, and the loss by conduction."""
-    state = _solved(seen, layers)
-    faces = _faces(len(layers), suffix)
-    installed = suffix == "_sound"
-    how = "solved together with the surface's balance" + (", checked below" if installed else "")
-    for number, symbol in enumerate(faces[1:], start=1):
-        key = "solved_surface" if number == len(layers) else "solved_interface"
-        pad.given(key, symbol, state.interface_temperatures[number], "K", how)
-    inner, parts = "d", []
-    for number, (layer, (hot, cold)) in enumerate(zip(layers, pairwise(faces), strict=True), 1):
-        warm, cool = (state.interface_temperatures[number - 1 + side] for side in (0, 1))
-        mean = layer.conductivity.mean(warm, cool)
+def _inside(pad: Pad, seen: Seen) -> None:
+    """Write down the inside temperature."""
+    source = source_of(seen.line.inside_temperature, "")
+    if seen.line.flow is not None and seen.line.specific_heat is not None:
+        source += ", falling along the line by its loss"
+    pad.given("inside_temperature", "T_in", _known(seen.line_draws.inside_temperature), "K", source)
+
+
+def _known(draws: FloatArray | None) -> FloatArray:
+    assert draws is not None
+    return draws
+
+
+class _Through:
+    """The way of the heat through lagging, for a loss that the engine has solved."""
+
+    def __init__(
+        self,
+        pad: Pad,
+        seen: Seen,
+        layers: tuple[LaggingLayer, ...],
+        heat_loss: FloatArray,
+        suffix: str,
+    ) -> None:
+        self.pad, self.seen, self.layers = pad, seen, layers
+        self.heat_loss, self.suffix = heat_loss, suffix
+        self.is_sound = suffix == "_sound"
+
+    def write(self) -> None:
+        """Write down temperatures, resistances, the loss, and for sound lagging the check."""
+        pad, suffix, film = self.pad, self.suffix, film_resistance(self.seen.line_draws)
+        wall = _known(self.seen.line_draws.inside_temperature)
+        first, total = "T_in", ""
+        if film is not None:
+            wall, first, total = wall - film * self.heat_loss, f"T_wall{suffix}", "R_film + "
+        temperatures, resistances = self.marched(wall)
+        faces = [first, *(f"T_{number}{suffix}" for number in range(1, len(self.layers)))]
+        faces.append(f"T_s{suffix}")
+        how = "solved together with the surface's balance" + ", checked below" * self.is_sound
+        if film is not None:
+            pad.given("wall_temperature", first, wall, "K", how)
+        for number, (symbol, value) in enumerate(zip(faces[1:], temperatures[1:], strict=True), 1):
+            key = "solved_surface" if number == len(self.layers) else "solved_interface"
+            pad.given(key, symbol, value, "K", how)
+        for number, (hot, cold) in enumerate(pairwise(faces)):
+            mean = self.layers[number].conductivity.mean(*temperatures[number : number + 2])
+            self.layer(number, hot, cold, mean, resistances[number])
+        sum_of = " + ".join(f"R_{number}{suffix}" for number in range(1, len(self.layers) + 1))
+        if len(self.layers) > 1:
+            pad.found("lagging_resistance", f"R{suffix}", sum(resistances), "m K/W", sum_of,
+                      sum_of.replace(" + ", " "))  # fmt: skip
+            sum_of = f"R{suffix}"
+        formula = f"(T_in - {faces[-1]}) / ({total}{sum_of})"
+        inputs = f"T_in {faces[-1]} {total.replace('+', '')}{sum_of}"
+        plain = not (self.is_sound and self.seen.line_draws.supports_allowance.any())
+        symbol, key = f"q'{suffix}" if plain else f"q'_lag{suffix}", "specified_loss"
+        if self.is_sound:
+            key = "sound_loss" if plain else "lagging_loss"
+        pad.found(key, symbol, self.heat_loss, "W/m", formula, inputs)
+        if self.is_sound:
+            self.check(float(temperatures[-1][0]), symbol)
+
+    def marched(self, wall: FloatArray) -> tuple[list[FloatArray], list[FloatArray]]:
+        """Return the temperatures from the pipe outwards and each layer's resistance."""
+        temperatures, resistances = [wall], []
+        inner = _known(self.seen.line_draws.pipe_diameter)
+        for layer in self.layers:
+            outer = inner + 2 * np.asarray(layer.thickness)
+            shape = cylinder_resistance(inner, outer, layer.factor)
+            conductivity, inner = layer.conductivity, outer
+            integral = conductivity.integral(temperatures[-1]) - self.heat_loss * shape
+            temperatures.append(conductivity.inverse(integral))
+            resistances.append(shape / conductivity.mean(*temperatures[-2:]))
+        return temperatures, resistances
+
+    def layer(
+        self, number: int, hot: str, cold: str, mean: FloatArray, resistance: FloatArray
+    ) -> None:
+        """Write down one layer's mean conductivity and resistance; `number` from 0."""
+        pad, suffix, one = self.pad, self.suffix, number + 1
+        specified = self.seen.line_draws.layers
+        assert specified is not None
+        factors = "f_inst " if self.is_sound else ""
+        own = np.asarray(specified[number].factor)
+        if (own != 1).any():
+            factors += f"f_{one} "
+            if not self.is_sound:
+                source = self.seen.line.layers[number].conductivity_factor.source
+                pad.given("conductivity_factor", f"f_{one}", own, "-", source)
+        curve = _curve(self.layers[number].conductivity)
+        pad.found("mean_conductivity", f"k_{one}{suffix}", mean, "W/(m K)",
+                  f"mean of k(T) between {hot} and {cold}; {curve}", f"{hot} {cold}",
+                  CARSLAW)  # fmt: skip
+        inner = "d" + "".join(f" + 2 t_{below}" for below in range(1, one))
+        thick = " ".join(f"t_{below}" for below in range(1, one + 1))
         pad.found(
-            "mean_conductivity", f"k_{number}{suffix}", mean, "W/(m K)",
-            f"mean of k(T) between {hot} and {cold}; {_curve(seen.line, number)}",
-            f"{hot} {cold}", CARSLAW,
+            "layer_resistance", f"R_{one}{suffix}", resistance, "m K/W",
+            f"ln(({inner} + 2 t_{one}) / ({inner})) / (2 pi {factors}k_{one}{suffix})",
+            f"d {thick} {factors}k_{one}{suffix}", ISO_12241,
         )  # fmt: skip
-        share = "f_inst " if installed else ""
-        own = seen.line_draws.layers[number - 1].factor if seen.line_draws.layers else 1.0
-        if (np.asarray(own) != 1).any():
-            share += f"f_{number} "
-            if not installed:
-                source = seen.line.layers[number - 1].conductivity_factor.source
-                pad.given("conductivity_factor", f"f_{number}", own, "-", source)
-        outer = f"{inner} + 2 t_{number}"
-        radius = 0.5 * np.asarray(seen.line_draws.pipe_diameter)
-        radius = radius + sum(np.asarray(one.thickness) for one in layers[: number - 1])
-        resistance = np.log((radius + layer.thickness) / radius) / (2 * np.pi * layer.factor * mean)
-        thick = " ".join(f"t_{one}" for one in range(1, number + 1))
-        pad.found(
-            "layer_resistance", f"R_{number}{suffix}", resistance, "m K/W",
-            f"ln(({outer}) / ({inner})) / (2 pi {share}k_{number}{suffix})",
-            f"d {thick} {share}k_{number}{suffix}", ISO_12241,
-        )  # fmt: skip
-        inner = outer
-        parts.append(f"R_{number}{suffix}")
-    if len(parts) > 1:
-        total = " + ".join(parts)
-        pad.found("lagging_resistance", f"R{suffix}", state.resistance, "m K/W", total,
-                  " ".join(parts))  # fmt: skip
-        parts = [f"R{suffix}"]
-    loss = "sound_loss" if installed else "specified_loss"
-    pad.found(loss, f"q'{suffix}", state.heat_loss, "W/m", f"(T_in - {faces[-1]}) / {parts[0]}",
-              f"T_in {faces[-1]} {parts[0]}")  # fmt: skip
+
+    def check(self, surface_temperature: float, symbol: str) -> None:
+        """Write down that the surface gives off what is conducted."""
+        seen = self.seen
+        exchange = seen.line_draws.exchange(seen.frame, _known(seen.line_draws.lagged_diameter))
+        exchange_steps(self.pad, surface_temperature, exchange, seen.humidity, suffix=self.suffix)
+        flux = outer_flux(np.array([surface_temperature]), exchange, seen.humidity)
+        loss = math.pi * np.asarray(exchange.diameter) * flux
+        self.pad.found("closes", "q'_check", loss, "W/m",
+                       f"pi D q_sound, to be compared with {symbol}", "D q_sound")  # fmt: skip
 
 
-def _faces(layers: int, suffix: str) -> list[str]:
-    """Return the symbols of the temperatures from the pipe outwards."""
-    between = [f"T_{number}{suffix}" for number in range(1, layers)]
-    return ["T_in", *between, f"T_s{suffix}"]
-
-
-def _curve(line: Line, number: int) -> str:
-    """Return the nodes of a layer's conductivity curve as text."""
-    curve = line.layers[number - 1].conductivity
-    assert curve is not None
-    nodes = zip(curve.temperature, curve.conductivity, strict=True)
-    listed = ", ".join(f"{k:g} at {temperature:g} K" for temperature, k in nodes)
+def _curve(conductivity: ConductivityIntegral) -> str:
+    """Return the nodes of a conductivity curve as text."""
+    nodes = zip(conductivity.temperature_nodes, conductivity.conductivity_nodes, strict=True)
+    listed = ", ".join(f"{k:.7g} at {temperature:g} K" for temperature, k in nodes)
     return f"k = {listed}, straight between"
 
 
-def _closed(pad: Pad, seen: Seen, layers: tuple[LaggingLayer, ...]) -> None:
-    """Write down the check by substitution: the surface gives off what is conducted."""
-    line = seen.line_draws
-    state = _solved(seen, layers)
-    assert line.lagged_diameter is not None
-    exchange = line.exchange(seen.frame, line.lagged_diameter)
-    exchange_steps(pad, float(state.surface_temperature[0]), exchange, suffix="_sound")
-    loss = state.heat_loss * (1 + state.residual)
-    pad.found(
-        "closes", "q'_check", loss, "W/m", "pi D q_sound, to be compared with q'_sound", "D q_sound"
-    )
-
-
-def result_section(seen: Seen, heat_loss: float, surface_temperature: float) -> Section | None:
+def result_section(
+    seen: Seen, sound: SoundDraws | None, heat_loss: float, surface_temperature: float
+) -> Section | None:
     """Return the resistance found and what it is compared with.
 
     Parameters
     ----------
     seen : Seen
         With one draw.
+    sound : SoundDraws or None
     heat_loss : float
         At the station. [W/m]
     surface_temperature : float
@@ -167,21 +215,18 @@ def result_section(seen: Seen, heat_loss: float, surface_temperature: float) -> 
     if line.inside_temperature is None:
         return None
     pad = Pad()
-    if line.layers is None or line.lagged_diameter is None:
-        inside = seen.line.inside_temperature
-        assert inside is not None
-        pad.given("inside_temperature", "T_in", line.inside_temperature, "K", inside.source)
+    if sound is None:
+        _inside(pad, seen)
     found = lagging_resistance_from_surface(line.inside_temperature, surface_temperature, heat_loss)
-    pad.found("resistance", "R", found, "m K/W", "(T_in - T_face) / q'", "T_in T_face q'")
-    if line.layers is not None and line.lagged_diameter is not None:
-        state = _solved(seen, line.layers)
-        several = "R_spec" if len(line.layers) > 1 else "R_1_spec"
-        ratio = found / state.resistance
+    formula, inputs = "(T_in - T_face) / q'", "T_in T_face q'"
+    film = film_resistance(line)
+    if film is not None and sound is not None:
+        found, formula, inputs = found - film, f"{formula} - R_film", f"{inputs} R_film"
+    pad.found("resistance", "R", found, "m K/W", formula, inputs)
+    if sound is not None:
+        several = "R_spec" if line.layers is not None and len(line.layers) > 1 else "R_1_spec"
+        ratio = found / sound.specified_resistance
         pad.found("resistance_ratio", "ratio", ratio, "-", f"R / {several}", f"R {several}")
-        installed = tuple(
-            replace(layer, factor=np.asarray(layer.factor) * line.installation_factor)
-            for layer in line.layers
-        )
-        excess = heat_loss - _solved(seen, installed).heat_loss
+        excess = heat_loss - sound.heat_loss
         pad.found("excess", "excess", excess, "W/m", "q' - q'_sound", "q' q'_sound")
     return pad.section("result")

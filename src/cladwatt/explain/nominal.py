@@ -43,8 +43,8 @@ class NominalRegion:
     Attributes
     ----------
     image : FrameImage
-    distance : float or None
-        Camera to pipe as the image shows it. [m]
+    path : Quantity
+        Camera to pipe: declared, by the image, or the default. [m]
     observed : Observed or None
         With one draw; None where no air temperature is known.
     by_reference : dict of str to str
@@ -53,7 +53,7 @@ class NominalRegion:
 
     entry: FrameEntry
     image: FrameImage
-    distance: float | None
+    path: Quantity
     observed: Observed | None
     by_reference: dict[str, str]
 
@@ -103,6 +103,7 @@ class _Scene:
         self.readings = read_references(self.image.lens_temperature, regions, survey.defaults)
         pipes = [one for one in regions if one.role == "pipe"]
         self.distance = pipe_distance(survey, frame, pipes)
+        self.default_distance = survey.defaults["distance"]
         self.masks = {one.id: region_mask(one, frame.temperature.shape) for one in regions}
         self.book = DrawBook(settings.seed, settings.draws)
 
@@ -111,20 +112,28 @@ class _Scene:
         by_reference: dict[str, str] = {}
         frame = self._frame(NominalBook(0, 1))
         if frame is None:
-            return NominalRegion(self.entry, self.image, self.distance, None, by_reference)
+            return NominalRegion(self.entry, self.image, self.path(), None, by_reference)
         if self.readings:
             frame, region = self._narrowed(frame, region, by_reference)
         observed, _ = observe_with_references(
             self.survey, self.entry, region, self.regions, self.masks, self.image, frame, (),
             NominalBook(0, 1),
         )  # fmt: skip
-        return NominalRegion(self.entry, self.image, self.distance, observed, by_reference)
+        return NominalRegion(self.entry, self.image, self.path(), observed, by_reference)
+
+    def path(self) -> Quantity:
+        """Return the distance that the air path is taken for. [m]"""
+        declared, seen = self.entry.conditions.distance, self.distance
+        if declared is not None or seen is None:
+            return declared or self.default_distance
+        source = "by the field of view and known diameters"
+        return Quantity(seen, 0.15 * seen, lower=0.3, upper=149.0, source=source)
 
     def _frame(self, book: DrawBook) -> FrameDraws | None:
         survey, entry = self.survey, self.entry
         return draw_frame(
             book, entry.id, entry.conditions, survey.camera, survey.site, self.distance,
-            survey.defaults["distance"],
+            self.default_distance,
         )  # fmt: skip
 
     def _narrowed(

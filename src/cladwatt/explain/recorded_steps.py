@@ -1,13 +1,17 @@
 """Steps from what was recorded to the temperature of the surface."""
 
 import math
+from dataclasses import replace
 
 import numpy as np
 
 from cladwatt.explain.nominal import NominalRegion
+from cladwatt.explain.sheet import saturation_text
 from cladwatt.explain.steps import Pad, Section, median_of, source_of
+from cladwatt.inverse.face import WATER_FILM_EMISSIVITY, surface_temperature_draws
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
+from cladwatt.inverse.outer_balance import may_condense
 from cladwatt.physics.atmosphere import _coefficients, air_path_transmission
 from cladwatt.physics.band import Band
 from cladwatt.physics.emissivity import (
@@ -17,7 +21,7 @@ from cladwatt.physics.emissivity import (
     directional_emissivity,
     metal_index_hagen_rubens,
 )
-from cladwatt.physics.humidity import absolute_humidity
+from cladwatt.physics.humidity import absolute_humidity, vapour_pressure
 from cladwatt.physics.radiometry import object_radiance
 from cladwatt.quantities import Quantity
 from cladwatt.survey.model import Cladding, Conditions, Recording
@@ -27,6 +31,7 @@ __all__ = ["recorded_steps", "recorded_temperature", "scene_section", "settings_
 
 PLANCK = "Planck's law; ISO 80000-7"
 ISO_18434 = "ISO 18434-1"
+ASHRAE = "ASHRAE Fundamentals, psychrometrics"
 RADIANCE = "W/(m² sr)"
 
 
@@ -136,12 +141,30 @@ def scene_section(
     pad.given("air_temperature", "T_air", frame.air_temperature, "K", air)
     _radiance(pad, band, float(frame.air_temperature[0]), "air", "radiance_there")
     _reflected(pad, nominal, frame)
+    _vapour(pad, conditions, frame, line)
     _air_path(pad, nominal, frame)
     _window(pad, conditions, frame)
     declared = region.band_emissivity or cladding.band_emissivity
     source = nominal.by_reference.get("band_emissivity", declared.source)
     pad.given("band_emissivity", "eps_n", line.band_emissivity, "-", source)
     return pad.section("scene")
+
+
+def _vapour(pad: Pad, conditions: Conditions, frame: FrameDraws, line: LineDraws) -> None:
+    """Write down humidity and, on a line cold enough, the dew point."""
+    humidity = conditions.relative_humidity
+    if humidity is None:
+        return
+    pad.given("relative_humidity", "phi", median_of(humidity), "-", humidity.source)
+    if not may_condense(frame, line):
+        return
+    assert frame.relative_humidity is not None
+    assert frame.dew_point is not None
+    pressure = vapour_pressure(frame.air_temperature, frame.relative_humidity)
+    pad.found("vapour_pressure", "e_air", pressure, "Pa", f"phi {saturation_text('T_air')}",
+              "phi T_air", ASHRAE)  # fmt: skip
+    pad.found("dew_point", "T_dew", frame.dew_point, "K",
+              f"where {saturation_text('T_dew')} is e_air", "e_air", ASHRAE)  # fmt: skip
 
 
 def _reflected(pad: Pad, nominal: NominalRegion, frame: FrameDraws) -> None:
@@ -169,14 +192,7 @@ def _air_path(pad: Pad, nominal: NominalRegion, frame: FrameDraws) -> None:
     if declared is not None:
         pad.given("transmission", "tau", frame.transmission, "-", declared.source)
         return
-    seen = nominal.distance
-    distance = conditions.distance or Quantity(
-        seen or 5.0,
-        0.15 * seen if seen else 4.0,
-        lower=0.3,
-        upper=149.0,
-        source="by the field of view and known diameters" if seen else "assumption",
-    )
+    distance = nominal.path
     humidity = conditions.relative_humidity or Quantity(
         0.5, 0.2, lower=0.0, upper=1.0, source="assumption"
     )
@@ -186,12 +202,11 @@ def _air_path(pad: Pad, nominal: NominalRegion, frame: FrameDraws) -> None:
     vapour = absolute_humidity(air, phi)
     fit = _coefficients(frame.band.limits)
     pad.given("distance", "d_path", path, "m", distance.source)
-    pad.given("relative_humidity", "phi", phi, "-", humidity.source)
+    if conditions.relative_humidity is None:
+        pad.given("relative_humidity", "phi", phi, "-", humidity.source)
     pad.found(
         "absolute_humidity", "w", vapour, "kg/m³",
-        "phi exp(-5800.2206/T_air + 1.3914993 - 0.048640239 T_air + 4.1764768e-5 T_air^2"
-        " - 1.4452093e-8 T_air^3 + 6.5459673 ln(T_air)) 0.018015268 / (8.314462618 T_air)",
-        "phi T_air", "ASHRAE Fundamentals, psychrometrics",
+        f"phi {saturation_text('T_air')} 0.018015268 / (8.314462618 T_air)", "phi T_air", ASHRAE,
     )  # fmt: skip
     transmission = air_path_transmission(
         path,
@@ -267,11 +282,37 @@ def recorded_steps(
         )  # fmt: skip
         of = "true"
         _radiance(pad, band, lens_temperature + offset, of, "lens_radiance_true")
-    _directional(pad, view_angle, line)
+    normal = "eps_n"
+    if _shows_water(lens_temperature, view_angle, frame, line, surface_temperature):
+        normal, film = "eps_w", np.maximum(line.band_emissivity, WATER_FILM_EMISSIVITY)
+        pad.found(
+            "water_film", normal, film, "-",
+            f"film of water below T_dew: the larger of {WATER_FILM_EMISSIVITY:g} and eps_n",
+            "T_dew eps_n", "Incropera et al., table A.11",
+        )  # fmt: skip
+        line = replace(line, band_emissivity=film, is_metal=False)
+    _directional(pad, view_angle, line, normal)
     _surface(pad, f"L_{of}", frame, surface_temperature)
 
 
-def _directional(pad: Pad, view_angle: float, line: LineDraws) -> None:
+def _shows_water(
+    lens_temperature: float,
+    view_angle: float,
+    frame: FrameDraws,
+    line: LineDraws,
+    surface_temperature: float,
+) -> bool:
+    """Return whether the engine took the surface as covered with water."""
+    if not may_condense(frame, line) or not math.isfinite(surface_temperature):
+        return False
+    dry = surface_temperature_draws(
+        np.array([lens_temperature]), np.array([view_angle]),
+        replace(frame, relative_humidity=None), line,
+    )  # fmt: skip
+    return bool(dry[0, 0, 0] != surface_temperature)
+
+
+def _directional(pad: Pad, view_angle: float, line: LineDraws, normal: str) -> None:
     """Write down the emissivity towards the camera."""
     emissivity = directional_emissivity(line.band_emissivity, view_angle, line.is_metal)
     pad.given("view_angle", "theta", math.degrees(view_angle), "deg", "arcsin(y / half width)")
@@ -281,7 +322,7 @@ def _directional(pad: Pad, view_angle: float, line: LineDraws) -> None:
         "theta", "Modest, chapter 2",
     )  # fmt: skip
     if not line.is_metal:
-        pad.found("emissivity_towards", "eps", emissivity, "-", "eps_n C", "eps_n C")
+        pad.found("emissivity_towards", "eps", emissivity, "-", f"{normal} C", f"{normal} C")
         return
     bare, coat = BARE_METAL_EMISSIVITY, COAT_EMISSIVITY
     index = float(metal_index_hagen_rubens(bare))

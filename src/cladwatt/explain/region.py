@@ -180,13 +180,14 @@ class _Explained:
         loss = self.face_loss(face, bands, balance)
         sections.append(face.section("face"))
         if loss is not None:
-            sections += self.lagging(loss, temperature)
+            sections += self.lagging(balance, loss, temperature)
         return sections, bands
 
-    def lagging(self, loss: float, temperature: float) -> list[Section]:
+    def lagging(self, balance: Balance, loss: float, temperature: float) -> list[Section]:
         """Return the sections on the lagging."""
-        sections = list(lagging_sections(self.seen))
-        result = result_section(self.seen, loss, temperature)
+        sound = balance.sound
+        sections = [] if sound is None else list(lagging_sections(self.seen, sound))
+        result = result_section(self.seen, sound, loss, temperature)
         return sections if result is None else [*sections, result]
 
     def band(self, number: int) -> BandOfAngle:
@@ -204,7 +205,7 @@ class _Explained:
         recorded_steps(pad, lens, angle, self.nominal, seen.frame, seen.line_draws, surface)
         if seen.frame.wind_speed is not None and math.isfinite(surface):
             exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
-            exchange_steps(pad, surface, exchange)
+            exchange_steps(pad, surface, exchange, seen.humidity)
         return BandOfAngle(share, tuple(pad.steps))
 
     def face_loss(self, pad: Pad, bands: tuple[BandOfAngle, ...], balance: Balance) -> float | None:

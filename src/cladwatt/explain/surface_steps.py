@@ -1,42 +1,35 @@
 """Steps from the surface's temperature to the heat it gives off."""
 
-import re
-
 import numpy as np
 
+from cladwatt.explain.convection_steps import convection_steps
+from cladwatt.explain.sheet import Sheet, saturation_text
 from cladwatt.explain.steps import Pad, Section, median_of, source_of
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
+from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.seen import Seen
-from cladwatt.physics.air import (
-    _CONDUCTIVITY,
-    _SPECIFIC_HEAT,
-    _VISCOSITY,
-    AIR_TEMPERATURE_RANGE,
-    air_properties,
+from cladwatt.physics.condensation import (
+    latent_heat,
+    latent_heat_flux,
+    lewis_number,
+    mass_transfer_coefficient,
+    surface_vapour_pressure,
+    vapour_diffusivity,
+    vapour_mass_flux,
 )
-from cladwatt.physics.constants import GRAVITY, STEFAN_BOLTZMANN
-from cladwatt.physics.convection import (
-    VERTICAL_LENGTH,
-    convection_coefficient,
-    mixed_nusselt,
-    nusselt_churchill_bernstein,
-    nusselt_churchill_chu_horizontal,
-    nusselt_churchill_chu_vertical,
-    rayleigh_number,
-    reynolds_number,
-)
+from cladwatt.physics.constants import MOLAR_GAS, MOLAR_MASS_WATER, STEFAN_BOLTZMANN, ZERO_CELSIUS
+from cladwatt.physics.convection import VERTICAL_LENGTH
+from cladwatt.physics.moist_air import vapour_mole_fraction
 from cladwatt.physics.surface_balance import SurfaceExchange, surface_coefficients, surface_fluxes
 from cladwatt.quantities import Quantity
 from cladwatt.types import FloatArray
 
 __all__ = ["exchange_steps", "surface_section"]
 
-LEMMON = "quartic fitted to Lemmon and Jacobsen 2004"
-INCROPERA = "Incropera et al., section 9.9"
-HORIZONTAL = "Churchill and Chu 1975, horizontal cylinder"
-VERTICAL = "Churchill and Chu 1975, vertical face"
-FORCED = "Churchill and Bernstein 1977"
+ASHRAE = "ASHRAE Fundamentals, psychrometrics"
+MASSMAN = "Massman 1998"
+LEWIS = "Chilton and Colburn 1934"
 
 
 def surface_section(seen: Seen) -> Section:
@@ -48,10 +41,14 @@ def surface_section(seen: Seen) -> Section:
         With one draw.
     """
     pad, conditions, frame, line = Pad(), seen.conditions, seen.frame, seen.line_draws
+    exchange = line.exchange(frame, seen.diameter)
     _diameter(pad, seen)
-    assert frame.wind_speed is not None
-    pad.given("wind_speed", "v", frame.wind_speed, "m/s", source_of(conditions.wind_speed, ""))
+    pad.given("wind_speed", "v", exchange.wind_speed, "m/s", source_of(conditions.wind_speed, ""))
+    if np.any(np.asarray(exchange.wind_angle_deg) != 90.0):
+        angle = source_of(conditions.wind_angle_deg, "")
+        pad.given("wind_angle", "psi", exchange.wind_angle_deg, "deg", angle)
     pad.given("air_pressure", "p", frame.pressure, "Pa", "site, or standard atmosphere")
+    _humidity(pad, exchange)
     if line.inclination_deg:
         pad.given("inclination", "incl", line.inclination_deg, "deg", "line list")
         pad.given("vertical_length", "H", VERTICAL_LENGTH, "m", "assumption")
@@ -81,15 +78,19 @@ def _diameter(pad: Pad, seen: Seen) -> None:
         pad.given("layer_thickness", names[-1], median_of(thickness), "m", thickness.source)
     sheet = line.cladding.thickness
     pad.given("cladding_thickness", "t_clad", sheet.value, "m", sheet.source)
-    total = " + ".join([*names, "t_clad"])
-    pad.found(
-        "lagged_diameter",
-        "D",
-        seen.diameter,
-        "m",
-        f"d + 2 ({total})",
-        f"d {' '.join(names)} t_clad",
-    )
+    names.append("t_clad")
+    pad.found("lagged_diameter", "D", seen.diameter, "m", f"d + 2 ({' + '.join(names)})",
+              f"d {' '.join(names)}")  # fmt: skip
+
+
+def _humidity(pad: Pad, exchange: SurfaceExchange) -> None:
+    """Write down the vapour's share of the air where its properties take it in."""
+    if exchange.relative_humidity is None:
+        return
+    air, pressure = exchange.air_temperature, exchange.pressure
+    fraction = vapour_mole_fraction(air, exchange.relative_humidity, pressure)
+    pad.found("vapour_fraction", "x_v", fraction, "-", f"phi {saturation_text('T_air')} / p",
+              "phi T_air p", ASHRAE)  # fmt: skip
 
 
 def _surroundings(pad: Pad, seen: Seen, frame: FrameDraws) -> None:
@@ -124,7 +125,12 @@ def _sun(pad: Pad, seen: Seen, frame: FrameDraws, line: LineDraws) -> None:
 
 
 def exchange_steps(
-    pad: Pad, surface_temperature: float, exchange: SurfaceExchange, *, suffix: str = ""
+    pad: Pad,
+    surface_temperature: float,
+    exchange: SurfaceExchange,
+    humidity: FloatArray | None,
+    *,
+    suffix: str = "",
 ) -> None:
     """Write down how a surface gives off its heat, from its temperature to its flux.
 
@@ -135,6 +141,8 @@ def exchange_steps(
         [K]
     exchange : SurfaceExchange
         One draw.
+    humidity : (1,) array or None
+        Of the air where its vapour may condense on the line.
     suffix : str
         Behind the symbols that belong to this surface temperature.
 
@@ -142,163 +150,61 @@ def exchange_steps(
     -----
     The correlations are evaluated one by one; coefficient and fluxes are the engine's own.
     """
-    sheet = _Sheet(pad, suffix)
+    sheet = Sheet(pad, suffix)
     surface = np.array([surface_temperature])
-    _film(sheet, surface, exchange)
-    _nusselt(sheet, surface, exchange)
+    convection_steps(sheet, surface, exchange)
     fluxes = surface_fluxes(surface, exchange)
     sheet.found("convective_flux", "q_conv", fluxes.convection, "W/m²", "{h_c} ({T_s} - T_air)")
     sheet.found(
         "radiative_flux", "q_rad", fluxes.radiation, "W/m²",
         f"eps_tot {STEFAN_BOLTZMANN:.7g} ({{T_s}}^4 - T_sur^4)", "Stefan-Boltzmann",
     )  # fmt: skip
-    sheet.found("flux", "q", fluxes.total, "W/m²", "{q_conv} + {q_rad} - q_sun")
+    formula = "{q_conv} + {q_rad} - q_sun"
+    if humidity is not None:
+        _latent(sheet, surface, exchange, humidity)
+        formula += " + {q_lat}"
+    sheet.found("flux", "q", outer_flux(surface, exchange, humidity), "W/m²", formula)
 
 
-class _Sheet:
-    """A pad whose own symbols carry a suffix; ``{T_s}`` in a formula is one of them."""
-
-    def __init__(self, pad: Pad, suffix: str) -> None:
-        self.pad, self.suffix = pad, suffix
-
-    def found(
-        self,
-        key: str,
-        symbol: str,
-        value: FloatArray | float,
-        unit: str,
-        formula: str,
-        source: str = "",
-    ) -> None:
-        """Write down a step; its inputs are read off the formula."""
-        own = {name: name + self.suffix for name in _OWN}
-        named = [own[name] for name in _OWN if f"{{{name}}}" in formula]
-        plain = formula.format(**{name: " " for name in _OWN})
-        words = set(re.findall(r"[A-Za-z]\w*", plain))
-        shared = [name for name in _SHARED if name in words]
-        self.pad.found(
-            key, symbol + self.suffix, value, unit, formula.format(**own),
-            " ".join([*named, *shared]), source,
-        )  # fmt: skip
-
-
-_OWN = (
-    "T_s", "T_film", "mu", "k_air", "c_p", "rho", "nu", "Pr", "beta", "Gr", "Ra", "Nu_free", "Re",
-    "Nu_forced", "Nu", "h_hor", "Gr_H", "Ra_H", "Nu_H", "h_ver", "h_c", "q_conv", "q_rad", "q",
-)  # fmt: skip
-_SHARED = ("T_air", "T_sur", "D", "v", "p", "H", "incl", "eps_tot", "q_sun")
-
-
-def _quartic(coefficients: tuple[float, ...], scale: float) -> str:
-    """Return a quartic in the film temperature over 300 K as text."""
-    terms = [f"{coefficients[0] / scale:.7g}"]
-    for power, coefficient in enumerate(coefficients[1:], start=1):
-        x = "x" if power == 1 else f"x^{power}"
-        sign = "-" if coefficient < 0 else "+"
-        terms.append(f"{sign} {abs(coefficient) / scale:.7g} {x}")
-    factor = "" if scale == 1 else f"{scale:g} "
-    return f"{factor}({' '.join(terms)}), x = {{T_film}}/300 K"
-
-
-def _film(sheet: _Sheet, surface: FloatArray, exchange: SurfaceExchange) -> None:
-    """Write down the air's properties at film temperature."""
-    mean = 0.5 * (surface + exchange.air_temperature)
-    film = np.clip(mean, *AIR_TEMPERATURE_RANGE)
-    air = air_properties(film, exchange.pressure)
-    held = "" if (film == mean).all() else ", held within {:g} to {:g} K".format(
-        *AIR_TEMPERATURE_RANGE
-    )  # fmt: skip
-    found = sheet.found
-    found("film_temperature", "T_film", film, "K", "({T_s} + T_air) / 2" + held)
-    found("air_viscosity", "mu", air.dynamic_viscosity, "Pa s", _quartic(_VISCOSITY, 1e-6), LEMMON)
-    found("air_conductivity", "k_air", air.conductivity, "W/(m K)",
-          _quartic(_CONDUCTIVITY, 1e-3), LEMMON)  # fmt: skip
-    found("air_specific_heat", "c_p", air.specific_heat, "J/(kg K)",
-          _quartic(_SPECIFIC_HEAT, 1.0), LEMMON)  # fmt: skip
-    found("air_density", "rho", air.density, "kg/m³", "p / (287.05 {T_film})", "ideal gas")
-    found("air_kinematic_viscosity", "nu", air.kinematic_viscosity, "m²/s", "{mu} / {rho}")
-    found("air_prandtl", "Pr", air.prandtl, "-", "{c_p} {mu} / {k_air}")
-    found("air_expansion", "beta", air.expansion, "1/K", "1 / {T_film}", "ideal gas")
-
-
-def _nusselt(sheet: _Sheet, surface: FloatArray, exchange: SurfaceExchange) -> None:
-    """Write down the Nusselt numbers and the coefficient of convection."""
-    film = np.clip(0.5 * (surface + exchange.air_temperature), *AIR_TEMPERATURE_RANGE)
-    air = air_properties(film, exchange.pressure)
-    length = exchange.diameter
-    rayleigh = _rayleigh(sheet, surface, exchange, length, "D", "")
-    free = nusselt_churchill_chu_horizontal(rayleigh, air.prandtl)
-    reynolds = reynolds_number(
-        exchange.wind_speed, length=length, kinematic_viscosity=air.kinematic_viscosity
-    )
-    forced = nusselt_churchill_bernstein(reynolds, air.prandtl)
-    found = sheet.found
-    found("nusselt_free", "Nu_free", free, "-",
-          "(0.60 + 0.387 {Ra}^(1/6) / (1 + (0.559/{Pr})^(9/16))^(8/27))^2", HORIZONTAL)  # fmt: skip
-    found("reynolds", "Re", reynolds, "-", "v D / {nu}")
-    found("nusselt_forced", "Nu_forced", forced, "-",
-          "0.3 + 0.62 {Re}^(1/2) {Pr}^(1/3) / (1 + (0.4/{Pr})^(2/3))^(1/4)"
-          " (1 + ({Re}/282000)^(5/8))^(4/5)", FORCED)  # fmt: skip
-    mixed = mixed_nusselt(forced, free)
-    found("nusselt_mixed", "Nu", mixed, "-", "({Nu_forced}^4 + {Nu_free}^4)^(1/4)", INCROPERA)
-    coefficient = surface_coefficients(surface, exchange)[0]
-    if not np.any(exchange.inclination_deg):
-        found("convection_coefficient", "h_c", coefficient, "W/(m² K)", "{Nu} {k_air} / D")
-        return
-    _inclined(sheet, surface, exchange, coefficient)
-
-
-def _rayleigh(
-    sheet: _Sheet,
-    surface: FloatArray,
-    exchange: SurfaceExchange,
-    length: FloatArray | float,
-    symbol: str,
-    suffix: str,
-) -> FloatArray:
-    """Write down Grashof and Rayleigh number on a length."""
-    film = np.clip(0.5 * (surface + exchange.air_temperature), *AIR_TEMPERATURE_RANGE)
-    air = air_properties(film, exchange.pressure)
-    rayleigh = rayleigh_number(
-        surface - exchange.air_temperature,
-        length=length,
-        expansion=air.expansion,
-        kinematic_viscosity=air.kinematic_viscosity,
-        prandtl=air.prandtl,
-        gravity=GRAVITY,
-    )
-    sheet.found(
-        "grashof", f"Gr{suffix}", rayleigh / air.prandtl, "-",
-        f"{GRAVITY:g} {{beta}} |{{T_s}} - T_air| {symbol}^3 / {{nu}}^2",
-    )  # fmt: skip
-    sheet.found("rayleigh", f"Ra{suffix}", rayleigh, "-", f"{{Gr{suffix}}} {{Pr}}")
-    return rayleigh
-
-
-def _inclined(
-    sheet: _Sheet, surface: FloatArray, exchange: SurfaceExchange, coefficient: FloatArray
+def _latent(
+    sheet: Sheet, surface: FloatArray, exchange: SurfaceExchange, humidity: FloatArray
 ) -> None:
-    """Write down the vertical run's coefficient and the share of either."""
-    film = np.clip(0.5 * (surface + exchange.air_temperature), *AIR_TEMPERATURE_RANGE)
-    air = air_properties(film, exchange.pressure)
-    rayleigh = _rayleigh(sheet, surface, exchange, VERTICAL_LENGTH, "H", "_H")
-    upright = nusselt_churchill_chu_vertical(rayleigh, air.prandtl)
-
-    def at(inclination: float) -> FloatArray:
-        return convection_coefficient(
-            surface,
-            air_temperature=exchange.air_temperature,
-            diameter=exchange.diameter,
-            wind_speed=exchange.wind_speed,
-            pressure=exchange.pressure,
-            inclination_deg=inclination,
-        )
-
-    found = sheet.found
-    found("coefficient_horizontal", "h_hor", at(0.0), "W/(m² K)", "{Nu} {k_air} / D")
-    formula = "(0.825 + 0.387 {Ra_H}^(1/6) / (1 + (0.492/{Pr})^(9/16))^(8/27))^2"
-    found("nusselt_vertical", "Nu_H", upright, "-", formula, VERTICAL)
-    found("coefficient_vertical", "h_ver", at(90.0), "W/(m² K)",
-          "(({Nu_forced} {k_air} / D)^3 + ({Nu_H} {k_air} / H)^3)^(1/3)", INCROPERA)  # fmt: skip
-    found("convection_coefficient", "h_c", coefficient, "W/(m² K)",
-          "{h_hor} + sin(incl)^2 ({h_ver} - {h_hor})", "assumption")  # fmt: skip
+    """Write down the heat of condensing vapour."""
+    coefficient = surface_coefficients(surface, exchange)[0]
+    air, pressure = exchange.air_temperature, exchange.pressure
+    flux = latent_heat_flux(
+        surface,
+        air_temperature=air,
+        relative_humidity=humidity,
+        convection_coefficient=coefficient,
+        pressure=pressure,
+    )
+    if not flux.any():
+        sheet.given("latent_flux", "q_lat", 0.0, "W/m²", "dry: not below the dew point")
+        return
+    film, found = 0.5 * (surface + air), sheet.found
+    dry = "_dry" if exchange.relative_humidity is not None else ""
+    conductivity = "{k_dry}" if dry else "{k_air}"
+    capacity = f"{{rho{dry}}} {{c_p{dry}}}"
+    over_ice = bool(surface[0] < ZERO_CELSIUS)
+    found("surface_vapour_pressure", "e_s", surface_vapour_pressure(surface), "Pa",
+          saturation_text("{T_s}", over_ice=over_ice), ASHRAE)  # fmt: skip
+    found("vapour_diffusivity", "D_v", vapour_diffusivity(film, pressure), "m²/s",
+          "2.178e-5 ({T_film}/273.15)^1.81 101325 / p", MASSMAN)  # fmt: skip
+    found("lewis", "Le", lewis_number(film), "-", f"{conductivity} / ({capacity} {{D_v}})")
+    transfer = mass_transfer_coefficient(coefficient, film, pressure)
+    found("mass_transfer", "h_m", transfer, "m/s", f"{{h_c}} / ({capacity} {{Le}}^(2/3))", LEWIS)
+    mass = vapour_mass_flux(
+        surface,
+        air_temperature=air,
+        relative_humidity=humidity,
+        convection_coefficient=coefficient,
+        pressure=pressure,
+    )
+    found("vapour_mass_flux", "m_v", mass, "kg/(m² s)",
+          f"{{h_m}} {MOLAR_MASS_WATER:.7g} p / ({MOLAR_GAS:.7g} {{T_film}}) "
+          "ln((p - e_air) / (p - {e_s}))", "Bird et al., section 18.2")  # fmt: skip
+    heat = "2834.4 - 0.24" if over_ice else "2501 - 2.326"
+    found("latent_heat", "r", latent_heat(surface), "J/kg", f"1000 ({heat} ({{T_s}} - 273.15))",
+          ASHRAE)  # fmt: skip
+    found("latent_flux", "q_lat", flux, "W/m²", "{m_v} {r}")
