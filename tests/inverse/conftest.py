@@ -124,13 +124,15 @@ class Bench:
     """Whether the convection law is taken as exact."""
     noise: float = 0.0
     """Of a pixel. [K]"""
+    optics: Any = None
+    """Radiance and temperature that make the image; those of the camera's band where None."""
 
     def but(self, **changes: Any) -> "Bench":
         return replace(self, **changes)
 
     @property
-    def band(self) -> Band:
-        return Band.rectangular(*self.camera.band)
+    def band(self) -> Any:
+        return Band.rectangular(*self.camera.band) if self.optics is None else self.optics
 
     @property
     def book(self) -> DrawBook:
@@ -192,17 +194,20 @@ class Bench:
         """The pipe as sound as its installation factor says."""
         return self.solved(self.line.installation_factor.value)
 
-    def lens(self, surface_temperature: Any, *, emissivity: float | None = None) -> np.ndarray:
+    def lens(
+        self, surface_temperature: Any, *, emissivity: float | None = None, mirrored: Any = None
+    ) -> np.ndarray:
         """The image at the lens. [K]
 
-        `surface_temperature` is a number, or one per column.
+        `surface_temperature` is a number, one per column, or (ROWS, 1); `mirrored` likewise what
+        is mirrored in place of the declared reflected temperature.
         """
         band, conditions = self.band, self.conditions
         assert conditions.air_temperature is not None
         assert conditions.reflected_temperature is not None
         assert conditions.atmosphere_transmission is not None
         air = conditions.air_temperature.value
-        reflected = conditions.reflected_temperature.value
+        reflected = conditions.reflected_temperature.value if mirrored is None else mirrored
         transmission = conditions.atmosphere_transmission.value
         across = (np.arange(ROWS) - AXIS_ROW) / (WIDTH / 2)
         on_pipe = np.abs(across) <= 1
@@ -210,9 +215,11 @@ class Bench:
         towards = directional_emissivity(
             normal, np.arcsin(np.clip(across, -1, 1)), self.line.cladding.is_metal
         )
-        own = towards[:, None] * band.radiance(np.broadcast_to(surface_temperature, COLUMNS))
-        mirrored = (1 - towards[:, None]) * band.radiance(reflected)
-        scene = np.where(on_pipe[:, None], own + mirrored, band.radiance(air))
+        own = towards[:, None] * band.radiance(
+            np.broadcast_to(surface_temperature, (ROWS, COLUMNS))
+        )
+        thrown_back = (1 - towards[:, None]) * band.radiance(reflected)
+        scene = np.where(on_pipe[:, None], own + thrown_back, band.radiance(air))
         return band.temperature(transmission * scene + (1 - transmission) * band.radiance(air))
 
     def seen(self, lens: np.ndarray, clipped: np.ndarray | None = None) -> FrameImage:

@@ -293,3 +293,33 @@ def test_a_foil_far_from_the_declared_reflected_temperature_is_set_aside(
     frame, remarks = used(read_references(lens, [foil]), vague_hall)
     assert keys(remarks) == {"remark.reading_not_used"}
     assert np.median(frame.reflected_temperature) == pytest.approx(296.15, abs=0.1)
+
+
+def test_what_a_reference_leaves_unsaid_comes_from_the_defaults_given(bench, drawn_box):
+    defaults = {
+        "foil_emissivity": Quantity(0.12, 0.01),
+        "tape_emissivity": Quantity(0.90, 0.02),
+        "u_contact_reading": Quantity(2.5),
+    }
+    regions = [
+        bench.region,
+        drawn_box("foil", "foil", *FOIL_BOX),
+        drawn_box("tape", "tape", *TAPE_BOX, tag="HS-1"),
+        drawn_box("contact", "contact", *TAPE_BOX, tag="HS-1", value=Quantity(330.0)),
+    ]
+    foil, tape, contact = read_references(bench.lens(SURFACE), regions, defaults)
+    assert foil.region.band_emissivity == Quantity(0.12, 0.01)
+    assert tape.region.value == Quantity(0.90, 0.02)
+    assert (contact.region.value.value, contact.region.value.u) == (330.0, 2.5)
+
+
+def test_what_a_reference_says_stands(bench, drawn_box):
+    regions = [
+        drawn_box("foil", "foil", *FOIL_BOX, band_emissivity=Quantity(0.05)),
+        drawn_box("tape", "tape", *TAPE_BOX, tag="HS-1", value=Quantity(0.88)),
+        drawn_box("contact", "contact", *TAPE_BOX, tag="HS-1", value=Quantity(330.0, 0.4)),
+    ]
+    foil, tape, contact = read_references(bench.lens(SURFACE), regions)
+    assert foil.region.band_emissivity == Quantity(0.05)
+    assert tape.region.value == Quantity(0.88)
+    assert contact.region.value == Quantity(330.0, 0.4)

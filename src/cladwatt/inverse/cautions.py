@@ -18,7 +18,7 @@ TRUSTED_EMISSIVITY = 0.5
 """Below this single pixels are left to the mean across: what they mirror weighs too much. [-]"""
 MIRRORED_LEAST, MIRRORED_SHARE = 1.5, 0.4
 """A band of angle stands out by a mirrored neighbour beyond this [K] and this share of what the
-surface is above the air; assumption."""
+surface is above the air, times its emissivity, as the camera sees it; assumption."""
 NOTICEABLE_ANGLE = 0.2
 """Foreshortening is mentioned beyond this: it shortens lengths by 2 %. [rad]"""
 
@@ -88,8 +88,9 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
         parameters = (("id", ", ".join(seen.known_lengths)), ("reason", reason))
         remarks.append(Remark("remark.reading_not_used", parameters))
     tracer = seen.line.tracing
-    if tracer.kind != "none" and tracer.power is not None:
-        remarks.append(Remark("remark.tracer_heat", (("power_W_per_m", tracer.power.value),)))
+    if tracer.kind != "none":
+        power = () if tracer.power is None else (("power_W_per_m", tracer.power.value),)
+        remarks.append(Remark("remark.tracer_heat", power))
     if _mirrors_a_neighbour(seen):
         remarks.append(Remark("remark.mirrored_neighbour"))
     if seen.strip.receding_angle > NOTICEABLE_ANGLE:
@@ -125,7 +126,8 @@ def _mirrors_a_neighbour(seen: Seen) -> bool:
         return False
     along = np.median(bands, axis=1)
     standing_out = float(np.abs(along - np.median(along)).max())
-    above = abs(float(np.median(along)) - float(np.median(seen.frame.air_temperature)))
+    surface = float(np.nanmedian(seen.median_temperature[seen.usable]))
+    above = seen.emissivity * abs(surface - float(np.median(seen.frame.air_temperature)))
     return standing_out > max(MIRRORED_LEAST, MIRRORED_SHARE * above)
 
 

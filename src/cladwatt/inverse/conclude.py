@@ -26,7 +26,7 @@ from cladwatt.inverse.result import (
     interval_of,
 )
 from cladwatt.inverse.seen import Seen
-from cladwatt.inverse.sound import SoundDraws, film_resistance
+from cladwatt.inverse.sound import SoundDraws, outside_film
 from cladwatt.inverse.station_table import station_table
 from cladwatt.inverse.stretch_results import stretches_of
 from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
@@ -273,9 +273,7 @@ def _resistances(seen: Seen, loss: FloatArray | None, sound: SoundDraws | None) 
     towards = np.sign(line.inside_temperature - seen.frame.air_temperature)
     with np.errstate(divide="ignore", invalid="ignore"):
         conductance = np.where(drop * towards > 0, np.maximum(loss / drop, 0.0), np.nan)
-        film = film_resistance(line)
-        if film is not None:  # what is between fluid and wall is not the lagging's
-            conductance = conductance / np.maximum(1 - conductance * film, 1e-6)
+        conductance = outside_film(conductance, line)
     specified = None if sound is None else sound.specified_resistance
     effective = None
     if line.pipe_diameter is not None and line.lagged_diameter is not None:

@@ -113,7 +113,8 @@ def surface_temperature_draws(
     film = np.maximum(line.band_emissivity, WATER_FILM_EMISSIVITY)
     wet = _seen_through(lens_temperature, view_angle, frame, replace(line, is_metal=False), film)
     below = dew[:, None, None]
-    return np.asarray(np.where((dry < below) & (wet < below), wet, dry))
+    # on bright cladding a film shows less radiance than the dry metal would mirror: NaN if dry
+    return np.asarray(np.where(~(dry >= below) & (wet < below), wet, dry))
 
 
 def _seen_through(

@@ -26,7 +26,7 @@ EMISSIVITY_CORRELATION = 0.7
 weather raise both."""
 AIR_GAP_DROP = 20.0
 """Drop across an air gap for which its convection is taken; assumption. [K]"""
-AIR_GAP_NODES = np.linspace(223.15, 873.15, 14)
+AIR_GAP_NODES = np.linspace(223.15, 873.15, 27)
 """Mean temperatures for which an air gap's conductivity is tabulated. [K]"""
 
 

@@ -169,7 +169,7 @@ def observe_region(
 
 
 def _further_along(line: Line, line_draws: LineDraws, frame: FrameDraws, strip: Strip) -> LineDraws:
-    """Cool the fluid by what the line loses, as specified, up to the middle of the strip.
+    """Cool the fluid by what the line loses, if sound, up to the middle of the strip.
 
     Only where flow and specific heat are declared and the region's stations are.
     """
@@ -180,12 +180,13 @@ def _further_along(line: Line, line_draws: LineDraws, frame: FrameDraws, strip: 
     sound = sound_draws(line_draws, frame)
     if sound is None:
         return line_draws
-    capacity = line.flow.value * line.specific_heat.value
-    outside = frame.air_temperature
-    length = capacity * (inside - outside) / sound.heat_loss
-    return replace(
-        line_draws, inside_temperature=outside + (inside - outside) * np.exp(-station / length)
-    )
+    fall = station * sound.heat_loss / (line.flow.value * line.specific_heat.value)
+    drop = inside - frame.air_temperature
+    with np.errstate(divide="ignore", invalid="ignore"):
+        lengths = np.where(fall * drop > 0, fall / drop, 0.0)
+    # where nothing drives the loss towards the air, sun or surroundings do: evenly along the line
+    fallen = np.where(lengths > 0, -drop * np.expm1(-lengths), fall)
+    return replace(line_draws, inside_temperature=inside - fallen)
 
 
 def _strip(

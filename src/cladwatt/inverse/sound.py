@@ -7,14 +7,15 @@ import numpy as np
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.outer_balance import may_condense, outer_flux
+from cladwatt.physics.conduction import ConductivityIntegral
 from cladwatt.physics.lagged_pipe import LaggingLayer, SurfaceExchange, solve_lagged_pipe
 from cladwatt.physics.surface_balance import surface_heat_flux
 from cladwatt.types import FloatArray
 
-__all__ = ["SoundDraws", "film_resistance", "sound_draws"]
+__all__ = ["SoundDraws", "film_resistance", "outside_film", "sound_draws"]
 
-ROUNDS = 12
-TOLERANCE = 1e-3
+ROUNDS = 20
+TOLERANCE = 1e-4
 """Largest change of the loss in the last round, relative."""
 
 
@@ -72,13 +73,28 @@ def film_resistance(line: LineDraws) -> FloatArray | None:
     return np.asarray(1 / (np.pi * line.pipe_diameter * line.film_coefficient))
 
 
+def outside_film(conductance: FloatArray, line: LineDraws) -> FloatArray:
+    """Return the conductance from the pipe wall on, of one that begins in the fluid.
+
+    Parameters
+    ----------
+    conductance : (count,) or (count, n) array
+        [W/(m K)]
+    line : LineDraws
+    """
+    film = film_resistance(line)
+    if film is None:
+        return conductance
+    film = film.reshape(-1, *[1] * (conductance.ndim - 1))
+    return np.asarray(conductance / np.maximum(1 - conductance * film, 1e-6))
+
+
 def _solved(
     line: LineDraws, frame: FrameDraws, layers: tuple[LaggingLayer, ...]
 ) -> tuple[FloatArray, FloatArray]:
-    """Return loss and lagging's resistance with film and condensation, by repeated substitution.
+    """Return loss and lagging's resistance, with film and condensation.
 
-    What condenses is heat brought to the surface, like sun; the drop over the film takes the
-    wall away from the fluid. Both change little from round to round.
+    What condenses is heat brought to the surface, like sun, and found by repeated substitution.
     """
     assert line.inside_temperature is not None
     assert line.pipe_diameter is not None
@@ -86,23 +102,30 @@ def _solved(
     exchange = line.exchange(frame, line.lagged_diameter)
     humidity = frame.relative_humidity if may_condense(frame, line) else None
     film = film_resistance(line)
-    state = solve_lagged_pipe(line.inside_temperature, line.pipe_diameter, layers, exchange)
-    if film is None and humidity is None:
-        return state.heat_loss, state.resistance
-    loss, brought, wall = state.heat_loss, np.zeros(frame.count), line.inside_temperature
-    for _ in range(ROUNDS):
-        if humidity is not None:
-            latent = _condensed(state.surface_temperature, exchange, humidity)
-            brought = 0.5 * (brought + latent)
-        if film is not None:
-            wall = line.inside_temperature - film * loss
+    start, parts = line.pipe_diameter, layers
+    if film is not None:
+        start, parts = 0.9 * line.pipe_diameter, (_film_layer(line.pipe_diameter, film), *layers)
+    state = solve_lagged_pipe(line.inside_temperature, start, parts, exchange)
+    loss, brought = state.heat_loss, np.zeros(frame.count)
+    for _ in range(0 if humidity is None else ROUNDS):
+        assert humidity is not None
+        brought = 0.5 * (brought + _condensed(state.surface_temperature, exchange, humidity))
         warmed = replace(exchange, absorbed_solar=exchange.absorbed_solar + brought)
-        state = solve_lagged_pipe(wall, line.pipe_diameter, layers, warmed)
+        state = solve_lagged_pipe(line.inside_temperature, start, parts, warmed)
         change = np.abs(state.heat_loss - loss)
         loss = state.heat_loss
         if np.max(change) <= TOLERANCE * np.max(np.abs(loss)):
             break
-    return loss, state.resistance
+    return loss, state.resistance if film is None else np.asarray(state.resistance - film)
+
+
+def _film_layer(pipe_diameter: FloatArray, film: FloatArray) -> LaggingLayer:
+    """Return a layer of the film's resistance, from nine tenths of the pipe's diameter out to it.
+
+    Solved with the lagging: by substitution a film of more resistance than all the rest diverges.
+    """
+    factor = np.log(1 / 0.9) / (2 * np.pi * film)
+    return LaggingLayer(ConductivityIntegral.constant(1.0), 0.05 * pipe_diameter, factor)
 
 
 def _condensed(

@@ -5,7 +5,7 @@ import numpy as np
 from cladwatt.flags import StationFlag
 from cladwatt.inverse.result import StationTable
 from cladwatt.inverse.seen import Seen
-from cladwatt.inverse.sound import SoundDraws
+from cladwatt.inverse.sound import SoundDraws, outside_film
 from cladwatt.measure.strip import sample_strip
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.types import FloatArray, IntArray
@@ -78,6 +78,7 @@ def _resistances(seen: Seen, loss: FloatArray) -> FloatArray:
         return np.full((3, seen.usable.size), np.nan)
     with np.errstate(divide="ignore", invalid="ignore"):
         conductance = loss / (inside[:, None] - seen.drawn.surface_temperature)
+        conductance = outside_film(conductance, seen.line_draws)
         return np.asarray(1 / np.maximum(_quantiles(conductance), 0.0)[::-1])
 
 

@@ -1,0 +1,309 @@
+"""Surfaces that are not simply dry, lit by nothing and seen through a plain band.
+
+Water on cold cladding, water on warm cladding, yesterday's sun, a neighbour mirrored in metal, a
+tracer's stripe, a camera with a spectral response of its own.
+"""
+
+from dataclasses import replace
+
+import numpy as np
+import pytest
+from scipy.constants import Boltzmann, c, h
+from scipy.interpolate import PchipInterpolator
+
+from cladwatt.physics.humidity import dew_point
+from cladwatt.quantities import Quantity
+from cladwatt.survey.model import Camera, ConductivityCurve, Layer, Tracing
+
+WARM, HUMIDITY = 298.15, 0.7
+DEW = float(dew_point(WARM, HUMIDITY))
+ACROSS = np.clip((np.arange(96) - 48.0) / 24.0, -1, 1)[:, None]
+"""Of each row, from edge to edge of the pipe."""
+
+
+@pytest.fixture
+def metal(paint):
+    def clad(emissivity: float):
+        return paint(emissivity, is_metal=True, total_emissivity=Quantity(emissivity))
+
+    return clad
+
+
+@pytest.fixture
+def brine(bench, hall_with):
+    """A line at -20 °C under little foam, in a warm and humid hall."""
+    foam = ConductivityCurve((250.0, 330.0), (0.036, 0.036))
+    return bench.but(
+        line=replace(
+            bench.line,
+            layers=(Layer("foam", Quantity(0.010), foam, Quantity(1.0)),),
+            inside_temperature=Quantity(253.15),
+        ),
+        conditions=hall_with(
+            air_temperature=Quantity(WARM),
+            surroundings_temperature=Quantity(WARM),
+            reflected_temperature=Quantity(WARM),
+            relative_humidity=Quantity(HUMIDITY),
+        ),
+    )
+
+
+def film_on(bench, paint, surface: float) -> np.ndarray:
+    """The image of the same pipe under a film of water, a dielectric of 0.96."""
+    return bench.but(line=replace(bench.line, cladding=paint(0.96))).lens(surface)
+
+
+# ---- water on cold cladding ---------------------------------------------------------------
+
+
+@pytest.mark.parametrize("emissivity", [0.05, 0.1, 0.3, 0.6])
+@pytest.mark.parametrize("surface", [DEW - 2.0, 280.0, 265.0])
+def test_below_the_dew_point_metal_shows_water(brine, metal, paint, keys, emissivity, surface):
+    bench = brine.but(line=replace(brine.line, cladding=metal(emissivity)))
+    result = bench.alone(film_on(bench, paint, surface))
+    assert result.surface_temperature.median == pytest.approx(surface, abs=0.06)
+    assert result.verdict.level == "indicative"
+    assert result.verdict.reason.key == "indicative.below_dew_point"
+    assert "caution.dew_point" in keys(result.cautions)
+    assert result.heat_loss.median < 0
+
+
+def test_the_film_is_not_less_than_what_it_lies_on(brine, paint):
+    bench = brine.but(line=replace(brine.line, cladding=paint(0.975)))
+    result = bench.alone(bench.lens(283.15))
+    assert result.surface_temperature.median == pytest.approx(283.15, abs=0.06)
+
+
+@pytest.mark.parametrize("surface", [DEW + 1.0, 296.0])
+def test_above_the_dew_point_a_chilled_line_shows_its_own_coat(brine, paint, surface):
+    bench = brine.but(line=replace(brine.line, cladding=paint(0.7)))
+    result = bench.alone(bench.lens(surface))
+    assert result.surface_temperature.median == pytest.approx(surface, abs=0.06)
+
+
+def test_without_humidity_nobody_knows_of_the_film(brine, metal, paint):
+    dry = brine.but(
+        line=replace(brine.line, cladding=metal(0.6)),
+        conditions=replace(brine.conditions, relative_humidity=None),
+    )
+    result = dry.alone(film_on(dry, paint, 280.0))
+    # read with 0.6 a drop of 18 K becomes one of 27
+    assert result.surface_temperature.median < 280.0 - 5
+
+
+def test_gain_below_the_dew_point_holds_the_vapours_heat(brine):
+    surface = 283.15
+    result = brine.alone(film_on(brine, lambda _: brine.line.cladding, surface))
+    dry = brine.loss(surface)
+    assert result.heat_loss.median < 1.3 * dry < 0
+
+
+# ---- water on warm cladding ---------------------------------------------------------------
+
+
+def wet(bench, is_wet: bool | None = True):
+    return bench.but(conditions=replace(bench.conditions, surface_wet=is_wet))
+
+
+def test_a_wet_warm_surface_is_refused_a_number(bench):
+    lens = bench.lens(310.0)
+    result = wet(bench).jointly(lens)
+    assert result.verdict.level == "not quantified"
+    assert result.verdict.reason.key == "not_quantified.wet_surface"
+    for dry in (False, None):
+        assert wet(bench, dry).jointly(lens).verdict.level == "quantified"
+
+
+def test_a_wet_surface_below_the_dew_point_is_not_refused(brine, paint):
+    result = wet(brine).alone(film_on(brine, paint, 283.15))
+    assert result.verdict.level == "indicative"
+    assert result.verdict.reason.key == "indicative.below_dew_point"
+
+
+def test_wet_between_dew_point_and_air_evaporates_too(brine):
+    result = wet(brine).alone(brine.lens(DEW + 2.0))
+    assert result.verdict.reason.key == "not_quantified.wet_surface"
+
+
+def test_wet_and_partly_above_the_dew_point_is_refused(brine, paint):
+    surface = np.full(280, 283.15)
+    surface[150:200] = DEW + 3.0
+    result = wet(brine).alone(film_on(brine, paint, surface))
+    assert result.verdict.reason.key == "not_quantified.wet_surface"
+
+
+# ---- yesterday's sun ----------------------------------------------------------------------
+
+
+@pytest.mark.parametrize(
+    ("indoors", "sun", "capped"),
+    [(False, True, True), (False, False, False), (False, None, False), (True, True, False)],
+)
+def test_sun_of_the_last_day_caps_outdoors(bench, hall_with, indoors, sun, capped):
+    bench = bench.but(conditions=hall_with(indoors=indoors, sun_last_24h=sun))
+    verdict = bench.jointly(bench.lens(310.0)).verdict
+    if capped:
+        assert (verdict.level, verdict.reason.key) == ("indicative", "indicative.sun_before")
+    else:
+        assert verdict.level == "quantified"
+
+
+# ---- a neighbour mirrored in metal --------------------------------------------------------
+
+COLD_SKY = {
+    "reflected_temperature": Quantity(253.15),
+    "surroundings_temperature": Quantity(270.0),
+    "air_temperature": Quantity(283.15),
+    "indoors": False,
+}
+PLACES = {"hall": {}, "cold sky": COLD_SKY}
+
+
+def mirrors(bench, lens, keys) -> bool:
+    return "remark.mirrored_neighbour" in keys(bench.alone(lens).remarks)
+
+
+def with_stripe(value: float, base: float) -> np.ndarray:
+    """One band of rows, off the middle."""
+    rows = np.full((96, 1), base)
+    rows[52:58] = value
+    return rows
+
+
+@pytest.mark.parametrize("place", PLACES)
+@pytest.mark.parametrize("emissivity", [0.1, 0.3, 0.6])
+@pytest.mark.parametrize("neighbour", [40.0, -40.0], ids=["hot", "cold"])
+def test_a_neighbour_mirrored_along_metal_is_told(
+    bench, metal, hall_with, keys, place, emissivity, neighbour
+):
+    bench = bench.but(
+        line=replace(bench.line, cladding=metal(emissivity)),
+        conditions=hall_with(**PLACES[place]),
+        count=40,
+    )
+    scene = bench.conditions.reflected_temperature.value
+    lens = bench.lens(
+        float(bench.sound.surface_temperature), mirrored=with_stripe(scene + neighbour, scene)
+    )
+    assert mirrors(bench, lens, keys)
+    assert not mirrors(bench, bench.lens(float(bench.sound.surface_temperature)), keys)
+
+
+def test_paint_mirrors_too_little_to_tell(bench, paint, keys):
+    stripe = with_stripe(296.15 + 40, 296.15)
+    surface = float(bench.sound.surface_temperature)
+    painted = bench.but(line=replace(bench.line, cladding=paint(0.6)))
+    assert not mirrors(painted, painted.lens(surface, mirrored=stripe), keys)
+
+
+@pytest.mark.parametrize("place", PLACES)
+@pytest.mark.parametrize("emissivity", [0.1, 0.3, 0.5, 0.7])
+@pytest.mark.parametrize("above_air", [10.0, 20.0, 40.0, 80.0])
+def test_uneven_convection_is_no_neighbour(
+    bench, metal, hall_with, keys, place, emissivity, above_air
+):
+    bench = bench.but(
+        line=replace(bench.line, cladding=metal(emissivity)),
+        conditions=hall_with(**PLACES[place]),
+        count=40,
+    )
+    air = bench.conditions.air_temperature.value
+    surface = air + above_air * (1 + 0.15 * np.sin(ACROSS * np.pi / 2))
+    assert not mirrors(bench, bench.lens(surface), keys)
+
+
+def test_damage_at_some_stations_is_no_neighbour(bench, metal, keys):
+    bench = bench.but(line=replace(bench.line, cladding=metal(0.3)))
+    surface = np.full((96, 280), float(bench.sound.surface_temperature))
+    surface[52:58, 100:150] += 40
+    assert not mirrors(bench, bench.lens(surface), keys)
+
+
+# ---- a tracer's stripe --------------------------------------------------------------------
+
+
+@pytest.mark.parametrize("rise", [3.0, 8.0])
+@pytest.mark.parametrize("kind", ["steam", "electric"])
+def test_a_tracers_stripe_is_no_finding(bench, keys, kind, rise):
+    tracer = Tracing(kind, clock_position=5.0, power=Quantity(25.0))
+    traced = bench.but(line=replace(bench.line, tracing=tracer), noise=0.05)
+    surface = float(bench.sound.surface_temperature)
+    result = traced.jointly(traced.lens(with_stripe(surface + rise, surface)))
+    assert result.stretches == ()
+    assert result.probability_local < 0.05
+    assert result.probability_aged is None
+    assert result.verdict.level == "indicative"
+    assert result.verdict.reason.key == "indicative.traced"
+    assert "remark.mirrored_neighbour" not in keys(result.remarks)
+    (told,) = (remark for remark in result.remarks if remark.key == "remark.tracer_heat")
+    assert dict(told.parameters) == {"power_W_per_m": 25.0}
+
+
+def test_damage_beside_the_stripe_is_still_found(bench):
+    traced = bench.but(line=replace(bench.line, tracing=Tracing("electric", 5.0)))
+    surface = np.repeat(with_stripe(8.0, 0.0), 280, axis=1) + float(bench.sound.surface_temperature)
+    surface[:, 110:160] += 6.0
+    (stretch,) = traced.jointly(traced.lens(surface)).stretches
+    assert stretch.probability > 0.9
+
+
+def test_a_tracer_of_unknown_power_is_told_without_it(bench):
+    traced = bench.but(line=replace(bench.line, tracing=Tracing("steam", 6.0)))
+    remarks = traced.alone(traced.lens(310.0)).remarks
+    (told,) = (remark for remark in remarks if remark.key == "remark.tracer_heat")
+    assert told.parameters == ()
+
+
+def test_no_tracer_no_word_of_it(bench, keys):
+    assert "remark.tracer_heat" not in keys(bench.alone(bench.lens(310.0)).remarks)
+
+
+# ---- a camera with a response of its own --------------------------------------------------
+
+TRIANGLE = ((7.5e-6, 9.0e-6, 14e-6), (0.0, 1.0, 0.0))
+"""Most sensitive at 9 µm."""
+
+
+class Triangle:
+    """Planck's law times the triangle, summed here and inverted by interpolation."""
+
+    def __init__(self) -> None:
+        self.waves = np.linspace(7.5e-6, 14e-6, 2001)
+        self.response = np.interp(self.waves, *TRIANGLE)
+        kelvin = np.linspace(240.0, 460.0, 221)
+        self._inverse = PchipInterpolator(np.log(self.radiance(kelvin)), 1 / kelvin)
+
+    def radiance(self, temperature):
+        kelvin = np.asarray(temperature, dtype=float)
+        values, back = np.unique(kelvin, return_inverse=True)
+        exponent = h * c / (self.waves * Boltzmann * values[:, None])
+        spectral = 2 * h * c**2 / self.waves**5 / np.expm1(exponent) * self.response
+        return np.trapezoid(spectral, self.waves, axis=1)[back].reshape(kelvin.shape)
+
+    def temperature(self, radiance):
+        return 1 / self._inverse(np.log(radiance))
+
+
+@pytest.mark.parametrize("emissivity", [0.9, 0.3])
+@pytest.mark.parametrize("surface", [310.0, 400.0])
+def test_a_spectral_response_is_undone_end_to_end(bench, paint, emissivity, surface):
+    declared = replace(bench.camera, response=TRIANGLE)
+    bench = bench.but(line=replace(bench.line, cladding=paint(emissivity)), optics=Triangle())
+    lens = bench.lens(surface)
+    found = bench.but(camera=declared).alone(lens).surface_temperature.median
+    # five bands of angle stand for a curve: 0.07 K at 400 K in any band
+    assert found == pytest.approx(surface, abs=0.06 if surface < 350 else 0.09)
+    plain = bench.but(optics=None)
+    same = plain.alone(plain.lens(surface)).surface_temperature.median
+    assert found == pytest.approx(same, abs=0.003)
+
+
+def test_another_response_would_have_been_wrong_by_kelvins(bench, paint):
+    """Or the test above could not fail: the reflected part weighs differently in each band."""
+    bench = bench.but(line=replace(bench.line, cladding=paint(0.3)), optics=Triangle())
+    lens = bench.lens(400.0)
+    plain: Camera = bench.camera
+    far = replace(plain, band=(7.5e-6, 14e-6), response=((12e-6, 13e-6, 14e-6), (0.0, 1.0, 0.0)))
+    for camera, off in ((plain, 0.3), (far, 2.0)):
+        found = bench.but(camera=camera).alone(lens).surface_temperature.median
+        assert abs(found - 400.0) > off
