@@ -45,13 +45,13 @@ def main(arguments: list[str] | None = None) -> int:
     except RuntimeError as error:
         print(error, file=sys.stderr)
         return 1
+    if options.write:
+        PAGE.write_text(page_text(evidence), encoding="utf-8", newline="\n")
     for words, count in counts(evidence).items():
         print(f"{words:20s} {count}")
     print(f"\nThe {SHOWN} largest differences:")
     for line in evidence.worst[:SHOWN]:
         print(f"  {difference(line.worst):>9s}  {line.check.title}: {line.worst.what}")
-    if options.write:
-        PAGE.write_text(page_text(evidence), encoding="utf-8", newline="\n")
     return 0
 
 

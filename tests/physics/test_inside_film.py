@@ -1,4 +1,5 @@
 import csv
+from math import log, pi
 from pathlib import Path
 
 import fluids
@@ -58,6 +59,16 @@ def test_film_in_a_chain_of_resistances(evidence):
     drop = 593.15 - wall_temperature(593.15, loss, film)
     number, how = printed("D1", "film_drop")
     evidence("cengel_3_8", "film drop", drop, number, **how)
+    # the same chain written out
+    films = [1 / (pi * 0.05 * 60.0), 1 / (pi * 0.115 * 18.0)]
+    walls = [log(0.055 / 0.05) / (2 * pi * 80.0), log(0.115 / 0.055) / (2 * pi * 0.05)]
+    for what, again in (
+        ("film_resistance", films[0]),
+        ("film_drop", 315.0 * films[0] / sum(films + walls)),
+    ):
+        number, how = printed("D1", what)
+        evidence.recomputed("cengel_3_8", what.replace("_", " "), again, number, **how,
+                            by="formula by hand")  # fmt: skip
 
 
 @pytest.mark.parametrize("reynolds", [4e3, 1e4, 5e4, 3e5, 2e6])
