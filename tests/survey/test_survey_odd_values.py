@@ -19,7 +19,7 @@ ODD = (
 HOME = {
     "line": 'tag = "HS-101"', "frame": 'file = "frames/f01.csv"', "survey": 'name = "Weaving shed"',
     "site": "altitude_m = 95", "camera": "accuracy_K = 2.0", "recording": "emissivity = 0.95",
-    "conditions": "indoors = true", "format": 'unit = "C"',
+    "conditions": "indoors = true", "format": 'unit = "C"', "model": 'convection = "churchill"',
 }  # fmt: skip
 
 

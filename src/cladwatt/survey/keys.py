@@ -654,6 +654,18 @@ REGION = (
     ),
 )  # fmt: skip
 
+MODEL = (
+    Key(
+        "convection", "choice",
+        "Correlations of convection, free and across flow; iso12241_indoor holds in still air only",
+        choices=(
+            "churchill", "morgan_zukauskas", "morgan_hilpert", "kuehn_goldstein_whitaker",
+            "iso12241_indoor",
+        ),
+        default="churchill", example='"churchill"',
+    ),
+)  # fmt: skip
+
 REGION_VALUES: dict[str, Key] = {
     "foil": _temperature("value", "Reflected apparent temperature read on the foil", u=1.0),
     "contact": _temperature("value", "Contact reading", u=0.0, u_row="u_contact_reading"),
@@ -673,6 +685,7 @@ SECTIONS: tuple[Section, ...] = (
     Section("recording", "What the camera had applied when it recorded", RECORDING),
     Section("conditions", "What was true, unless a frame says otherwise", CONDITIONS),
     Section("format", "How the numbers of the frame files are to be taken", FORMAT),
+    Section("model", "How the heat is worked out", MODEL),
     Section("line", "One line of the line list", LINE, array=True),
     Section("frame", "One frame; also takes the keys of conditions and format, and those of"
             " recording with camera_ before them", FRAME, array=True),

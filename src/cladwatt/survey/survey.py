@@ -7,6 +7,7 @@ from pathlib import Path
 
 from cladwatt.errors import Fault
 from cladwatt.materials.load import MaterialTables, shipped_tables
+from cladwatt.physics.convection_laws import ConvectionModel
 from cladwatt.quantities import Quantity
 from cladwatt.survey.model import Camera, FrameEntry, Line, Site
 from cladwatt.survey.region import Region
@@ -36,6 +37,8 @@ class Survey:
         SHA-256 of survey file, lists, tables and regions files by path from the root.
     tables : MaterialTables
         What ships, with the survey's own ``tables/`` added.
+    convection_model : str
+        Name of the correlations of convection, see `cladwatt.physics.convection`.
     """
 
     root: Path
@@ -50,6 +53,7 @@ class Survey:
     faults: tuple[Fault, ...] = ()
     digests: Mapping[str, str] = field(default_factory=dict)
     tables: MaterialTables | None = field(default=None, repr=False, compare=False)
+    convection_model: ConvectionModel = "churchill"
 
     @property
     def defaults(self) -> Mapping[str, Quantity]:

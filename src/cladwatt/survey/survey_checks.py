@@ -3,6 +3,7 @@
 from collections.abc import Mapping, Sequence
 from datetime import date, timedelta
 
+from cladwatt.physics.convection_laws import CONVECTION_LAWS, CONVECTION_MODELS, ConvectionModel
 from cladwatt.quantities import Quantity
 from cladwatt.survey.fault_list import FaultList, shown
 from cladwatt.survey.model import Camera, FrameEntry, Line
@@ -10,7 +11,7 @@ from cladwatt.survey.region import Region
 from cladwatt.survey.survey_regions import region_place
 from cladwatt.survey.table_reader import Table
 
-__all__ = ["check_dates", "check_temperatures"]
+__all__ = ["check_dates", "check_temperatures", "checked_convection"]
 
 _ZERO_CELSIUS = 273.15
 _HOT_FLUIDS = ("steam", "condensate", "hot")
@@ -38,6 +39,33 @@ def check_dates(
                 f"frame {shown(frame.id)} was recorded on {frame.time.date()}, the survey made"
                 f" on {day}", "check both dates",
             )  # fmt: skip
+
+
+def checked_convection(
+    model: Table, frames: Sequence[FrameEntry], faults: FaultList
+) -> ConvectionModel:
+    """Return the model of convection asked for; one for still air is refused in wind."""
+    asked = model.text("convection")
+    chosen = next((name for name in CONVECTION_MODELS if name == asked), CONVECTION_MODELS[0])
+    if CONVECTION_LAWS[chosen].forced is not None:
+        return chosen
+    for frame in frames:
+        wind, found = frame.conditions.wind_speed, ""
+        if frame.conditions.indoors is False:
+            found = "was recorded outdoors"
+        elif wind is not None and wind.value > 0 and wind.source.startswith("declared"):
+            found = f"has a wind of {wind.value:g} m/s"
+        if found:
+            others = ", ".join(name for name in CONVECTION_MODELS if name != chosen)
+            faults.add(
+                model.place, "convection",
+                f"convection is {shown(chosen)}, a rule for still air indoors, but frame"
+                f" {shown(frame.id)} {found}",
+                f"expected still air (indoors = true, no wind or wind_speed_m_s = 0), or one of"
+                f" {others}",
+            )  # fmt: skip
+            break
+    return chosen
 
 
 def check_temperatures(
