@@ -4,12 +4,11 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cladwatt.synthetic.bodies import PlacedBody, bodies_on, body_radius, lay_bodies
-from cladwatt.synthetic.columns import ColumnModel, Solution
+from cladwatt.synthetic.bodies import PlacedBody, bodies_on, lay_bodies
+from cladwatt.synthetic.columns import ColumnModel
 from cladwatt.synthetic.conduction_3d import heat_up, solve_columns
 from cladwatt.synthetic.damage import Damage, DamageKind, draw_damage, lay_in
 from cladwatt.synthetic.exchange import (
-    WATER_EMISSIVITY,
     Weather,
     absorbed_sun,
     surface_flux,
@@ -19,6 +18,7 @@ from cladwatt.synthetic.fields import smooth_field
 from cladwatt.synthetic.geometry import PipeAxis, View
 from cladwatt.synthetic.plant import PlantLine, PlantPipe
 from cladwatt.synthetic.render import Patch, Skin
+from cladwatt.synthetic.skins import skin_of, tape_on
 from cladwatt.synthetic.truth import RADIAL_CELLS, FrameTruth, LineTruth
 from cladwatt.types import BoolArray, FloatArray
 
@@ -30,8 +30,6 @@ _SCATTER = 0.03
 """Relative scatter of sound lagging along the pipe."""
 _TRACER_SPREAD, _TRACER_SHARE = 0.30, 0.85
 """Over what angle a tracer warms the inside of the lagging, and how near to its temperature."""
-TAPE_LENGTH = 0.10
-_TAPE_EMISSIVITY = 0.95
 
 
 @dataclass(frozen=True)
@@ -254,7 +252,7 @@ def build_pipe(
         solution = solve_columns(model, flux)
     else:
         solution = heat_up(model, flux, 3600 * line.hours_at_temperature)
-    tape = _tape(pipe, axis, drawn)
+    tape = tape_on(pipe, drawn, _facing(axis))
     heat_loss = solution.heat_loss(length)
     share = model.surface_area / model.surface_area.sum(axis=1, keepdims=True)
     surface = (share * solution.surface_temperature).sum(axis=1)
@@ -273,41 +271,5 @@ def build_pipe(
         water_share=(share * water).sum(axis=1),
         sound_loss=_plain_loss(line, plant, frame, line.installation_factor, weather),
         specified_loss=_plain_loss(line, plant, frame, 1.0, weather),
-        skin=_skin(plant, line, axis, model, solution, water, bodies, tape, random),
-    )  # fmt: skip
-
-
-def _tape(pipe: PlantPipe, axis: PipeAxis, drawn: tuple[float, float]) -> Patch | None:
-    if pipe.tape is None:
-        return None
-    start = drawn[0] + pipe.tape * (drawn[1] - drawn[0])
-    facing = _facing(axis)
-    return Patch((start, start + TAPE_LENGTH), (facing - 0.6, facing + 0.6), _TAPE_EMISSIVITY)
-
-
-def _skin(
-    plant: PlantLine, line: LineTruth, axis: PipeAxis, model: ColumnModel,
-    solution: Solution, water: FloatArray, bodies: tuple[PlacedBody, ...], tape: Patch | None,
-    random: np.random.Generator,
-) -> Skin:  # fmt: skip
-    n_x, n_phi = model.exposed.shape
-    patches = smooth_field(
-        (n_x, n_phi), (0.08 / model.cell_length, n_phi / 14), random, periodic=(False, True)
-    )
-    emissivity = np.clip(line.band_emissivity * (1 + plant.patchy * patches), 0.02, 0.985)
-    radius = model.surface_radius.copy()
-    # compressed lagging keeps its outline: dents are too shallow to be seen
-    outer = line.pipe_diameter / 2 + line.thickness + line.gap
-    radius[~model.exposed] = outer
-    for body in bodies:
-        shown = body_radius(body, line.pipe_diameter / 2, outer)
-        if shown is not None:
-            radius[body.covers(model.station)] = shown
-    emissivity = np.where(model.exposed, line.bare_emissivity, emissivity)
-    return Skin(
-        axis=axis, radius=radius, temperature=solution.surface_temperature,
-        emissivity=emissivity + water * (WATER_EMISSIVITY - emissivity),
-        exposed=model.exposed, face_temperature=solution.cell_temperature.mean(axis=-1),
-        is_metal=plant.is_metal, mirror=plant.mirror,
-        patches=() if tape is None else (tape,),
+        skin=skin_of(plant, line, axis, model, solution, water, bodies, tape, random),
     )  # fmt: skip

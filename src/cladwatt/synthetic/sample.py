@@ -11,12 +11,13 @@ import numpy as np
 from cladwatt.errors import InputError
 from cladwatt.survey.region_format import region_text
 from cladwatt.synthetic.damage import DamageKind
+from cladwatt.synthetic.day import another_day, in_the_sun
 from cladwatt.synthetic.drawing import DrawnFrame, draw_regions
 from cladwatt.synthetic.frame_files import FRAME_FILES, frame_bytes
 from cladwatt.synthetic.geometry import View
 from cladwatt.synthetic.picture import take_picture
 from cladwatt.synthetic.pipes import PipeTruth, build_pipe
-from cladwatt.synthetic.plant import Declared, Plant, PlantFrame, load_plant
+from cladwatt.synthetic.plant import Plant, PlantFrame, load_plant
 from cladwatt.synthetic.response import RESPONSE_FILE, response_text
 from cladwatt.synthetic.survey_text import survey_text
 from cladwatt.synthetic.truth import (
@@ -42,15 +43,6 @@ _KINDS: tuple[DamageKind, ...] = (
     "bare", "open_joint", "missing_sector", "wet", "wet_underside", "compressed", "void",
     "aged", "aged",
 )  # fmt: skip
-_SUN = Declared(600.0, 90.0)
-"""Irradiance where every outdoor frame is put in the sun. [W/m2]"""
-_WEATHER = {"air_temperature_C": 1.5, "wind_speed_m_s": 0.3}
-"""How far the declared conditions of one draw differ from those of the plant file."""
-_SHIFTED = {
-    "air_temperature_C", "surroundings_temperature_C", "reflected_temperature_C",
-    "sky_total_temperature_C", "sky_band_temperature_C",
-}  # fmt: skip
-"""What follows the air from day to day."""
 
 
 @dataclass(frozen=True)
@@ -132,36 +124,6 @@ def _dealt(random: np.random.Generator, share: float) -> tuple[DamageKind, ...]:
     return tuple(_KINDS[int(i)] for i in np.concatenate(rounds)[:number])
 
 
-def _weather(frame: PlantFrame, random: np.random.Generator) -> PlantFrame:
-    """Return a frame whose declared conditions are those of another day."""
-    conditions = dict(frame.conditions)
-    shift = round(
-        float(np.clip(random.standard_normal(), -2, 2)) * _WEATHER["air_temperature_C"], 1
-    )
-    for key in _SHIFTED & conditions.keys():
-        conditions[key] = replace(conditions[key], value=round(conditions[key].value + shift, 1))
-    pieces = tuple(
-        replace(piece, temperature_C=replace(
-            piece.temperature_C, value=round(piece.temperature_C.value + shift, 1)
-        ))
-        for piece in frame.pieces
-    )  # fmt: skip
-    if not frame.indoors:
-        wind = conditions["wind_speed_m_s"]
-        speed = round(wind.value * float(np.exp(_WEATHER["wind_speed_m_s"] * random.normal())), 1)
-        conditions["wind_speed_m_s"] = Declared(speed, round(0.2 * speed + 0.1, 2))
-    return replace(frame, conditions=conditions, pieces=pieces)
-
-
-def _in_the_sun(frame: PlantFrame, random: np.random.Generator) -> PlantFrame:
-    """Return an outdoor frame with the sun behind the camera, somewhere above."""
-    if frame.indoors or frame.sun:
-        return frame
-    across, height = random.uniform(-1.0, 1.0), random.uniform(0.4, 1.2)
-    conditions = frame.conditions | {"solar_irradiance_W_m2": _SUN}
-    return replace(frame, conditions=conditions, sun=(float(across), -float(height), -1.0))
-
-
 def make_frames(
     plant: Plant, seed: int, options: SampleOptions = SampleOptions()
 ) -> tuple[dict[str, LineTruth], Iterator[SampleFrame]]:
@@ -192,9 +154,9 @@ def make_frames(
 
     def frame_of(plain: PlantFrame, child: np.random.SeedSequence) -> SampleFrame:
         random = np.random.default_rng(child)
-        frame = _weather(plain, random)
+        frame = another_day(plain, random)
         if options.sun:
-            frame = _in_the_sun(frame, random.spawn(1)[0])
+            frame = in_the_sun(frame, random.spawn(1)[0])
         truth = draw_frame(frame, shared, random)
         view = View(frame.rows, frame.cols, float(plant.camera["field_of_view_deg"]))
         pipes = [
