@@ -19,7 +19,7 @@ from cladwatt.physics.emissivity import directional_emissivity
 from cladwatt.physics.lagged_pipe import LaggingLayer, SurfaceExchange, solve_lagged_pipe
 from cladwatt.physics.radiometry import correct_temperature
 from cladwatt.quantities import Quantity
-from cladwatt.results.assessment import Assessment, Interval, Settings
+from cladwatt.results.assessment import Assessment, Interval, Settings, interval_of
 from cladwatt.survey.model import (
     AccuracyStatement,
     Camera,
@@ -421,6 +421,32 @@ def test_a_component_is_named_and_its_stations_left_out(folder):
     (region,) = result.regions
     assert region.length.median < 0.82 * whole.length.median
     assert all(stretch.probability < 0.5 for stretch in region.stretches)  # the hot band is gone
+
+
+def test_the_sum_of_components_is_drawn_together_and_in_no_other_total(folder):
+    whole = assess(folder.only("c"), settings=SETTINGS)
+    assert (whole.component_loss, whole.component_gain) == (None, None)
+    for name, left in (("v1", 60.0), ("v2", 120.0)):
+        folder.draw(drawn(name, "c", "component", (left, 10.0, left + 30.0, 50.0), kind="valve"))
+    result = assess(folder.only("c"), settings=SETTINGS)
+    one, other = (component.draws["heat_loss"] for component in result.components)
+    assert result.component_loss == interval_of(one + other)
+    assert result.component_gain is None
+    assert result.total_loss == interval_of(result.regions[0].draws["total_loss"])
+    # lengths are drawn apart: the sum is better known than each alone
+    (first, _) = (component.heat_loss for component in result.components)
+    assert result.component_loss.relative_width < first.relative_width
+
+
+def test_a_component_in_a_frame_without_air_temperature_is_named_with_its_reason(folder):
+    folder.draw(drawn("v1", "a", "component", (80.0, 10.0, 120.0, 50.0), kind="valve"))
+    first, *rest = folder.survey.frames
+    airless = dataclasses.replace(first, conditions=conditions(air_temperature=None))
+    folder.change(frames=(airless, *rest))
+    (valve,) = assess(folder.survey, settings=SETTINGS).components
+    assert (valve.region_id, valve.heat_loss, valve.reason.key) == (
+        "v1", None, "missing.air_temperature",
+    )  # fmt: skip
 
 
 def test_a_region_wholly_covered_is_left_out_with_its_reason(folder):

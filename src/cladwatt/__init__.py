@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from cladwatt.report.html_report import write_report
     from cladwatt.report.tables import (
         assumptions_table,
+        components_table,
         left_out_table,
         lines_table,
         regions_table,
@@ -44,6 +45,7 @@ __all__ = [
     "assess",
     "assumptions_table",
     "check_survey",
+    "components_table",
     "left_out_table",
     "lines_table",
     "read_results",
@@ -65,6 +67,7 @@ _HOMES = {
     "assess": "cladwatt.assess",
     "assumptions_table": "cladwatt.report.tables",
     "check_survey": "cladwatt.survey.checking",
+    "components_table": "cladwatt.report.tables",
     "left_out_table": "cladwatt.report.tables",
     "lines_table": "cladwatt.report.tables",
     "read_results": "cladwatt.results.store",

@@ -1,6 +1,6 @@
 """The one path every face calls: a survey in, an assessment out."""
 
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from concurrent.futures import Executor, ProcessPoolExecutor
 from importlib.metadata import version
 from itertools import repeat
@@ -11,7 +11,7 @@ import numpy as np
 from cladwatt.assumptions import assumptions_of
 from cladwatt.errors import InputError
 from cladwatt.frame_assessment import assess_frame, question_remark
-from cladwatt.inverse.result import RegionResult, interval_of
+from cladwatt.inverse.result import ComponentResult, RegionResult, interval_of
 from cladwatt.results.assessment import Assessment, FrameResult, LeftOut, LineTotal, Settings
 from cladwatt.results.versions import library_versions
 from cladwatt.survey.model import FrameEntry
@@ -107,6 +107,7 @@ def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ..
     hot = [region for region in regions if not region.gain and "total_loss" in region.draws]
     chilled = [region for region in regions if region.gain and "total_loss" in region.draws]
     known = [region for region in hot if "total_excess" in region.draws]
+    losing, gaining = _losing_and_gaining(frames)
     camera = survey.camera
     return Assessment(
         survey_name=survey.name,
@@ -122,6 +123,8 @@ def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ..
         total_loss=interval_of(_summed(hot, "total_loss")) if hot else None,
         total_gain=interval_of(-_summed(chilled, "total_loss")) if chilled else None,
         total_excess=interval_of(_summed(known, "total_excess")) if known else None,
+        component_loss=interval_of(_summed(losing, "heat_loss")) if losing else None,
+        component_gain=interval_of(-_summed(gaining, "heat_loss")) if gaining else None,
         left_out=_survey_left_out(survey)
         + tuple(item for frame in frames for item in frame.left_out),
         assumptions=assumptions_of(survey),
@@ -137,7 +140,22 @@ def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ..
     )
 
 
-def _summed(regions: list[RegionResult], quantity: str) -> FloatArray:
+def _losing_and_gaining(
+    frames: tuple[FrameResult, ...],
+) -> tuple[list[ComponentResult], list[ComponentResult]]:
+    """Divide the components with a number by the sign of its median."""
+    known = [
+        (one, one.heat_loss.median)
+        for frame in frames
+        for one in frame.components
+        if one.heat_loss is not None and "heat_loss" in one.draws
+    ]
+    return [one for one, loss in known if loss >= 0], [one for one, loss in known if loss < 0]
+
+
+def _summed(
+    regions: Sequence[RegionResult] | Sequence[ComponentResult], quantity: str
+) -> FloatArray:
     """Sum draws over regions; draw by draw, so that shared errors do not average out."""
     return np.asarray(np.sum([region.draws[quantity] for region in regions], axis=0))
 

@@ -171,7 +171,8 @@ def _assess_regions(
     if draws is None:
         remark = Remark("missing.air_temperature")
         return _Found(
-            left_out=tuple(LeftOut("region", one.id, entry.id, "", remark) for one in pipes)
+            components=tuple(unknown_component(one, remark.key) for one in components),
+            left_out=tuple(LeftOut("region", one.id, entry.id, "", remark) for one in pipes),
         )
     image = lens_image(survey, entry, frame)
     readings = read_references(image.lens_temperature, regions, survey.defaults)

@@ -10,6 +10,7 @@ from cladwatt.quantities import Remark
 from cladwatt.results.assessment import (
     Assessment,
     Assumption,
+    ComponentResult,
     FrameResult,
     Interval,
     LeftOut,
@@ -102,6 +103,31 @@ def region(region_id="north-1", *, tag="NS-101", frame_id="f03", gain=False, kno
     return RegionResult(**(values | rest))
 
 
+def component(region_id, frame_id="f03", tag="NS-101", **rest):
+    values = {
+        "kind": "valve", "lagged": False, "surface_temperature": Interval(421.0, 415.0, 428.0),
+        "equivalent_length": Interval(0.98, 0.41, 1.99), "heat_loss": Interval(812, 330, 1700),
+        "reason": None, "source": "house table 3", "draws": {"heat_loss": np.array([812.0])},
+    }  # fmt: skip
+    return ComponentResult(region_id, frame_id, tag, **(values | rest))
+
+
+def components():
+    """Two that lose, one that gains, one without a number; by frame."""
+    first = (
+        component("valve-1"),
+        component("flange-1", kind="flange", lagged=True, heat_loss=Interval(41, 17, 93),
+                  equivalent_length=Interval(0.84, 0.45, 1.58), source="house table 4"),
+        component("hanger-1", kind="hanger", lagged=True, equivalent_length=None, heat_loss=None,
+                  source="", draws={}, reason=Remark("not_quantified.component_hanger")),
+    )  # fmt: skip
+    second = (
+        component("valve-9", "f05", "CHW-7", surface_temperature=Interval(281.0, 280.2, 281.8),
+                  heat_loss=Interval(-29, -61, -12)),
+    )  # fmt: skip
+    return first, second
+
+
 def assessment(*, extra=()):
     advice = Remark("advice.tape_patch", (("width_now", 42.0), ("width_then", 19.0)))
     corners = ((0.0, 0.0), (1.0, 0.0), (1.0, 1.0))
@@ -135,16 +161,17 @@ def assessment(*, extra=()):
     )  # fmt: skip
     left_out = (
         LeftOut("frame", "f07", "f07", "frames/f07.csv:12: row 12 has 319 values; expected 320"),
-        LeftOut("component", "valve-2", "f03", "", Remark("not_quantified.component_hanger")),
+        LeftOut("line", "XX-1", "", "lists/lines.csv:4: no diameter"),
     )
+    drawn = components()
     return Assessment(
         survey_name="Holm Quay winter walk-down", place="Holm Quay dye works", date="2026-01-14",
         inspector="R. Adeyemi", version="0.1.0", settings=Settings(seed=7, draws=1000),
         inputs=(("survey.toml", "a" * 64), ("frames/f03.tiff", "b" * 64)),
         frames=(
-            FrameResult("f03", "b" * 64, (240, 320), first, ()),
+            FrameResult("f03", "b" * 64, (240, 320), first, (), components=drawn[0]),
             FrameResult("f05", "c" * 64, (240, 320), second, (),
-                        (Remark("frame.dead_pixels", (("pixels", 3),)),)),
+                        (Remark("frame.dead_pixels", (("pixels", 3),)),), drawn[1]),
         ),
         lines=(
             LineTotal("NS-101", "boiler house", False, Interval(24, 23.4, 24.6),
@@ -154,7 +181,8 @@ def assessment(*, extra=()):
                       Interval(-280, -333, -238), None, ("chill-1",)),
         ),
         total_loss=Interval(6050, 5080, 7290), total_gain=Interval(280, 238, 333),
-        total_excess=Interval(1040, 560, 1650), left_out=left_out,
+        total_excess=Interval(1040, 560, 1650), component_loss=Interval(853, 370, 1740),
+        component_gain=Interval(29, 12, 61), left_out=left_out,
         assumptions=(
             Assumption("line NS-101", "installation_factor", 1.15, 0.08, "-", "practice", "low"),
             Assumption("frame f03", "air_temperature", 293.15, 0.5, "K", "declared", "declared"),
@@ -167,4 +195,6 @@ def assessment(*, extra=()):
 
 @pytest.fixture(name="invented", scope="session")
 def invented_fixture():
-    return SimpleNamespace(assessment=assessment, region=region, stations=stations, nasty=NASTY)
+    return SimpleNamespace(
+        assessment=assessment, region=region, component=component, stations=stations, nasty=NASTY
+    )

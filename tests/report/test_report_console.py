@@ -16,7 +16,24 @@ def test_worst_first_then_what_could_not_be_assessed(invented):
     assert "140 W/m (119 to 165)" in row
     assert "260 W (140 to 410)" in row
     assert "98 %" in row
-    assert not any("valve-2" in line for line in lines)
+
+
+def test_components_stand_apart_from_the_totals(invented):
+    lines = console_summary(invented.assessment(), 200)
+    (line,) = [line for line in lines if line.startswith("Components")]
+    assert line == (
+        "Components (flanges, valves, hangers), 4 drawn: 2 with an estimate, losing 850 W (370 to "
+        "1740); 1 with an estimate, gaining 29 W (12 to 61). Not part of the totals above."
+    )
+    assert lines.index(line) == 3
+
+
+def test_components_without_any_number_are_still_counted(invented):
+    survey = invented.assessment()
+    (hanger,) = (one for one in survey.components if one.kind == "hanger")
+    frame = replace(survey.frames[0], components=(hanger,))
+    survey = replace(survey, frames=(frame,), component_loss=None, component_gain=None)
+    assert "1 drawn: none could be estimated." in " ".join(console_summary(survey, 90))
 
 
 def test_not_quantified_in_the_place_of_numbers(invented):

@@ -131,7 +131,46 @@ def test_every_input_and_setting_is_named(page):
 
 def test_left_out_with_reason(page):
     assert "row 12 has 319 values; expected 320" in page.words
-    assert "component valve-2" in page.words
+    assert "line XX-1" in page.words
+
+
+def test_components_have_a_section_of_their_own(page):
+    words = page.words.split("Flanges, valves and hangers ")[-1].split("Sums by line")[0]
+    words = words.replace("\u00a0", " ")
+    for needed in (
+        "valve · valve-1 NS-101 bare 147.9 (141.9 to 154.9) 0.98 (0.41 to 1.99) of bare pipe "
+        "810 (330 to 1700)",
+        "flange · flange-1 NS-101 lagged", "0.84 (0.45 to 1.58) of the clad line 41 (17 to 93)",
+        "valve · valve-9 CHW-7", "29 (12 to 61) gain",
+        "a loss of 850 W (370 to 1740); a gain of 29 W (12 to 61)", "no part of the totals",
+        "orders of magnitude", "Equivalent lengths by house table 3 | house table 4.",
+    ):  # fmt: skip
+        assert needed in words, needed
+    hanger = words.split("hanger · hanger-1")[1].split("valve · valve-9")[0]
+    assert "a share of a line's loss, not watts of one hanger" in hanger
+    assert "not in these totals; they are estimated apart" in page.words
+
+
+def test_a_survey_without_components_does_not_speak_of_them(invented):
+    survey = invented.assessment()
+    frames = tuple(replace(frame, components=()) for frame in survey.frames)
+    survey = replace(survey, frames=frames, component_loss=None, component_gain=None)
+    assert "lange" not in Page(report_html(survey)).words
+
+
+def test_components_with_nothing_known_print_no_nan(invented):
+    nan = Interval(*[float("nan")] * 3)
+    survey = invented.assessment()
+    odd = invented.component(
+        invented.nasty, tag="", kind=invented.nasty, surface_temperature=nan,
+        equivalent_length=nan, heat_loss=nan,
+    )  # fmt: skip
+    frames = (replace(survey.frames[0], components=(odd,)), *survey.frames[1:])
+    html = report_html(replace(survey, frames=frames))
+    assert "<script" not in html
+    words = Page(html).words.split("Flanges, valves and hangers ")[-1].split("Sums by line")[0]
+    assert words.count("not known") >= 2
+    assert not re.search(r"\bnan\b|None", words)
 
 
 def test_defaults_and_declared_apart(page):

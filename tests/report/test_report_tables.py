@@ -12,6 +12,7 @@ TABLES = {
     "regions": cladwatt.regions_table,
     "stretches": cladwatt.stretches_table,
     "stations": cladwatt.stations_table,
+    "components": cladwatt.components_table,
 }
 
 

@@ -13,6 +13,7 @@ from cladwatt.quantities import Remark
 from cladwatt.results.assessment import (
     Assessment,
     Assumption,
+    ComponentResult,
     FrameResult,
     Interval,
     LeftOut,
@@ -99,6 +100,23 @@ def region(name: str, frame_id: str, tag: str, **changes: Any) -> RegionResult:
     return dataclasses.replace(found, **changes)
 
 
+def component(name: str, frame_id: str, **changes: Any) -> ComponentResult:
+    found = ComponentResult(
+        region_id=name,
+        frame_id=frame_id,
+        tag="=1+1",
+        kind="Schieber, DN 50",
+        lagged=False,
+        surface_temperature=Interval(400.123456789, 390.0, 411.0),
+        equivalent_length=Interval(1.0, 0.4, 2.0),
+        heat_loss=Interval(812.3456789, -0.0, INF),
+        reason=None,
+        source='house table, "Süd"',
+        draws={"heat_loss": np.array([800.0, NAN, 812.3, -1.0])},
+    )
+    return dataclasses.replace(found, **changes)
+
+
 def odd_assessment() -> Assessment:
     long_tag = "=HYPERLINK-" + "x" * 289
     first = FrameResult(
@@ -111,6 +129,21 @@ def odd_assessment() -> Assessment:
         ),
         left_out=(LeftOut("region", "r9", "f01", "regions/f01.geojson: too few pixels"),),
         remarks=(Remark("remark.question"),),
+        components=(
+            component("v|1", "f01"),
+            component(
+                "hanger-ü",
+                "f01",
+                kind="hanger",
+                lagged=True,
+                equivalent_length=None,
+                heat_loss=None,
+                surface_temperature=None,
+                source="",
+                draws={},
+                reason=Remark("not_quantified.component_hanger"),
+            ),
+        ),
         seconds=0.25,
     )
     second = FrameResult(
@@ -142,6 +175,7 @@ def odd_assessment() -> Assessment:
         total_loss=Interval(250.0, 200.0, 300.0),
         total_gain=None,
         total_excess=Interval(NAN, NAN, NAN),
+        component_loss=Interval(812.3456789, 400.0, INF),
         left_out=(
             LeftOut("line", "B-7", "", "", Remark("missing.diameter")),
         ),

@@ -10,6 +10,7 @@ import pytest
 from cladwatt.flags import flag_names
 from cladwatt.quantities import Remark
 from cladwatt.results.columns import (
+    COMPONENT_COLUMNS,
     REGION_COLUMNS,
     STATION_COLUMNS,
     STRETCH_COLUMNS,
@@ -49,7 +50,7 @@ def test_regions_table(odd, tables):
 
 
 def test_tables_read_in_one_line_with_numbers_as_numbers(tables):
-    for name in ("regions.csv", "stretches.csv", "stations.csv"):
+    for name in ("regions.csv", "stretches.csv", "stations.csv", "components.csv"):
         table = pd.read_csv(tables / name)
         assert len(table) > 0
         figures = [column for column in table if column.endswith(("_C", "_W_per_m", "_m", "_px"))]
@@ -78,6 +79,23 @@ def test_stretches_table(tables):
     assert list(table["stretch_id"]) == ["nord|1-s1", "line"]
     assert table["start_high_m"][0] == pytest.approx(13.1235, abs=1e-9)
     assert math.isnan(table["excess_high_W"][0])
+
+
+def test_components_table(tables):
+    table = pd.read_csv(tables / "components.csv", **TEXT)
+    assert list(table.columns) == [column.name for column in COMPONENT_COLUMNS]
+    assert list(table["region_id"]) == ["v|1", "hanger-ü"]
+    valve, hanger = table.iloc[0], table.iloc[1]
+    assert valve["kind"] == "Schieber, DN 50"
+    assert valve["surface_temperature_C"] == pytest.approx(126.973, abs=5e-4)
+    assert valve["equivalent_length_high_m"] == 2.0
+    assert valve["heat_loss_W"] == pytest.approx(812.346, abs=5e-4)
+    assert valve["heat_loss_low_W"] == 0.0
+    assert math.isnan(valve["heat_loss_high_W"])
+    assert valve["source"] == 'house table, "Süd"'
+    assert hanger["reason"] == "not_quantified.component_hanger"
+    assert math.isnan(hanger["heat_loss_W"])
+    assert list(table["lagged"]) == [False, True]
 
 
 def test_tables_are_plain_utf8_with_one_header_row(tables):
@@ -116,10 +134,11 @@ def test_every_column_is_explained(tables):
     text = (tables / "COLUMNS.txt").read_text("utf-8")
     assert text == columns_text()
     lines = [line.split() for line in text.splitlines()]
-    for column in (*REGION_COLUMNS, *STRETCH_COLUMNS, *STATION_COLUMNS):
+    tables = (REGION_COLUMNS, STRETCH_COLUMNS, STATION_COLUMNS, COMPONENT_COLUMNS)
+    for column in (column for table in tables for column in table):
         assert column.meaning
         assert any(words[:1] == [column.name] and len(words) > 1 for words in lines), column.name
-    for table in (REGION_COLUMNS, STRETCH_COLUMNS, STATION_COLUMNS):
+    for table in tables:
         assert len({column.name for column in table}) == len(table)
 
 

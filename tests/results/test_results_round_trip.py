@@ -15,6 +15,7 @@ from hypothesis import strategies as st
 from cladwatt.errors import ResultsError
 from cladwatt.results.assessment import (
     Assessment,
+    ComponentResult,
     FrameResult,
     Interval,
     LineTotal,
@@ -120,7 +121,9 @@ def test_shipped_schema_is_that_of_the_classes():
     assert json.loads(schema_text()) == make_schema()
 
 
-@pytest.mark.parametrize("owner", [Assessment, LineTotal, RegionResult, StationTable, Stretch])
+@pytest.mark.parametrize(
+    "owner", [Assessment, ComponentResult, LineTotal, RegionResult, StationTable, Stretch]
+)
 def test_every_figure_of_the_results_has_a_unit_and_a_meaning(owner):
     hints = typing.get_type_hints(owner)
     figures = {
@@ -152,6 +155,7 @@ def test_draws_file_is_open_to_numpy_and_names_owner_and_quantity(odd, tmp_path)
     with np.load(folder / "draws" / "f01.npz") as arrays:
         np.testing.assert_array_equal(arrays["nord|1|heat_loss"], [1.0, np.nan, np.inf, -2.5])
         assert arrays["nord|1|stations.station"][0] == 12.5
+        np.testing.assert_array_equal(arrays["v|1|heat_loss"], [800.0, np.nan, 812.3, -1.0])
         assert int(arrays["run|seed"]) == 7
         assert int(arrays["run|draws"]) == 4
 
@@ -197,6 +201,30 @@ def test_an_older_file_without_an_optional_key_is_read(odd, tmp_path):
     del data["versions"]
     (folder / "assessment.json").write_text(json.dumps(data), "utf-8")
     assert read_results(folder).versions == {}
+
+
+def test_results_from_before_components_are_read(odd, tmp_path):
+    folder = write_results(odd, tmp_path / "results")
+    data = loaded(folder)
+    del data["component_loss_W"], data["component_gain_W"]
+    for frame in data["frames"]:
+        del frame["components"]
+    data["not_finite"] = {p: w for p, w in data["not_finite"].items() if "component" not in p}
+    (folder / "assessment.json").write_text(json.dumps(data), "utf-8")
+    read = read_results(folder)
+    assert read.components == ()
+    assert read.component_loss is None
+
+
+@pytest.mark.parametrize("held", [3, {"a": 1}, [{"frame_id": "f02"}], ["v1"]])
+def test_components_that_are_none_of_the_frame_are_refused(odd, tmp_path, held):
+    folder = write_results(odd, tmp_path / "results")
+    data = loaded(folder)
+    data["frames"][0]["components"] = held
+    pointers = {p: w for p, w in data["not_finite"].items() if "component" not in p}
+    changed(folder, frames=data["frames"], not_finite=pointers)
+    with pytest.raises(ResultsError, match=r"names another frame|components: found"):
+        read_results(folder)
 
 
 @pytest.mark.parametrize("keep", [0, 10, 1000, -30])

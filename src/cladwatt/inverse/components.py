@@ -95,6 +95,7 @@ def estimate_component(
     owner = f"region:{region.id}"
     length = book.quantity(owner, "equivalent_length", fitting.amount)
     length = length * np.exp(SHAPE_U * book.normal(owner, "shape"))
+    loss = length * per_metre
     return ComponentResult(
         region_id=region.id,
         frame_id=region.frame_id,
@@ -103,8 +104,10 @@ def estimate_component(
         lagged=lagged,
         surface_temperature=surface,
         equivalent_length=interval_of(length),
-        heat_loss=interval_of(length * per_metre),
+        heat_loss=interval_of(loss),
         reason=None,
+        source=fitting.amount.source,
+        draws={"heat_loss": loss},
     )
 
 

@@ -201,5 +201,9 @@ class ComponentResult:
     equivalent_length: Interval | None
     """Of bare pipe for a bare component, of the line as clad for a lagged one. [m]"""
     heat_loss: Interval | None
-    """[W]"""
+    """Negative for a gain. [W]"""
     reason: Remark | None
+    source: str = ""
+    """Of the equivalent length."""
+    draws: dict[str, FloatArray] = field(default_factory=dict, repr=False, compare=False)
+    """Draws of heat_loss, (n_draws,)."""

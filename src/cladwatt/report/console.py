@@ -2,7 +2,13 @@
 
 import textwrap
 
-from cladwatt.report.findings import Finding, all_left_out, ranked_findings, where_damaged
+from cladwatt.report.findings import (
+    Finding,
+    all_left_out,
+    component_sums,
+    ranked_findings,
+    where_damaged,
+)
 from cladwatt.report.numbers import (
     CONSOLE,
     format_interval,
@@ -37,7 +43,7 @@ def console_summary(assessment: Assessment, width: int = 80, language: str = "en
         Lines without line ends, none wider than `width` as far as characters are one column wide.
     """
     width = max(width, NARROWEST)
-    lines = _totals(assessment, width, language)
+    lines = _totals(assessment, width, language) + _components(assessment, width, language)
     findings = ranked_findings(assessment)
     if findings:
         lines += ["", *textwrap.wrap(text("console.findings", language), width)]
@@ -72,6 +78,21 @@ def _totals(assessment: Assessment, width: int, language: str) -> list[str]:
         for line in textwrap.wrap(f"{name.ljust(rest)}  {value}", width, subsequent_indent="  ")
     ]
     return lines or textwrap.wrap(text("console.no_totals", language), width)
+
+
+def _components(assessment: Assessment, width: int, language: str) -> list[str]:
+    """Return what the components come to, beside the totals of the pipes."""
+    if not assessment.components:
+        return []
+    known = component_sums(assessment)
+    words = text("console.components", language, count=len(assessment.components))
+    sums = [
+        text(f"console.component_{way}", language, count=count, sum=format_interval(value, "W",
+             CONSOLE))
+        for way, count, value in known
+    ]  # fmt: skip
+    words += ": " + "; ".join(sums or [text("console.components_unknown", language)])
+    return textwrap.wrap(f"{words}. {text('console.components_apart', language)}", width)
 
 
 def _table(findings: tuple[Finding, ...], width: int, language: str) -> list[str]:
@@ -121,7 +142,7 @@ def _not_assessed(assessment: Assessment, width: int, language: str) -> list[str
         for region in unquantified:
             name = f"{_short(region.tag, 30)} {_short(region.region_id, 30)}"
             lines += _item(name, sentence(region.verdict.reason, language), width)
-    items = [item for item in all_left_out(assessment) if item.what != "component"]
+    items = all_left_out(assessment)
     if items:
         lines += ["", text("console.left_out", language)]
         for item in items:

@@ -9,7 +9,15 @@ from cladwatt.quantities import Remark
 from cladwatt.report.numbers import as_gain
 from cladwatt.results.assessment import Assessment, Interval, LeftOut, RegionResult, interval_of
 
-__all__ = ["Finding", "all_left_out", "is_finding", "ranked_findings", "signed", "where_damaged"]
+__all__ = [
+    "Finding",
+    "all_left_out",
+    "component_sums",
+    "is_finding",
+    "ranked_findings",
+    "signed",
+    "where_damaged",
+]
 
 LIKELY = 0.5
 """A region is a finding where damage is at least as likely as not."""
@@ -126,3 +134,16 @@ def all_left_out(assessment: Assessment) -> tuple[LeftOut, ...]:
 def unique_remarks(*groups: tuple[Remark, ...]) -> tuple[Remark, ...]:
     """Return the remarks of all groups, each once, in order."""
     return tuple(dict.fromkeys(remark for group in groups for remark in group))
+
+
+def component_sums(assessment: Assessment) -> list[tuple[str, int, Interval]]:
+    """Return ``loss`` and ``gain``, each with its number of components and their sum in W.
+
+    A way that no component goes is left out; losses and gains are never netted.
+    """
+    medians = [one.heat_loss.median for one in assessment.components if one.heat_loss is not None]
+    ways = (
+        ("loss", sum(median >= 0 for median in medians), assessment.component_loss),
+        ("gain", sum(median < 0 for median in medians), assessment.component_gain),
+    )
+    return [(way, count, value) for way, count, value in ways if value is not None]

@@ -92,6 +92,11 @@ def report_html(assessment: Assessment, *, language: str = "en") -> str:
         The document. Equal assessments give equal text.
     """
     from cladwatt.report import views
+    from cladwatt.report.component_views import (
+        component_sources,
+        component_view,
+        components_sum,
+    )
 
     drawn = strip_pictures(assessment, language, heading=False)
     findings = ranked_findings(assessment)
@@ -113,6 +118,9 @@ def report_html(assessment: Assessment, *, language: str = "en") -> str:
         ],
         "regions": shown,
         "unquantified_regions": [view for view in shown if view.level == "not-quantified"],
+        "components": [component_view(one, language) for one in assessment.components],
+        "components_sum": components_sum(assessment, language),
+        "component_sources": component_sources(assessment),
         "lines": [views.line_view(line, language) for line in assessment.lines],
         "left_out": all_left_out(assessment),
         "survey_remarks": [sentence(r, language) for r in unique_remarks(assessment.remarks)],

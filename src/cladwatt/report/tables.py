@@ -7,13 +7,20 @@ from typing import TYPE_CHECKING, TypeVar
 from cladwatt.report.findings import all_left_out
 from cladwatt.report.wording import sentence
 from cladwatt.results.assessment import Assessment
-from cladwatt.results.columns import REGION_COLUMNS, STATION_COLUMNS, STRETCH_COLUMNS, Column
+from cladwatt.results.columns import (
+    COMPONENT_COLUMNS,
+    REGION_COLUMNS,
+    STATION_COLUMNS,
+    STRETCH_COLUMNS,
+    Column,
+)
 
 if TYPE_CHECKING:
     import pandas
 
 __all__ = [
     "assumptions_table",
+    "components_table",
     "left_out_table",
     "lines_table",
     "regions_table",
@@ -76,6 +83,22 @@ def stations_table(assessment: Assessment) -> "pandas.DataFrame":
     return pd.DataFrame(columns)
 
 
+def components_table(assessment: Assessment) -> "pandas.DataFrame":
+    """Return one row per flange, valve or hanger; columns as in ``components.csv``.
+
+    Parameters
+    ----------
+    assessment : Assessment
+        What one run found.
+
+    Returns
+    -------
+    pandas.DataFrame
+        What a component loses is in none of the other tables, and is no part of their totals.
+    """
+    return _table(COMPONENT_COLUMNS, assessment.components)
+
+
 def lines_table(assessment: Assessment) -> "pandas.DataFrame":
     """Return one row per line: the sum over its drawn regions, shared errors kept.
 
@@ -110,7 +133,7 @@ def lines_table(assessment: Assessment) -> "pandas.DataFrame":
 
 
 def left_out_table(assessment: Assessment, language: str = "en") -> "pandas.DataFrame":
-    """Return one row per frame, region, line or component that was not assessed, and why.
+    """Return one row per frame, region or line that was not assessed, and why.
 
     Parameters
     ----------

@@ -37,7 +37,7 @@ __all__ = [
 class LeftOut:
     """A frame, region or line that was not assessed, and why."""
 
-    what: Literal["frame", "region", "line", "component"]
+    what: Literal["frame", "region", "line"]
     id: str
     frame_id: str
     message: str
@@ -124,8 +124,17 @@ class Assessment:
     camera: dict[str, str] = field(default_factory=dict)
     versions: dict[str, str] = field(default_factory=dict)
     """Of Python and the libraries the numbers depend on."""
+    component_loss: Interval | None = None
+    """Over all components that lose heat; in none of the totals above. [W]"""
+    component_gain: Interval | None = None
+    """Over all components that gain heat, as a positive gain. [W]"""
 
     @property
     def regions(self) -> tuple[RegionResult, ...]:
         """All region results, in the order of the survey."""
         return tuple(region for frame in self.frames for region in frame.regions)
+
+    @property
+    def components(self) -> tuple[ComponentResult, ...]:
+        """All components, in the order of the survey."""
+        return tuple(one for frame in self.frames for one in frame.components)

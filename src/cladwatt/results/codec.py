@@ -12,7 +12,7 @@ from functools import cache
 from typing import Any, Literal, Union, get_args, get_origin, get_type_hints
 
 from cladwatt.errors import ResultsError
-from cladwatt.results.assessment import FrameResult, RegionResult
+from cladwatt.results.assessment import ComponentResult, FrameResult, RegionResult
 from cladwatt.results.fields import FIELDS, edge_name, edge_value, inside_value, is_celsius
 
 __all__ = [
@@ -32,6 +32,7 @@ class DataError(ResultsError):
 
 NOT_STORED: dict[type, frozenset[str]] = {
     RegionResult: frozenset({"stations", "strip_temperature", "draws"}),
+    ComponentResult: frozenset({"draws"}),
     FrameResult: frozenset({"seconds"}),
 }
 """Fields kept in array files, and the run's duration, which is no result."""

@@ -8,11 +8,18 @@ from typing import Generic, TypeVar
 
 from cladwatt.flags import FLAG_SENTENCES, flag_names
 from cladwatt.quantities import Remark
-from cladwatt.results.assessment import Interval, RegionResult, StationTable, Stretch
+from cladwatt.results.assessment import (
+    ComponentResult,
+    Interval,
+    RegionResult,
+    StationTable,
+    Stretch,
+)
 from cladwatt.results.fields import FIELDS, ZERO_CELSIUS, edge_name, edge_value, is_celsius
 from cladwatt.types import FloatArray
 
 __all__ = [
+    "COMPONENT_COLUMNS",
     "REGION_COLUMNS",
     "STATION_COLUMNS",
     "STRETCH_COLUMNS",
@@ -153,6 +160,18 @@ def _stretch_figures() -> list[Column[StretchRow]]:
     return columns
 
 
+def _component_figures() -> list[Column[ComponentResult]]:
+    columns: list[Column[ComponentResult]] = []
+    for field in FIELDS[ComponentResult]:
+
+        def get(one: ComponentResult, field: str = field) -> Interval | None:
+            found: Interval | None = getattr(one, field)
+            return found
+
+        columns += _figure_columns(ComponentResult, field, get, interval=True)
+    return columns
+
+
 def _station_figures() -> list[StationColumn]:
     columns: list[StationColumn] = []
     for field, entry in FIELDS[StationTable].items():
@@ -205,6 +224,17 @@ STRETCH_COLUMNS: tuple[Column[StretchRow], ...] = (
     *_stretch_figures(),
 )
 
+COMPONENT_COLUMNS: tuple[Column[ComponentResult], ...] = (
+    Column("frame_id", "", "frame the component is drawn on", lambda c: c.frame_id),
+    Column("region_id", "", "component as drawn", lambda c: c.region_id),
+    Column("tag", "", "tag of the line it sits on", lambda c: c.tag),
+    Column("kind", "", "what it is, as drawn", lambda c: c.kind),
+    Column("lagged", "", "true where it is lagged itself", lambda c: bool(c.lagged)),
+    *_component_figures(),
+    Column("source", "", "of the equivalent length", lambda c: c.source),
+    Column("reason", "", "why a figure is missing, as a key", lambda c: remark_text(c.reason)),
+)
+
 STATION_COLUMNS: tuple[StationColumn, ...] = (
     StationColumn("frame_id", "", "frame the region is drawn on", _repeated(lambda r: r.frame_id)),
     StationColumn("region_id", "", "region the station lies in", _repeated(lambda r: r.region_id)),
@@ -225,6 +255,8 @@ _NOTES = (
     "the heat loss may be zero; its _high cell is then empty.",
     "Figures of regions that are not quantified stand here with their intervals; the column "
     "verdict says so.",
+    "Components (flanges, valves, hangers) are estimated on their own from printed equivalent "
+    "lengths, which are orders of magnitude; regions.csv and its totals do not contain them.",
     "Reasons, cautions and remarks are keys with parameters, key(name=value, ...), joined by "
     "semicolons; the report words them.",
     "Text is written as it was given, also where it begins with =, +, - or @: changing it would "
@@ -246,6 +278,7 @@ def columns_text() -> str:
         ("regions.csv: one row per region", _described(REGION_COLUMNS)),
         ("stretches.csv: one row per damaged stretch", _described(STRETCH_COLUMNS)),
         ("stations.csv: one row per station along a region", _described(STATION_COLUMNS)),
+        ("components.csv: one row per flange, valve or hanger", _described(COMPONENT_COLUMNS)),
         ("flags in stations.csv", [(str(f.name).lower(), s) for f, s in FLAG_SENTENCES.items()]),
     ):
         parts += [name, *(f"  {column:<38} {meaning}" for column, meaning in table), ""]

@@ -10,6 +10,7 @@ import numpy as np
 
 from cladwatt.results.assessment import Assessment, RegionResult
 from cladwatt.results.columns import (
+    COMPONENT_COLUMNS,
     REGION_COLUMNS,
     STATION_COLUMNS,
     STRETCH_COLUMNS,
@@ -78,7 +79,7 @@ def _write_stations(path: Path, regions: Iterable[RegionResult]) -> None:
 
 
 def write_tables(assessment: Assessment, folder: Path) -> None:
-    """Write ``regions.csv``, ``stretches.csv``, ``stations.csv`` and ``COLUMNS.txt``.
+    """Write the tables of regions, stretches, stations and components, and ``COLUMNS.txt``.
 
     Parameters
     ----------
@@ -96,4 +97,5 @@ def write_tables(assessment: Assessment, folder: Path) -> None:
     _write(folder / "regions.csv", REGION_COLUMNS, iter(regions))
     _write(folder / "stretches.csv", STRETCH_COLUMNS, stretches)
     _write_stations(folder / "stations.csv", regions)
+    _write(folder / "components.csv", COMPONENT_COLUMNS, iter(assessment.components))
     (folder / "COLUMNS.txt").write_text(columns_text(), encoding="utf-8", newline="\n")

@@ -1,6 +1,6 @@
 """The arrays of one frame: stations, strips and draws of its regions, in one NPZ file.
 
-Arrays are named ``<owner>|<quantity>``: ``<region id>|heat_loss`` for draws,
+Arrays are named ``<owner>|<quantity>``: ``<region id>|heat_loss`` for draws, of components too,
 ``<region id>|stations.heat_loss`` for the stations, ``<region id>|strip.temperature`` for the
 straightened field; ``run|seed`` and ``run|draws`` say which draws they are. SI, kelvin.
 """
@@ -39,6 +39,9 @@ def _named_arrays(frame: FrameResult, settings: Settings) -> Iterator[tuple[str,
             yield f"{owner}|{_STRIP}", np.asarray(region.strip_temperature, dtype="<f8")
         for quantity in sorted(region.draws):
             yield f"{owner}|{quantity}", np.asarray(region.draws[quantity], dtype="<f8")
+    for one in frame.components:
+        for quantity in sorted(one.draws):
+            yield f"{one.region_id}|{quantity}", np.asarray(one.draws[quantity], dtype="<f8")
 
 
 def write_frame_arrays(path: Path, frame: FrameResult, settings: Settings) -> None:

@@ -111,12 +111,14 @@ _COMPONENT = {
     "equivalent_length": Field(
         "m", "pipe it counts as: bare for a bare one, clad for a lagged one"
     ),
-    "heat_loss": Field("W", "what the component loses"),
+    "heat_loss": Field("W", "what the component loses, negative for a gain"),
 }
 _ASSESSMENT = {
     "total_loss": Field("W", "heat loss of all hot regions"),
     "total_gain": Field("W", "heat gain of all chilled regions, positive"),
     "total_excess": Field("W", "loss above sound of all hot regions with a known sound loss"),
+    "component_loss": Field("W", "heat loss of all components that lose; in no other total"),
+    "component_gain": Field("W", "heat gain of all components that gain, positive"),
 }
 _ASSUMPTION = {
     "value": Field("", "best estimate, in the unit named beside it"),

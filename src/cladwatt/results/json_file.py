@@ -8,7 +8,12 @@ from pathlib import Path
 from typing import Any
 
 from cladwatt.errors import ResultsError
-from cladwatt.results.assessment import Assessment, FrameResult, RegionResult
+from cladwatt.results.assessment import (
+    Assessment,
+    ComponentResult,
+    FrameResult,
+    RegionResult,
+)
 from cladwatt.results.codec import (
     DataError,
     NotFinite,
@@ -148,7 +153,7 @@ def _parsed(path: Path) -> dict[str, Any]:
 
 
 def _supplier(folder: Path) -> Callable[[type, dict[str, Any]], Any]:
-    """Return what fetches the arrays of a region; each frame's file is read once."""
+    """Return what fetches the arrays of a region or component; each file is read once."""
     names: dict[str, str] = {}
     loaded: dict[str, FrameArrays] = {}
 
@@ -161,16 +166,26 @@ def _supplier(folder: Path) -> Callable[[type, dict[str, Any]], Any]:
             names[frame_id] = name
             loaded.clear()
             loaded[frame_id] = read_frame_arrays(folder / name)
-            for region in item.get("regions") or []:
-                if not isinstance(region, dict) or region.get("frame_id") != frame_id:
-                    raise DataError(f"frames: a region of {frame_id!r} names another frame")
+            _check_owners(item, frame_id)
         if cls is RegionResult:
             frame_id, region_id = str(item.get("frame_id")), str(item.get("region_id"))
             arrays = loaded[frame_id].get(region_id, {})
             return region_arrays(arrays, f"{folder / names[frame_id]}, region {region_id!r}")
+        if cls is ComponentResult:
+            of_frame = loaded[str(item.get("frame_id"))]
+            return {"draws": dict(of_frame.get(str(item.get("region_id")), {}))}
         return {}
 
     return supply
+
+
+def _check_owners(frame: dict[str, Any], frame_id: str) -> None:
+    """Refuse regions and components that name another frame than the one they stand in."""
+    for key in ("regions", "components"):
+        held = frame.get(key)
+        for one in held if isinstance(held, list) else ():
+            if not isinstance(one, dict) or one.get("frame_id") != frame_id:
+                raise DataError(f"frames: a region of {frame_id!r} names another frame")
 
 
 def read_assessment_file(path: Path) -> Assessment:

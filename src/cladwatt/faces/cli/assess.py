@@ -27,7 +27,7 @@ SURVEY/tables/. Nothing in the survey is changed but its results folder.
 _END = """\
 writes, into the results folder, whole or not at all:
   report.html        the report, one file that needs nothing beside it
-  regions.csv, stretches.csv, stations.csv
+  regions.csv, stretches.csv, stations.csv, components.csv
                      the numbers; COLUMNS.txt says what every column means
   assessment.json    everything a program needs, with inputs' SHA-256, seed and versions
   strips/, stretches/, draws/
@@ -125,7 +125,7 @@ def _assess(survey: "Survey", options: argparse.Namespace, messages: Messages) -
 def _code(assessment: "Assessment", strict: bool) -> ExitCode:
     if not assessment.regions:
         return ExitCode.COULD_NOT
-    if any(item.what != "component" for item in assessment.left_out):
+    if assessment.left_out:
         return ExitCode.COULD_NOT if strict else ExitCode.LEFT_OUT
     return ExitCode.DONE
 
@@ -156,7 +156,7 @@ def _closing_notes(
             f"{counted(questions, 'question')} about the survey; "
             f"`cladwatt check {options.survey}` asks"
         )
-    left_out = sum(item.what != "component" for item in assessment.left_out)
+    left_out = len(assessment.left_out)
     if not assessment.regions:
         messages.error("not one pipe region could be assessed; the report says why")
     elif left_out and options.strict:
@@ -182,6 +182,9 @@ def _summary(assessment: "Assessment", folder: Path, code: ExitCode) -> dict[str
         "total_loss_W": _interval(assessment.total_loss),
         "total_gain_W": _interval(assessment.total_gain),
         "total_excess_W": _interval(assessment.total_excess),
+        "components": len(assessment.components),
+        "component_loss_W": _interval(assessment.component_loss),
+        "component_gain_W": _interval(assessment.component_gain),
         "findings": [
             {
                 "region_id": finding.region.region_id,

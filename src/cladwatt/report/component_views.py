@@ -1,0 +1,66 @@
+"""What the report prints of flanges, valves and hangers, ready made."""
+
+from dataclasses import dataclass
+
+from cladwatt.report.findings import component_sums
+from cladwatt.report.numbers import as_gain, celsius_interval, format_interval
+from cladwatt.report.wording import sentence, text
+from cladwatt.results.assessment import Assessment, ComponentResult
+
+__all__ = ["ComponentView", "component_sources", "component_view", "components_sum"]
+
+
+@dataclass(frozen=True)
+class ComponentView:
+    """One component; where `reason` stands there is neither length nor loss."""
+
+    name: str
+    tag: str
+    state: str
+    temperature: str
+    length: str
+    loss: str
+    reason: str
+
+
+def component_view(one: ComponentResult, language: str) -> ComponentView:
+    """Return a component ready to print."""
+
+    def said(key: str, **values: str) -> str:
+        return text(f"report.{key}", language, **values)
+
+    surface, length, loss = one.surface_temperature, one.equivalent_length, one.heat_loss
+    of = "component_of_lagged" if one.lagged else "component_of_bare"
+    shown = said("not_known")
+    if loss is not None:
+        gains = loss.median < 0
+        shown = format_interval(as_gain(loss) if gains else loss, "")
+        shown += f" {said('gain_mark')}" if gains else ""
+    return ComponentView(
+        name=f"{one.kind or said('not_stated')} · {one.region_id}",
+        tag=one.tag,
+        state=said("component_lagged" if one.lagged else "component_bare"),
+        temperature=said("not_known")
+        if surface is None
+        else format_interval(celsius_interval(surface), "", most=1),
+        length=said("not_known")
+        if length is None
+        else said(of, length=format_interval(length, "", most=2)),
+        loss=shown,
+        reason="" if one.reason is None else sentence(one.reason, language),
+    )
+
+
+def components_sum(assessment: Assessment, language: str) -> str:
+    """Return what all components come to, losses and gains apart; empty where none is known."""
+    sums = [
+        text(f"report.component_sum_{way}", language, sum=format_interval(value, "W"))
+        for way, _, value in component_sums(assessment)
+    ]
+    return text("report.components_sum", language, sums="; ".join(sums)) if sums else ""
+
+
+def component_sources(assessment: Assessment) -> str:
+    """Return the sources of the equivalent lengths that were used, each once."""
+    sources = (one.source for one in assessment.components if one.source)
+    return " | ".join(dict.fromkeys(sources))
