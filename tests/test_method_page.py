@@ -10,6 +10,7 @@ from cladwatt import Settings
 from cladwatt.inverse import (
     bare,
     cautions,
+    face,
     frame_draws,
     hidden_side,
     joint,
@@ -23,6 +24,7 @@ from cladwatt.inverse import (
 )
 from cladwatt.materials.load import shipped_tables
 from cladwatt.measure import strip
+from cladwatt.physics import convection_spread
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.physics.field_methods import MINIMUM_SEPARATION
 
@@ -51,8 +53,10 @@ VALUES = [
     f"u of a drawn edge | {strip.OUTLINE_ERROR_PX} px |",
     f"where none is declared | {strip.UNKNOWN_VIEW_DEG:.0f}°,",
     f"{percent(observe.COMPONENT_MARGIN)} of the width, at least 3 px |",
-    f"u of the law in still air | {percent(frame_draws.CONVECTION_SIGMA_STILL)} |",
-    f"u of the law in wind | {percent(frame_draws.CONVECTION_SIGMA_WIND)} |",
+    f"taken {frame_draws.SPREAD_AT_RISE:g} K above the air on {frame_draws.SPREAD_AT_DIAMETER:g} m",
+    f"no less than {percent(convection_spread.STILL_AIR_FLOOR)} in still air and "
+    f"{percent(convection_spread.CROSS_FLOW_FLOOR)} across flow",
+    f"a water film's emissivity of {face.WATER_FILM_EMISSIVITY}",
     f"band and total emissivity | {line_draws.EMISSIVITY_CORRELATION} |",
     f"where no diameter is known | {observe.UNKNOWN_DIAMETER} m,",
     f"({Settings().draws} draws by default)",

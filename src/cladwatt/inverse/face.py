@@ -161,6 +161,7 @@ def _beside(exchange: SurfaceExchange) -> SurfaceExchange:
         air_temperature=column(exchange.air_temperature),
         surroundings_temperature=column(exchange.surroundings_temperature),
         wind_speed=column(exchange.wind_speed),
+        wind_angle_deg=column(exchange.wind_angle_deg),
         diameter=column(exchange.diameter),
         total_emissivity=column(exchange.total_emissivity),
         pressure=column(exchange.pressure),

@@ -17,8 +17,11 @@ from cladwatt.inverse.draws import DrawBook
 from cladwatt.physics.atmosphere import air_path_transmission, air_path_transmission_uncertainty
 from cladwatt.physics.band import Band
 from cladwatt.physics.constants import STANDARD_PRESSURE, ZERO_CELSIUS
+from cladwatt.physics.convection import ConvectionModel
+from cladwatt.physics.convection_spread import correlation_spread
 from cladwatt.physics.humidity import dew_point
 from cladwatt.physics.radiation import combined_surroundings
+from cladwatt.physics.surface_balance import SurfaceExchange
 from cladwatt.quantities import Quantity
 from cladwatt.survey.model import AccuracyStatement, Camera, Conditions, Site
 from cladwatt.types import FloatArray
@@ -27,10 +30,9 @@ __all__ = ["FrameDraws", "band_of", "draw_frame", "mirrored"]
 
 SHARED_SHARE = 2 / 3
 """Share of variance of calibration and convection law common to the survey (assumption)."""
-CONVECTION_SIGMA_STILL = 0.12
-CONVECTION_SIGMA_WIND = 0.17
-"""Relative standard uncertainty of the convection law: published correlations differ by 10-20 %
-in still air and 19 % across flow."""
+SPREAD_AT_RISE, SPREAD_AT_DIAMETER = 10.0, 0.2
+"""Rise over the air [K] and diameter [m] for which the spread of published correlations is taken
+as uncertainty of the convection law; it hangs little on either."""
 AIR_AS_SOURCE = "as the air"
 SURROUNDINGS_AS_SOURCE = "as the declared surroundings"
 """Sources of a default temperature that follows another: its draws are the other's plus its
@@ -66,6 +68,9 @@ class FrameDraws:
     wind_speed: FloatArray | None
     """None where unknown: nothing of the heat balance can be said."""
     pressure: FloatArray
+    wind_angle_deg: FloatArray
+    """Between wind and pipe axis; 90 is across."""
+    convection_model: ConvectionModel
     convection_factor: FloatArray
     irradiance: FloatArray
     relative_humidity: FloatArray | None
@@ -114,6 +119,7 @@ def draw_frame(
     site: Site,
     distance: float | None = None,
     default_distance: Quantity = UNKNOWN_DISTANCE,
+    convection_model: ConvectionModel = "churchill",
 ) -> FrameDraws | None:
     """Draw what the regions of one frame share.
 
@@ -128,6 +134,8 @@ def draw_frame(
         Camera to pipe as the image shows it, where none is declared. [m]
     default_distance : Quantity
         Where the image shows none either. [m]
+    convection_model : str
+        By name, see `physics.convection`.
 
     Returns
     -------
@@ -161,6 +169,12 @@ def draw_frame(
             if site.pressure is None
             else book.quantity("site", "pressure", site.pressure)
         ),
+        wind_angle_deg=(
+            still + 90.0
+            if conditions.wind_angle_deg is None
+            else book.quantity(owner, "wind_angle", conditions.wind_angle_deg)
+        ),
+        convection_model=convection_model,
         convection_factor=_convection_factor(book, owner, conditions),
         irradiance=(
             still
@@ -280,10 +294,20 @@ def _transmission(
 
 
 def _convection_factor(book: DrawBook, owner: str, conditions: Conditions) -> FloatArray:
-    """Draw the factor by which the convection law is off here, log-normal about 1."""
-    speed = 0.0 if conditions.wind_speed is None else conditions.wind_speed.value
-    share = speed / (speed + 0.5)
-    sigma = CONVECTION_SIGMA_STILL + share * (CONVECTION_SIGMA_WIND - CONVECTION_SIGMA_STILL)
+    """Draw the factor by which the convection law is off here, log-normal about 1.
+
+    Its size is the spread of published correlations in the declared air and wind.
+    """
+    assert conditions.air_temperature is not None
+    air = conditions.air_temperature.value
+    exchange = SurfaceExchange(
+        air_temperature=air,
+        surroundings_temperature=air,
+        wind_speed=0.0 if conditions.wind_speed is None else conditions.wind_speed.value,
+        diameter=SPREAD_AT_DIAMETER,
+        total_emissivity=0.9,
+    )
+    sigma = float(correlation_spread(air + SPREAD_AT_RISE, exchange))
     normal = book.mixed("convection", ("model", SHARED_SHARE), (owner, 1 - SHARED_SHARE))
     return np.asarray(np.exp(sigma * normal))
 

@@ -64,6 +64,8 @@ class LineDraws:
             pressure=frame.pressure,
             inclination_deg=self.inclination_deg,
             convection_factor=frame.convection_factor,
+            convection_model=frame.convection_model,
+            wind_angle_deg=frame.wind_angle_deg,
             # the beam meets the projected width, a share 1/pi of the circumference
             absorbed_solar=self.solar_absorptance * frame.irradiance / math.pi,
         )
