@@ -4,16 +4,14 @@ import numpy as np
 
 from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.seen import Seen
+from cladwatt.inverse.steady_state import is_settled
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.quantities import Remark
-from cladwatt.survey.model import Line
 
 __all__ = ["cautions_of", "missing_of", "refusals_of", "remarks_of", "verdict_caps"]
 
 TOUCH_CAUTION = ZERO_CELSIUS + 48.9
 """120 °F, above which the US DOE steam tip sheet 2 advises to insulate. [K]"""
-SLOWEST_DIFFUSIVITY = 2.5e-7
-"""Of dense lagging: 0.06 W/(m K) at 240 kg/m3 and 1000 J/(kg K), common practice. [m2/s]"""
 TRUSTED_EMISSIVITY = 0.5
 """Below this single pixels are left to the mean across: what they mirror weighs too much. [-]"""
 MIRRORED_LEAST, MIRRORED_SHARE = 1.5, 0.4
@@ -99,19 +97,6 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
     return tuple(remarks)
 
 
-def _still_heating(line: Line) -> bool:
-    """Return whether the line was at temperature for less than its lagging takes to follow.
-
-    That time is thickness squared over diffusivity, a Fourier number of one.
-    """
-    if line.hours_at_temperature is None or not line.layers:
-        return False
-    thickness = sum(
-        (layer.thickness.value for layer in line.layers if layer.thickness is not None), 0.0
-    )
-    return line.hours_at_temperature.value * 3600 < thickness**2 / SLOWEST_DIFFUSIVITY
-
-
 def _mirrors_a_neighbour(seen: Seen) -> bool:
     """Return whether a band of angle stands out all along metal, as a mirrored neighbour does.
 
@@ -153,7 +138,7 @@ def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
     reasons = {
         "indicative.sun": bool(conditions.sun_on_pipe or (sun is not None and sun.value > 0)),
         "indicative.traced": seen.line.tracing.kind != "none",
-        "indicative.not_steady": _still_heating(seen.line)
+        "indicative.not_steady": not is_settled(seen.line)
         or (conditions.indoors is False and bool(conditions.rain_last_24h)),
         "indicative.sun_before": conditions.indoors is False and bool(conditions.sun_last_24h),
         "indicative.below_dew_point": bool(below > 0.05),

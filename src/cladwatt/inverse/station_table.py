@@ -8,7 +8,8 @@ from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.sound import SoundDraws, outside_film
 from cladwatt.measure.strip import sample_strip
 from cladwatt.physics.constants import ZERO_CELSIUS
-from cladwatt.types import FloatArray, IntArray
+from cladwatt.physics.convection import outside_validity
+from cladwatt.types import BoolArray, FloatArray, IntArray
 
 __all__ = ["station_table"]
 
@@ -97,7 +98,28 @@ def _flags(seen: Seen) -> IntArray:
     flags[(clipped > 0).any(axis=0)] |= StationFlag.CLIPPED
     impossible = ~np.isfinite(seen.drawn.surface_temperature)
     flags[seen.usable & (impossible.mean(axis=0) > INFEASIBLE_SHARE)] |= StationFlag.INFEASIBLE
+    if seen.frame.wind_speed is not None and seen.diameter_known:
+        flags[_outside_validity(seen)] |= StationFlag.OUTSIDE_VALIDITY
     below = seen.below_dew_point
     flags[below] |= StationFlag.BELOW_DEW_POINT
     flags[below & (seen.median_temperature < ZERO_CELSIUS)] |= StationFlag.FROST
     return flags
+
+
+def _outside_validity(seen: Seen) -> BoolArray:
+    """Return the stations where the convection law is used beyond its range, in the median."""
+    frame = seen.frame
+    assert frame.wind_speed is not None
+    temperature = seen.median_temperature
+    known = np.isfinite(temperature)
+    outside = outside_validity(
+        np.where(known, temperature, np.median(frame.air_temperature)),
+        air_temperature=float(np.median(frame.air_temperature)),
+        diameter=float(np.median(seen.diameter)),
+        wind_speed=float(np.median(frame.wind_speed)),
+        pressure=float(np.median(frame.pressure)),
+        inclination_deg=seen.line_draws.inclination_deg,
+        wind_angle_deg=float(np.median(frame.wind_angle_deg)),
+        model=frame.convection_model,
+    )
+    return np.asarray(known & outside)

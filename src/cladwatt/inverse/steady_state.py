@@ -1,0 +1,63 @@
+"""Whether the line had been at temperature long enough for its surface to tell its loss."""
+
+from itertools import accumulate
+
+from cladwatt.physics.time_constant import layered_step_response, time_until_within
+from cladwatt.survey.model import Line
+
+__all__ = ["is_settled", "settling_time"]
+
+LACKING = 0.05
+"""Share of the final change that the surface may lack; the loss lacks the same."""
+SHEET_HEAT_CAPACITY = 3.2e6
+"""Of the cladding's sheet: steel 3.8, aluminium 2.4 MJ/(m3 K) (Incropera et al., table A.1)."""
+SURFACE_COEFFICIENT = 8.0
+"""Convection and radiation together in still air; assumption. [W/(m2 K)]"""
+LAGGING_HEAT_CAPACITY = 1.5e5
+"""Where density or specific heat are not held: heavy wool, 150 kg/m3; assumption. [J/(m3 K)]"""
+MARGIN = 2.0
+"""On the settling time, for damp lagging and a fluid that warmed up slowly; assumption."""
+
+
+def settling_time(line: Line) -> float | None:
+    """Return how long the surface takes to come within 5 % after a step inside.
+
+    Parameters
+    ----------
+    line : Line
+
+    Returns
+    -------
+    float or None
+        None where a size or conductivity is unknown. [s]
+    """
+    if line.pipe_outside_diameter is None or not line.layers:
+        return None
+    thicknesses, conductivities, capacities = [], [], []
+    for layer in line.layers:
+        if layer.thickness is None or layer.conductivity is None:
+            return None
+        curve = layer.conductivity.conductivity
+        thicknesses.append(layer.thickness.value)
+        conductivities.append(curve[len(curve) // 2])
+        if layer.density is None or layer.specific_heat is None:
+            capacities.append(LAGGING_HEAT_CAPACITY)
+        else:
+            capacities.append(layer.density.value * layer.specific_heat.value)
+    inner = line.pipe_outside_diameter.value
+    response = layered_step_response(
+        list(accumulate((2 * one for one in thicknesses), initial=inner)),
+        conductivities,
+        capacities,
+        surface_coefficient=SURFACE_COEFFICIENT,
+        surface_heat_capacity=SHEET_HEAT_CAPACITY * line.cladding.thickness.value,
+    )
+    return float(time_until_within(response, LACKING))
+
+
+def is_settled(line: Line) -> bool:
+    """Return whether the declared time at temperature is enough; True where none is declared."""
+    if line.hours_at_temperature is None:
+        return True
+    needed = settling_time(line)
+    return needed is None or line.hours_at_temperature.value * 3600 >= MARGIN * needed
