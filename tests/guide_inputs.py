@@ -26,7 +26,7 @@ RECORDED_ONLY = frozenset(
 )  # fmt: skip
 """Read, checked and kept, but no number of this version depends on them."""
 
-NOT_TAKEN = frozenset({"water_film_emissivity"})
+NOT_TAKEN: frozenset[str] = frozenset()
 """Defaults that nothing looks up; the key list or the method says what holds."""
 
 HEAD = """\

@@ -10,7 +10,6 @@ from cladwatt import Settings
 from cladwatt.inverse import (
     bare,
     cautions,
-    face,
     frame_draws,
     hidden_side,
     joint,
@@ -56,7 +55,7 @@ VALUES = [
     f"taken {frame_draws.SPREAD_AT_RISE:g} K above the air on {frame_draws.SPREAD_AT_DIAMETER:g} m",
     f"no less than {percent(convection_spread.STILL_AIR_FLOOR)} in still air and "
     f"{percent(convection_spread.CROSS_FLOW_FLOOR)} across flow",
-    f"a water film's emissivity of {face.WATER_FILM_EMISSIVITY}",
+    f"a water film's emissivity of {DEFAULTS['water_film_emissivity'].value}",
     f"band and total emissivity | {line_draws.EMISSIVITY_CORRELATION} |",
     f"where no diameter is known | {observe.UNKNOWN_DIAMETER} m,",
     f"({Settings().draws} draws by default)",

@@ -166,7 +166,7 @@ def _assess_regions(
         survey.camera,
         survey.site,
         pipe_distance(survey, frame, pipes),
-        survey.defaults["distance"],
+        survey.defaults,
     )
     if draws is None:
         remark = Remark("missing.air_temperature")

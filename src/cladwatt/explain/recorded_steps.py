@@ -8,7 +8,7 @@ import numpy as np
 from cladwatt.explain.nominal import NominalRegion
 from cladwatt.explain.sheet import saturation_text
 from cladwatt.explain.steps import Pad, Section, median_of, source_of
-from cladwatt.inverse.face import WATER_FILM_EMISSIVITY, surface_temperature_draws
+from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.outer_balance import may_condense
@@ -284,10 +284,11 @@ def recorded_steps(
         _radiance(pad, band, lens_temperature + offset, of, "lens_radiance_true")
     normal = "eps_n"
     if _shows_water(lens_temperature, view_angle, frame, line, surface_temperature):
-        normal, film = "eps_w", np.maximum(line.band_emissivity, WATER_FILM_EMISSIVITY)
+        water = float(frame.water_film_emissivity[0])
+        normal, film = "eps_w", np.maximum(line.band_emissivity, water)
         pad.found(
             "water_film", normal, film, "-",
-            f"film of water below T_dew: the larger of {WATER_FILM_EMISSIVITY:g} and eps_n",
+            f"film of water below T_dew: the larger of {water:g} and eps_n",
             "T_dew eps_n", "Incropera et al., table A.11",
         )  # fmt: skip
         line = replace(line, band_emissivity=film, is_metal=False)

@@ -20,9 +20,9 @@ from cladwatt.types import FloatArray, FloatLike
 
 __all__ = ["COLDEST", "FaceDraws", "face_draws", "surface_temperature_draws"]
 
-NODES = 17
-WATER_FILM_EMISSIVITY = 0.96
-"""Of water and ice in the band: 0.95 to 0.98, Incropera et al., table A.11."""
+NODES = (17, 81)
+NODE_SPACING = 2.5
+"""Fewest and most nodes, and what lies between two where the strip asks for more. [K]"""
 COLDEST = 150.0
 """What a surface counts as for its heat flux where a draw leaves it less radiance than that, or
 none: colder than any pipe, so that such draws stay recognisable and in step along the strip. [K]"""
@@ -110,7 +110,7 @@ def surface_temperature_draws(
     if dew is None or not may_condense(frame, line):
         return dry
     # below the dew point the surface shows a film of water, whatever is under it
-    film = np.maximum(line.band_emissivity, WATER_FILM_EMISSIVITY)
+    film = np.maximum(line.band_emissivity, frame.water_film_emissivity)
     wet = _seen_through(lens_temperature, view_angle, frame, replace(line, is_metal=False), film)
     below = dew[:, None, None]
     # on bright cladding a film shows less radiance than the dry metal would mirror: NaN if dry
@@ -173,7 +173,8 @@ def _beside(exchange: SurfaceExchange) -> SurfaceExchange:
 def _nodes(values: FloatArray) -> FloatArray:
     low, high = np.nanmin(values), np.nanmax(values)
     margin = 0.02 * (high - low) + 0.05
-    return np.linspace(low - margin, high + margin, NODES)
+    count = int(np.clip(np.ceil((high - low) / NODE_SPACING), *NODES))
+    return np.linspace(low - margin, high + margin, count)
 
 
 def _interpolation_matrix(nodes: FloatArray, values: FloatArray) -> FloatArray:

@@ -8,12 +8,14 @@ makers' statements and correlations say nothing of how their error divides.
 """
 
 import math
+from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
 import numpy as np
 from scipy.special import ndtr
 
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.materials.load import shipped_tables
 from cladwatt.physics.atmosphere import air_path_transmission, air_path_transmission_uncertainty
 from cladwatt.physics.band import Band
 from cladwatt.physics.constants import STANDARD_PRESSURE, ZERO_CELSIUS
@@ -41,8 +43,6 @@ MIRRORED_INDOORS, MIRRORED_INDOORS_METAL = 0.3, 1.0
 MIRRORED_OUTDOORS, MIRRORED_OUTDOORS_METAL = 1.5, 5.0
 """Standard uncertainty of what one region mirrors about the mean over the half space: metal a
 direction or two, a dielectric coat, which reflects diffusely, less; assumption. [K]"""
-UNKNOWN_DISTANCE = Quantity(5.0, 4.0, lower=0.3, upper=149.0)
-"""Camera to pipe where nothing tells it; for the air path alone. [m]"""
 
 
 def band_of(camera: Camera) -> Band:
@@ -75,6 +75,8 @@ class FrameDraws:
     irradiance: FloatArray
     relative_humidity: FloatArray | None
     """None where unknown."""
+    water_film_emissivity: FloatArray
+    """In the band, of what condenses on a line below the dew point."""
     window_transmission: FloatArray
     window_reflectance: FloatArray
     window_temperature: FloatArray
@@ -118,7 +120,7 @@ def draw_frame(
     camera: Camera,
     site: Site,
     distance: float | None = None,
-    default_distance: Quantity = UNKNOWN_DISTANCE,
+    defaults: Mapping[str, Quantity] | None = None,
     convection_model: ConvectionModel = "churchill",
 ) -> FrameDraws | None:
     """Draw what the regions of one frame share.
@@ -132,8 +134,9 @@ def draw_frame(
     site : Site
     distance : float, optional
         Camera to pipe as the image shows it, where none is declared. [m]
-    default_distance : Quantity
-        Where the image shows none either. [m]
+    defaults : mapping of str to Quantity, optional
+        Distance where the image shows none either, emissivity of a water film; the shipped
+        table's where not given.
     convection_model : str
         By name, see `physics.convection`.
 
@@ -145,6 +148,7 @@ def draw_frame(
     if conditions.air_temperature is None:
         return None
     owner = f"frame:{frame_id}"
+    defaults = defaults or shipped_tables().defaults
     air = book.quantity(owner, "air_temperature", conditions.air_temperature)
     band = band_of(camera)
     wind = (
@@ -162,7 +166,7 @@ def draw_frame(
         air_temperature=air,
         surroundings_temperature=surroundings,
         reflected_temperature=_reflected(book, owner, conditions, air, surroundings, band),
-        transmission=_transmission(book, owner, conditions, camera, distance, default_distance),
+        transmission=_transmission(book, owner, conditions, camera, distance, defaults["distance"]),
         wind_speed=wind,
         pressure=(
             np.full(book.count, STANDARD_PRESSURE)
@@ -185,6 +189,9 @@ def draw_frame(
             None
             if conditions.relative_humidity is None
             else book.quantity(owner, "relative_humidity", conditions.relative_humidity)
+        ),
+        water_film_emissivity=book.quantity(
+            "model", "water_film_emissivity", defaults["water_film_emissivity"]
         ),
         window_transmission=(
             still + 1

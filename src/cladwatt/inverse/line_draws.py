@@ -11,11 +11,10 @@ import numpy as np
 
 from cladwatt.inverse.draws import DrawBook, quantity_draws
 from cladwatt.inverse.frame_draws import FrameDraws
-from cladwatt.physics.air_gap import air_gap_conductance
 from cladwatt.physics.conduction import ConductivityIntegral
 from cladwatt.physics.lagged_pipe import LaggingLayer, SurfaceExchange
 from cladwatt.quantities import Quantity
-from cladwatt.survey.model import Layer, Line
+from cladwatt.survey.model import Line
 from cladwatt.survey.region import Region
 from cladwatt.types import FloatArray
 
@@ -24,10 +23,6 @@ __all__ = ["LineDraws", "draw_line", "layer_draws"]
 EMISSIVITY_CORRELATION = 0.7
 """Between the errors of band and total emissivity of one cladding (assumption): dirt and
 weather raise both."""
-AIR_GAP_DROP = 20.0
-"""Drop across an air gap for which its convection is taken; assumption. [K]"""
-AIR_GAP_NODES = np.linspace(223.15, 873.15, 27)
-"""Mean temperatures for which an air gap's conductivity is tabulated. [K]"""
 
 
 @dataclass(frozen=True)
@@ -140,18 +135,18 @@ def layer_draws(
     """Draw the lagging as specified, from the inside out; None where a part is unknown."""
     owner = f"line:{line.tag}"
     drawn: list[LaggingLayer] = []
-    inner = 0.0 if line.pipe_outside_diameter is None else line.pipe_outside_diameter.value
     for number, layer in enumerate(line.layers, start=1):
         thickness = layer.thickness
         if region is not None and region.lagging_thickness is not None and len(line.layers) == 1:
             thickness = region.lagging_thickness
-        conductivity = None if thickness is None else _conductivity(layer, inner, thickness.value)
-        if thickness is None or conductivity is None:
+        if thickness is None or layer.conductivity is None:
             return None
-        inner += 2 * thickness.value
         drawn.append(
             LaggingLayer(
-                conductivity=conductivity,
+                conductivity=ConductivityIntegral(
+                    np.asarray(layer.conductivity.temperature),
+                    np.asarray(layer.conductivity.conductivity),
+                ),
                 thickness=book.quantity(owner, f"thickness_{number}", thickness),
                 factor=book.quantity(
                     owner, f"conductivity_factor_{number}", layer.conductivity_factor
@@ -159,36 +154,6 @@ def layer_draws(
             )
         )
     return tuple(drawn) or None
-
-
-def _conductivity(layer: Layer, inner: float, thickness: float) -> ConductivityIntegral | None:
-    """Return a layer's conductivity; that of an air gap conducts, convects and radiates."""
-    if layer.kind == "air_gap":
-        return _air_gap_conductivity(layer, inner, thickness)
-    if layer.conductivity is None:
-        return None
-    return ConductivityIntegral(
-        np.asarray(layer.conductivity.temperature), np.asarray(layer.conductivity.conductivity)
-    )
-
-
-def _air_gap_conductivity(
-    layer: Layer, inner: float, thickness: float
-) -> ConductivityIntegral | None:
-    if layer.inner_emissivity is None or layer.outer_emissivity is None or inner <= 0:
-        return None
-    outer = inner + 2 * thickness
-    conductance = air_gap_conductance(
-        inner,
-        outer,
-        inner_temperature=AIR_GAP_NODES + AIR_GAP_DROP / 2,
-        outer_temperature=AIR_GAP_NODES - AIR_GAP_DROP / 2,
-        inner_emissivity=layer.inner_emissivity.value,
-        outer_emissivity=layer.outer_emissivity.value,
-    )
-    return ConductivityIntegral(
-        AIR_GAP_NODES, conductance * math.log(outer / inner) / (2 * math.pi)
-    )
 
 
 def _lagged_diameter(
