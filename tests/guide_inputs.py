@@ -19,9 +19,9 @@ PAGE = Path(__file__).parent.parent / "src/cladwatt/guide/inputs.md"
 
 RECORDED_ONLY = frozenset(
     {
-        "wind_angle", "roll", "tracer_clock_position",
+        "roll", "tracer_clock_position",
         "tracer_temperature", "tracer_power", "pipe_material", "latitude", "longitude",
-        "access", "condition", "lagging_condition", "convection",
+        "access", "condition", "lagging_condition",
     }
 )  # fmt: skip
 """Read, checked and kept, but no number of this version depends on them."""

@@ -167,6 +167,7 @@ def _assess_regions(
         survey.site,
         pipe_distance(survey, frame, pipes),
         survey.defaults,
+        survey.convection_model,
     )
     if draws is None:
         remark = Remark("missing.air_temperature")

@@ -133,7 +133,7 @@ class _Scene:
         survey, entry = self.survey, self.entry
         return draw_frame(
             book, entry.id, entry.conditions, survey.camera, survey.site, self.distance,
-            survey.defaults,
+            survey.defaults, survey.convection_model,
         )  # fmt: skip
 
     def _narrowed(

@@ -50,10 +50,12 @@ class LineDraws:
         """Return the surface's conditions, each (count,); wind must be known."""
         if frame.wind_speed is None:
             raise ValueError("wind speed is unknown; no heat balance")
+        still = np.zeros_like(frame.wind_speed)
         return SurfaceExchange(
             air_temperature=frame.air_temperature,
             surroundings_temperature=frame.surroundings_temperature,
-            wind_speed=frame.wind_speed,
+            # a rule for still air knows no draught
+            wind_speed=still if frame.convection_model == "iso12241_indoor" else frame.wind_speed,
             diameter=diameter,
             total_emissivity=self.total_emissivity,
             pressure=frame.pressure,

@@ -116,7 +116,11 @@ def _outside_validity(seen: Seen) -> BoolArray:
         np.where(known, temperature, np.median(frame.air_temperature)),
         air_temperature=float(np.median(frame.air_temperature)),
         diameter=float(np.median(seen.diameter)),
-        wind_speed=float(np.median(frame.wind_speed)),
+        wind_speed=(
+            0.0
+            if frame.convection_model == "iso12241_indoor"
+            else float(np.median(frame.wind_speed))
+        ),
         pressure=float(np.median(frame.pressure)),
         inclination_deg=seen.line_draws.inclination_deg,
         wind_angle_deg=float(np.median(frame.wind_angle_deg)),
