@@ -13,9 +13,9 @@ ROOT = Path(cladwatt.__file__).parent
 
 PUBLIC = {
     "Assessment", "CladwattError", "Fault", "Settings", "Survey", "__version__", "assess",
-    "assumptions_table", "check_survey", "components_table", "left_out_table", "lines_table", "read_results",
-    "read_survey", "regions_table", "stations_table", "stretches_table", "write_report",
-    "write_results", "write_sample",
+    "assumptions_table", "check_survey", "components_table", "left_out_table", "lines_table",
+    "read_results", "read_survey", "regions_table", "stations_table", "stretches_table",
+    "write_report", "write_results", "write_sample",
 }  # fmt: skip
 
 

@@ -29,6 +29,13 @@ from cladwatt.types import FloatArray
 
 __all__ = ["estimate_component", "unknown_component"]
 
+BODY_FROM = 0.5
+"""Pixels of the outline less far from the air than this share of its far ones are background."""
+FAR_PERCENTILE = 90.0
+"""Which of its pixels are far ones: a body covers more than a tenth of its outline; assumption."""
+MOST_CLIPPED = 0.05
+"""Where more of an outline is clipped its temperature is not known; assumption."""
+
 SHAPE_U = 0.3
 """Relative standard uncertainty of an equivalent length for the component at hand: printed ones
 differ by more than their own spread says; assumption."""
@@ -64,7 +71,9 @@ def estimate_component(
         nothing usable is seen.
     """
     lagged = bool(region.lagged)
-    seen = _seen(region, image)
+    if _clipped_share(region, image) > MOST_CLIPPED:
+        return unknown_component(region, "not_quantified.component_clipped")
+    seen = _seen(region, image, float(np.median(frame.air_temperature)))
     emissivity = line.band_emissivity
     if not lagged:
         emissivity = book.quantity(f"region:{region.id}", "bare_emissivity", BARE_EMISSIVITY)
@@ -111,13 +120,26 @@ def estimate_component(
     )
 
 
-def _seen(region: Region, image: FrameImage) -> float:
-    """Return the median at the lens inside the drawn outline, clear of its rim. [K]"""
+def _clipped_share(region: Region, image: FrameImage) -> float:
+    clipped = image.clipped[region_mask(region, image.clipped.shape)]
+    return float(clipped.mean()) if clipped.size else 0.0
+
+
+def _seen(region: Region, image: FrameImage, air_temperature: float) -> float:
+    """Return the median at the lens of the body inside the drawn outline. [K]
+
+    A bare body is narrower than the lagging beside it, so that an outline as wide as the lagging
+    holds more background than body; they part at half height.
+    """
     mask = region_mask(region, image.lens_temperature.shape)
     core = mask & ~widened(~mask, 1.0)
     values = image.lens_temperature[core if core.any() else mask]
     values = values[np.isfinite(values)]
-    return float(np.median(values)) if values.size else math.nan
+    if not values.size:
+        return math.nan
+    away = np.abs(values - air_temperature)
+    body = away >= BODY_FROM * np.percentile(away, FAR_PERCENTILE)
+    return float(np.median(values[body]))
 
 
 def _bare(line: LineDraws, emissivity: FloatArray) -> LineDraws:
