@@ -18,7 +18,7 @@ page with a fresh collection.
 
 - **Printed** is a table, a worked example or a figure of a publication. A table counts once,
   however many of its rows are compared, and so does an example.
-- **seen**: the number was read in a document or a transcription of it. **exact**: it holds by
+- **seen**: the number was read in a document or a copy of it. **exact**: it holds by
   definition. **memory ↻**: it is quoted from memory, and a calculation without any code of the
   program gives it too (last column of the last table); only then does it count. **memory, not
   counted**: nobody has recomputed it.

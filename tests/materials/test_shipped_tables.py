@@ -95,7 +95,7 @@ def test_stated_validity_is_the_span_of_the_curve():
         assert float(cells["valid_to_C"]) == pytest.approx(material.temperature[-1] - 273.15)
 
 
-@pytest.mark.parametrize("row", published("materials_transcription.csv"), ids=lambda r: r["key"])
+@pytest.mark.parametrize("row", published("materials_retyped.csv"), ids=lambda r: r["key"])
 def test_retyped_sample(row, evidence):
     # Source in the row: re-typed from the printed units, so a slip in either place shows.
     material = lagging_material(row["key"])
