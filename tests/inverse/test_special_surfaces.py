@@ -307,3 +307,18 @@ def test_another_response_would_have_been_wrong_by_kelvins(bench, paint):
     for camera, off in ((plain, 0.3), (far, 2.0)):
         found = bench.but(camera=camera).alone(lens).surface_temperature.median
         assert abs(found - 400.0) > off
+
+
+def test_a_wet_surface_dries_in_patches_that_are_no_damage(bench, hall_with):
+    lens = bench.lens(320.0)
+    lens[:, 100:150] += 3.0
+    dry = bench.alone(lens)
+    wet = bench.but(conditions=hall_with(surface_wet=True)).alone(lens)
+    assert dry.stretches
+    assert not wet.stretches
+
+
+def test_a_line_still_warming_up_is_no_evidence_for_its_neighbours(bench):
+    started = replace(bench.line, hours_at_temperature=Quantity(0.2))
+    assert bench.observe(bench.lens(320.0)).evidence() is not None
+    assert bench.but(line=started).observe(bench.lens(320.0)).evidence() is None

@@ -17,6 +17,7 @@ from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.null import NullModel, null_of
 from cladwatt.inverse.seen import FrameImage, Seen
 from cladwatt.inverse.sound import SoundDraws, sound_draws
+from cladwatt.inverse.steady_state import is_settled
 from cladwatt.inverse.stretches import Run, find_runs, sound_stations
 from cladwatt.measure.face_bands import bands_of
 from cladwatt.measure.strip import Strip, known_length_factor, sample_strip, straighten
@@ -77,10 +78,13 @@ class Observed:
     def evidence(self) -> LevelEvidence | None:
         """Return what the region says of its lagging as a whole, None where it says nothing.
 
-        A traced line says nothing: its tracer's heat is not the fluid's.
+        A traced line says nothing, its tracer's heat is not the fluid's; nor does a line that is
+        still warming up, or a wet surface.
         """
-        balance = self.balance
-        if balance is None or balance.sound is None or self.seen.line.tracing.kind != "none":
+        balance, line = self.balance, self.seen.line
+        if balance is None or balance.sound is None or line.tracing.kind != "none":
+            return None
+        if not is_settled(line) or self.seen.conditions.surface_wet:
             return None
         sound = balance.sound.heat_loss
         if not (np.abs(sound) > SMALLEST_SOUND_LOSS).all() or np.ptp(np.sign(sound)) > 0:
@@ -273,7 +277,12 @@ def _balance(seen: Seen) -> Balance | None:
     profile = seen.face.temperature.mean(axis=0)
     null = _null(seen)
     sign = -1 if seen.gain else 1
-    runs = find_runs(profile, null, sign=sign, diameter_stations=seen.width)
+    # a wet surface dries in patches, which are no damage
+    runs = (
+        ()
+        if seen.conditions.surface_wet
+        else find_runs(profile, null, sign=sign, diameter_stations=seen.width)
+    )
     sound_at = sound_stations(profile, runs, clear_of=0.5 * seen.width)
     hidden = HiddenSide.draw(
         seen.book,
