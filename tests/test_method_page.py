@@ -10,6 +10,7 @@ from cladwatt import Settings
 from cladwatt.inverse import (
     bare,
     cautions,
+    components,
     frame_draws,
     hidden_side,
     joint,
@@ -22,6 +23,7 @@ from cladwatt.inverse import (
     verdict,
 )
 from cladwatt.materials.load import shipped_tables
+from cladwatt.materials.tables import fitting_equivalent_length
 from cladwatt.measure import strip
 from cladwatt.physics import convection_spread
 from cladwatt.physics.constants import ZERO_CELSIUS
@@ -32,6 +34,16 @@ PAGE = " ".join((FOLDER / "method.md").read_text(encoding="utf-8").split())
 DEFAULTS = shipped_tables().defaults
 FOIL, TAPE = DEFAULTS["foil_emissivity"], DEFAULTS["tape_emissivity"]
 CONTACT_U = DEFAULTS["u_contact_reading"]
+
+
+def bare_length(kind: str) -> str:
+    amount = fitting_equivalent_length(kind, lagged=False).amount
+    return f"bare | {amount.value:g} m of bare pipe, u {amount.u:g} m | "
+
+
+def clad_length(kind: str) -> str:
+    amount = fitting_equivalent_length(kind, lagged=True).amount
+    return f"lagged | {amount.lower:g} to {amount.upper:g} m of the clad line,"
 
 
 def percent(share: float) -> str:
@@ -85,6 +97,13 @@ VALUES = [
     f"narrower than {percent(verdict.QUANTIFIED_WIDTH)}; three measuring spots",
     f"at {verdict.VISIBLE_RISE_SIGMAS:g} u of the contrast "
     f"({verdict.VISIBLE_RISE_SIGMAS_METAL:g} u at emissivity below {verdict.METAL_EMISSIVITY})",
+    f"valve, {bare_length('valve')}{fitting_equivalent_length('valve', False).amount.source} |",
+    f"pair of flanges, {bare_length('flange')}",
+    f"valve, {clad_length('valve')}",
+    f"pair of flanges, {clad_length('flange')}",
+    f"for the component at hand | {percent(components.SHAPE_U)} |",
+    f"the {components.FAR_PERCENTILE:.0f}th percentile of the outline",
+    f"more than {percent(components.MOST_CLIPPED)} of the outline is clipped",
     f"above {cautions.TOUCH_CAUTION - ZERO_CELSIUS:.1f} °C",
 ]
 
@@ -97,6 +116,8 @@ def test_a_value_on_the_page_is_the_program_s(value):
 def test_words_for_numbers():
     assert observe.BANDS_OF_ANGLE == 5
     assert "Five bands of angle" in PAGE
+    assert components.BODY_FROM == 0.5
+    assert "less than half as far from the air" in PAGE
     assert joint.MOST_TOGETHER == 5
     assert "More than five regions in a frame are taken in groups of five" in PAGE
     assert frame_draws.SHARED_SHARE == 2 / 3

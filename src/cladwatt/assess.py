@@ -135,7 +135,7 @@ def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ..
             "calibration_date": (
                 "" if camera.calibration_date is None else camera.calibration_date.isoformat()
             ),
-            "band_um": f"{camera.band[0] * 1e6:g}-{camera.band[1] * 1e6:g}",
+            "band_um": f"{camera.band[0] * 1e6:.4g}-{camera.band[1] * 1e6:.4g}",
         },
     )
 

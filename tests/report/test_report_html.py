@@ -143,7 +143,7 @@ def test_components_have_a_section_of_their_own(page):
         "flange · flange-1 NS-101 lagged", "0.84 (0.45 to 1.58) of the clad line 41 (17 to 93)",
         "valve · valve-9 CHW-7", "29 (12 to 61) gain",
         "a loss of 850 W (370 to 1740); a gain of 29 W (12 to 61)", "no part of the totals",
-        "orders of magnitude", "Equivalent lengths by house table 3 | house table 4.",
+        "orders of magnitude", "Equivalent lengths: house table 3; house table 4; how far",
     ):  # fmt: skip
         assert needed in words, needed
     hanger = words.split("hanger · hanger-1")[1].split("valve · valve-9")[0]
@@ -293,3 +293,10 @@ def test_files(invented, tmp_path):
     assert len(written) == len({p.name.casefold() for p in written}) == 9
     for path in written[1:]:
         ElementTree.parse(path)
+
+
+def test_what_was_read_from_a_declared_file_is_declared(invented):
+    band = Assumption("camera", "band_lower", 7.6e-6, 0.0, "m", "declared: response.csv", "")
+    words = Page(report_html(replace(invented.assessment(), assumptions=(band,)))).words
+    assert "response.csv" in words.split("Declared for this survey")[1]
+    assert "response.csv" not in words.split("Declared for this survey")[0]

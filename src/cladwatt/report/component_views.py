@@ -62,5 +62,6 @@ def components_sum(assessment: Assessment, language: str) -> str:
 
 def component_sources(assessment: Assessment) -> str:
     """Return the sources of the equivalent lengths that were used, each once."""
-    sources = (one.source for one in assessment.components if one.source)
-    return " | ".join(dict.fromkeys(sources))
+    # where the uncertainty comes from stands after it
+    sources = (one.source.partition("; u: ")[0] for one in assessment.components if one.source)
+    return "; ".join(dict.fromkeys(sources))

@@ -285,7 +285,7 @@ def assumption_views(
     """Return the declared or the default quantities, equal ones of several owners as one."""
     groups: dict[tuple[str, str, str, str, str], list[str]] = {}
     for item in assessment.assumptions:
-        if (item.source == "declared") == declared:
+        if (item.source.partition(":")[0] == "declared") == declared:
             value, u = _value_words(item)
             key = (item.quantity, value, u, item.source, item.confidence)
             groups.setdefault(key, []).append(item.owner)

@@ -630,8 +630,8 @@ REGION = (
         "width", "Full width across the pipe", "pixels", lower=0.0, upper=1e5, lower_open=True
     ),
     Key("widths_px", "numbers", "Full width at each vertex", lower=0.0, upper=1e5, lower_open=True),
-    _text("kind", "Of a component: flange, valve, support, fitting"),
-    _flag("lagged", "Whether a component is lagged"),
+    _text("kind", "Of a component: flange, valve, hanger, or one of tables/fittings.csv"),
+    _flag("lagged", "Whether a component is lagged; bare where it does not say"),
     _setting(
         "start", "Station of the first vertex along the line", "distance", lower=-1e5, upper=1e5,
         default="0",

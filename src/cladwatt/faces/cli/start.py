@@ -57,6 +57,8 @@ a Polygon around it. For example, on frame f01:
 id     stable, and used once in the whole survey
 role   pipe, leave_out, component, foil, tape, contact, background or known_length
 tag    the line of the line list that is seen
+kind   of a component: flange, valve or hanger; it is estimated on its own, as bare
+       unless it says "lagged": true
 
 `cladwatt schema regions` prints every property; `cladwatt check` names what is still wrong.
 """
