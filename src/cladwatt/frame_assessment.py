@@ -159,16 +159,19 @@ def _assess_regions(
     book = DrawBook(settings.seed, settings.draws)
     pipes = [region for region in regions if region.role == "pipe"]
     components = [region for region in regions if region.role == "component"]
-    draws = draw_frame(
-        book,
-        entry.id,
-        entry.conditions,
-        survey.camera,
-        survey.site,
-        pipe_distance(survey, frame, pipes),
-        survey.defaults,
-        survey.convection_model,
-    )
+    try:
+        draws = draw_frame(
+            book,
+            entry.id,
+            entry.conditions,
+            survey.camera,
+            survey.site,
+            pipe_distance(survey, frame, pipes),
+            survey.defaults,
+            survey.convection_model,
+        )
+    except InputError as error:  # an air path that nothing is known of
+        return _Found(left_out=(LeftOut("frame", entry.id, entry.id, f"{entry.id}: {error}"),))
     if draws is None:
         remark = Remark("missing.air_temperature")
         return _Found(

@@ -257,6 +257,23 @@ def test_a_regions_own_diameter_and_thickness_override(line_with, drawn_pipe):
     assert thick.lagged_diameter == pytest.approx(0.1143 + 0.16 + 0.002)
 
 
+def test_a_riser_of_a_level_line_has_its_own_inclination(line_with, drawn_pipe):
+    line = line_with(inclination_deg=10.0)
+    assert draw_line(BOOK, line, drawn_pipe()).inclination_deg == 10.0
+    assert draw_line(BOOK, line, drawn_pipe(inclination_deg=90.0)).inclination_deg == 90.0
+    assert draw_line(BOOK, line, drawn_pipe(inclination_deg=0.0)).inclination_deg == 0.0
+
+
+def test_a_window_never_reflects_what_it_transmits(hall_with):
+    # the reader's default: half of what is not transmitted, and as uncertain as that
+    window = Window(
+        Quantity(0.7, 0.02, lower=0.01, upper=1.0), Quantity(0.15, 0.075, lower=0.0, upper=0.3)
+    )
+    frame = frame_of(hall_with(window=window))
+    assert np.all(frame.window_transmission + frame.window_reflectance <= 1 + 1e-12)
+    assert np.median(frame.window_reflectance) == pytest.approx(0.15, abs=0.01)
+
+
 def test_unknown_parts_of_a_line_are_none_and_the_rest_stands(line_with):
     from dataclasses import replace
 

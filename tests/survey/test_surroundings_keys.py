@@ -220,3 +220,10 @@ def test_a_declared_uncertainty_of_the_wind_stays(survey_folder):
 def test_a_wet_surface_is_kept(survey_folder):
     survey, _ = read(survey_folder, frame="surface_wet = true")
     assert [frame.conditions.surface_wet for frame in survey.frames] == [True, None]
+
+
+def test_a_band_no_air_path_is_held_for_is_asked_about(survey_folder):
+    survey_folder.edit("[camera]", "[camera]\nband_lower_um = 3.0\nband_upper_um = 5.0")
+    said = [str(fault) for fault in read_survey(survey_folder.root).faults]
+    assert any("3 to 5 µm" in one and "declare atmosphere_transmission" in one for one in said)
+    assert conditions(survey_folder, "atmosphere_transmission = 0.99") is not None

@@ -25,7 +25,7 @@ from cladwatt.physics.humidity import dew_point
 from cladwatt.physics.radiation import combined_surroundings
 from cladwatt.physics.surface_balance import SurfaceExchange
 from cladwatt.quantities import Quantity
-from cladwatt.survey.model import AccuracyStatement, Camera, Conditions, Site
+from cladwatt.survey.model import AccuracyStatement, Camera, Conditions, Site, Window
 from cladwatt.types import FloatArray
 
 __all__ = ["FrameDraws", "band_of", "draw_frame", "mirrored"]
@@ -198,17 +198,20 @@ def draw_frame(
             if window is None
             else book.quantity("camera", "window_transmission", window.transmission)
         ),
-        window_reflectance=(
-            still
-            if window is None
-            else book.quantity("camera", "window_reflectance", window.reflectance)
-        ),
+        window_reflectance=(still if window is None else _window_reflectance(book, window)),
         window_temperature=(
             air
             if window is None or window.temperature is None
             else book.quantity(owner, "window_temperature", window.temperature)
         ),
     )
+
+
+def _window_reflectance(book: DrawBook, window: Window) -> FloatArray:
+    """Draw what the window reflects, never more than it leaves of what it transmits."""
+    reflected = book.quantity("camera", "window_reflectance", window.reflectance)
+    transmitted = book.quantity("camera", "window_transmission", window.transmission)
+    return np.asarray(np.minimum(reflected, 1 - transmitted))
 
 
 def _calibration(book: DrawBook, owner: str, accuracy: AccuracyStatement) -> FloatArray:

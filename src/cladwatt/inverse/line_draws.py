@@ -45,6 +45,8 @@ class LineDraws:
     supports_allowance: FloatArray
     """Share of the sound loss that supports add to it."""
     inclination_deg: float
+    condition_factors: tuple[FloatArray, ...] = ()
+    """Conductivity of each layer as declared found, wet or frozen, over dry; empty where dry."""
 
     def exchange(self, frame: FrameDraws, diameter: FloatArray) -> SurfaceExchange:
         """Return the surface's conditions, each (count,); wind must be known."""
@@ -59,6 +61,7 @@ class LineDraws:
             diameter=diameter,
             total_emissivity=self.total_emissivity,
             pressure=frame.pressure,
+            relative_humidity=frame.relative_humidity,
             inclination_deg=self.inclination_deg,
             convection_factor=frame.convection_factor,
             convection_model=frame.convection_model,
@@ -76,7 +79,7 @@ def draw_line(book: DrawBook, line: Line, region: Region | None = None) -> LineD
     book : DrawBook
     line : Line
     region : Region, optional
-        Whose emissivity, outside diameter or lagging override the line's.
+        Whose emissivity, outside diameter, lagging or inclination override the line's.
 
     Returns
     -------
@@ -116,8 +119,28 @@ def draw_line(book: DrawBook, line: Line, region: Region | None = None) -> LineD
             else book.quantity(owner, "inside_film", line.inside_film)
         ),
         supports_allowance=book.quantity(owner, "supports_allowance", line.supports_allowance),
-        inclination_deg=line.inclination_deg,
+        inclination_deg=_inclination(line, region),
+        condition_factors=_condition_factors(book, line),
     )
+
+
+def _condition_factors(book: DrawBook, line: Line) -> tuple[FloatArray, ...]:
+    """Draw what wet or frozen layers conduct over dry; empty where none is declared so."""
+    if all(layer.condition_factor is None for layer in line.layers):
+        return ()
+    return tuple(
+        np.ones(book.count)
+        if layer.condition_factor is None
+        else book.quantity(f"line:{line.tag}", f"condition_factor_{number}", layer.condition_factor)
+        for number, layer in enumerate(line.layers, start=1)
+    )
+
+
+def _inclination(line: Line, region: Region | None) -> float:
+    """Return the angle of the axis from the horizontal: a riser's own, else the line's. [deg]"""
+    if region is None or region.inclination_deg is None:
+        return line.inclination_deg
+    return region.inclination_deg
 
 
 def _total_emissivity(

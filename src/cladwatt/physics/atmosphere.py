@@ -17,6 +17,7 @@ __all__ = [
     "MAXIMUM_DISTANCE",
     "air_path_transmission",
     "air_path_transmission_uncertainty",
+    "is_known_band",
 ]
 
 #: Longest path accepted; the fit's table ends at 100 m. [m]
@@ -55,12 +56,28 @@ _FITS: Final = {
 }
 
 
-def _coefficients(band_limits: tuple[float, float]) -> _Coefficients:
-    def distance(key: tuple[float, float]) -> float:
-        return max(abs(key[0] * 1e-6 - band_limits[0]), abs(key[1] * 1e-6 - band_limits[1]))
+def is_known_band(band_limits: tuple[float, float]) -> bool:
+    """Return whether the transmission of air is held for a band near this one.
 
-    nearest = min(_FITS, key=distance)
-    if not distance(nearest) <= _FURTHEST_BAND_EDGE + 1e-12:
+    Parameters
+    ----------
+    band_limits : (float, float)
+        [m]
+    """
+    return _band_distance(_nearest_band(band_limits), band_limits) <= _FURTHEST_BAND_EDGE + 1e-12
+
+
+def _band_distance(key: tuple[float, float], band_limits: tuple[float, float]) -> float:
+    return max(abs(key[0] * 1e-6 - band_limits[0]), abs(key[1] * 1e-6 - band_limits[1]))
+
+
+def _nearest_band(band_limits: tuple[float, float]) -> tuple[float, float]:
+    return min(_FITS, key=lambda key: _band_distance(key, band_limits))
+
+
+def _coefficients(band_limits: tuple[float, float]) -> _Coefficients:
+    nearest = _nearest_band(band_limits)
+    if not is_known_band(band_limits):
         known = ", ".join(f"{lower:g}-{upper:g}" for lower, upper in _FITS)
         raise InputError(
             f"band is {band_limits[0] * 1e6:g}-{band_limits[1] * 1e6:g} µm; the transmission of air"

@@ -53,5 +53,7 @@ class Region:
     """Over the lagging, overriding the line's. [m]"""
     lagging_thickness: Quantity | None = None
     """Of a single-layer line, overriding the line's. [m]"""
+    inclination_deg: float | None = None
+    """Angle of the axis from the horizontal, 0 to 90, overriding the line's."""
     feature: int = 0
     """Position in its file, from 1."""

@@ -3,15 +3,16 @@
 from collections.abc import Mapping, Sequence
 from datetime import date, timedelta
 
+from cladwatt.physics.atmosphere import is_known_band
 from cladwatt.physics.convection_laws import CONVECTION_LAWS, CONVECTION_MODELS, ConvectionModel
 from cladwatt.quantities import Quantity
-from cladwatt.survey.fault_list import FaultList, shown
+from cladwatt.survey.fault_list import FaultList, Place, shown
 from cladwatt.survey.model import Camera, FrameEntry, Line
 from cladwatt.survey.region import Region
 from cladwatt.survey.survey_regions import region_place
 from cladwatt.survey.table_reader import Table
 
-__all__ = ["check_dates", "check_temperatures", "checked_convection"]
+__all__ = ["check_air_path", "check_dates", "check_temperatures", "checked_convection"]
 
 _ZERO_CELSIUS = 273.15
 _HOT_FLUIDS = ("steam", "condensate", "hot")
@@ -39,6 +40,21 @@ def check_dates(
                 f"frame {shown(frame.id)} was recorded on {frame.time.date()}, the survey made"
                 f" on {day}", "check both dates",
             )  # fmt: skip
+
+
+def check_air_path(
+    place: Place, camera: Camera, frames: Sequence[FrameEntry], faults: FaultList
+) -> None:
+    """Ask for the air's transmission in a band for which none is printed."""
+    open_ = [frame.id for frame in frames if frame.conditions.atmosphere_transmission is None]
+    if open_ and not is_known_band(camera.band):
+        lower, upper = (1e6 * end for end in camera.band)
+        faults.ask(
+            place, "band_lower_um",
+            f"the transmission of air is not held for a band of {lower:.3g} to {upper:.3g} µm, and"
+            f" frame {shown(open_[0])} declares none: nothing can be said of it",
+            "declare atmosphere_transmission; over a few metres of air it is near 1",
+        )  # fmt: skip
 
 
 def checked_convection(

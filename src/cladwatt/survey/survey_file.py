@@ -17,7 +17,12 @@ from cladwatt.survey.model import Line, Site
 from cladwatt.survey.response_file import read_response
 from cladwatt.survey.surroundings_builder import read_pieces
 from cladwatt.survey.survey import Survey
-from cladwatt.survey.survey_checks import check_dates, check_temperatures, checked_convection
+from cladwatt.survey.survey_checks import (
+    check_air_path,
+    check_dates,
+    check_temperatures,
+    checked_convection,
+)
 from cladwatt.survey.survey_regions import read_all_regions
 from cladwatt.survey.survey_source import Source
 from cladwatt.survey.table_reader import Table, nearest, read_table
@@ -142,6 +147,7 @@ class _Document:
             self.source, frames.entries, frames.dropped, lines, dropped, self.tables, self.faults
         )
         check_dates(head, camera, frames.entries, self.faults)
+        check_air_path(described.place, camera, frames.entries, self.faults)
         convection = checked_convection(self._section("model"), frames.entries, self.faults)
         wrong = check_temperatures(lines, written, usable, regions, frames.wide_air, self.faults)
         lines = {tag: line for tag, line in lines.items() if tag not in wrong}
