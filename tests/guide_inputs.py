@@ -21,7 +21,7 @@ RECORDED_ONLY = frozenset(
     {
         "roll", "tracer_clock_position",
         "tracer_temperature", "tracer_power", "pipe_material", "latitude", "longitude",
-        "access", "condition", "lagging_condition",
+        "access",
     }
 )  # fmt: skip
 """Read, checked and kept, but no number of this version depends on them."""

@@ -477,13 +477,36 @@ def test_a_pipe_under_three_spots_is_indicative(bench):
     [
         ({"sun_on_pipe": True}, "indicative.sun"),
         ({"solar_irradiance": Quantity(100.0)}, "indicative.sun"),
-        ({"indoors": False, "rain_last_24h": True}, "indicative.not_steady"),
+        ({"indoors": False, "rain_last_24h": True}, "indicative.rain"),
     ],
 )
 def test_conditions_cap_the_verdict(bench, hall_with, changes, key):
     result = bench.but(conditions=hall_with(**changes)).alone(bench.lens(320.0))
     assert result.verdict.level == "indicative"
     assert result.verdict.reason.key == key
+
+
+def test_a_riser_loses_what_a_vertical_pipe_loses(bench, drawn_pipe):
+    upright = bench.but(line=replace(bench.line, inclination_deg=90.0))
+    riser = bench.but(region=drawn_pipe(inclination_deg=90.0))
+    lens = bench.lens(320.0)
+    level = bench.alone(lens).heat_loss.median
+    assert riser.alone(lens).heat_loss.median == upright.alone(lens).heat_loss.median
+    assert riser.alone(lens).heat_loss.median == pytest.approx(upright.loss(320.0), rel=0.01)
+    found = riser.alone(lens).heat_loss.median / level
+    assert found == pytest.approx(upright.loss(320.0) / bench.loss(320.0), abs=1e-3)
+    assert found < 0.995
+
+
+def test_film_and_supports_are_among_what_the_variance_comes_from(bench):
+    line = replace(
+        bench.line, inside_film=Quantity(5.0, 2.5, lower=0.1), installation_factor=Quantity(1.0),
+        supports_allowance=Quantity(0.2, 0.1, lower=0.0),
+    )  # fmt: skip
+    result = bench.but(line=line).jointly(bench.lens(320.0))
+    named = dict(result.variance_shares)
+    assert {"inside_film", "supports_allowance"} <= set(named)
+    assert "inside_film" not in dict(bench.jointly(bench.lens(320.0)).variance_shares)
 
 
 @pytest.mark.parametrize(("hours", "steady"), [(0.5, False), (6.0, True)])

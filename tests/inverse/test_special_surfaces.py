@@ -53,6 +53,50 @@ def film_on(bench, paint, surface: float) -> np.ndarray:
     return bench.but(line=replace(bench.line, cladding=paint(0.96))).lens(surface)
 
 
+# ---- what was declared of lagging and air -------------------------------------------------
+
+
+def test_lagging_declared_wet_has_its_expected_loss_beside_the_sound_one(bench):
+    (wool,) = bench.line.layers
+    wet = replace(wool, condition="wet", condition_factor=Quantity(4.0))
+    wetted = bench.but(line=replace(bench.line, layers=(wet,)))
+    (said,) = [
+        remark
+        for remark in wetted.alone(bench.lens(320.0)).remarks
+        if remark.key == "remark.declared_condition"
+    ]
+    factor = 4.0 * bench.line.installation_factor.value
+    assert dict(said.parameters)["loss_W_per_m"] == pytest.approx(
+        bench.solved(factor).heat_loss, rel=1e-3
+    )
+    dry = bench.alone(bench.lens(320.0))
+    assert wetted.alone(bench.lens(320.0)).sound_loss == dry.sound_loss
+
+
+def test_dry_lagging_has_no_such_word(bench, keys):
+    assert "remark.declared_condition" not in keys(bench.alone(bench.lens(320.0)).remarks)
+
+
+@pytest.mark.parametrize(
+    ("humidity", "missing", "assumed"),
+    [
+        (None, True, False),
+        (Quantity(0.5, 0.2, lower=0.0, upper=1.0, source="usual"), False, True),
+        (Quantity(0.5, 0.05, lower=0.0, upper=1.0), False, False),
+    ],
+)
+def test_a_cold_line_without_humidity_says_so(chilled, hall_with, keys, humidity, missing, assumed):
+    damp = chilled.but(conditions=hall_with(relative_humidity=humidity), region=chilled.region)
+    result = damp.alone(damp.lens(288.0))
+    assert ("missing.humidity" in keys(result.missing)) == missing
+    assert ("remark.humidity_assumed" in keys(result.remarks)) == assumed
+
+
+def test_a_hot_line_needs_no_humidity(bench, keys):
+    result = bench.alone(bench.lens(320.0))
+    assert "missing.humidity" not in keys(result.missing)
+
+
 # ---- water on cold cladding ---------------------------------------------------------------
 
 

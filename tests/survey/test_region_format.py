@@ -286,7 +286,8 @@ def test_too_few_pixels():
 def test_read_write_read_gives_equal_regions(survey_folder, drawn, box, tmp_path):
     survey_folder.draw(
         drawn("a", note="Ventil – süd \U0001f527", start_m=3.3, direction="backward"),
-        drawn("b", width_px=None, widths_px=[18, 22.5], outside_diameter_mm=215.3),
+        drawn("b", width_px=None, widths_px=[18, 22.5], outside_diameter_mm=215.3,
+              inclination_deg=72.5),
         drawn("c", width_px=None, geometry=box(5, 5, 20), emissivity=0.31, u_emissivity=0.05,
               total_emissivity=0.33, lagging_thickness_mm=41.7),
         drawn("d", role="foil", tag=None, width_px=None, geometry=box(60, 5), value_C=20.9),

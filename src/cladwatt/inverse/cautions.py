@@ -4,6 +4,7 @@ import numpy as np
 
 from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.seen import Seen
+from cladwatt.inverse.sound import condition_loss
 from cladwatt.inverse.steady_state import is_settled
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.quantities import Remark
@@ -29,6 +30,7 @@ def missing_of(seen: Seen) -> tuple[Remark, ...]:
         "missing.lagging": line.layers is None,
         "missing.diameter": line.lagged_diameter is None,
         "missing.wind": seen.frame.wind_speed is None,
+        "missing.humidity": seen.gain and seen.conditions.relative_humidity is None,
     }
     return tuple(Remark(key) for key, is_missing in unknown.items() if is_missing)
 
@@ -89,12 +91,30 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
     if tracer.kind != "none":
         power = () if tracer.power is None else (("power_W_per_m", tracer.power.value),)
         remarks.append(Remark("remark.tracer_heat", power))
+    remarks.extend(_declared_condition(seen))
+    humidity = seen.conditions.relative_humidity
+    if seen.gain and humidity is not None and humidity.is_default:
+        remarks.append(Remark("remark.humidity_assumed", (("share", humidity.value),)))
     if _mirrors_a_neighbour(seen):
         remarks.append(Remark("remark.mirrored_neighbour"))
     if seen.strip.receding_angle > NOTICEABLE_ANGLE:
         angle = float(np.degrees(seen.strip.receding_angle))
         remarks.append(Remark("remark.foreshortening", (("angle_deg", angle),)))
     return tuple(remarks)
+
+
+def _declared_condition(seen: Seen) -> tuple[Remark, ...]:
+    """Return what the line would lose with lagging as wet or frozen as declared, beside sound."""
+    expected = condition_loss(seen.line_draws, seen.frame)
+    if expected is None:
+        return ()
+    low, middle, high = np.abs(np.quantile(expected, [0.025, 0.5, 0.975]))
+    parameters = (
+        ("loss_W_per_m", float(middle)),
+        ("low_W_per_m", float(min(low, high))),
+        ("high_W_per_m", float(max(low, high))),
+    )
+    return (Remark("remark.declared_condition", parameters),)
 
 
 def _mirrors_a_neighbour(seen: Seen) -> bool:
@@ -138,8 +158,8 @@ def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
     reasons = {
         "indicative.sun": bool(conditions.sun_on_pipe or (sun is not None and sun.value > 0)),
         "indicative.traced": seen.line.tracing.kind != "none",
-        "indicative.not_steady": not is_settled(seen.line)
-        or (conditions.indoors is False and bool(conditions.rain_last_24h)),
+        "indicative.rain": conditions.indoors is False and bool(conditions.rain_last_24h),
+        "indicative.not_steady": not is_settled(seen.line),
         "indicative.sun_before": conditions.indoors is False and bool(conditions.sun_last_24h),
         "indicative.below_dew_point": bool(below > 0.05),
         "indicative.mostly_masked": bool(np.isfinite(seen.lens).mean() < 0.5),

@@ -303,12 +303,14 @@ def _drivers(seen: Seen) -> dict[str, FloatArray]:
     frame, line = f"frame:{seen.region.frame_id}", f"line:{seen.line.tag}"
     overridden = seen.region.total_emissivity is not None
     cladding = seen.owner if overridden else line
-    normal = seen.book.normal
+    normal, film = seen.book.normal, seen.line_draws.film_coefficient
     return {
         "band_emissivity": seen.line_draws.band_emissivity,
         "total_emissivity": normal(cladding, "total_emissivity"),
         "inside_temperature": normal(line, "inside_temperature"),
         "installation_factor": normal(line, "installation_factor"),
+        **({} if film is None else {"inside_film": film}),
+        "supports_allowance": seen.line_draws.supports_allowance,
         "conductivity": normal(line, "conductivity_factor_1"),
         "thickness": normal(line, "thickness_1"),
         "sound_scatter": normal(seen.owner, "sound_scatter"),

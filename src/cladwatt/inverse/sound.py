@@ -12,11 +12,10 @@ from cladwatt.physics.lagged_pipe import LaggingLayer, SurfaceExchange, solve_la
 from cladwatt.physics.surface_balance import surface_heat_flux
 from cladwatt.types import FloatArray
 
-__all__ = ["SoundDraws", "film_resistance", "outside_film", "sound_draws"]
+__all__ = ["SoundDraws", "condition_loss", "film_resistance", "outside_film", "sound_draws"]
 
-ROUNDS = 20
-TOLERANCE = 1e-4
-"""Largest change of the loss in the last round, relative."""
+ROUNDS = 18
+"""Halvings of what condensing vapour may bring."""
 
 
 @dataclass(frozen=True)
@@ -66,6 +65,32 @@ def sound_draws(line: LineDraws, frame: FrameDraws) -> SoundDraws | None:
     )
 
 
+def condition_loss(line: LineDraws, frame: FrameDraws) -> FloatArray | None:
+    """Return what the line would lose with its lagging wet or frozen as it was declared found.
+
+    Parameters
+    ----------
+    line : LineDraws
+    frame : FrameDraws
+
+    Returns
+    -------
+    (count,) array or None
+        With installation factor and supports like the sound loss, which stays that of dry
+        lagging; None where all lagging is declared dry or something is unknown. [W/m]
+    """
+    known = (line.inside_temperature, line.layers, line.lagged_diameter, line.pipe_diameter)
+    if not line.condition_factors or frame.wind_speed is None or any(p is None for p in known):
+        return None
+    assert line.layers is not None
+    found = tuple(
+        replace(layer, factor=np.asarray(layer.factor) * line.installation_factor * factor)
+        for layer, factor in zip(line.layers, line.condition_factors, strict=True)
+    )
+    loss, _ = _solved(line, frame, found)
+    return loss * (1 + line.supports_allowance)
+
+
 def film_resistance(line: LineDraws) -> FloatArray | None:
     """Return the resistance between fluid and pipe wall, None where neglected. [m K/W]"""
     if line.film_coefficient is None or line.pipe_diameter is None:
@@ -94,7 +119,9 @@ def _solved(
 ) -> tuple[FloatArray, FloatArray]:
     """Return loss and lagging's resistance, with film and condensation.
 
-    What condenses is heat brought to the surface, like sun, and found by repeated substitution.
+    What condenses, and the film of water it leaves, bring heat to the surface, like sun. A warmer
+    surface is brought less, so that how much is found by halving: about the dew point, where the
+    film comes and goes, substitution would go back and forth.
     """
     assert line.inside_temperature is not None
     assert line.pipe_diameter is not None
@@ -106,17 +133,17 @@ def _solved(
     if film is not None:
         start, parts = 0.9 * line.pipe_diameter, (_film_layer(line.pipe_diameter, film), *layers)
     state = solve_lagged_pipe(line.inside_temperature, start, parts, exchange)
-    loss, brought = state.heat_loss, np.zeros(frame.count)
-    for _ in range(0 if humidity is None else ROUNDS):
-        assert humidity is not None
-        brought = 0.5 * (brought + _condensed(state.surface_temperature, exchange, humidity))
-        warmed = replace(exchange, absorbed_solar=exchange.absorbed_solar + brought)
-        state = solve_lagged_pipe(line.inside_temperature, start, parts, warmed)
-        change = np.abs(state.heat_loss - loss)
-        loss = state.heat_loss
-        if np.max(change) <= TOLERANCE * np.max(np.abs(loss)):
-            break
-    return loss, state.resistance if film is None else np.asarray(state.resistance - film)
+    if humidity is not None:
+        first = _condensed(state.surface_temperature, exchange, humidity)
+        low, high = 2 * np.minimum(first, 0.0), np.maximum(first, 0.0)
+        for _ in range(ROUNDS if first.any() else 0):
+            brought = 0.5 * (low + high)
+            warmed = replace(exchange, absorbed_solar=exchange.absorbed_solar + brought)
+            state = solve_lagged_pipe(line.inside_temperature, start, parts, warmed)
+            more = _condensed(state.surface_temperature, exchange, humidity) > brought
+            low, high = np.where(more, brought, low), np.where(more, high, brought)
+    resistance = state.resistance
+    return state.heat_loss, resistance if film is None else np.asarray(resistance - film)
 
 
 def _film_layer(pipe_diameter: FloatArray, film: FloatArray) -> LaggingLayer:

@@ -474,7 +474,9 @@ LAYER = (
         default="the specified conductivity holds at every temperature", example="50",
     ),
     Key(
-        "condition", "choice", "As found: dry, wet or frozen", choices=("dry", "wet", "ice"),
+        "condition", "choice",
+        "As found: dry, wet or frozen; the loss expected of it is told beside that of sound, dry"
+        " lagging", choices=("dry", "wet", "ice"),
         default="dry", example='"dry"',
     ),
     _emissivity(
@@ -524,7 +526,9 @@ LINE = (
         default="the specified conductivity holds at every temperature", example="50",
     ),
     Key(
-        "lagging_condition", "choice", "As found: dry, wet or frozen",
+        "lagging_condition", "choice",
+        "As found: dry, wet or frozen; the loss expected of it is told beside that of sound, dry"
+        " lagging",
         choices=("dry", "wet", "ice"), default="dry", example='"dry"',
     ),
     Key(
@@ -651,6 +655,10 @@ REGION = (
         "lagging_thickness", "quantity", "Overrides that of a single-layer line", "length",
         0.0, 1.0, lower_open=True, cut=(1e-4, 2.0), u_row="u_relative_lagging_thickness",
         default="the line's",
+    ),
+    _setting(
+        "inclination", "Of the axis, of a riser, drop or bend: 0 horizontal, 90 vertical", "angle",
+        lower=0.0, upper=90.0, default="the line's", example="90",
     ),
 )  # fmt: skip
 

@@ -317,6 +317,7 @@ def _build(table: Table, shape: _Shape, number: int, place: Place) -> Region:
         total_emissivity=table.quantity("total_emissivity"),
         outside_diameter=table.quantity("outside_diameter"),
         lagging_thickness=table.quantity("lagging_thickness"),
+        inclination_deg=table.number("inclination"),
         feature=number,
     )
 
@@ -333,6 +334,7 @@ def _properties(region: Region) -> dict[str, object]:
         ("lagged", region.lagged),
         ("start_m", region.start or None),
         ("direction", "backward" if region.direction == -1 else None),
+        ("inclination_deg", region.inclination_deg),
         ("note", region.note or None),
     )
     found.update((name, value) for name, value in optional if value is not None)
