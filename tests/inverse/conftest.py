@@ -163,6 +163,9 @@ class Bench:
             conditions.wind_speed.value,
             diameter,
             cladding.total_emissivity.value,
+            relative_humidity=(
+                None if conditions.relative_humidity is None else conditions.relative_humidity.value
+            ),
             inclination_deg=self.line.inclination_deg,
         )
 

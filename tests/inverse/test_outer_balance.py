@@ -6,7 +6,12 @@ import numpy as np
 import psychrolib
 import pytest
 
-from cladwatt.inverse.outer_balance import may_condense, outer_flux
+from cladwatt.inverse.outer_balance import (
+    WATER_EMISSIVITY,
+    may_condense,
+    outer_flux,
+    wetted_emissivity,
+)
 from cladwatt.physics.condensation import latent_heat_flux
 from cladwatt.physics.humidity import dew_point
 from cladwatt.physics.surface_balance import (
@@ -35,8 +40,35 @@ def test_below_it_the_latent_heat_of_the_same_convection_is_added():
         surface, air_temperature=AIR, relative_humidity=HUMIDITY, convection_coefficient=convection
     )
     assert np.all(latent < 0)
-    found = outer_flux(surface, STILL, HUMID)
-    assert found == pytest.approx(surface_heat_flux(surface, STILL) + latent, rel=1e-12)
+    # with the emissivity of water the film changes nothing but brings its heat
+    wet = wet_of(STILL)
+    found = outer_flux(surface, wet, HUMID)
+    assert found == pytest.approx(surface_heat_flux(surface, wet) + latent, rel=1e-12)
+
+
+@pytest.mark.parametrize("emissivity", [0.1, 0.6, 0.9])
+def test_below_it_bright_cladding_radiates_as_the_water_on_it(emissivity):
+    surface = np.linspace(250.0, DEW - 0.6, 20)
+    bright = replace(STILL, total_emissivity=emissivity)
+    more = outer_flux(surface, bright, HUMID) - outer_flux(
+        surface, replace(STILL, total_emissivity=WATER_EMISSIVITY), HUMID
+    )
+    assert more == pytest.approx(np.zeros(20), abs=1e-9)
+    # by hand at 5 °C: (0.96 - 0.1) sigma (278.15^4 - 298.15^4)
+    cold = np.array(278.15)
+    dry = surface_heat_flux(cold, replace(STILL, total_emissivity=0.1))
+    film = outer_flux(cold, replace(STILL, total_emissivity=0.1), HUMID) - dry
+    latent = outer_flux(cold, wet_of(STILL), HUMID) - surface_heat_flux(cold, wet_of(STILL))
+    assert film - latent == pytest.approx(-0.86 * 5.670374e-8 * (298.15**4 - 278.15**4), rel=1e-6)
+
+
+def test_the_film_never_lowers_what_the_cladding_radiates():
+    coat = replace(STILL, total_emissivity=0.98)
+    assert wetted_emissivity(270.0, coat, HUMID) == 0.98
+
+
+def wet_of(exchange: SurfaceExchange) -> SurfaceExchange:
+    return replace(exchange, total_emissivity=WATER_EMISSIVITY)
 
 
 def test_flux_passes_the_dew_point_without_a_step():
@@ -55,14 +87,16 @@ def test_latent_heat_is_that_of_the_humidity_ratios_difference(celsius):
     # cp of air 1.006 kJ/(kg K), Le 0.86, heat of evaporation 2501 - 2.36 t kJ/kg
     by_hand = convection / 1006 / 0.86 ** (2 / 3) * (in_air - at_surface)
     by_hand *= 1e3 * (2501 - 2.36 * celsius)
-    found = surface_heat_flux(surface, STILL) - outer_flux(surface, STILL, HUMID)
+    wet = wet_of(STILL)
+    found = surface_heat_flux(surface, wet) - outer_flux(surface, wet, HUMID)
     assert found == pytest.approx(by_hand, rel=0.03)
 
 
 def test_vapour_about_doubles_what_the_air_brings_a_chilled_surface():
     surface = np.array(278.15)
-    convection = surface_fluxes(surface, STILL).convection
-    latent = outer_flux(surface, STILL, HUMID) - surface_heat_flux(surface, STILL)
+    wet = wet_of(STILL)
+    convection = surface_fluxes(surface, wet).convection
+    latent = outer_flux(surface, wet, HUMID) - surface_heat_flux(surface, wet)
     assert latent / convection == pytest.approx(1.0, abs=0.15)
 
 

@@ -10,6 +10,7 @@ __all__ = ["Sheet", "polynomial_text", "saturation_text"]
 
 _SHARED = (
     "T_air", "T_sur", "D", "v", "psi", "p", "phi", "e_air", "x_v", "H", "incl", "eps_tot", "q_sun",
+    "T_dew",
 )  # fmt: skip
 """Symbols that do not belong to one surface temperature."""
 _FORMATTER = Formatter()
@@ -54,11 +55,11 @@ def polynomial_text(coefficients: tuple[float, ...], scale: float = 1.0) -> str:
     scale : float
         Taken out in front.
     """
-    terms = [f"{coefficients[0] / scale:.7g}"]
+    terms = [f"{coefficients[0] / scale:.9g}"]
     for power, coefficient in enumerate(coefficients[1:], start=1):
         x = "x" if power == 1 else f"x^{power}"
         sign = "-" if coefficient < 0 else "+"
-        terms.append(f"{sign} {abs(coefficient) / scale:.7g} {x}")
+        terms.append(f"{sign} {abs(coefficient) / scale:.9g} {x}")
     factor = "" if scale == 1 else f"{scale:g} "
     return f"{factor}({' '.join(terms)}), x = {{T_film}}/300 K"
 

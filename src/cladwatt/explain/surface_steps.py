@@ -7,7 +7,12 @@ from cladwatt.explain.sheet import Sheet, saturation_text
 from cladwatt.explain.steps import Pad, Section, median_of, source_of
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
-from cladwatt.inverse.outer_balance import outer_flux
+from cladwatt.inverse.outer_balance import (
+    FILM_SPAN,
+    WATER_EMISSIVITY,
+    outer_flux,
+    wetted_emissivity,
+)
 from cladwatt.inverse.seen import Seen
 from cladwatt.physics.condensation import (
     latent_heat,
@@ -20,7 +25,9 @@ from cladwatt.physics.condensation import (
 )
 from cladwatt.physics.constants import MOLAR_GAS, MOLAR_MASS_WATER, STEFAN_BOLTZMANN, ZERO_CELSIUS
 from cladwatt.physics.convection import VERTICAL_LENGTH
+from cladwatt.physics.humidity import dew_point
 from cladwatt.physics.moist_air import vapour_mole_fraction
+from cladwatt.physics.radiation import radiative_flux
 from cladwatt.physics.surface_balance import SurfaceExchange, surface_coefficients, surface_fluxes
 from cladwatt.quantities import Quantity
 from cladwatt.types import FloatArray
@@ -50,7 +57,8 @@ def surface_section(seen: Seen) -> Section:
     pad.given("air_pressure", "p", frame.pressure, "Pa", "site, or standard atmosphere")
     _humidity(pad, exchange)
     if line.inclination_deg:
-        pad.given("inclination", "incl", line.inclination_deg, "deg", "line list")
+        source = "line list" if seen.region.inclination_deg is None else "region"
+        pad.given("inclination", "incl", line.inclination_deg, "deg", source)
         pad.given("vertical_length", "H", VERTICAL_LENGTH, "m", "assumption")
     total = seen.region.total_emissivity or seen.line.cladding.total_emissivity
     pad.given("total_emissivity", "eps_tot", line.total_emissivity, "-", total.source)
@@ -155,15 +163,42 @@ def exchange_steps(
     convection_steps(sheet, surface, exchange)
     fluxes = surface_fluxes(surface, exchange)
     sheet.found("convective_flux", "q_conv", fluxes.convection, "W/m²", "{h_c} ({T_s} - T_air)")
+    emissivity, radiation = "eps_tot", fluxes.radiation
+    if humidity is not None:
+        wetted = wetted_emissivity(surface, exchange, humidity)
+        if (wetted != exchange.total_emissivity).any():
+            emissivity = _wetted(sheet, surface, exchange, humidity, wetted)
+            radiation = radiative_flux(
+                surface,
+                emissivity=wetted,
+                surroundings_temperature=exchange.surroundings_temperature,
+            )
     sheet.found(
-        "radiative_flux", "q_rad", fluxes.radiation, "W/m²",
-        f"eps_tot {STEFAN_BOLTZMANN:.7g} ({{T_s}}^4 - T_sur^4)", "Stefan-Boltzmann",
+        "radiative_flux", "q_rad", radiation, "W/m²",
+        f"{emissivity} {STEFAN_BOLTZMANN:.7g} ({{T_s}}^4 - T_sur^4)", "Stefan-Boltzmann",
     )  # fmt: skip
     formula = "{q_conv} + {q_rad} - q_sun"
     if humidity is not None:
         _latent(sheet, surface, exchange, humidity)
         formula += " + {q_lat}"
     sheet.found("flux", "q", outer_flux(surface, exchange, humidity), "W/m²", formula)
+
+
+def _wetted(
+    sheet: Sheet,
+    surface: FloatArray,
+    exchange: SurfaceExchange,
+    humidity: FloatArray,
+    wetted: FloatArray,
+) -> str:
+    """Write down the emissivity of what has condensed, and return its symbol."""
+    dew = dew_point(exchange.air_temperature, np.clip(humidity, 0.01, 1.0))
+    formula = f"film of water below T_dew: the larger of {WATER_EMISSIVITY:g} and eps_tot"
+    if (dew - surface < FILM_SPAN).any():
+        formula = f"eps_tot + {1 / FILM_SPAN:g} (T_dew - {{T_s}}) ({WATER_EMISSIVITY:g} - eps_tot)"
+    sheet.found("wetted_emissivity", "eps_wet", wetted, "-", formula,
+                "Incropera et al., table A.11")  # fmt: skip
+    return "{eps_wet}"
 
 
 def _latent(

@@ -156,8 +156,10 @@ def _beside(exchange: SurfaceExchange) -> SurfaceExchange:
     def column(values: FloatLike) -> FloatArray:
         return np.reshape(values, (-1, 1, 1))
 
+    humidity = exchange.relative_humidity
     return replace(
         exchange,
+        relative_humidity=None if humidity is None else column(humidity),
         air_temperature=column(exchange.air_temperature),
         surroundings_temperature=column(exchange.surroundings_temperature),
         wind_speed=column(exchange.wind_speed),
