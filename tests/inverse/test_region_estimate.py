@@ -498,6 +498,23 @@ def test_a_riser_loses_what_a_vertical_pipe_loses(bench, drawn_pipe):
     assert found < 0.995
 
 
+@pytest.mark.parametrize(("name", "surface"), [("bench", 320.0), ("chilled", 286.0)])
+def test_wind_against_the_moving_air_carries_less(request, hall_with, drawn_pipe, name, surface):
+    bench = request.getfixturevalue(name)
+
+    def loss(uphill: int, inclination: float = 90.0) -> float:
+        along = hall_with(
+            wind_speed=Quantity(1.5), wind_angle_deg=Quantity(0.0), wind_uphill=uphill
+        )
+        run = bench.but(conditions=along, region=drawn_pipe(inclination_deg=inclination))
+        return abs(run.alone(run.lens(surface)).heat_flux.median)
+
+    hot = 1 if surface > 293.15 else -1  # air falls along a cold pipe
+    assert loss(-hot) < 0.99 * loss(hot)
+    assert loss(0) == loss(hot)  # where nobody says, they are taken to help each other
+    assert loss(-hot, 0.0) == loss(hot, 0.0)  # air rises across a level run
+
+
 def test_film_and_supports_are_among_what_the_variance_comes_from(bench):
     line = replace(
         bench.line, inside_film=Quantity(5.0, 2.5, lower=0.1), installation_factor=Quantity(1.0),

@@ -227,3 +227,20 @@ def test_a_band_no_air_path_is_held_for_is_asked_about(survey_folder):
     said = [str(fault) for fault in read_survey(survey_folder.root).faults]
     assert any("3 to 5 µm" in one and "declare atmosphere_transmission" in one for one in said)
     assert conditions(survey_folder, "atmosphere_transmission = 0.99") is not None
+
+
+@pytest.mark.parametrize(("word", "sign"), [("up", 1), ("down", -1)])
+def test_wind_along_a_run_blows_up_or_down_it(survey_folder, word, sign):
+    assert conditions(survey_folder, f'wind_along = "{word}"').wind_uphill == sign
+
+
+def test_wind_along_a_run_is_one_of_two_words(survey_folder):
+    survey_folder.edit(AIR, f'{AIR}\nwind_along = "north"')
+    with pytest.raises(SurveyFileError, match='expected one of "up", "down"'):
+        read_survey(survey_folder.root)
+
+
+@pytest.mark.parametrize(("wet", "asked"), [("", True), ("\nsurface_wet = false", False)])
+def test_rain_outdoors_asks_whether_the_surface_was_still_wet(survey_folder, wet, asked):
+    _, said = read(survey_folder, f"rain_last_24h = true{wet}", outdoors=True)
+    assert any("surface_wet is missing" in one for one in said) == asked

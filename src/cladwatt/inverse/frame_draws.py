@@ -80,6 +80,8 @@ class FrameDraws:
     window_transmission: FloatArray
     window_reflectance: FloatArray
     window_temperature: FloatArray
+    wind_uphill: float = 0.0
+    """1 where the wind along an inclined run blows up it, -1 down it, 0 not known."""
 
     @property
     def dew_point(self) -> FloatArray | None:
@@ -178,6 +180,7 @@ def draw_frame(
             if conditions.wind_angle_deg is None
             else book.quantity(owner, "wind_angle", conditions.wind_angle_deg)
         ),
+        wind_uphill=float(conditions.wind_uphill),
         convection_model=convection_model,
         convection_factor=_convection_factor(book, owner, conditions),
         irradiance=(

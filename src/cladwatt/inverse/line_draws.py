@@ -66,6 +66,7 @@ class LineDraws:
             convection_factor=frame.convection_factor,
             convection_model=frame.convection_model,
             wind_angle_deg=frame.wind_angle_deg,
+            wind_uphill=frame.wind_uphill,
             # the beam meets the projected width, a share 1/pi of the circumference
             absorbed_solar=self.solar_absorptance * frame.irradiance / math.pi,
         )

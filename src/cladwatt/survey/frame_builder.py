@@ -30,6 +30,8 @@ __all__ = [
     "zoned",
 ]
 
+_UPHILL: dict[str, Literal[-1, 0, 1]] = {"up": 1, "down": -1}
+
 
 def build_site(table: Table, tables: MaterialTables, faults: FaultList) -> Site:
     """Return the site, with the air pressure of its altitude where none is declared."""
@@ -208,6 +210,7 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
             else _wind(table, tables)
         ),
         wind_angle_deg=table.quantity("wind_angle"),
+        wind_uphill=_UPHILL.get(table.text("wind_along"), 0),
         indoors=indoors,
         sky_band_temperature=table.quantity("sky_band_temperature"),
         sky_total_temperature=around.sky_total,
@@ -238,12 +241,19 @@ def _wind(table: Table, tables: MaterialTables) -> Quantity | None:
 
 
 def _ask_outdoors(table: Table, faults: FaultList) -> None:
-    """Ask for wind outdoors and for the strength of a sun that shone on the pipe."""
+    """Ask outdoors for wind and what rain left wet, and how strong a sun on the pipe was."""
     if table.flag("indoors") is False and not table.has("wind_speed"):
         faults.ask(
             table.place, "wind_speed_m_s",
             "wind_speed_m_s is missing outdoors and nothing is assumed in its place",
             'declare the wind at the pipe or write "unknown"',
+        )  # fmt: skip
+    rained = table.flag("indoors") is False and table.flag("rain_last_24h")
+    if rained and not table.has("surface_wet"):
+        faults.ask(
+            table.place, table.spelling("rain_last_24h"),
+            "it had rained, but surface_wet is missing: a warm surface still wet gets no number",
+            "declare surface_wet = true or false",
         )  # fmt: skip
     if table.flag("sun_on_pipe") and not table.has("solar_irradiance"):
         faults.ask(

@@ -335,6 +335,10 @@ CONDITIONS = (
         "wind_angle", "quantity", "Between wind and pipe axis; 90 is across", "angle", 0.0, 90.0,
         u=20.0, example="90",
     ),
+    Key(
+        "wind_along", "choice", "Of an inclined run: whether its wind blows up the run or down it",
+        choices=("up", "down"), default="not known: taken as aiding", example='"up"',
+    ),
     _temperature(
         "sky_band_temperature", "What the camera's band sees of the sky", u=8.0, lower=100.0,
         upper=330.0, example="-40.0",

@@ -143,6 +143,8 @@ class Conditions:
     """Wind at the pipe. [m/s]"""
     wind_angle_deg: Quantity | None = None
     """Angle between wind and pipe axis; 90 is across."""
+    wind_uphill: Literal[-1, 0, 1] = 0
+    """Whether the wind along an inclined run blows up it (1) or down it (-1); 0 is not known."""
     indoors: bool | None = None
     sky_band_temperature: Quantity | None = None
     """What the camera's band sees of the sky. [K]"""
