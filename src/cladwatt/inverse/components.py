@@ -1,8 +1,8 @@
 """Flanges, valves and hangers: estimated on their own, never taken for damaged lagging.
 
 What a component loses is an equivalent length of pipe, as printed, times what a metre of such
-pipe loses at the temperature the image shows: bare pipe for a bare component, the clad line for a
-lagged one. A hanger has no equivalent length; what is printed of it is a share of a line's loss.
+pipe loses: of bare pipe at the temperature the image shows for a bare component, of the sound line
+for a lagged one (at the temperature seen where the sound loss is unknown). A hanger has no equivalent length; what is printed of it is a share of a line's loss.
 """
 
 import math
@@ -19,6 +19,7 @@ from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.outer_balance import may_condense, outer_flux
 from cladwatt.inverse.result import ComponentResult, Interval, interval_of
 from cladwatt.inverse.seen import FrameImage
+from cladwatt.inverse.sound import sound_draws
 from cladwatt.materials.fittings import fitting_kind
 from cladwatt.materials.load import MaterialTables
 from cladwatt.materials.tables import fitting_equivalent_length
@@ -101,6 +102,9 @@ def estimate_component(
     exchange = clad.exchange(frame, diameter)
     humidity = frame.relative_humidity if may_condense(frame, line) else None
     per_metre = math.pi * diameter * outer_flux(temperature, exchange, humidity)
+    if lagged and (sound := sound_draws(line, frame)) is not None:
+        # such lengths are printed of the line as clad, not of what the box's own surface shows
+        per_metre = sound.heat_loss
     owner = f"region:{region.id}"
     length = book.quantity(owner, "equivalent_length", fitting.amount)
     length = length * np.exp(SHAPE_U * book.normal(owner, "shape"))
