@@ -1,8 +1,9 @@
 """Flanges, valves and hangers: estimated on their own, never taken for damaged lagging.
 
 What a component loses is an equivalent length of pipe, as printed, times what a metre of such
-pipe loses: of bare pipe at the temperature the image shows for a bare component, of the sound line
-for a lagged one (at the temperature seen where the sound loss is unknown). A hanger has no equivalent length; what is printed of it is a share of a line's loss.
+pipe loses: of bare pipe at the temperature the image shows for a bare component, of the sound
+line for a lagged one (at the temperature seen where the sound loss is unknown). A hanger has no
+equivalent length; what is printed of it is a share of a line's loss.
 """
 
 import math
