@@ -366,3 +366,8 @@ def test_a_line_still_warming_up_is_no_evidence_for_its_neighbours(bench):
     started = replace(bench.line, hours_at_temperature=Quantity(0.2))
     assert bench.observe(bench.lens(320.0)).evidence() is not None
     assert bench.but(line=started).observe(bench.lens(320.0)).evidence() is None
+
+
+def test_a_pipe_in_the_sun_is_no_evidence_of_its_lagging(bench, hall_with):
+    sunny = bench.but(conditions=hall_with(solar_irradiance=Quantity(500.0, 100.0)))
+    assert sunny.observe(bench.lens(320.0)).evidence() is None

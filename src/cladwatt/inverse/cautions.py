@@ -8,8 +8,9 @@ from cladwatt.inverse.sound import condition_loss
 from cladwatt.inverse.steady_state import is_settled
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.quantities import Remark
+from cladwatt.survey.model import Conditions
 
-__all__ = ["cautions_of", "missing_of", "refusals_of", "remarks_of", "verdict_caps"]
+__all__ = ["cautions_of", "in_the_sun", "missing_of", "refusals_of", "remarks_of", "verdict_caps"]
 
 TOUCH_CAUTION = ZERO_CELSIUS + 48.9
 """120 °F, above which the US DOE steam tip sheet 2 advises to insulate. [K]"""
@@ -150,13 +151,18 @@ def refusals_of(seen: Seen) -> tuple[Remark, ...]:
     return tuple(reasons)
 
 
+def in_the_sun(conditions: Conditions) -> bool:
+    """Return whether the sun shone on the pipe when it was recorded."""
+    sun = conditions.solar_irradiance
+    return bool(conditions.sun_on_pipe or (sun is not None and sun.value > 0))
+
+
 def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
     """Return the reasons that allow an indicative verdict at most."""
     conditions = seen.conditions
-    sun = conditions.solar_irradiance
     below = seen.below_dew_point[seen.usable].mean()
     reasons = {
-        "indicative.sun": bool(conditions.sun_on_pipe or (sun is not None and sun.value > 0)),
+        "indicative.sun": in_the_sun(conditions),
         "indicative.traced": seen.line.tracing.kind != "none",
         "indicative.rain": conditions.indoors is False and bool(conditions.rain_last_24h),
         "indicative.not_steady": not is_settled(seen.line),

@@ -7,6 +7,7 @@ import numpy as np
 
 from cladwatt.errors import Fault, RegionError
 from cladwatt.inverse.bare import bare_draws, with_bare
+from cladwatt.inverse.cautions import in_the_sun
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.face import face_draws
 from cladwatt.inverse.feasibility import Bounds, flux_bounds
@@ -79,12 +80,13 @@ class Observed:
         """Return what the region says of its lagging as a whole, None where it says nothing.
 
         A traced line says nothing, its tracer's heat is not the fluid's; nor does a line that is
-        still warming up, or a wet surface.
+        still warming up, a wet surface, or one in the sun, whose heat is only roughly known.
         """
         balance, line = self.balance, self.seen.line
         if balance is None or balance.sound is None or line.tracing.kind != "none":
             return None
-        if not is_settled(line) or self.seen.conditions.surface_wet:
+        conditions = self.seen.conditions
+        if not is_settled(line) or conditions.surface_wet or in_the_sun(conditions):
             return None
         sound = balance.sound.heat_loss
         if not (np.abs(sound) > SMALLEST_SOUND_LOSS).all() or np.ptp(np.sign(sound)) > 0:
