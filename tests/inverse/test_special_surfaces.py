@@ -368,6 +368,16 @@ def test_a_line_still_warming_up_is_no_evidence_for_its_neighbours(bench):
     assert bench.but(line=started).observe(bench.lens(320.0)).evidence() is None
 
 
-def test_a_pipe_in_the_sun_is_no_evidence_of_its_lagging(bench, hall_with):
-    sunny = bench.but(conditions=hall_with(solar_irradiance=Quantity(500.0, 100.0)))
-    assert sunny.observe(bench.lens(320.0)).evidence() is None
+def test_sun_on_the_seen_face_leaves_its_loss_nearly_unknown(bench, hall_with):
+    """What the face absorbs lies between shade and facing the beam: hundreds of W/m2 apart."""
+    lens = bench.lens(325.0)
+    dark = bench.but(count=2000).alone(lens).image_loss
+    sun = hall_with(solar_irradiance=Quantity(600.0))
+    lit = bench.but(count=2000, conditions=sun).alone(lens)
+    absorbed = 600.0 * bench.line.cladding.solar_absorptance.value
+    diameter = bench.line.lagged_diameter
+    # in the median the mean over the circumference, the projected width over it
+    assert lit.image_loss.median == pytest.approx(dark.median - absorbed * diameter, rel=0.1)
+    width = lit.image_loss.high - lit.image_loss.low
+    assert width > 0.4 * absorbed * np.pi * diameter
+    assert lit.verdict.level != "quantified"

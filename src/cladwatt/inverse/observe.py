@@ -7,7 +7,6 @@ import numpy as np
 
 from cladwatt.errors import Fault, RegionError
 from cladwatt.inverse.bare import bare_draws, with_bare
-from cladwatt.inverse.cautions import in_the_sun
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.face import face_draws
 from cladwatt.inverse.feasibility import Bounds, flux_bounds
@@ -20,6 +19,7 @@ from cladwatt.inverse.seen import FrameImage, Seen
 from cladwatt.inverse.sound import SoundDraws, sound_draws
 from cladwatt.inverse.steady_state import is_settled
 from cladwatt.inverse.stretches import Run, find_runs, sound_stations
+from cladwatt.inverse.sunlit import sunlit_excess
 from cladwatt.measure.face_bands import bands_of
 from cladwatt.measure.strip import Strip, known_length_factor, sample_strip, straighten
 from cladwatt.survey.model import Camera, Conditions, Line
@@ -80,13 +80,12 @@ class Observed:
         """Return what the region says of its lagging as a whole, None where it says nothing.
 
         A traced line says nothing, its tracer's heat is not the fluid's; nor does a line that is
-        still warming up, a wet surface, or one in the sun, whose heat is only roughly known.
+        still warming up, or a wet surface.
         """
         balance, line = self.balance, self.seen.line
         if balance is None or balance.sound is None or line.tracing.kind != "none":
             return None
-        conditions = self.seen.conditions
-        if not is_settled(line) or conditions.surface_wet or in_the_sun(conditions):
+        if not is_settled(line) or self.seen.conditions.surface_wet:
             return None
         sound = balance.sound.heat_loss
         if not (np.abs(sound) > SMALLEST_SOUND_LOSS).all() or np.ptp(np.sign(sound)) > 0:
@@ -293,8 +292,12 @@ def _balance(seen: Seen) -> Balance | None:
         seen=evenness_of(seen.face, runs, sound_at, sign=sign),
     )
     bounds = flux_bounds(seen)
-    seen_base = seen.drawn.heat_flux[:, sound_at].mean(axis=1)
-    flux = whole_flux(seen.drawn.heat_flux, seen_base, hidden)
+    seen_flux = seen.drawn.heat_flux
+    sun = sunlit_excess(seen)
+    if sun is not None:
+        seen_flux = seen_flux - sun[:, None]
+    seen_base = seen_flux[:, sound_at].mean(axis=1)
+    flux = whole_flux(seen_flux, seen_base, hidden)
     base = seen_base * (1 + hidden.unevenness)
     for run in runs:
         bare = bare_draws(seen, run, sound_at, base)
