@@ -61,7 +61,8 @@ values behind every declared one. The model that makes the frames is richer than
 - near half of all regions are sound, the others have one of eight kinds of damage.
 
 The hot lines are steam, condensate, hot water and oil, indoors and outdoors in wind, with painted,
-weathered and bright cladding; two lines are chilled. No frame of this plant stands in the sun. The
+weathered and bright cladding; three lines are chilled.
+One frame stands in the sun, one pipe is wet, one is traced, one still warming up. The
 estimator was developed on seeds 1000 to 1999; the seeds counted here, {first} to {last}, had no
 part in that. That a region is damaged is decided at P > 0.5, fixed beforehand.
 
