@@ -107,7 +107,7 @@ def test_an_unknown_fluid_is_not_guessed_from_the_pipe(wide, keys):
 def test_only_draws_that_see_the_pipe_change_and_only_within_the_run():
     flux = np.full((3, 10), 100.0)
     run = Run(2, 4, 50.0, 30.0, 1.0, 1.0, 1.0)
-    bare = BareDraws(run, 0.5, 0.2, np.array([700.0, np.nan, 300.0]))
+    bare = BareDraws(run, 0.5, np.array([700.0, np.nan, 300.0]))
     found = with_bare(flux, bare)
     assert found[:, 2:5] == pytest.approx(np.array([[700.0] * 3, [100.0] * 3, [300.0] * 3]))
     assert np.all(np.delete(found, [2, 3, 4], axis=1) == 100)

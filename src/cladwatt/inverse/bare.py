@@ -58,15 +58,12 @@ class BareDraws:
     run : Run
     probability : float
         That it is bare all round.
-    sector_probability : float
-        That a sector is missing.
     flux : (count,) array
         Loss per square metre of cladding, NaN in draws in which neither is the case. [W/m2]
     """
 
     run: Run
     probability: float
-    sector_probability: float
     flux: FloatArray
 
 
@@ -122,7 +119,6 @@ def bare_draws(seen: Seen, run: Run, sound_at: BoolArray, base: FloatArray) -> B
     return BareDraws(
         run=run,
         probability=probability,
-        sector_probability=pipe_seen - probability,
         flux=np.where(kind < probability, all_round, np.where(kind < pipe_seen, sector, np.nan)),
     )
 
