@@ -20,6 +20,7 @@ from cladwatt.inverse import (
     references,
     stretch_results,
     stretches,
+    surroundings_draws,
     verdict,
 )
 from cladwatt.materials.load import shipped_tables
@@ -28,6 +29,7 @@ from cladwatt.measure import strip
 from cladwatt.physics import convection_spread
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.physics.field_methods import MINIMUM_SEPARATION
+from cladwatt.survey.surroundings_builder import SKY_BAND_BELOW_AIR
 
 FOLDER = Path(cladwatt.__file__).parent / "guide"
 PAGE = " ".join((FOLDER / "method.md").read_text(encoding="utf-8").split())
@@ -61,6 +63,10 @@ VALUES = [
     f"Less than {MINIMUM_SEPARATION:g} K from the reflected temperature",
     f"within {math.degrees(math.asin(strip.WIDEST_FRACTION)):.0f}° is used, and "
     f"{strip.EDGE_MARGIN_PX} px are kept clear",
+    f"directions mirrored, metal | {surroundings_draws.MIRRORED_DIRECTIONS_METAL:g} |",
+    f"directions mirrored, coat | {surroundings_draws.MIRRORED_DIRECTIONS:g} |",
+    f"by pieces, beyond theirs | {surroundings_draws.PIECES_MIRRORED_U:g} K |",
+    f"in the band, undeclared | 0 to {SKY_BAND_BELOW_AIR:g} K below the air",
     f"u of a drawn edge | {strip.OUTLINE_ERROR_PX} px |",
     f"where none is declared | {strip.UNKNOWN_VIEW_DEG:.0f}°,",
     f"{percent(observe.COMPONENT_MARGIN)} of the width, at least 3 px |",

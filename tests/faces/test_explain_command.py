@@ -357,6 +357,23 @@ def test_window_sun_sky_two_layers_slope_and_every_setting_follow_too(cladwatt, 
         page.follow_row(row)
 
 
+def test_surroundings_in_pieces_follow_too(cladwatt, survey, edit):
+    edit("indoors = true",
+         "indoors = false\nwind_speed_m_s = 1.0\nrelative_humidity = 0.6\ncloud_cover = 0.2\n"
+         'surroundings = [{ what = "sky", view_factor = 0.35 }, { what = "neighbour", '
+         'temperature_C = 90, view_factor = 0.05 }, { what = "ground", temperature_C = 15, '
+         "view_factor = 0.59 }]")  # fmt: skip
+    ended = cladwatt("explain", survey, "north-1")
+    assert ended.code == ExitCode.DONE, ended.err
+    page = Page(ended.out)
+    page.follow()
+    assert {"L_sky_1_band", "F_neighbour_2", "T_ground_3", "L_refl"} <= set(page.by_symbol)
+    assert page.by_symbol["T_sky_1_band"].value < page.by_symbol["T_sky_1"].value - 10
+    assert page.by_symbol["T_neighbour_2"].value == page.by_symbol["T_neighbour_2_band"].value
+    for row in page.table:
+        page.follow_row(row)
+
+
 def test_dew_with_a_film_of_water_and_latent_heat_follows_too(cladwatt, survey, edit):
     edit("indoors = true", "indoors = true\nrelative_humidity_percent = 90")
     ended = cladwatt("explain", survey, "south-1")

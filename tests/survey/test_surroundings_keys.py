@@ -38,7 +38,9 @@ def test_pieces_give_the_uniform_surroundings_that_radiate_the_same(survey_folde
     assert found.surroundings_temperature.value == pytest.approx(mean)
     assert not found.surroundings_temperature.is_default
     assert 1.0 < found.surroundings_temperature.u < 6.0
-    assert found.reflected_temperature.value == found.surroundings_temperature.value
+    # what is mirrored follows from the same pieces, draw by draw
+    assert found.reflected_temperature is None
+    assert found.sky_band_temperature is None
 
 
 def test_their_uncertainty_is_that_of_draws(survey_folder):
@@ -178,7 +180,26 @@ def test_a_piece_of_sky_may_take_its_temperature_from_the_clouds(survey_folder):
     assert sky.temperature.value < ground.temperature.value
     assert found.sky_view_factor.value == pytest.approx(0.4)
     assert found.sky_total_temperature is None
-    assert "as the air" in found.reflected_temperature.source
+    # what the band sees of the sky is another temperature, which the clouds do not tell: anything
+    # from the air's to 60 K below it
+    assert found.reflected_temperature is None
+    assert found.sky_band_temperature.value == pytest.approx(294.15 - 30)
+    assert found.sky_band_temperature.u == pytest.approx(60 / 12**0.5)
+    assert found.sky_band_temperature.is_default
+
+
+@pytest.mark.parametrize(
+    ("written", "band", "reflected"),
+    [("sky_band_temperature_C = -40", 233.15, None), ("reflected_temperature_C = 5", None, 278.15)],
+)
+def test_a_declared_band_or_reflected_temperature_stays(survey_folder, written, band, reflected):
+    pieces = '[{ what = "sky", temperature_C = -5, view_factor = 0.7 }, ' + GROUND + "]"
+    found = conditions(survey_folder, f"{written}\nsurroundings = {pieces}", outdoors=True)
+    values = [
+        None if one is None else round(one.value, 6)
+        for one in (found.sky_band_temperature, found.reflected_temperature)
+    ]
+    assert values == [band, reflected]
 
 
 def test_a_piece_of_sky_without_clouds_leaves_out_its_frames(survey_folder):

@@ -35,6 +35,16 @@ class NominalBook(DrawBook):
         """Return the median of the standard normal distribution, (count,)."""
         return np.zeros(self.count)
 
+    def shares(
+        self,
+        owner: str,  # noqa: ARG002
+        quantity: str,  # noqa: ARG002
+        mean: FloatArray,
+        directions: float,  # noqa: ARG002
+    ) -> FloatArray:
+        """Return the mean of the shares."""
+        return mean
+
 
 @dataclass(frozen=True)
 class NominalRegion:

@@ -12,6 +12,7 @@ from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.outer_balance import may_condense
+from cladwatt.inverse.surroundings_draws import Pieces
 from cladwatt.physics.atmosphere import _coefficients, air_path_transmission
 from cladwatt.physics.band import Band
 from cladwatt.physics.emissivity import (
@@ -171,6 +172,9 @@ def _reflected(pad: Pad, nominal: NominalRegion, frame: FrameDraws) -> None:
     conditions = nominal.entry.conditions
     value = float(frame.reflected_temperature[0])
     source = nominal.by_reference.get("reflected_temperature")
+    if source is None and frame.pieces is not None and frame.mirrors_pieces:
+        _mirrored_pieces(pad, nominal, frame, frame.pieces)
+        return
     sky = conditions.sky_band_temperature
     if source is None and conditions.reflected_temperature is None and sky is not None:
         view = conditions.sky_view_factor or Quantity(0.5, source="assumption")
@@ -184,6 +188,30 @@ def _reflected(pad: Pad, nominal: NominalRegion, frame: FrameDraws) -> None:
     declared = source_of(conditions.reflected_temperature, "as the air")
     pad.given("reflected_temperature", "T_refl", value, "K", source or declared)
     _radiance(pad, frame.band, value, "refl", "radiance_there")
+
+
+def _mirrored_pieces(pad: Pad, nominal: NominalRegion, frame: FrameDraws, pieces: Pieces) -> None:
+    """Write down what surroundings in pieces radiate in the band, by their view factors."""
+    inputs: list[str] = []
+    terms, shares = [], []
+    conditions = nominal.entry.conditions
+    for number, piece in enumerate(conditions.surroundings_pieces, start=1):
+        of = f"{piece.what}_{number}_band"
+        temperature = float(pieces.band_temperature[number - 1, 0])
+        source = piece.temperature.source
+        if piece.what == "sky":
+            source = source_of(conditions.sky_band_temperature, "as the air")
+        pad.given("mirrored_piece_temperature", f"T_{of}", temperature, "K", source)
+        _radiance(pad, frame.band, temperature, of, "radiance_there")
+        factor = piece.view_factor
+        pad.given("piece_view_factor", f"F_{of}", median_of(factor), "-", factor.source)
+        inputs += [f"F_{of}", f"L_{of}"]
+        terms.append(f"F_{of} L_{of}")
+        shares.append(f"F_{of}")
+    formula = f"({' + '.join(terms)}) / ({' + '.join(shares)})"
+    radiance = frame.band.radiance(frame.reflected_temperature)
+    pad.found("reflected_radiance", "L_refl", radiance, RADIANCE, formula, " ".join(inputs),
+              ISO_18434)  # fmt: skip
 
 
 def _air_path(pad: Pad, nominal: NominalRegion, frame: FrameDraws) -> None:

@@ -3,6 +3,7 @@
 import numpy as np
 
 from cladwatt.explain.convection_steps import convection_steps
+from cladwatt.explain.nominal import NominalBook
 from cladwatt.explain.sheet import Sheet, saturation_text
 from cladwatt.explain.steps import Pad, Section, median_of, source_of
 from cladwatt.inverse.frame_draws import FrameDraws
@@ -14,6 +15,7 @@ from cladwatt.inverse.outer_balance import (
     wetted_emissivity,
 )
 from cladwatt.inverse.seen import Seen
+from cladwatt.inverse.surroundings_draws import Pieces, sky_draws
 from cladwatt.physics.condensation import (
     latent_heat,
     latent_heat_flux,
@@ -104,19 +106,43 @@ def _humidity(pad: Pad, exchange: SurfaceExchange) -> None:
 def _surroundings(pad: Pad, seen: Seen, frame: FrameDraws) -> None:
     """Write down the temperature that the surface radiates to."""
     conditions = seen.conditions
+    if frame.pieces is not None:
+        _pieces(pad, seen, frame.pieces)
+        return
     sky, declared = conditions.sky_total_temperature, conditions.surroundings_temperature
     if declared is not None or sky is None:
         source = source_of(declared, "as the air")
         pad.given("surroundings", "T_sur", frame.surroundings_temperature, "K", source)
         return
     view = conditions.sky_view_factor or Quantity(0.5, source="assumption")
-    pad.given("sky_total_temperature", "T_sky", median_of(sky), "K", sky.source)
+    drawn = sky_draws(NominalBook(0, 1), "", sky, conditions)
+    pad.given("sky_total_temperature", "T_sky", drawn, "K", sky.source)
     pad.given("sky_view_factor", "F_sky_tot", median_of(view), "-", view.source)
     pad.found(
         "surroundings", "T_sur", frame.surroundings_temperature, "K",
         "(F_sky_tot T_sky^4 + (1 - F_sky_tot) T_air^4)^(1/4)", "F_sky_tot T_sky T_air",
         "Stefan-Boltzmann",
     )  # fmt: skip
+
+
+def _pieces(pad: Pad, seen: Seen, pieces: Pieces) -> None:
+    """Write down surroundings in pieces, and the uniform ones that radiate the same."""
+    inputs: list[str] = []
+    terms, shares = [], []
+    declared = seen.conditions.surroundings_pieces
+    for number, (piece, temperature) in enumerate(
+        zip(declared, pieces.temperature, strict=True), 1
+    ):
+        symbols = f"T_{piece.what}_{number}", f"F_{piece.what}_{number}"
+        pad.given("piece_temperature", symbols[0], temperature, "K", piece.temperature.source)
+        factor = piece.view_factor
+        pad.given("piece_view_factor", symbols[1], median_of(factor), "-", factor.source)
+        inputs += symbols
+        terms.append(f"{symbols[1]} {symbols[0]}^4")
+        shares.append(symbols[1])
+    formula = f"(({' + '.join(terms)}) / ({' + '.join(shares)}))^(1/4)"
+    pad.found("surroundings", "T_sur", seen.frame.surroundings_temperature, "K", formula,
+              " ".join(inputs), "Stefan-Boltzmann")  # fmt: skip
 
 
 def _sun(pad: Pad, seen: Seen, frame: FrameDraws, line: LineDraws) -> None:

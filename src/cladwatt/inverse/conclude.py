@@ -316,7 +316,11 @@ def _drivers(seen: Seen) -> dict[str, FloatArray]:
         "sound_scatter": normal(seen.owner, "sound_scatter"),
         "mirrored_scene": normal(seen.owner, "mirrored_scene"),
         "reflected_temperature": seen.frame.reflected_temperature,
-        "surroundings_temperature": normal(frame, "surroundings_temperature"),
+        "surroundings_temperature": (
+            normal(frame, "surroundings_temperature")
+            if seen.frame.pieces is None
+            else seen.frame.surroundings_temperature
+        ),
         "air_temperature": normal(frame, "air_temperature"),
         "wind_speed": normal(frame, "wind_speed"),
         "transmission": normal(frame, "transmission"),

@@ -8,7 +8,7 @@ from collections.abc import Callable
 from dataclasses import dataclass
 
 import numpy as np
-from scipy.special import ndtr, ndtri
+from scipy.special import gammaincinv, ndtr, ndtri
 
 from cladwatt.quantities import Quantity
 from cladwatt.types import FloatArray
@@ -59,6 +59,24 @@ class DrawBook:
     def quantity(self, owner: str, name: str, quantity: Quantity) -> FloatArray:
         """Return draws of a declared quantity, (count,)."""
         return quantity_draws(quantity, lambda: self.normal(owner, name), self.count)
+
+    def shares(self, owner: str, quantity: str, mean: FloatArray, directions: float) -> FloatArray:
+        """Return draws of shares that sum to one about their mean, (parts, count).
+
+        Dirichlet, with the variance of the shares of `directions` draws of one part each.
+
+        Parameters
+        ----------
+        owner, quantity : str
+        mean : (parts, count) array
+            Not negative, the sum over the parts 1.
+        directions : float
+            Above 1.
+        """
+        uniform = [self.uniform(owner, f"{quantity}_{part}") for part in range(len(mean))]
+        parts = gammaincinv(np.maximum((directions - 1) * mean, 1e-9), np.stack(uniform))
+        total = parts.sum(axis=0)
+        return np.where(total > 0, parts / np.where(total > 0, total, 1.0), mean)
 
     def mixed(self, name: str, *owners: tuple[str, float]) -> FloatArray:
         """Return standard normal draws made of parts with these (owner, share of variance)."""

@@ -7,7 +7,6 @@ to the frame for the rest; what a region mirrors to the region. The shares are a
 makers' statements and correlations say nothing of how their error divides.
 """
 
-import math
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
 
@@ -15,6 +14,13 @@ import numpy as np
 from scipy.special import ndtr
 
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.surroundings_draws import (
+    Pieces,
+    draw_pieces,
+    mirrored_apart,
+    reflected_draws,
+    surroundings_draws,
+)
 from cladwatt.materials.load import shipped_tables
 from cladwatt.physics.atmosphere import air_path_transmission, air_path_transmission_uncertainty
 from cladwatt.physics.band import Band
@@ -22,7 +28,6 @@ from cladwatt.physics.constants import STANDARD_PRESSURE, ZERO_CELSIUS
 from cladwatt.physics.convection import ConvectionModel
 from cladwatt.physics.convection_spread import correlation_spread
 from cladwatt.physics.humidity import dew_point
-from cladwatt.physics.radiation import combined_surroundings
 from cladwatt.physics.surface_balance import SurfaceExchange
 from cladwatt.quantities import Quantity
 from cladwatt.survey.model import AccuracyStatement, Camera, Conditions, Site, Window
@@ -35,10 +40,6 @@ SHARED_SHARE = 2 / 3
 SPREAD_AT_RISE, SPREAD_AT_DIAMETER = 10.0, 0.2
 """Rise over the air [K] and diameter [m] for which the spread of published correlations is taken
 as uncertainty of the convection law; it hangs little on either."""
-AIR_AS_SOURCE = "as the air"
-SURROUNDINGS_AS_SOURCE = "as the declared surroundings"
-"""Sources of a default temperature that follows another: its draws are the other's plus its
-own."""
 MIRRORED_INDOORS, MIRRORED_INDOORS_METAL = 0.3, 1.0
 MIRRORED_OUTDOORS, MIRRORED_OUTDOORS_METAL = 1.5, 5.0
 """Standard uncertainty of what one region mirrors about the mean over the half space: metal a
@@ -82,6 +83,10 @@ class FrameDraws:
     window_temperature: FloatArray
     wind_uphill: float = 0.0
     """1 where the wind along an inclined run blows up it, -1 down it, 0 not known."""
+    pieces: Pieces | None = None
+    """Of the surroundings, where they are declared so."""
+    mirrors_pieces: bool = False
+    """Whether the reflected temperature follows from them; a declared one goes before."""
 
     @property
     def dew_point(self) -> FloatArray | None:
@@ -158,7 +163,8 @@ def draw_frame(
         if conditions.wind_speed is None
         else book.quantity(owner, "wind_speed", conditions.wind_speed)
     )
-    surroundings = _surroundings(book, owner, conditions, air)
+    pieces = draw_pieces(book, owner, conditions, air)
+    surroundings = surroundings_draws(book, owner, conditions, air, pieces)
     still = np.zeros(book.count)
     window = conditions.window
     return FrameDraws(
@@ -167,7 +173,11 @@ def draw_frame(
         calibration=_calibration(book, owner, camera.accuracy),
         air_temperature=air,
         surroundings_temperature=surroundings,
-        reflected_temperature=_reflected(book, owner, conditions, air, surroundings, band),
+        reflected_temperature=reflected_draws(
+            book, owner, conditions, air, surroundings, pieces, band
+        ),
+        pieces=pieces,
+        mirrors_pieces=pieces is not None and conditions.reflected_temperature is None,
         transmission=_transmission(book, owner, conditions, camera, distance, defaults["distance"]),
         wind_speed=wind,
         pressure=(
@@ -223,58 +233,6 @@ def _calibration(book: DrawBook, owner: str, accuracy: AccuracyStatement) -> Flo
     if accuracy.coverage_factor is None:
         return np.asarray(2 * ndtr(normal) - 1)
     return normal / accuracy.coverage_factor
-
-
-def _follow(
-    book: DrawBook, owner: str, name: str, quantity: Quantity, air: FloatArray
-) -> FloatArray:
-    """Draw a temperature; a default that follows the air takes the air's draws along."""
-    if quantity.source.startswith(AIR_AS_SOURCE):
-        return np.asarray(air + quantity.u * book.normal(owner, name))
-    return book.quantity(owner, name, quantity)
-
-
-def _surroundings(
-    book: DrawBook, owner: str, conditions: Conditions, air: FloatArray
-) -> FloatArray:
-    if conditions.surroundings_temperature is not None:
-        return _follow(
-            book, owner, "surroundings_temperature", conditions.surroundings_temperature, air
-        )
-    if conditions.sky_total_temperature is None:
-        return air
-    sky = book.quantity(owner, "sky_total_temperature", conditions.sky_total_temperature)
-    view = _sky_view(book, owner, conditions)
-    return combined_surroundings((sky, air), (view, 1 - view))
-
-
-def _reflected(
-    book: DrawBook,
-    owner: str,
-    conditions: Conditions,
-    air: FloatArray,
-    surroundings: FloatArray,
-    band: Band,
-) -> FloatArray:
-    reflected = conditions.reflected_temperature
-    if reflected is not None and reflected.source.startswith(SURROUNDINGS_AS_SOURCE):
-        declared = conditions.surroundings_temperature
-        own = (
-            reflected.u if declared is None else math.sqrt(max(reflected.u**2 - declared.u**2, 0.0))
-        )
-        return np.asarray(surroundings + own * book.normal(owner, "reflected_temperature"))
-    if reflected is not None:
-        return _follow(book, owner, "reflected_temperature", reflected, air)
-    if conditions.sky_band_temperature is None:
-        return air
-    sky = book.quantity(owner, "sky_band_temperature", conditions.sky_band_temperature)
-    view = _sky_view(book, owner, conditions)
-    return band.temperature(view * band.radiance(sky) + (1 - view) * band.radiance(air))
-
-
-def _sky_view(book: DrawBook, owner: str, conditions: Conditions) -> FloatArray:
-    view = conditions.sky_view_factor or Quantity(0.5, 0.1, lower=0.0, upper=1.0)
-    return book.quantity(owner, "sky_view_factor", view)
 
 
 def _transmission(
@@ -340,11 +298,14 @@ def mirrored(
     Returns
     -------
     FrameDraws
-        The reflected temperature moved by the region's own draw.
+        The reflected temperature moved by the region's own draw and, where it follows from
+        surroundings in pieces, by what the region mirrors of them against their mean.
     """
     if indoors:
         sigma = MIRRORED_INDOORS_METAL if is_metal else MIRRORED_INDOORS
     else:
         sigma = MIRRORED_OUTDOORS_METAL if is_metal else MIRRORED_OUTDOORS
     own = sigma * book.normal(f"region:{region_id}", "mirrored_scene")
+    if frame.pieces is not None and frame.mirrors_pieces:
+        own = own + mirrored_apart(frame.pieces, frame.band, book, region_id, is_metal=is_metal)
     return replace(frame, reflected_temperature=frame.reflected_temperature + own)

@@ -212,7 +212,7 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
         wind_angle_deg=table.quantity("wind_angle"),
         wind_uphill=_UPHILL.get(table.text("wind_along"), 0),
         indoors=indoors,
-        sky_band_temperature=table.quantity("sky_band_temperature"),
+        sky_band_temperature=around.sky_band,
         sky_total_temperature=around.sky_total,
         sky_view_factor=around.sky_view,
         cloud_cover=table.quantity("cloud_cover"),

@@ -310,7 +310,7 @@ CONDITIONS = (
     ),
     _temperature(
         "reflected_temperature", "Reflected apparent temperature in the camera's band", u=2.0,
-        default="the surroundings, u 2 K more indoors; the air, u 10 K outdoors",
+        default="the surroundings, u 2 K more, indoors or in pieces; the air, u 10 K outdoors",
         lower=100.0, upper=800.0,
     ),
     Key(
@@ -342,6 +342,7 @@ CONDITIONS = (
     _temperature(
         "sky_band_temperature", "What the camera's band sees of the sky", u=8.0, lower=100.0,
         upper=330.0, example="-40.0",
+        default="of a piece of sky 0 to 60 K below the air, all equally likely",
     ),
     _temperature(
         "sky_total_temperature", "What the heat balance exchanges with in the sky", u=5.0,
@@ -443,7 +444,9 @@ PIECE = (
         example='"wall"',
     ),
     _temperature(
-        "temperature", "Of its surface; of the sky what the heat balance exchanges with", u=2.0,
+        "temperature",
+        "Of its surface, of bright metal what it radiates as; of the sky what the heat balance"
+        " exchanges with", u=2.0,
         lower=150.0, upper=1500.0, default="of the sky from cloud_cover where that is declared",
         example="18.0",
     ),

@@ -21,6 +21,9 @@ _AS_ONE = ("surroundings_temperature", "sky_total_temperature")
 """Declare the surroundings another way than in pieces."""
 _LEAST_SKY_U = 3.0
 """Of a sky temperature nobody measured: an assumption, no source. [K]"""
+SKY_BAND_BELOW_AIR = 60.0
+"""How far below the air's the sky's temperature in the band may be, under clear dry air; low cloud
+is near the air's. Anything between is taken as equally likely: an assumption, no source. [K]"""
 
 
 @dataclass(frozen=True)
@@ -32,6 +35,7 @@ class Surroundings:
     reflected: Quantity | None
     sky_total: Quantity | None
     sky_view: Quantity | None
+    sky_band: Quantity | None
 
 
 def read_pieces(table: Table, faults: FaultList) -> Table:
@@ -144,6 +148,7 @@ def build_surroundings(
         reflected=_reflected(table, air, temperature, pieces, tables),
         sky_total=sky,
         sky_view=_sky_view(table, pieces, sky),
+        sky_band=_sky_band(table, air, pieces),
     )
 
 
@@ -265,12 +270,9 @@ def _reflected(
 ) -> Quantity | None:
     if _declares(table, "reflected_temperature"):
         return table.quantity("reflected_temperature")
-    if _declares(table, "sky_band_temperature"):
-        return None
-    under_sky = any(piece.what == "sky" for piece in pieces)
-    known = surroundings is not None and not surroundings.is_default
-    if table.flag("indoors") and known and not under_sky:
-        assert surroundings is not None
+    if pieces or _declares(table, "sky_band_temperature"):
+        return None  # follows from them, draw by draw
+    if table.flag("indoors") and surroundings is not None and not surroundings.is_default:
         return replace(
             surroundings,
             u=math.hypot(surroundings.u, 2.0),
@@ -278,6 +280,23 @@ def _reflected(
             confidence="low",
         )
     return _as_air(table, air, tables)
+
+
+def _sky_band(
+    table: Table, air: Quantity | None, pieces: tuple[SurroundingsPiece, ...]
+) -> Quantity | None:
+    """Return what the band sees of the sky; of a piece of sky a wide guess where undeclared."""
+    declared = table.quantity("sky_band_temperature")
+    if declared is not None or air is None or all(piece.what != "sky" for piece in pieces):
+        return declared
+    if _declares(table, "reflected_temperature"):
+        return None
+    return Quantity(
+        air.value - SKY_BAND_BELOW_AIR / 2, SKY_BAND_BELOW_AIR / math.sqrt(12),
+        lower=air.value - SKY_BAND_BELOW_AIR, upper=air.value, shape="rectangular",
+        source=f"below the air's by 0 to {SKY_BAND_BELOW_AIR:g} K: assumption, no source",
+        confidence="low",
+    )  # fmt: skip
 
 
 def _sky_view(
