@@ -77,7 +77,7 @@ def test_flux_passes_the_dew_point_without_a_step():
 
 
 @pytest.mark.parametrize("celsius", [2.0, 5.0, 10.0])
-def test_latent_heat_is_that_of_the_humidity_ratios_difference(celsius):
+def test_latent_heat_is_that_of_the_humidity_ratios_difference(celsius, evidence):
     """Chilton-Colburn by hand, humidity ratios by psychrolib (ASHRAE Fundamentals)."""
     surface = np.array(273.15 + celsius)
     psychrolib.SetUnitSystem(psychrolib.SI)
@@ -89,7 +89,7 @@ def test_latent_heat_is_that_of_the_humidity_ratios_difference(celsius):
     by_hand *= 1e3 * (2501 - 2.36 * celsius)
     wet = wet_of(STILL)
     found = surface_heat_flux(surface, wet) - outer_flux(surface, wet, HUMID)
-    assert found == pytest.approx(by_hand, rel=0.03)
+    evidence("humidity_ratio_form", "in the balance", found, by_hand, unit="W/m2", rel=0.03)
 
 
 def test_vapour_about_doubles_what_the_air_brings_a_chilled_surface():

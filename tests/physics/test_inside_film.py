@@ -93,14 +93,16 @@ def test_friction_against_fluids(reynolds, evidence):
 
 @pytest.mark.parametrize("reynolds", [1e4, 1e5, 1e6])
 @pytest.mark.parametrize("prandtl", [0.7, 1.0, 2.0])
-def test_two_correlations_agree_for_gas_and_hot_water(reynolds, prandtl):
+def test_two_correlations_agree_for_gas_and_hot_water(reynolds, prandtl, evidence):
     # Dittus-Boelter is stated to err by up to 25 % (Incropera et al., section 8.5)
-    simple = float(nusselt_dittus_boelter(reynolds, prandtl))
-    assert simple == pytest.approx(float(nusselt_gnielinski(reynolds, prandtl)), rel=0.25)
+    friction = fluids.friction_factor(reynolds, eD=0.0)
+    finer = ht.turbulent_Gnielinski(reynolds, prandtl, friction)
+    simple = nusselt_dittus_boelter(reynolds, prandtl)
+    evidence.spread("dittus_gnielinski", "Nusselt number", simple, finer, low=0.75, high=1.25)
 
 
-def test_laminar_constant_against_ht():
-    assert ht.laminar_T_const() == NUSSELT_LAMINAR
+def test_laminar_constant_against_ht(evidence):
+    evidence("ht_inside", "laminar", NUSSELT_LAMINAR, ht.laminar_T_const(), rel=1e-9)
     assert np.all(nusselt_inside(np.array([0.0, 100.0, 2300.0]), 5.0) == 3.66)
 
 
@@ -114,7 +116,7 @@ def test_no_step_between_laminar_and_turbulent():
 
 
 @pytest.mark.parametrize(("fluid", "celsius", "bar"), [("Nitrogen", 250, 20), ("Water", 80, 5)])
-def test_coefficient_with_properties_of_a_library(fluid, celsius, bar):
+def test_coefficient_with_properties_of_a_library(fluid, celsius, bar, evidence):
     density, heat, k, mu = (
         PropsSI(key, "T", 273.15 + celsius, "P", bar * 1e5, fluid) for key in "DCLV"
     )
@@ -125,7 +127,7 @@ def test_coefficient_with_properties_of_a_library(fluid, celsius, bar):
     # Gnielinski's equation in ht with Colebrook's friction factor in fluids
     friction = fluids.friction_factor(reynolds, eD=0.0)
     other = ht.turbulent_Gnielinski(reynolds, prandtl, friction) * k / 0.1
-    assert float(found) == pytest.approx(other, rel=0.02)
+    evidence("film_by_libraries", fluid.lower(), found, other, unit="W/(m2 K)", rel=0.02)
 
 
 def test_the_film_matters_for_slow_gas_and_not_for_water():

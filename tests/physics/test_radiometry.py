@@ -364,7 +364,7 @@ def test_fourth_power_refuses_and_gives_nan():
     assert np.isnan(surface_temperature_fourth_power(250.0, emissivity=0.1, reflected=300.0))
 
 
-def test_window_terms_add_up_by_hand():
+def test_window_terms_add_up_by_hand(evidence):
     # closed form: every term of the equation written out, true radiances chosen freely
     true, reflected, air, window, mirrored = 120.0, 53.0, 50.0, 55.0, 60.0
     eps, tau, tw, rw = 0.7, 0.98, 0.55, 0.12
@@ -381,7 +381,7 @@ def test_window_terms_add_up_by_hand():
         window_radiance=window,
         window_reflected_radiance=mirrored,
     )
-    assert float(found) == pytest.approx(true, rel=1e-13)
+    evidence("window_terms", "radiance", found, true, unit="W/(m2 sr)", rel=1e-13)
 
 
 def test_a_window_at_the_temperature_of_everything_changes_nothing():

@@ -32,7 +32,7 @@ def test_an_absolute_steam_pressure_gives_the_printed_temperature(survey_folder,
     assert not line.inside_temperature.is_default
 
 
-def test_a_gauge_pressure_counts_from_the_air_of_the_site(survey_folder):
+def test_a_gauge_pressure_counts_from_the_air_of_the_site(survey_folder, evidence):
     # CoolProp, IAPWS-95: differs from IF97 by 0.01 K at most
     from CoolProp.CoolProp import PropsSI
 
@@ -41,10 +41,11 @@ def test_a_gauge_pressure_counts_from_the_air_of_the_site(survey_folder):
     assert said == []
     assert line.steam_pressure.value == pytest.approx(7.9e5)
     expected = PropsSI("T", "P", 7.9e5, "Q", 1, "Water")
-    assert line.inside_temperature.value == pytest.approx(expected, abs=0.02)
+    found = line.inside_temperature.value
+    evidence("coolprop_saturation", "by a gauge, 900 hPa", found, expected, unit="K", abs=0.02)
 
 
-def test_the_uncertainty_of_pressure_becomes_one_of_temperature(survey_folder):
+def test_the_uncertainty_of_pressure_becomes_one_of_temperature(survey_folder, evidence):
     from CoolProp.CoolProp import PropsSI
 
     survey_folder.edit("altitude_m = 95", "pressure_hPa = 1000\nu_pressure_hPa = 20")
@@ -55,7 +56,8 @@ def test_the_uncertainty_of_pressure_becomes_one_of_temperature(survey_folder):
     u = math.hypot(0.15e5, 0.02e5)
     assert line.steam_pressure.u == pytest.approx(u)
     high, low = (PropsSI("T", "P", 5e5 + sign * u, "Q", 1, "Water") for sign in (1, -1))
-    assert line.inside_temperature.u == pytest.approx((high - low) / 2, rel=1e-2)
+    found = line.inside_temperature.u
+    evidence("coolprop_saturation", "u of it", found, (high - low) / 2, unit="K", rel=1e-2)
 
 
 def test_psi_is_read_too(survey_folder):

@@ -42,22 +42,33 @@ def estimate_noise(temperature: FloatArray) -> FrameNoise:
     ``d = t[i] - (t[i-1] + t[i+1]) / 2`` of independent noise has the variance 1.5 sigma^2 and
     its neighbours the correlation -2/3. Smoothed or resampled frames show a weaker negative
     correlation; noise smoothed by a Gaussian of width s has the correlation tabulated below,
-    from which s, the true sigma and the correlated area ``1 + 4 pi s^2`` follow.
+    from which s, the true sigma and the correlated area ``1 + 4 pi s^2`` follow. A frame may be
+    resampled further down its columns than along its rows: the product of the lengths over which
+    noise hangs together each way counts where it is larger. Sigma is that along the rows, where
+    a pattern of columns shows and the edges of level pipes do not.
     """
+    sigma, width = _one_way(temperature)
+    _, down = _one_way(temperature.T)
+    area = max(1 + 4 * np.pi * width**2, _correlated_length(width) * _correlated_length(down))
+    return FrameNoise(sigma, float(area))
+
+
+def _one_way(temperature: FloatArray) -> tuple[float, float]:
+    """Return sigma [K], and the width of its smoothing [px] along the second axis."""
     differences = temperature[:, 1:-1] - 0.5 * (temperature[:, :-2] + temperature[:, 2:])
     sigma_difference = robust_sigma(differences)
     if sigma_difference == 0:
-        return FrameNoise(0.0, 1.0)
+        return 0.0, 0.0
     # the robust core only: edges of pipes are differences too
     core = np.where(np.abs(differences) < 3 * sigma_difference, differences, np.nan)
     here, beside = core[:, :-1].ravel(), core[:, 1:].ravel()
     usable = np.isfinite(here) & np.isfinite(beside)
     if usable.sum() < 50:
-        return FrameNoise(sigma_difference / np.sqrt(1.5), 1.0)
+        return float(sigma_difference / np.sqrt(1.5)), 0.0
     correlation = float(np.mean(here[usable] * beside[usable]) / np.nanvar(core))
     width = float(np.interp(correlation, _CORRELATIONS, _WIDTHS)) if correlation > -0.65 else 0.0
     sigma = sigma_difference / np.sqrt(_difference_variance(width))
-    return FrameNoise(float(sigma), float(1 + 4 * np.pi * width**2))
+    return float(sigma), width
 
 
 def _autocorrelation(width: float, lag: int) -> float:
@@ -67,6 +78,11 @@ def _autocorrelation(width: float, lag: int) -> float:
     full = np.convolve(kernel, kernel[::-1])
     middle = full.size // 2
     return float(full[middle + lag] / full[middle])
+
+
+def _correlated_length(width: float) -> float:
+    """Sum of the autocorrelation over all lags, 2 sqrt(pi) times a width not small. [px]"""
+    return 1 + 2 * sum(_autocorrelation(width, lag) for lag in range(1, 13))
 
 
 def _difference_variance(width: float) -> float:
