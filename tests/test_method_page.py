@@ -26,7 +26,7 @@ from cladwatt.inverse import (
 from cladwatt.materials.load import shipped_tables
 from cladwatt.materials.tables import fitting_equivalent_length
 from cladwatt.measure import strip
-from cladwatt.physics import convection_spread
+from cladwatt.physics import convection_spread, yawed_wind
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.physics.field_methods import MINIMUM_SEPARATION
 from cladwatt.survey.surroundings_builder import SKY_BAND_BELOW_AIR
@@ -35,6 +35,7 @@ FOLDER = Path(cladwatt.__file__).parent / "guide"
 PAGE = " ".join((FOLDER / "method.md").read_text(encoding="utf-8").split())
 DEFAULTS = shipped_tables().defaults
 FOIL, TAPE = DEFAULTS["foil_emissivity"], DEFAULTS["tape_emissivity"]
+DRAUGHT, STILL = DEFAULTS["air_speed_indoors"], DEFAULTS["air_speed_indoors_sheltered"]
 CONTACT_U = DEFAULTS["u_contact_reading"]
 
 
@@ -70,6 +71,9 @@ VALUES = [
     f"u of a drawn edge | {strip.OUTLINE_ERROR_PX} px |",
     f"where none is declared | {strip.UNKNOWN_VIEW_DEG:.0f}°,",
     f"{percent(observe.COMPONENT_MARGIN)} of the width, at least 3 px |",
+    f"draught of {DRAUGHT.value} m/s, u {DRAUGHT.u}; of {STILL.value} m/s, u {STILL.u},",
+    f"within {yawed_wind.LEAST_PUBLISHED_ANGLE:g}° of the axis nothing is published for a wind of "
+    f"Re above {yawed_wind.SLOW_REYNOLDS:g}",
     f"taken {frame_draws.SPREAD_AT_RISE:g} K above the air on {frame_draws.SPREAD_AT_DIAMETER:g} m",
     f"no less than {percent(convection_spread.STILL_AIR_FLOOR)} in still air and "
     f"{percent(convection_spread.CROSS_FLOW_FLOOR)} across flow",

@@ -4,6 +4,7 @@ Water on cold cladding, water on warm cladding, yesterday's sun, a neighbour mir
 tracer's stripe, a camera with a spectral response of its own.
 """
 
+import math
 from dataclasses import replace
 
 import numpy as np
@@ -14,6 +15,11 @@ from scipy.interpolate import PchipInterpolator
 from cladwatt.physics.humidity import dew_point
 from cladwatt.quantities import Quantity
 from cladwatt.survey.model import Camera, ConductivityCurve, Layer, Tracing
+from cladwatt.survey.region import Region
+from cladwatt.synthetic.camera import gaussian_blur
+from cladwatt.synthetic.geometry import PipeAxis, View
+from cladwatt.synthetic.render import AirPath, Skin, render
+from cladwatt.synthetic.scene import Neighbour, Scene
 
 WARM, HUMIDITY = 298.15, 0.7
 DEW = float(dew_point(WARM, HUMIDITY))
@@ -261,6 +267,51 @@ def test_damage_at_some_stations_is_no_neighbour(bench, metal, keys):
     surface = np.full((96, 280), float(bench.sound.surface_temperature))
     surface[52:58, 100:150] += 40
     assert not mirrors(bench, bench.lens(surface), keys)
+
+
+def simulated(bench, metal, *, neighbours=(), slant=0.0):
+    """A frame by the sample's camera: mirrored directions, perspective, blur and noise."""
+    cladding = metal(0.3)
+    bench = bench.but(line=replace(bench.line, cladding=cladding), count=100)
+    view = View(96, 280, 30.0)
+    distance = view.focal * bench.line.lagged_diameter / 48.0
+    ends = np.array([[-2.0, 0.0, distance - 2 * slant], [2.0, 0.0, distance + 2 * slant]])
+    shape = (40, 12)
+    skin = Skin(
+        PipeAxis(ends, np.array([0.0, -1.0, 0.0])),
+        np.full(shape, bench.line.lagged_diameter / 2),
+        np.full(shape, float(bench.sound.surface_temperature)),
+        np.full(shape, 0.3), np.zeros(shape, dtype=bool), np.full(shape, 300.0), True, 0.5,
+    )  # fmt: skip
+    # ceiling, walls and floor differ a little, as in any hall
+    scene = Scene(298.15, 296.15, 294.15, neighbours)
+    band = bench.band
+    background = np.full((96, 280), float(band.radiance(296.15)))
+    radiance = render(view, [skin], background, scene, AirPath(0.98, 293.15), band, fine=2)
+    lens = band.temperature(gaussian_blur(radiance, 0.8))
+    lens += np.random.default_rng(7).normal(0.0, 0.05, lens.shape)
+    edges = [skin.axis.edges(view, station, bench.line.lagged_diameter / 2)
+             for station in (1.5, 2.0, 2.5)]  # fmt: skip
+    middles = tuple(tuple(np.mean(pair, axis=0)) for pair in edges)
+    widths = tuple(float(np.linalg.norm(pair[1] - pair[0])) for pair in edges)
+    return bench.but(region=pipe_drawn(middles, widths)), lens
+
+
+def pipe_drawn(middles, widths):
+    return Region("r1", "f1", "pipe", "HS-1", centreline=middles, widths=widths)
+
+
+@pytest.mark.parametrize("slant", [0.0, 0.1])
+@pytest.mark.parametrize("temperature", [393.15, 233.15], ids=["hot", "cold"])
+def test_a_neighbour_in_a_simulated_frame_is_told_and_a_plain_hall_is_not(
+    bench, metal, keys, temperature, slant
+):
+    # 60 degrees above the line of sight: mirrored 30 degrees up the face, all along
+    above = Neighbour((0.0, -math.sin(math.radians(60)), -0.5), 0.3, temperature)
+    run, lens = simulated(bench, metal, neighbours=(above,), slant=slant)
+    assert mirrors(run, lens, keys)
+    run, lens = simulated(bench, metal, slant=slant)
+    assert not mirrors(run, lens, keys)
 
 
 # ---- a tracer's stripe --------------------------------------------------------------------

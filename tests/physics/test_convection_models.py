@@ -309,8 +309,42 @@ class TestValidity:
         surface = np.array([310.0, np.nan])
         exchange = hall(0.3, 25.0, convection_model="morgan_hilpert")
         np.testing.assert_array_equal(surface_outside_validity(surface, exchange), [True, True])
-        gentle = hall(0.3, 25.0, convection_model="morgan_hilpert", wind_angle_deg=10.0)
+        gentle = hall(0.3, 25.0, convection_model="morgan_hilpert", wind_angle_deg=20.0)
         np.testing.assert_array_equal(surface_outside_validity(surface, gentle), [False, True])
+
+    @pytest.mark.parametrize(
+        ("wind", "angle", "outside"),
+        [(3.0, 90.0, False), (3.0, 15.0, False), (3.0, 10.0, True), (0.15, 10.0, False)],
+    )
+    def test_no_factor_is_published_for_a_fast_wind_along_the_pipe(self, wind, angle, outside):
+        # CIGRE 601: every angle up to Re = 4000 (0.2 m/s on 0.3 m); ESDU 73031: from 15 degrees on
+        found = surface_outside_validity(310.0, hall(0.3, wind, wind_angle_deg=angle))
+        assert bool(found) == outside
+
+    def test_a_wind_along_that_carries_nothing_is_not_flagged(self):
+        # of 0.25 m/s along the pipe 0.03 m/s count as across: free flow carries the heat
+        still = hall(0.3, 0.25, wind_angle_deg=0.0)
+        assert not surface_outside_validity(390.0, still)
+
+    def test_humid_air_enters_the_numbers(self):
+        # saturated air of 95 °C is mostly vapour, of lower kinematic viscosity: Re grows sooner
+        fields = {"air_temperature": 368.15, "diameter": 0.3, "model": "morgan_zukauskas"}
+        wind = np.linspace(60.0, 95.0, 351)
+        limits = [
+            wind[outside_validity(370.0, wind_speed=wind, relative_humidity=damp, **fields)].min()
+            for damp in (0.0, 1.0)
+        ]
+        assert 0.85 < limits[1] / limits[0] < 0.95
+
+    def test_a_riser_is_judged_by_its_own_free_flow(self):
+        # on a thread of 2 mm Re Pr is below 0.2 at 1 mm/s, which carries less heat than free flow
+        # round it and more than free flow along it
+        thread = {"air_temperature": AIR, "diameter": 2e-3, "wind_speed": 1e-3}
+        level, riser = (
+            bool(outside_validity(AIR + 1.0, inclination_deg=slope, **thread))
+            for slope in (0.0, 90.0)
+        )
+        assert (level, riser) == (False, True)
 
 
 class TestSpread:

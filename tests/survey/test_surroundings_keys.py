@@ -231,6 +231,28 @@ def test_shelter_widens_a_wind_without_its_own_uncertainty(survey_folder):
     assert "sheltered" in sheltered.source
 
 
+def test_shelter_indoors_stills_a_draught_that_nobody_declared(survey_folder):
+    survey, said = read(survey_folder, frame="sheltered = true")
+    sheltered, open_ = (frame.conditions.wind_speed for frame in survey.frames)
+    assert said == []
+    assert (sheltered.value, sheltered.u) == (0.05, 0.05)
+    assert sheltered.is_default
+    assert sheltered.value + 2 * sheltered.u <= open_.value + 2 * open_.u
+    assert (open_.value, open_.u) == (0.15, 0.1)
+
+
+def test_shelter_indoors_widens_a_declared_draught_too(survey_folder):
+    survey, _ = read(survey_folder, "wind_speed_m_s = 0.8", frame="sheltered = true")
+    sheltered, open_ = (frame.conditions.wind_speed for frame in survey.frames)
+    assert (sheltered.value, open_.value) == (0.8, 0.8)
+    assert (sheltered.u, open_.u) == (pytest.approx(0.4), pytest.approx(0.2))
+
+
+@pytest.mark.parametrize("written", ["", "\nsheltered = true"])
+def test_an_unknown_draught_stays_unknown(survey_folder, written):
+    assert conditions(survey_folder, f'wind_speed = "unknown"{written}').wind_speed is None
+
+
 def test_a_declared_uncertainty_of_the_wind_stays(survey_folder):
     found = conditions(
         survey_folder, "sheltered = true\nu_wind_speed_m_s = 0.3", outdoors=True

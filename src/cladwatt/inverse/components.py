@@ -16,6 +16,7 @@ from cladwatt.inverse.bare import BARE_EMISSIVITY
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.frame_draws import FrameDraws
+from cladwatt.inverse.law_spread import with_own_spread
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.outer_balance import may_condense, outer_flux
 from cladwatt.inverse.result import ComponentResult, Interval, interval_of
@@ -100,6 +101,7 @@ def estimate_component(
         )
         return unknown_component(region, key, surface)
     clad = line if lagged else _bare(line, emissivity)
+    frame = with_own_spread(frame, clad, diameter, temperature)
     exchange = clad.exchange(frame, diameter)
     humidity = frame.relative_humidity if may_condense(frame, line) else None
     per_metre = math.pi * diameter * outer_flux(temperature, exchange, humidity)

@@ -38,8 +38,8 @@ __all__ = ["FrameDraws", "band_of", "draw_frame", "mirrored"]
 SHARED_SHARE = 2 / 3
 """Share of variance of calibration and convection law common to the survey (assumption)."""
 SPREAD_AT_RISE, SPREAD_AT_DIAMETER = 10.0, 0.2
-"""Rise over the air [K] and diameter [m] for which the spread of published correlations is taken
-as uncertainty of the convection law; it hangs little on either."""
+"""Rise over the air [K] and diameter [m] for which the spread of published correlations stands
+until a region puts its own in their place, see `law_spread`."""
 MIRRORED_INDOORS, MIRRORED_INDOORS_METAL = 0.3, 1.0
 MIRRORED_OUTDOORS, MIRRORED_OUTDOORS_METAL = 1.5, 5.0
 """Standard uncertainty of what one region mirrors about the mean over the half space: metal a
@@ -73,6 +73,8 @@ class FrameDraws:
     """Between wind and pipe axis; 90 is across."""
     convection_model: ConvectionModel
     convection_factor: FloatArray
+    law_sigma: float
+    """Standard deviation of its logarithm, see `law_spread` for a region's own."""
     irradiance: FloatArray
     relative_humidity: FloatArray | None
     """None where unknown."""
@@ -164,6 +166,7 @@ def draw_frame(
         else book.quantity(owner, "wind_speed", conditions.wind_speed)
     )
     pieces = draw_pieces(book, owner, conditions, air)
+    law_sigma = _law_sigma(conditions)
     surroundings = surroundings_draws(book, owner, conditions, air, pieces)
     still = np.zeros(book.count)
     window = conditions.window
@@ -192,7 +195,8 @@ def draw_frame(
         ),
         wind_uphill=float(conditions.wind_uphill),
         convection_model=convection_model,
-        convection_factor=_convection_factor(book, owner, conditions),
+        convection_factor=_convection_factor(book, owner, law_sigma),
+        law_sigma=law_sigma,
         irradiance=(
             still
             if conditions.solar_irradiance is None
@@ -264,11 +268,8 @@ def _transmission(
     return np.clip(transmission + u * book.normal(owner, "transmission"), 0.05, 1.0)
 
 
-def _convection_factor(book: DrawBook, owner: str, conditions: Conditions) -> FloatArray:
-    """Draw the factor by which the convection law is off here, log-normal about 1.
-
-    Its size is the spread of published correlations in the declared air and wind.
-    """
+def _law_sigma(conditions: Conditions) -> float:
+    """Return the spread of published correlations in the declared air and wind."""
     assert conditions.air_temperature is not None
     air = conditions.air_temperature.value
     exchange = SurfaceExchange(
@@ -278,7 +279,11 @@ def _convection_factor(book: DrawBook, owner: str, conditions: Conditions) -> Fl
         diameter=SPREAD_AT_DIAMETER,
         total_emissivity=0.9,
     )
-    sigma = float(correlation_spread(air + SPREAD_AT_RISE, exchange))
+    return float(correlation_spread(air + SPREAD_AT_RISE, exchange))
+
+
+def _convection_factor(book: DrawBook, owner: str, sigma: float) -> FloatArray:
+    """Draw the factor by which the convection law is off here, log-normal about 1."""
     normal = book.mixed("convection", ("model", SHARED_SHARE), (owner, 1 - SHARED_SHARE))
     return np.asarray(np.exp(sigma * normal))
 

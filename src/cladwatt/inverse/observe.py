@@ -8,11 +8,12 @@ import numpy as np
 from cladwatt.errors import Fault, RegionError
 from cladwatt.inverse.bare import bare_draws, with_bare
 from cladwatt.inverse.draws import DrawBook
-from cladwatt.inverse.face import face_draws
+from cladwatt.inverse.face import face_draws, surface_temperature_draws
 from cladwatt.inverse.feasibility import Bounds, flux_bounds
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.hidden_side import HiddenSide, evenness_of, whole_flux
 from cladwatt.inverse.joint import LevelEvidence
+from cladwatt.inverse.law_spread import with_own_spread
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.null import NullModel, null_of
 from cladwatt.inverse.seen import FrameImage, Seen
@@ -138,7 +139,6 @@ def observe_region(
         If nothing usable is left of the region.
     """
     strip = _strip(region, line, image, known_lengths, camera)
-    line_draws = _further_along(line, line_draws, frame, strip)
     lens = sample_strip(np.where(left_out, np.nan, image.lens_temperature), strip)
     component_at = _component_stations(strip, components)
     lens[:, _bulged(component_at, strip)] = np.nan
@@ -150,6 +150,10 @@ def observe_region(
     diameter = line_draws.lagged_diameter
     if diameter is None:
         diameter = UNKNOWN_DIAMETER * np.exp(0.5 * book.normal(f"region:{region.id}", "diameter"))
+    middle = np.array([np.median(face.temperature[:, usable])])
+    about = surface_temperature_draws(middle, np.zeros(1), frame, line_draws)[:, 0, 0]
+    frame = with_own_spread(frame, line_draws, diameter, about)
+    line_draws = _further_along(line, line_draws, frame, strip)
     seen = Seen(
         region=region,
         line=line,

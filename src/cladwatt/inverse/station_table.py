@@ -3,12 +3,13 @@
 import numpy as np
 
 from cladwatt.flags import StationFlag
+from cladwatt.inverse.law_spread import at_medians
 from cladwatt.inverse.result import StationTable
 from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.sound import SoundDraws, outside_film
 from cladwatt.measure.strip import sample_strip
 from cladwatt.physics.constants import ZERO_CELSIUS
-from cladwatt.physics.convection import outside_validity
+from cladwatt.physics.surface_balance import surface_outside_validity
 from cladwatt.types import BoolArray, FloatArray, IntArray
 
 __all__ = ["station_table"]
@@ -112,18 +113,7 @@ def _outside_validity(seen: Seen) -> BoolArray:
     assert frame.wind_speed is not None
     temperature = seen.median_temperature
     known = np.isfinite(temperature)
-    outside = outside_validity(
-        np.where(known, temperature, np.median(frame.air_temperature)),
-        air_temperature=float(np.median(frame.air_temperature)),
-        diameter=float(np.median(seen.diameter)),
-        wind_speed=(
-            0.0
-            if frame.convection_model == "iso12241_indoor"
-            else float(np.median(frame.wind_speed))
-        ),
-        pressure=float(np.median(frame.pressure)),
-        inclination_deg=seen.line_draws.inclination_deg,
-        wind_angle_deg=float(np.median(frame.wind_angle_deg)),
-        model=frame.convection_model,
-    )
+    exchange = at_medians(seen.line_draws.exchange(frame, seen.diameter))
+    air = float(np.median(frame.air_temperature))
+    outside = surface_outside_validity(np.where(known, temperature, air), exchange)
     return np.asarray(known & outside)

@@ -39,7 +39,7 @@ from cladwatt.physics.natural_convection import (
     nusselt_morgan,
     rayleigh_number,
 )
-from cladwatt.physics.yawed_wind import wind_across
+from cladwatt.physics.yawed_wind import LEAST_PUBLISHED_ANGLE, SLOW_REYNOLDS, wind_across
 from cladwatt.types import BoolArray, FloatArray, FloatLike
 
 __all__ = [
@@ -287,8 +287,9 @@ def outside_validity(
     array of bool
         True where the film temperature is outside the air properties' range, Ra outside that of the
         law (on the height for inclined runs), Re above that of the law, or forced flow carries the
-        heat below it or at Re Pr below 0.2. A law for still air is outside in any wind. NaN counts
-        as outside.
+        heat below it, at Re Pr below 0.2, or where no factor is published for the wind's angle
+        (Re of the whole wind above 4000 within 15 degrees of the axis). A law for still air is
+        outside in any wind. NaN counts as outside.
 
     Notes
     -----
@@ -312,18 +313,28 @@ def outside_validity(
     rayleigh = stream.rayleigh(np.where(is_inclined, vertical_length, diameter))
     # below the range of free flow there is no difference to speak of, and no heat
     inside &= rayleigh <= np.where(is_inclined, law.vertical_range[1], law.rayleigh_range[1])
-    return np.asarray(~(inside & _forced_inside(stream, law)))
+    forced_matters = np.asarray(False)
+    if law.forced is not None:
+        natural = law.natural(stream)
+        if np.any(is_inclined):
+            along = law.vertical(stream, vertical_length)
+            natural = np.where(is_inclined, np.minimum(natural, along), natural)
+        forced_matters = law.forced(stream) > natural
+    inside &= _forced_inside(stream, law, forced_matters)
+    whole = reynolds_number(
+        wind_speed, length=diameter, kinematic_viscosity=stream.film.kinematic_viscosity
+    )
+    is_along = np.asarray(wind_angle_deg) < LEAST_PUBLISHED_ANGLE
+    return np.asarray(~(inside & ~(forced_matters & is_along & (whole > SLOW_REYNOLDS))))
 
 
-def _forced_inside(stream: AirStream, law: ConvectionLaw) -> BoolArray:
+def _forced_inside(stream: AirStream, law: ConvectionLaw, matters: BoolArray) -> BoolArray:
+    """Return where cross flow is within its range, below which it counts only where it matters."""
     air = stream.free if law.free_stream else stream.film
     reynolds = stream.reynolds(air)
     lowest, highest = law.reynolds_range
-    inside = reynolds <= highest
-    if law.forced is not None:
-        is_forced = law.forced(stream) > law.natural(stream)
-        inside &= ~is_forced | ((reynolds * air.prandtl >= _PECLET_LIMIT) & (reynolds >= lowest))
-    return np.asarray(inside)
+    is_enough = (reynolds * air.prandtl >= _PECLET_LIMIT) & (reynolds >= lowest)
+    return np.asarray((reynolds <= highest) & (~matters | is_enough))
 
 
 def check_inclination(inclination_deg: FloatLike) -> None:

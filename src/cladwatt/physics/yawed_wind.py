@@ -8,12 +8,19 @@ from cladwatt.errors import InputError
 from cladwatt.types import FloatArray, FloatLike
 
 __all__ = [
+    "LEAST_PUBLISHED_ANGLE",
+    "SLOW_REYNOLDS",
     "check_wind_angle",
     "wind_across",
     "yaw_factor_ieee738",
     "yaw_factor_morgan",
     "yaw_factor_smooth",
 ]
+
+#: Reynolds number of the whole wind up to which factors are published for every angle. [-]
+SLOW_REYNOLDS: Final = 4000.0
+#: Angle between wind and axis below which none is published for a faster wind. [deg]
+LEAST_PUBLISHED_ANGLE: Final = 15.0
 
 # Square of the share of a wind along the axis that still counts as across: 0.13.
 _ALONG: Final = 0.0169

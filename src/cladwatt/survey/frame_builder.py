@@ -191,7 +191,6 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
     default wind and the surroundings carry 10 K; a sky temperature, declared or by the clouds,
     or surroundings in pieces take the place of the default.
     """
-    indoors = table.flag("indoors")
     _ask_outdoors(table, faults)
     air = table.quantity("air_temperature")
     humidity = _default(table, "relative_humidity", "relative_humidity", tables)
@@ -204,14 +203,10 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
         relative_humidity=humidity,
         distance=table.quantity("distance"),
         atmosphere_transmission=table.quantity("atmosphere_transmission"),
-        wind_speed=(
-            _default(table, "wind_speed", "air_speed_indoors", tables)
-            if indoors
-            else _wind(table, tables)
-        ),
+        wind_speed=_wind(table, tables),
         wind_angle_deg=table.quantity("wind_angle"),
         wind_uphill=_UPHILL.get(table.text("wind_along"), 0),
-        indoors=indoors,
+        indoors=table.flag("indoors"),
         sky_band_temperature=around.sky_band,
         sky_total_temperature=around.sky_total,
         sky_view_factor=around.sky_view,
@@ -228,7 +223,15 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
 
 
 def _wind(table: Table, tables: MaterialTables) -> Quantity | None:
-    """Return the declared wind; a default u is wider where the pipe is sheltered."""
+    """Return the wind at the pipe: declared, or a draught where that may be taken.
+
+    Shelter makes a declared wind without its own u less sure, and an undeclared draught indoors
+    one that all but stands. Outdoors it gives no wind by itself.
+    """
+    if table.flag("indoors") and not table.has("wind_speed"):
+        still = table.flag("sheltered")
+        draught = "air_speed_indoors_sheltered" if still else "air_speed_indoors"
+        return default_quantity(draught, tables)
     wind = table.quantity("wind_speed")
     if wind is None or not table.flag("sheltered") or table.written["wind_speed"].u is not None:
         return wind

@@ -328,8 +328,8 @@ CONDITIONS = (
     ),
     Key(
         "wind_speed", "quantity", "Wind at the pipe, not at a mast", "speed", 0.0, 40.0,
-        cut=(0.0, 60.0), u=0.1, u_relative=0.25, default="0.15 m/s, u 0.1 indoors; none outdoors",
-        example="0.2",
+        cut=(0.0, 60.0), u=0.1, u_relative=0.25, example="0.2",
+        default="0.15 m/s, u 0.1 indoors, sheltered 0.05 m/s, u 0.05; none outdoors",
     ),
     Key(
         "wind_angle", "quantity", "Between wind and pipe axis; 90 is across", "angle", 0.0, 90.0,
@@ -367,7 +367,8 @@ CONDITIONS = (
     _flag("surface_wet", "Whether the surface was wet when it was recorded"),
     _flag(
         "sheltered", "Whether walls or other pipes shelter the pipe from the wind: a wind speed"
-        " without its own u is taken as twice as uncertain",
+        " without its own u is taken as twice as uncertain, and where none is declared indoors the"
+        " air as all but still",
     ),
     _setting(
         "roll", "Direction of gravity in the frame: 0 is straight down, clockwise positive",
