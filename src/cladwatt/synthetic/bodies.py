@@ -17,7 +17,9 @@ from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["PlacedBody", "bodies_on", "body_numbers", "body_radius", "lay_bodies"]
 
-_SHOE_LENGTH = 0.12
+_CLAMPS = {"support": (0.12, np.pi, 0.6, 12.0), "hanger": (0.08, 0.0, 0.45, 9.0)}
+"""What carries the pipe through its lagging: length [m], where around, half of the angle it takes
+[rad], times the conductivity of the lagging."""
 
 
 @dataclass(frozen=True)
@@ -66,7 +68,8 @@ def bodies_on(
     placed = []
     for one in components:
         middle = drawn[0] + one.at * (drawn[1] - drawn[0])
-        length = _SHOE_LENGTH if one.kind == "support" else _MAKES[one.kind, one.lagged].length
+        clamp = _CLAMPS.get(one.kind)
+        length = _MAKES[one.kind, one.lagged].length if clamp is None else clamp[0]
         placed.append(PlacedBody(one, middle - length / 2, middle + length / 2))
     return tuple(placed)
 
@@ -79,7 +82,7 @@ def body_numbers(bodies: tuple[PlacedBody, ...]) -> list[int]:
 
 def body_radius(body: PlacedBody, pipe_radius: float, outer_radius: float) -> float | None:
     """Return the radius it shows the camera, None where it shows none of its own. [m]"""
-    if body.plant.kind == "support":
+    if body.plant.kind in _CLAMPS:
         return None
     make = _MAKES[body.plant.kind, body.plant.lagged]
     return make.width * (outer_radius if body.plant.lagged else pipe_radius)
@@ -105,8 +108,8 @@ def lay_bodies(
         The pipe with them.
     """
     for body in bodies:
-        if body.plant.kind == "support":
-            model = _with_shoe(body, model)
+        if body.plant.kind in _CLAMPS:
+            model = _with_clamp(body, model)
             continue
         make = _MAKES[body.plant.kind, body.plant.lagged]
         made = float(np.exp(_SPREAD * random.standard_normal()))
@@ -127,10 +130,13 @@ def lay_bodies(
     return model
 
 
-def _with_shoe(body: PlacedBody, model: ColumnModel) -> ColumnModel:
-    """Return the pipe with a shoe that conducts through the lagging below."""
-    shoe = Damage("wet", body.start, body.end, severity=12.0, angle=np.pi, half_angle=0.6)
+def _with_clamp(body: PlacedBody, model: ColumnModel) -> ColumnModel:
+    """Return the pipe with a shoe below or a hanger above that conducts through the lagging."""
+    _, angle, half_angle, severity = _CLAMPS[body.plant.kind]
+    clamp = Damage(
+        "wet", body.start, body.end, severity=severity, angle=angle, half_angle=half_angle
+    )
     growth = lay_in(
-        shoe, replace(model, inside_temperature=300.0, factor=np.ones_like(model.factor))
+        clamp, replace(model, inside_temperature=300.0, factor=np.ones_like(model.factor))
     )
     return replace(model, factor=model.factor * growth.factor)

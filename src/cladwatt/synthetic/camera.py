@@ -79,7 +79,7 @@ def record(
     detector : Detector
         What the camera does to it.
     recording : Recording
-        Settings it applies; no window.
+        Settings it applies.
     band : Band
         Its band.
     random : numpy.random.Generator
@@ -102,6 +102,11 @@ def record(
         detector.accuracy.percent / 100 * np.abs(black - ZERO_CELSIUS),
     )
     radiance = band.radiance(black + detector.calibration * limit)
+    if recording.window_transmission < 1 and recording.window_temperature is not None:
+        radiance = radiance - (1 - recording.window_transmission) * band.radiance(
+            recording.window_temperature
+        )
+    radiance = radiance / recording.window_transmission
     if recording.transmission < 1 and recording.atmosphere_temperature is not None:
         radiance = radiance - (1 - recording.transmission) * band.radiance(
             recording.atmosphere_temperature

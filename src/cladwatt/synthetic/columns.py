@@ -44,8 +44,8 @@ class ColumnModel:
 
     Parameters
     ----------
-    inside_temperature : float or (n_phi,) array
-        Of what flows in the pipe; higher beside a tracer. [K]
+    inside_temperature : float or array that broadcasts to (n_x, n_phi)
+        Of what flows in the pipe; higher beside a tracer, lower further down the line. [K]
     inside_coefficient : float
         From there to the outer face of the pipe wall, per area of that face. [W/(m2 K)]
     pipe_radius : float

@@ -155,7 +155,7 @@ def lay_in(damage: Damage, model: ColumnModel) -> ColumnModel:
     cells = np.ones(n_r)
     if damage.kind == "void":
         cells[: n_r - 2] = 0.0
-    elif model.inside_temperature > 373.15:
+    elif float(np.max(model.inside)) > 373.15:
         cells[: n_r // 2] = 0.0
     growth = 1 + (damage.severity - 1) * share[..., None] * cells
     return replace(model, factor=model.factor * growth)

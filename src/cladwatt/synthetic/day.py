@@ -12,9 +12,11 @@ _SUN = Declared(600.0, 90.0)
 """Irradiance where every outdoor frame is put in the sun. [W/m2]"""
 _WEATHER = {"air_temperature_C": 1.5, "wind_speed_m_s": 0.3}
 """How far the declared conditions of one draw differ from those of the plant file."""
+_SHELTERED = 0.5
+"""Relative, of the wind at a pipe that walls shelter, as the assessment takes it by default."""
 _SHIFTED = {
     "air_temperature_C", "surroundings_temperature_C", "reflected_temperature_C",
-    "sky_total_temperature_C", "sky_band_temperature_C",
+    "sky_total_temperature_C", "sky_band_temperature_C", "window_temperature_C",
 }  # fmt: skip
 """What follows the air from day to day."""
 
@@ -36,7 +38,8 @@ def another_day(frame: PlantFrame, random: np.random.Generator) -> PlantFrame:
     if not frame.indoors:
         wind = conditions["wind_speed_m_s"]
         speed = round(wind.value * float(np.exp(_WEATHER["wind_speed_m_s"] * random.normal())), 1)
-        conditions["wind_speed_m_s"] = Declared(speed, round(0.2 * speed + 0.1, 2))
+        u = _SHELTERED * speed if frame.sheltered else 0.2 * speed + 0.1
+        conditions["wind_speed_m_s"] = Declared(speed, round(u, 2))
     return replace(frame, conditions=conditions, pieces=pieces)
 
 

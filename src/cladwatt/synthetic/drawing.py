@@ -74,6 +74,7 @@ def _pipe_region(
     region = Region(
         id=pipe.plant.id, frame_id=frame.id, role="pipe", tag=pipe.plant.tag,
         centreline=tuple(v[0] for v in vertices), widths=tuple(v[1] for v in vertices),
+        inclination_deg=pipe.plant.inclination_deg, start=pipe.plant.start_m,
     )  # fmt: skip
     return region, (start, end)
 

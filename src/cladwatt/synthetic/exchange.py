@@ -13,10 +13,16 @@ from cladwatt.physics.convection import (
     nusselt_zukauskas,
     rayleigh_number,
 )
-from cladwatt.physics.humidity import dew_point, saturation_pressure_water
+from cladwatt.physics.humidity import (
+    dew_point,
+    frost_point,
+    saturation_pressure_ice,
+    saturation_pressure_water,
+)
 from cladwatt.physics.radiation import radiative_flux
 from cladwatt.synthetic.columns import ColumnModel, SurfaceFlux
 from cladwatt.synthetic.geometry import PipeAxis
+from cladwatt.synthetic.slanted import slanted_coefficient
 from cladwatt.synthetic.truth import ConvectionLaw, FrameTruth, LineTruth
 from cladwatt.types import FloatArray
 
@@ -32,6 +38,8 @@ _LEWIS = 0.865
 """Thermal diffusivity of air over the diffusivity of vapour in it, room temperature."""
 _LATENT = (2.501e6, 2.37e3)
 """Heat of evaporation at 0 °C and its fall with temperature. [J/kg], [J/(kg K)]"""
+_FUSION = 3.34e5
+"""Heat of melting, given off besides where vapour becomes frost. [J/kg]"""
 _DIFFUSE_SHARE = 0.2
 """Of the sun's heat, from sky and ground rather than from the sun's side."""
 
@@ -82,6 +90,12 @@ def _coefficient(
     law: ConvectionLaw, mean: FloatArray, diameter: FloatArray, frame: FrameTruth,
     inclination_deg: float,
 ) -> FloatArray:  # fmt: skip
+    if law == "churchill" and frame.wind_angle_deg is not None:
+        return slanted_coefficient(
+            mean, diameter, air_temperature=frame.air_temperature, wind_speed=frame.wind_speed,
+            wind_angle_deg=frame.wind_angle_deg, wind_uphill=frame.wind_uphill,
+            inclination_deg=inclination_deg,
+        )  # fmt: skip
     if law == "churchill":
         return convection_coefficient(
             mean, air_temperature=frame.air_temperature, diameter=diameter,
@@ -106,9 +120,13 @@ def _coefficient(
 def water_share(
     temperature: FloatArray, frame: FrameTruth, rain: FloatArray | None = None
 ) -> FloatArray:
-    """Return how much of a surface is under water: dew below the dew point, and what rain left."""
-    dew = float(dew_point(frame.air_temperature, frame.relative_humidity))
-    share: FloatArray = np.clip((dew - temperature) / _FILM_SPAN + 0.5, 0.0, 1.0)
+    """Return how much of a surface is under water: dew or frost, and what rain left."""
+    air, humidity = frame.air_temperature, frame.relative_humidity
+    dew = float(dew_point(air, humidity))
+    point: FloatArray | float = dew
+    if dew < ZERO_CELSIUS:
+        point = np.where(temperature < ZERO_CELSIUS, float(frost_point(air, humidity)), dew)
+    share: FloatArray = np.clip((point - temperature) / _FILM_SPAN + 0.5, 0.0, 1.0)
     return share if rain is None else np.maximum(share, rain)
 
 
@@ -120,9 +138,15 @@ def _latent_flux(
     in_air = frame.relative_humidity * float(saturation_pressure_water(frame.air_temperature))
     # what drives is the share of vapour: both sides at one temperature, between the two
     film = (temperature + frame.air_temperature) / 2
-    density = (saturation_pressure_water(temperature) - in_air) / (_VAPOUR_GAS * film)
+    frozen = temperature < ZERO_CELSIUS
+    at_surface = np.where(
+        frozen, saturation_pressure_ice(np.minimum(temperature, ZERO_CELSIUS)),
+        saturation_pressure_water(temperature),
+    )  # fmt: skip
+    density = (at_surface - in_air) / (_VAPOUR_GAS * film)
     transfer = coefficient / (air.density * air.specific_heat * _LEWIS ** (2 / 3))
-    heat = transfer * density * (_LATENT[0] - _LATENT[1] * (temperature - ZERO_CELSIUS))
+    latent = _LATENT[0] - _LATENT[1] * (temperature - ZERO_CELSIUS) + _FUSION * frozen
+    heat = transfer * density * latent
     result: FloatArray = np.minimum(heat, 0.0)
     return result if rain is None else result + rain * np.maximum(heat, 0.0)
 

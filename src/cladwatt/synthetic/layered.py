@@ -7,10 +7,13 @@ import numpy as np
 
 from cladwatt.physics.air import air_properties
 from cladwatt.physics.conduction import ConductivityIntegral
-from cladwatt.physics.constants import STEFAN_BOLTZMANN
+from cladwatt.physics.constants import STEFAN_BOLTZMANN, ZERO_CELSIUS
 from cladwatt.types import FloatArray
 
 __all__ = ["LayeredCurve", "gap_coefficient"]
+
+FREEZING_SPAN = 3.0
+"""Over which the water in fine pores freezes. [K]"""
 
 
 @dataclass(frozen=True)
@@ -25,11 +28,17 @@ class LayeredCurve:
         One per layer.
     factors : tuple of float
         Multiply them.
+    wetness : (n_layers, n_r) array, optional
+        What water adds to the conductivity of each layer in each cell, over the dry one.
+    frozen_gain : tuple of float
+        Times as much where a layer's water is frozen; 1 where none freezes.
     """
 
     shares: FloatArray
     curves: tuple[ConductivityIntegral, ...]
     factors: tuple[float, ...]
+    wetness: FloatArray | None = None
+    frozen_gain: tuple[float, ...] = ()
 
     @classmethod
     def stacked(
@@ -48,10 +57,24 @@ class LayeredCurve:
     def conductivity(self, temperature: FloatArray) -> FloatArray:
         """Return what conducts like the layers of each cell in series, (..., n_r). [W/(m K)]"""
         resistance = np.zeros_like(temperature)
-        for share, curve, factor in zip(self.shares, self.curves, self.factors, strict=True):
-            resistance += share / (factor * curve.conductivity(temperature))
+        for i, (share, curve) in enumerate(zip(self.shares, self.curves, strict=True)):
+            dry = self.factors[i] * curve.conductivity(temperature)
+            resistance += share / (dry * self._as_found(i, temperature))
         result: FloatArray = 1.0 / resistance
         return result
+
+    def found_over_dry(self, layer: int, temperature: FloatArray) -> float:
+        """Return the conductivity of a whole layer over its dry one at the cells' temperatures."""
+        share = self.shares[layer]
+        return float(share.sum() / (share / self._as_found(layer, temperature)).sum())
+
+    def _as_found(self, layer: int, temperature: FloatArray) -> FloatArray | float:
+        if self.wetness is None:
+            return 1.0
+        frozen = np.clip((ZERO_CELSIUS - temperature) / FREEZING_SPAN + 0.5, 0.0, 1.0)
+        gain = 1 + (self.frozen_gain[layer] - 1) * frozen
+        factor: FloatArray = 1 + gain * self.wetness[layer]
+        return factor
 
 
 def gap_coefficient(

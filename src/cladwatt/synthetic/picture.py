@@ -102,11 +102,12 @@ def take_picture(
     band = true_band()
     scene = make_scene(frame, truth, band)
     background = _background(frame, truth, scene, band, random)
-    lens = render(
+    seen = render(
         view, [pipe.skin for pipe in pipes], background, scene,
         AirPath(truth.transmission, truth.air_temperature), band,
         fine=3 if frame.cols < 480 else 2,
     )  # fmt: skip
+    lens = seen if truth.window is None else truth.window.seen_through(seen, band)
     camera = plant.camera
     detector = Detector(
         blur=float(random.uniform(0.7, 1.0)),
@@ -120,4 +121,12 @@ def take_picture(
         emissivity=camera["emissivity"],
         reflected_temperature=ZERO_CELSIUS + camera["reflected_temperature_C"],
     )
-    return record(lens, detector, recording, band, random)
+    if frame.camera_window is not None:
+        transmission, celsius = frame.camera_window
+        recording = replace(
+            recording, window_transmission=transmission, window_temperature=ZERO_CELSIUS + celsius
+        )
+    recorded = record(lens, detector, recording, band, random)
+    if frame.upper_end_C is None:
+        return recorded
+    return np.minimum(recorded, ZERO_CELSIUS + frame.upper_end_C)

@@ -16,6 +16,7 @@ from cladwatt.synthetic.exchange import (
 )
 from cladwatt.synthetic.fields import smooth_field
 from cladwatt.synthetic.geometry import PipeAxis, View
+from cladwatt.synthetic.inside import fluid_after, inside_of, tracer_warmth
 from cladwatt.synthetic.plant import PlantLine, PlantPipe
 from cladwatt.synthetic.render import Patch, Skin
 from cladwatt.synthetic.skins import skin_of, tape_on
@@ -28,8 +29,6 @@ _CELL_LENGTH = 0.015
 _AROUND = 24
 _SCATTER = 0.03
 """Relative scatter of sound lagging along the pipe."""
-_TRACER_SPREAD, _TRACER_SHARE = 0.30, 0.85
-"""Over what angle a tracer warms the inside of the lagging, and how near to its temperature."""
 
 
 @dataclass(frozen=True)
@@ -60,13 +59,15 @@ class PipeTruth:
         What fluid and tracer give off there; differs from the loss by what flows lengthwise, and
         while it warms up. [W/m]
     tracer_heat : (n_x,) array or None
-        Of the loss, what the tracer gives straight to the lagging. [W/m]
+        What a steam tracer gives straight to the lagging, or an electric one in all. [W/m]
     water_share : (n_x,) array
         Share of the surface under water.
     sound_loss, specified_loss : float
         In the same conditions, all at rest. [W/m]
     skin : Skin
         What the camera sees.
+    is_soaked : bool
+        Whether its lagging is wet or frozen throughout, over any damage.
     """
 
     plant: PlantPipe
@@ -86,6 +87,7 @@ class PipeTruth:
     sound_loss: float
     specified_loss: float
     skin: Skin
+    is_soaked: bool = False
 
     @property
     def is_drawn(self) -> BoolArray:
@@ -124,17 +126,13 @@ def _model(
     line: LineTruth, plant: PlantLine, frame: FrameTruth, shape: tuple[int, int], length: float,
     factor: FloatArray,
 ) -> ColumnModel:  # fmt: skip
-    inside: float | FloatArray = line.fluid_temperature
-    warmth = _tracer_warmth(plant, shape[1])
-    if warmth is not None and line.tracer_temperature is not None:
-        inside = inside + (line.tracer_temperature - inside) * _TRACER_SHARE * warmth
     return ColumnModel(
-        inside_temperature=inside,
-        inside_coefficient=plant.inside_coefficient,
+        inside_temperature=inside_of(plant, line, shape[1]),
+        inside_coefficient=line.inside_coefficient,
         pipe_radius=line.pipe_diameter / 2,
         thickness=np.full(shape, line.thickness),
         cell_length=length,
-        conductivity_curve=line.curve.conductivity,
+        conductivity_curve=(line.found_curve or line.curve).conductivity,
         factor=np.broadcast_to(
             line.conductivity_factor * factor[:, None, None], (*shape, RADIAL_CELLS)
         ).copy(),
@@ -147,27 +145,44 @@ def _model(
     )
 
 
-def _tracer_warmth(plant: PlantLine, n_phi: int) -> FloatArray | None:
-    """Return how near each column's inside is to the tracer, (n_phi,); 3 o'clock is angle pi/2."""
-    if plant.tracer_clock is None:
+def _tracer_heat(plant: PlantLine, line: LineTruth, given: FloatArray) -> FloatArray | None:
+    """Return what of the heat given inside is the tracer's, (n_x,). [W/m]"""
+    warmth = tracer_warmth(plant, given.shape[1])
+    if warmth is None:
         return None
-    angle = (np.arange(n_phi) + 0.5) * 2 * np.pi / n_phi
-    apart = np.angle(np.exp(1j * (angle - plant.tracer_clock / 6 * np.pi)))
-    warmth: FloatArray = np.exp(-0.5 * (apart / _TRACER_SPREAD) ** 2)
-    return warmth
+    if line.tracer_power is not None:
+        return np.full(given.shape[0], line.tracer_power)
+    heat: FloatArray = (warmth * given).sum(axis=1)
+    return heat
 
 
 def _plain_loss(
-    line: LineTruth, plant: PlantLine, frame: FrameTruth, factor: float, weather: Weather
+    line: LineTruth, plant: PlantLine, frame: FrameTruth, factor: float, weather: Weather,
+    inclination_deg: float,
 ) -> float:
     """Return the loss of the undamaged pipe at rest with a conductivity factor. [W/m]"""
-    model = _model(line, plant, frame, (2, _AROUND), 1.0, np.full(2, factor))
+    dry = replace(line, found_curve=None)
+    model = _model(dry, plant, frame, (2, _AROUND), 1.0, np.full(2, factor))
     mean = Weather(
         *(None if part is None else part.mean(axis=0, keepdims=True).repeat(2, axis=0)
           for part in (weather.sun, weather.rain))
     )  # fmt: skip
-    flux = surface_flux(model, line, frame, plant.inclination_deg, mean)
+    flux = surface_flux(model, line, frame, inclination_deg, mean)
     return float(solve_columns(model, flux).heat_loss(1.0)[0])
+
+
+def _down_the_line(
+    pipe: PlantPipe, plant: PlantLine, line: LineTruth, frame: FrameTruth, factor: float,
+    slope: float,
+) -> LineTruth:  # fmt: skip
+    """Return the line with its fluid as it comes here, a metre behind what is drawn first."""
+
+    def loss(fluid: float) -> float:
+        here = replace(line, fluid_temperature=fluid)
+        return _plain_loss(here, plant, frame, factor, Weather(), slope)
+
+    fluid = fluid_after(line, pipe.start_m + 1.0 if pipe.start_m else 0.0, loss)
+    return replace(line, fluid_temperature=fluid)
 
 
 def _weather(
@@ -227,6 +242,7 @@ def build_pipe(
         The pipe.
     """
     axis = _axis(pipe, view, frame.distance_ratio)
+    slope = plant.inclination_deg if pipe.inclination_deg is None else pipe.inclination_deg
     n_x = int(np.clip(round(axis.length / _CELL_LENGTH), 60, 260))
     length = axis.length / n_x
     outer = line.pipe_diameter / 2 + line.thickness + line.gap
@@ -235,7 +251,9 @@ def build_pipe(
         axis.surface_station(view, pipe.drawn[1] * axis.length, outer),
     )
     scatter = 1 + _SCATTER * smooth_field((n_x,), (0.15 / length,), random)
-    sound = _model(line, plant, frame, (n_x, _AROUND), length, line.installation_factor * scatter)
+    installed = line.installation_factor * (1 + line.supports_share)
+    line = _down_the_line(pipe, plant, line, frame, installed, slope)
+    sound = _model(line, plant, frame, (n_x, _AROUND), length, installed * scatter)
     bodies = bodies_on(pipe.components, drawn)
     # bodies and weather draw from streams of their own, so that a seed keeps its pipes
     made, wetted = random.spawn(2)
@@ -247,7 +265,7 @@ def build_pipe(
         last = max(round(damage.end / length), first + 1)
         damage = replace(damage, start=first * length, end=last * length)
     weather = _weather(axis, (n_x, _AROUND), line, frame, wetted)
-    flux = surface_flux(model, line, frame, plant.inclination_deg, weather)
+    flux = surface_flux(model, line, frame, slope, weather)
     if line.hours_at_temperature is None:
         solution = solve_columns(model, flux)
     else:
@@ -256,7 +274,6 @@ def build_pipe(
     heat_loss = solution.heat_loss(length)
     share = model.surface_area / model.surface_area.sum(axis=1, keepdims=True)
     surface = (share * solution.surface_temperature).sum(axis=1)
-    warmth = _tracer_warmth(plant, _AROUND)
     given = solution.inside_heat / length
     water = np.zeros((n_x, _AROUND))
     if weather.rain is not None or line.fluid_temperature < frame.air_temperature:
@@ -267,9 +284,10 @@ def build_pipe(
         surface_temperature=surface,
         resistance=(line.fluid_temperature - surface) / heat_loss,
         inside_heat=given.sum(axis=1),
-        tracer_heat=None if warmth is None else (warmth * given).sum(axis=1),
+        tracer_heat=_tracer_heat(plant, line, given),
         water_share=(share * water).sum(axis=1),
-        sound_loss=_plain_loss(line, plant, frame, line.installation_factor, weather),
-        specified_loss=_plain_loss(line, plant, frame, 1.0, weather),
+        sound_loss=_plain_loss(line, plant, frame, installed, weather, slope),
+        specified_loss=_plain_loss(line, plant, frame, 1.0, weather, slope),
+        is_soaked=plant.is_soaked,
         skin=skin_of(plant, line, axis, model, solution, water, bodies, tape, random),
     )  # fmt: skip

@@ -4,11 +4,12 @@ import tomllib
 from dataclasses import dataclass, replace
 from functools import cache
 from importlib.resources import files
-from typing import Any
+from typing import Any, Literal
 
 from cladwatt.synthetic.damage import DamageKind
 
 __all__ = [
+    "Condition",
     "Declared",
     "Plant",
     "PlantComponent",
@@ -19,6 +20,9 @@ __all__ = [
     "PlantPipe",
     "load_plant",
 ]
+
+
+Condition = Literal["dry", "wet", "ice"]
 
 
 @dataclass(frozen=True)
@@ -37,6 +41,8 @@ class PlantLayer:
     thickness_mm: Declared
     inner_emissivity: float = 0.9
     outer_emissivity: float = 0.9
+    condition: Condition = "dry"
+    """As it was found, and is declared."""
 
 
 @dataclass(frozen=True)
@@ -81,6 +87,13 @@ class PlantLine:
     """Where a steam tracer lies, in hours."""
     heat_capacity: float = 0.0
     """Of the lagging, for a line that warms up. [J/(m3 K)]"""
+    condition: Condition = "dry"
+    """Of a single layer, as it was found, and is declared."""
+
+    @property
+    def is_soaked(self) -> bool:
+        """Whether any of its lagging is wet or frozen throughout."""
+        return any(c != "dry" for c in (self.condition, *(one.condition for one in self.layers)))
 
 
 @dataclass(frozen=True)
@@ -99,6 +112,10 @@ class PlantPipe:
     tape: float | None
     kinds: tuple[DamageKind, ...] = ()
     """In a corner frame: what it may have, drawn by lot."""
+    inclination_deg: float | None = None
+    """Of a riser or drop, over its line's."""
+    start_m: float = 0.0
+    """Along the line, of what is drawn first."""
 
 
 @dataclass(frozen=True)
@@ -122,6 +139,14 @@ class PlantFrame:
     """Towards the sun, in camera coordinates; empty where it does not shine on the pipes."""
     wet: bool = False
     """Whether rain stands on the cladding."""
+    wind_along: Literal["", "up", "down"] = ""
+    """Which way the wind blows along an inclined run."""
+    sheltered: bool = False
+    """Whether the wind's uncertainty is left to the default for sheltered pipes."""
+    camera_window: tuple[float, float] | None = None
+    """Window the camera had been told of: its transmission and temperature. [-], [°C]"""
+    upper_end_C: float | None = None
+    """Of the recording range."""
     is_corner: bool = False
     """Whether it was added to show a rarer case."""
 
@@ -159,6 +184,7 @@ def _line(table: dict[str, Any]) -> PlantLine:
         layers=tuple(_layer(layer) for layer in table.get("layers", ())),
         tracer_clock=table.get("tracer_clock"),
         heat_capacity=float(table.get("heat_capacity", 0.0)),
+        condition=table.get("lagging_condition", "dry"),
     )  # fmt: skip
 
 
@@ -166,7 +192,10 @@ def _layer(table: dict[str, Any]) -> PlantLayer:
     value, u = table["thickness_mm"]
     faces = {key: float(table[key]) for key in ("inner_emissivity", "outer_emissivity")
              if key in table}  # fmt: skip
-    return PlantLayer(table.get("material", ""), Declared(float(value), float(u)), **faces)
+    return PlantLayer(
+        table.get("material", ""), Declared(float(value), float(u)), **faces,
+        condition=table.get("condition", "dry"),
+    )  # fmt: skip
 
 
 def _piece(table: dict[str, Any]) -> PlantPiece:
@@ -187,6 +216,7 @@ def _pipe(table: dict[str, Any]) -> PlantPipe:
         crossed_by=table.get("crossed_by", ""),
         clear=tuple(table["clear"]) if "clear" in table else None,
         tape=table.get("tape"), kinds=tuple(table.get("kinds", ())),
+        inclination_deg=table.get("inclination_deg"), start_m=float(table.get("start_m", 0.0)),
     )  # fmt: skip
 
 
@@ -200,7 +230,14 @@ def _frame(table: dict[str, Any]) -> PlantFrame:
         pipes=tuple(_pipe(pipe) for pipe in table["pipes"]),
         pieces=tuple(_piece(piece) for piece in table.get("pieces", ())),
         sun=tuple(float(part) for part in table.get("sun", ())), wet=bool(table.get("wet", False)),
+        wind_along=table.get("wind_along", ""), sheltered=bool(table.get("sheltered", False)),
+        camera_window=_camera_window(table), upper_end_C=table.get("upper_end_C"),
     )  # fmt: skip
+
+
+def _camera_window(table: dict[str, Any]) -> tuple[float, float] | None:
+    setting = table.get("camera_window")
+    return None if setting is None else (setting["transmission"], setting["temperature_C"])
 
 
 def _read(name: str) -> dict[str, Any]:
@@ -214,8 +251,8 @@ def load_plant(corners: bool = True) -> Plant:
     Parameters
     ----------
     corners : bool
-        With the frames of rarer cases: sun, condensation, tracing, layers, fittings, warming up,
-        rain.
+        With the frames of rarer cases: sun, condensation, frost, wet and frozen lagging, tracing,
+        layers, fittings, warming up, rain, a window, risers, wind along a run.
 
     Returns
     -------

@@ -55,7 +55,8 @@ def _layer(layer: PlantLayer) -> str:
         f"thickness_mm = {layer.thickness_mm.value:g}, u_thickness_mm = {layer.thickness_mm.u:g}"
     )
     if layer.material:
-        return f'  {{ material = "{layer.material}", {depth} }},'
+        found = "" if layer.condition == "dry" else f', condition = "{layer.condition}"'
+        return f'  {{ material = "{layer.material}", {depth}{found} }},'
     return (
         f'  {{ kind = "air_gap", {depth}, inner_emissivity = {layer.inner_emissivity:g}, '
         f"outer_emissivity = {layer.outer_emissivity:g} }},"
@@ -68,13 +69,16 @@ def _lagging(line: PlantLine) -> list[str]:
     return [
         f'lagging_material = "{line.material}"',
         _pair("lagging_thickness_mm", line.quantities["lagging_thickness_mm"]),
+        *([] if line.condition == "dry" else [f'lagging_condition = "{line.condition}"']),
     ]
 
 
 def _inside(line: PlantLine) -> list[str]:
     known = line.quantities
     if "steam_pressure_bar" not in known:
-        return [_pair("fluid_temperature_C", known["fluid_temperature_C"])]
+        keys = ("fluid_temperature_C", "wall_temperature_C", "inside_film_W_m2_K", "flow_kg_s",
+                "specific_heat_J_kg_K")  # fmt: skip
+        return [_pair(key, known[key]) for key in keys if key in known]
     return [_pair("steam_pressure_bar", known["steam_pressure_bar"]), 'steam_pressure_is = "gauge"']
 
 
@@ -91,8 +95,13 @@ def _line(line: PlantLine) -> str:
     if line.inclination_deg:
         parts.append(f"inclination_deg = {line.inclination_deg:g}")
     if line.tracer_clock is not None:
-        parts.append(f'tracing = "steam"\ntracer_clock_position = {line.tracer_clock:g}')
-        parts.append(_pair("tracer_temperature_C", known["tracer_temperature_C"]))
+        kind, key = "steam", "tracer_temperature_C"
+        if "tracer_power_W_m" in known:
+            kind, key = "electric", "tracer_power_W_m"
+        parts.append(f'tracing = "{kind}"\ntracer_clock_position = {line.tracer_clock:g}')
+        parts.append(_pair(key, known[key]))
+    if "supports_allowance" in known:
+        parts.append(_pair("supports_allowance", known["supports_allowance"]))
     if "hours_at_temperature" in known:
         parts.append(_pair("hours_at_temperature", known["hours_at_temperature"]))
     return "\n".join(parts)
@@ -106,13 +115,34 @@ def _piece(piece: PlantPiece) -> str:
     )
 
 
+def _condition(key: str, declared: Declared, frame: PlantFrame) -> str:
+    if key == "wind_speed_m_s" and frame.sheltered:
+        return f"{key} = {declared.value:g}\nsheltered = true"
+    return _pair(key, declared)
+
+
+def _settings(frame: PlantFrame) -> list[str]:
+    """Return what else a frame declares: wind along the run, the camera's settings and range."""
+    parts = []
+    if frame.wind_along:
+        parts.append(f'wind_along = "{frame.wind_along}"')
+    if frame.camera_window is not None:
+        transmission, celsius = frame.camera_window
+        parts.append(f"camera_window_transmission = {transmission:g}")
+        parts.append(f"camera_window_temperature_C = {celsius:g}")
+    if frame.upper_end_C is not None:
+        parts.append(f"range_upper_C = {frame.upper_end_C:g}")
+    return parts
+
+
 def _frame(frame: PlantFrame, date: str) -> str:
     suffix, keys, _ = FRAME_FILES[frame.file]
     parts = [
         "[[frame]]", f'id = "{frame.id}"', f'file = "frames/{frame.id}{suffix}"',
         f"time = {date}T{frame.time}:00", f'note = "{frame.note}"', keys,
         f"indoors = {str(frame.indoors).lower()}",
-        *(_pair(key, declared) for key, declared in frame.conditions.items()),
+        *(_condition(key, declared, frame) for key, declared in frame.conditions.items()),
+        *_settings(frame),
     ]  # fmt: skip
     if frame.pieces:
         parts += ["surroundings = [", *(_piece(piece) for piece in frame.pieces), "]"]

@@ -15,6 +15,8 @@ from cladwatt.physics.steam import saturation_temperature
 from cladwatt.synthetic.layered import LayeredCurve, gap_coefficient
 from cladwatt.synthetic.outdoors import draw_reflected, draw_surroundings
 from cladwatt.synthetic.plant import Declared, PlantFrame, PlantLine
+from cladwatt.synthetic.soaked import soaked
+from cladwatt.synthetic.window import TrueWindow, draw_window
 from cladwatt.types import FloatArray
 
 __all__ = [
@@ -71,6 +73,18 @@ class LineTruth:
     layer_thickness: tuple[float, ...] = ()
     layer_factor: tuple[float, ...] = ()
     """Of each layer of lagging where there are several; of its conductivity."""
+    found_curve: LayeredCurve | None = None
+    """With the water or ice that the lagging holds; `curve` is that of dry lagging."""
+    condition_factor: tuple[float, ...] = ()
+    """Of each layer where any is wet or frozen: its conductivity over the dry one."""
+    inside_coefficient: float = 1e6
+    """From the fluid to the outside of the wall, on that. [W/(m2 K)]"""
+    tracer_power: float | None = None
+    """[W/m]"""
+    heat_flow: float | None = None
+    """Mass flow times specific heat. [W/K]"""
+    supports_share: float = 0.0
+    """What supports in the lagging add to its conductance."""
 
 
 @dataclass(frozen=True)
@@ -99,6 +113,11 @@ class FrameTruth:
     wet: bool = False
     """Whether rain stands on the cladding."""
     convection_law: ConvectionLaw = "churchill"
+    window: TrueWindow | None = None
+    wind_angle_deg: float | None = None
+    """Between wind and axis, where the wind is not taken across."""
+    wind_uphill: int = 0
+    """1 where it blows up an inclined run, -1 down it."""
 
 
 def draw_shared(random: np.random.Generator) -> Shared:
@@ -150,18 +169,58 @@ def draw_line(line: PlantLine, random: np.random.Generator) -> LineTruth:
     # what came later is drawn last, so that a seed keeps its lines
     hours = known.get("hours_at_temperature")
     tracer = known.get("tracer_temperature_C")
-    return replace(
+    later = replace(
         plain,
         solar_absorptance=_draw(Declared(absorptance.value, absorptance.u), random, 0.05, 0.97),
         hours_at_temperature=None if hours is None else _draw(hours, random, 0.05),
         tracer_temperature=None if tracer is None else ZERO_CELSIUS + _draw(tracer, random),
     )
+    return _with_inside(line, _with_water(line, later, random), random)
+
+
+def _with_inside(line: PlantLine, truth: LineTruth, random: np.random.Generator) -> LineTruth:
+    """Draw film, tracer's power, flow and supports where they are declared."""
+
+    def drawn(key: str) -> float | None:
+        known = line.quantities.get(key)
+        return None if known is None else _draw(known, random, 0.0)
+
+    film, power, flow = drawn("inside_film_W_m2_K"), drawn("tracer_power_W_m"), drawn("flow_kg_s")
+    heat, supports = drawn("specific_heat_J_kg_K"), drawn("supports_allowance")
+    return replace(
+        truth,
+        inside_coefficient=line.inside_coefficient if film is None else film,
+        tracer_power=power,
+        heat_flow=None if flow is None or heat is None else flow * heat,
+        supports_share=supports or 0.0,
+    )
+
+
+def _with_water(line: PlantLine, truth: LineTruth, random: np.random.Generator) -> LineTruth:
+    """Draw what water and ice are in lagging that is declared wet or frozen."""
+    if not line.is_soaked:
+        return truth
+    names = [(one.material, one.condition) for one in line.layers if one.material]
+    found = soaked(
+        truth.curve,
+        names or [(line.material, line.condition)],
+        truth.layer_thickness or (truth.thickness,),
+        truth.pipe_diameter / 2,
+        RADIAL_CELLS,
+        random,
+    )
+    # the cells between the pipe and a surface near room temperature
+    middle = (np.arange(RADIAL_CELLS) + 0.5) / RADIAL_CELLS
+    cells = truth.fluid_temperature + middle * (ZERO_CELSIUS + 10.0 - truth.fluid_temperature)
+    factors = tuple(found.found_over_dry(i, cells) for i in range(len(found.curves)))
+    return replace(truth, found_curve=found, condition_factor=factors)
 
 
 def _fluid_temperature(line: PlantLine, random: np.random.Generator) -> float:
     """Draw what flows in the pipe; steam boils at what its gauge shows over the air's pressure."""
-    if "fluid_temperature_C" in line.quantities:
-        return ZERO_CELSIUS + _draw(line.quantities["fluid_temperature_C"], random)
+    for key in ("fluid_temperature_C", "wall_temperature_C"):
+        if key in line.quantities:
+            return ZERO_CELSIUS + _draw(line.quantities[key], random)
     gauge = 1e5 * _draw(line.quantities["steam_pressure_bar"], random)
     return float(saturation_temperature(gauge + STANDARD_PRESSURE + 200 * random.standard_normal()))
 
@@ -239,6 +298,7 @@ def draw_frame(frame: PlantFrame, shared: Shared, random: np.random.Generator) -
     if reflected is None:
         reflected = ZERO_CELSIUS + _draw(known["reflected_temperature_C"], random)
     sun = known.get("solar_irradiance_W_m2") if frame.sun else None
+    angle = known.get("wind_angle_deg")
     return FrameTruth(
         air_temperature=air,
         surroundings_temperature=surroundings,
@@ -258,4 +318,7 @@ def draw_frame(frame: PlantFrame, shared: Shared, random: np.random.Generator) -
         solar_irradiance=0.0 if sun is None else _draw(sun, more, 0.0),
         wet=frame.wet,
         convection_law=shared.law,
+        window=draw_window(frame, air, more),
+        wind_angle_deg=None if angle is None else _draw(angle, more, 0.0, 90.0),
+        wind_uphill={"up": 1, "down": -1, "": 0}[frame.wind_along],
     )

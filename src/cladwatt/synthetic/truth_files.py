@@ -21,6 +21,8 @@ __all__ = [
     "truth_json",
 ]
 
+FILM_THAT_MATTERS = 100.0
+"""Films below are told. [W/(m2 K)]"""
 AGED_THRESHOLD = 1.10
 """Ageing throughout counts as damage from this ratio of found to sound loss."""
 
@@ -42,7 +44,8 @@ A loss is heat given off to the room, negative on a chilled line. It is what lea
 condensing water brings heat, drying water takes it, and what the sun leaves in the cladding is
 taken off. "without components" leaves out the pipe under a drawn flange, valve or support. On a
 traced line a part of the loss comes from the tracer; on a line that has just come to temperature
-the loss still grows, while the sound one is that at rest.
+the loss still grows, while the sound one is that at rest. Lagging that is "soaked" is wet or frozen
+throughout; its sound loss is that of the same lagging dry.
 """
 
 
@@ -84,13 +87,14 @@ def region_truth(pipe: PipeTruth, frame_id: str, drawn: tuple[float, float]) -> 
             "conductivity_factor": round(damage.severity, 3),
             "remaining_thickness": round(damage.remaining, 3),
         })  # fmt: skip
-    aged = damage.kind == "aged" and mean / pipe.sound_loss > AGED_THRESHOLD
+    kind = "soaked" if pipe.is_soaked and damage.kind == "sound" else damage.kind
+    aged = kind in ("aged", "soaked") and mean / pipe.sound_loss > AGED_THRESHOLD
     length = drawn[1] - drawn[0]
     return {
         "region_id": pipe.plant.id,
         "frame_id": frame_id,
         "tag": pipe.plant.tag,
-        "kind": damage.kind,
+        "kind": kind,
         "damaged": bool(aged or damage.is_local),
         "aged_factor": round(damage.severity, 4) if damage.kind == "aged" else 1.0,
         "length_m": round(length, 4),
@@ -173,6 +177,12 @@ def _conditions(truth: FrameTruth) -> dict[str, float]:
         "calibration_share_of_limit": round(truth.calibration, 4),
         "dew_point_C": round(dew - ZERO_CELSIUS, 3),
     }
+    if truth.window is not None:
+        found["window_transmission"] = round(truth.window.transmission, 4)
+        found["window_reflectance"] = round(truth.window.reflectance, 4)
+        found["window_temperature_C"] = round(truth.window.temperature - ZERO_CELSIUS, 3)
+    if truth.wind_angle_deg is not None:
+        found["wind_angle_deg"] = round(truth.wind_angle_deg, 2)
     if truth.sun:
         found["solar_irradiance_W_m2"] = round(truth.solar_irradiance, 2)
     return found
@@ -199,6 +209,16 @@ def _line(truth: LineTruth) -> dict[str, Any]:
         found["tracer_temperature_C"] = round(truth.tracer_temperature - ZERO_CELSIUS, 3)
     if truth.hours_at_temperature is not None:
         found["hours_at_temperature"] = round(truth.hours_at_temperature, 4)
+    if truth.condition_factor:
+        found["layer_condition_factor"] = [round(part, 4) for part in truth.condition_factor]
+    if truth.tracer_power is not None:
+        found["tracer_power_W_per_m"] = round(truth.tracer_power, 3)
+    if truth.inside_coefficient < FILM_THAT_MATTERS:
+        found["inside_film_W_per_m2_K"] = round(truth.inside_coefficient, 3)
+    if truth.heat_flow is not None:
+        found["heat_flow_W_per_K"] = round(truth.heat_flow, 4)
+    if truth.supports_share:
+        found["supports_allowance"] = round(truth.supports_share, 4)
     return found
 
 
