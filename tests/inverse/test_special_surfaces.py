@@ -14,7 +14,7 @@ from scipy.interpolate import PchipInterpolator
 
 from cladwatt.physics.humidity import dew_point
 from cladwatt.quantities import Quantity
-from cladwatt.survey.model import Camera, ConductivityCurve, Layer, Tracing
+from cladwatt.survey.model import AccuracyStatement, Camera, ConductivityCurve, Layer, Tracing
 from cladwatt.survey.region import Region
 from cladwatt.synthetic.camera import gaussian_blur
 from cladwatt.synthetic.geometry import PipeAxis, View
@@ -62,10 +62,14 @@ def film_on(bench, paint, surface: float) -> np.ndarray:
 # ---- what was declared of lagging and air -------------------------------------------------
 
 
-def test_lagging_declared_wet_has_its_expected_loss_beside_the_sound_one(bench):
+def declared_wet(bench, factor):
     (wool,) = bench.line.layers
-    wet = replace(wool, condition="wet", condition_factor=Quantity(4.0))
-    wetted = bench.but(line=replace(bench.line, layers=(wet,)))
+    wet = replace(wool, condition="wet", condition_factor=factor)
+    return bench.but(line=replace(bench.line, layers=(wet,)))
+
+
+def test_lagging_declared_wet_has_its_expected_loss_beside_the_sound_one(bench):
+    wetted = declared_wet(bench, Quantity(4.0))
     (said,) = [
         remark
         for remark in wetted.alone(bench.lens(320.0)).remarks
@@ -77,6 +81,51 @@ def test_lagging_declared_wet_has_its_expected_loss_beside_the_sound_one(bench):
     )
     dry = bench.alone(bench.lens(320.0))
     assert wetted.alone(bench.lens(320.0)).sound_loss == dry.sound_loss
+    assert dry.declared_loss is None
+    assert dry.declared_resistance is None
+
+
+def test_its_expected_resistance_is_that_of_the_wet_layer(bench):
+    result = declared_wet(bench, Quantity(4.0)).alone(bench.lens(320.0))
+    state = bench.solved(4.0 * bench.line.installation_factor.value)
+    assert result.declared_loss.median == pytest.approx(float(state.heat_loss), rel=1e-3)
+    # ln(D/d) / (2 pi k), the conductivity being constant
+    pipe, thick = bench.line.pipe_outside_diameter.value, bench.line.layers[0].thickness.value
+    conductivity = 4.0 * 1.15 * bench.line.layers[0].conductivity.conductivity[0]
+    by_hand = math.log(1 + 2 * thick / pipe) / (2 * math.pi * conductivity)
+    assert result.declared_resistance.median == pytest.approx(by_hand, rel=1e-3)
+    assert result.specified_resistance.median == pytest.approx(4.6 * by_hand, rel=1e-3)
+
+
+PUBLISHED = Quantity(3.65, 1.84, lower=1.33, upper=10.0, shape="lognormal")
+"""Wet over dry conductivity of mineral wool, the range of `lagging_materials.csv`."""
+
+
+def doubtful(bench):
+    """Camera and convection law as uncertain as in the field."""
+    camera = replace(bench.camera, accuracy=AccuracyStatement(2.0, 2.0))
+    return bench.but(camera=camera, law_exact=False, count=1000)
+
+
+def test_an_image_of_wet_lagging_is_not_pulled_to_sound_where_it_was_declared_wet(bench):
+    state = bench.solved(2.0 * bench.line.installation_factor.value)
+    loss = float(state.heat_loss)
+    image = bench.lens(float(state.surface_temperature))
+    told = declared_wet(doubtful(bench), PUBLISHED).jointly(image)
+    untold = doubtful(bench).jointly(image)
+    assert abs(told.heat_loss.median - loss) < 0.5 * abs(untold.heat_loss.median - loss)
+    assert told.heat_loss.low < loss < told.heat_loss.high
+    assert told.probability_aged > 0.97
+    assert told.excess.median > 0.9 * (loss - float(bench.sound.heat_loss))
+
+
+def test_lagging_declared_wet_that_looks_sound_is_not_pulled_to_wet(bench):
+    sound = float(bench.sound.heat_loss)
+    image = bench.lens(float(bench.sound.surface_temperature))
+    told = declared_wet(doubtful(bench), PUBLISHED).jointly(image)
+    assert told.heat_loss.median == pytest.approx(sound, rel=0.05)
+    assert told.declared_loss.low > 1.1 * sound
+    assert told.probability_aged < 0.5
 
 
 def test_dry_lagging_has_no_such_word(bench, keys):

@@ -4,7 +4,6 @@ import numpy as np
 
 from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.seen import Seen
-from cladwatt.inverse.sound import condition_loss
 from cladwatt.inverse.steady_state import is_settled
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.quantities import Remark
@@ -92,7 +91,6 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
     if tracer.kind != "none":
         power = () if tracer.power is None else (("power_W_per_m", tracer.power.value),)
         remarks.append(Remark("remark.tracer_heat", power))
-    remarks.extend(_declared_condition(seen))
     humidity = seen.conditions.relative_humidity
     if seen.gain and humidity is not None and humidity.is_default:
         remarks.append(Remark("remark.humidity_assumed", (("share", humidity.value),)))
@@ -102,20 +100,6 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
         angle = float(np.degrees(seen.strip.receding_angle))
         remarks.append(Remark("remark.foreshortening", (("angle_deg", angle),)))
     return tuple(remarks)
-
-
-def _declared_condition(seen: Seen) -> tuple[Remark, ...]:
-    """Return what the line would lose with lagging as wet or frozen as declared, beside sound."""
-    expected = condition_loss(seen.line_draws, seen.frame)
-    if expected is None:
-        return ()
-    low, middle, high = np.abs(np.quantile(expected, [0.025, 0.5, 0.975]))
-    parameters = (
-        ("loss_W_per_m", float(middle)),
-        ("low_W_per_m", float(min(low, high))),
-        ("high_W_per_m", float(max(low, high))),
-    )
-    return (Remark("remark.declared_condition", parameters),)
 
 
 def _mirrors_a_neighbour(seen: Seen) -> bool:

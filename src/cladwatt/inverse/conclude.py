@@ -13,10 +13,12 @@ from cladwatt.inverse.cautions import (
     remarks_of,
     verdict_caps,
 )
+from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
 from cladwatt.inverse.observe import Balance, Observed
 from cladwatt.inverse.outer_balance import outer_flux
+from cladwatt.inverse.resistance import resistances_of
 from cladwatt.inverse.result import (
     Interval,
     RegionResult,
@@ -26,7 +28,7 @@ from cladwatt.inverse.result import (
     interval_of,
 )
 from cladwatt.inverse.seen import Seen
-from cladwatt.inverse.sound import SoundDraws, outside_film
+from cladwatt.inverse.sound import SoundDraws
 from cladwatt.inverse.station_table import station_table
 from cladwatt.inverse.stretch_results import stretches_of
 from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
@@ -123,6 +125,10 @@ def _shifted_balance(observed: Observed, shift: _Shift, perimeter: FloatArray) -
             _shifted_loss(sound.heat_loss, shift),
             _shifted_loss(sound.specified_loss, shift),
             np.exp(shift(np.log(sound.specified_resistance))),
+            None if sound.declared_loss is None else _shifted_loss(sound.declared_loss, shift),
+            None
+            if sound.declared_resistance is None
+            else np.exp(shift(np.log(sound.declared_resistance))),
         )
         evidence = observed.evidence()
         if shift.updates and evidence is not None:
@@ -158,7 +164,8 @@ def _concluded(
         draws |= _loss_draws(seen.perimeter * mean_flux, sound, draws["length"])
         stretches = stretches_of(seen, balance.runs, loss, seen.perimeter * balance.base)
         local = float(1 - np.prod([1 - stretch.probability for stretch in stretches]))
-        aged = None if aged_level is None else (1 - local) * aged_level
+        level = declared_level(seen.perimeter * balance.base, sound, aged_level)
+        aged = None if level is None else (1 - local) * level
     heat_loss = _interval(draws, "heat_loss")
     shares = variance_shares(draws["heat_loss"], drivers) if heat_loss else ()
     inputs = VerdictInputs(
@@ -172,15 +179,20 @@ def _concluded(
         caps=verdict_caps(seen),
         refusals=refusals_of(seen),
     )
-    resistances = _resistances(seen, draws.get("heat_loss"), sound)
+    resistances = resistances_of(seen, draws.get("heat_loss"), sound)
+    bare = _without_balance(seen, station_table(seen, loss, sound))
+    declared_loss = _interval(draws, "declared_loss")
     return replace(
-        _without_balance(seen, station_table(seen, loss, sound)),
+        bare,
         heat_flux=interval_of(mean_flux),
         heat_loss=heat_loss,
         image_loss=image_loss,
         total_loss=_interval(draws, "total_loss"),
         sound_loss=_interval(draws, "sound_loss"),
         specified_loss=_interval(draws, "specified_loss"),
+        declared_loss=declared_loss,
+        declared_resistance=resistances.declared,
+        remarks=bare.remarks + declared_condition(declared_loss),
         excess=_interval(draws, "excess"),
         resistance=resistances.found,
         specified_resistance=resistances.specified,
@@ -245,57 +257,13 @@ def _loss_draws(
             "excess": excess,
             "total_excess": excess * length,
         }
+        if sound.declared_loss is not None:
+            draws["declared_loss"] = sound.declared_loss
     return draws
 
 
 def _interval(draws: dict[str, FloatArray], quantity: str) -> Interval | None:
     return interval_of(draws[quantity]) if quantity in draws else None
-
-
-class _Resistances(NamedTuple):
-    found: Interval | None = None
-    specified: Interval | None = None
-    ratio: Interval | None = None
-    effective_conductivity: Interval | None = None
-
-
-def _resistances(seen: Seen, loss: FloatArray | None, sound: SoundDraws | None) -> _Resistances:
-    """Return resistance, specified resistance, their ratio, and the effective conductivity.
-
-    Carried as conductances, since a loss may be zero, and turned over as quantiles. A draw with
-    no loss, or one against the fluid, is a conductance of nothing and stays among them; only
-    draws with the surface beyond the fluid's temperature tell nothing and are left out.
-    """
-    line = seen.line_draws
-    if loss is None or line.inside_temperature is None:
-        return _Resistances()
-    drop = line.inside_temperature - seen.mean_along(seen.drawn.surface_temperature)
-    towards = np.sign(line.inside_temperature - seen.frame.air_temperature)
-    with np.errstate(divide="ignore", invalid="ignore"):
-        conductance = np.where(drop * towards > 0, np.maximum(loss / drop, 0.0), np.nan)
-        conductance = outside_film(conductance, line)
-    specified = None if sound is None else sound.specified_resistance
-    effective = None
-    if line.pipe_diameter is not None and line.lagged_diameter is not None:
-        lagging = line.lagged_diameter - 2 * seen.line.cladding.thickness.value
-        shape = np.log(np.maximum(lagging / line.pipe_diameter, 1.0)) / (2 * np.pi)
-        effective = interval_of(conductance * shape)
-    return _Resistances(
-        found=_reciprocal(interval_of(conductance)),
-        specified=None if specified is None else interval_of(specified),
-        ratio=None if specified is None else _reciprocal(interval_of(conductance * specified)),
-        effective_conductivity=effective,
-    )
-
-
-def _reciprocal(interval: Interval) -> Interval:
-    """Turn the interval of a conductance into that of a resistance."""
-    with np.errstate(divide="ignore"):
-        low, median, high = (
-            float(np.divide(1.0, max(value, 0.0)))
-            for value in (interval.high, interval.median, interval.low)
-        )
-    return Interval(median, low, high)
 
 
 def _drivers(seen: Seen) -> dict[str, FloatArray]:

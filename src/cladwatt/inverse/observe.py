@@ -81,10 +81,13 @@ class Observed:
         """Return what the region says of its lagging as a whole, None where it says nothing.
 
         A traced line says nothing, its tracer's heat is not the fluid's; nor does a line that is
-        still warming up, or a wet surface.
+        still warming up, or a wet surface. Nor does lagging declared wet or frozen: it is not
+        sound, and how much worse it is no published range tells of this pipe.
         """
         balance, line = self.balance, self.seen.line
         if balance is None or balance.sound is None or line.tracing.kind != "none":
+            return None
+        if balance.sound.declared_loss is not None:
             return None
         if not is_settled(line) or self.seen.conditions.surface_wet:
             return None

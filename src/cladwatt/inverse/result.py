@@ -179,6 +179,10 @@ class RegionResult:
     """Share of the variance of the loss by declared quantity, largest first."""
     image_loss: Interval | None = None
     """Mean loss per metre as the image gives it by itself, the specification unused. [W/m]"""
+    declared_loss: Interval | None = None
+    """With the lagging wet or frozen as it was declared found; None where declared dry. [W/m]"""
+    declared_resistance: Interval | None = None
+    """Of that lagging. [m K/W]"""
     air_temperature: float | None = None
     """Declared air temperature of the frame; strip pictures are centred on it. [K]"""
     strip_temperature: FloatArray | None = field(default=None, repr=False, compare=False)

@@ -12,7 +12,7 @@ from cladwatt.physics.lagged_pipe import LaggingLayer, SurfaceExchange, solve_la
 from cladwatt.physics.surface_balance import surface_heat_flux
 from cladwatt.types import FloatArray
 
-__all__ = ["SoundDraws", "condition_loss", "film_resistance", "outside_film", "sound_draws"]
+__all__ = ["SoundDraws", "film_resistance", "outside_film", "sound_draws"]
 
 ROUNDS = 18
 """Halvings of what condensing vapour may bring."""
@@ -28,6 +28,11 @@ class SoundDraws:
     """At laboratory conductivity. [W/m]"""
     specified_resistance: FloatArray
     """Of the lagging. [m K/W]"""
+    declared_loss: FloatArray | None = None
+    """With the lagging wet or frozen as it was declared found, installation factor and supports as
+    for the sound loss; None where all of it is declared dry. [W/m]"""
+    declared_resistance: FloatArray | None = None
+    """Of that lagging. [m K/W]"""
 
 
 def sound_draws(line: LineDraws, frame: FrameDraws) -> SoundDraws | None:
@@ -46,7 +51,7 @@ def sound_draws(line: LineDraws, frame: FrameDraws) -> SoundDraws | None:
     Notes
     -----
     The installation factor multiplies the conductivity of every layer; the allowance for
-    supports multiplies the loss.
+    supports multiplies the loss. Specified and sound lagging is dry, whatever was declared found.
     """
     known = (line.inside_temperature, line.layers, line.lagged_diameter, line.pipe_diameter)
     if any(part is None for part in known) or frame.wind_speed is None:
@@ -58,37 +63,16 @@ def sound_draws(line: LineDraws, frame: FrameDraws) -> SoundDraws | None:
         for layer in line.layers
     )
     sound, _ = _solved(line, frame, installed)
-    return SoundDraws(
-        heat_loss=sound * (1 + line.supports_allowance),
-        specified_loss=specified,
-        specified_resistance=resistance,
-    )
-
-
-def condition_loss(line: LineDraws, frame: FrameDraws) -> FloatArray | None:
-    """Return what the line would lose with its lagging wet or frozen as it was declared found.
-
-    Parameters
-    ----------
-    line : LineDraws
-    frame : FrameDraws
-
-    Returns
-    -------
-    (count,) array or None
-        With installation factor and supports like the sound loss, which stays that of dry
-        lagging; None where all lagging is declared dry or something is unknown. [W/m]
-    """
-    known = (line.inside_temperature, line.layers, line.lagged_diameter, line.pipe_diameter)
-    if not line.condition_factors or frame.wind_speed is None or any(p is None for p in known):
-        return None
-    assert line.layers is not None
+    supported = 1 + line.supports_allowance
+    reference = SoundDraws(sound * supported, specified, resistance)
+    if not line.condition_factors:
+        return reference
     found = tuple(
-        replace(layer, factor=np.asarray(layer.factor) * line.installation_factor * factor)
-        for layer, factor in zip(line.layers, line.condition_factors, strict=True)
+        replace(layer, factor=np.asarray(layer.factor) * factor)
+        for layer, factor in zip(installed, line.condition_factors, strict=True)
     )
-    loss, _ = _solved(line, frame, found)
-    return loss * (1 + line.supports_allowance)
+    loss, resistance = _solved(line, frame, found)
+    return replace(reference, declared_loss=loss * supported, declared_resistance=resistance)
 
 
 def film_resistance(line: LineDraws) -> FloatArray | None:

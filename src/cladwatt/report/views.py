@@ -197,14 +197,19 @@ def _figures(region: RegionResult, language: str) -> list[tuple[str, str]]:
         ("heat_flux", signed(region, region.heat_flux), "W/m²"),
         ("sound_loss", signed(region, region.sound_loss), "W/m"),
         ("specified_loss", signed(region, region.specified_loss), "W/m"),
+        ("declared_loss", signed(region, region.declared_loss), "W/m"),
         ("excess_per_metre", signed(region, region.excess), "W/m"),
         ("resistance", region.resistance, "m K/W"),
         ("specified_resistance", region.specified_resistance, "m K/W"),
+        ("declared_resistance", region.declared_resistance, "m K/W"),
         ("resistance_ratio", region.resistance_ratio, ""),
         ("effective_conductivity", region.effective_conductivity, "W/(m K)"),
     ]
     flux_remains = region.verdict.reason.key == "not_quantified.no_diameter"
-    needs_no_image = {"sound_loss", "specified_loss", "specified_resistance"}
+    needs_no_image = {
+        "sound_loss", "specified_loss", "specified_resistance", "declared_loss",
+        "declared_resistance",
+    }  # fmt: skip
     for key, value, unit in quantities:
         if value is not None:
             shown = quantified or key in needs_no_image or (key == "heat_flux" and flux_remains)

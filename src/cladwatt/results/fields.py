@@ -90,9 +90,13 @@ _REGION = {
     "total_loss": Field("W", "heat loss over the drawn length"),
     "sound_loss": Field("W/m", "what sound lagging would lose in the same conditions"),
     "specified_loss": Field("W/m", "loss with the lagging as specified, laboratory conductivity"),
+    "declared_loss": Field(
+        "W/m", "loss expected with the lagging wet or frozen as it was declared found"
+    ),
     "excess": Field("W/m", "loss found minus sound loss"),
     "resistance": Field("m·K/W", "thermal resistance of the lagging found"),
     "specified_resistance": Field("m·K/W", "thermal resistance of the lagging as specified"),
+    "declared_resistance": Field("m·K/W", "resistance expected of lagging wet or frozen so"),
     "resistance_ratio": Field("", "resistance found over resistance specified"),
     "effective_conductivity": Field("W/(m·K)", "conductivity the lagging behaves as if it had"),
     "probability_damaged": Field("", "probability of local damage or marked ageing"),

@@ -37,13 +37,12 @@ def inside_of(plant: PlantLine, line: LineTruth, n_phi: int) -> float | FloatArr
         return line.fluid_temperature
     if line.tracer_power is not None:
         share = warmth / warmth.sum() * n_phi / (np.pi * line.pipe_diameter)
-        return line.fluid_temperature + line.tracer_power * share / line.inside_coefficient
+        warmer: FloatArray = line.tracer_power * share / line.inside_coefficient
+        return line.fluid_temperature + warmer
     if line.tracer_temperature is None:
         return line.fluid_temperature
-    return (
-        line.fluid_temperature
-        + (line.tracer_temperature - line.fluid_temperature) * _TRACER_SHARE * warmth
-    )
+    nearer: FloatArray = _TRACER_SHARE * warmth
+    return line.fluid_temperature + (line.tracer_temperature - line.fluid_temperature) * nearer
 
 
 def fluid_after(line: LineTruth, distance: float, loss: Callable[[float], float]) -> float:

@@ -157,7 +157,11 @@ def _tracer_heat(plant: PlantLine, line: LineTruth, given: FloatArray) -> FloatA
 
 
 def _plain_loss(
-    line: LineTruth, plant: PlantLine, frame: FrameTruth, factor: float, weather: Weather,
+    line: LineTruth,
+    plant: PlantLine,
+    frame: FrameTruth,
+    factor: float,
+    weather: Weather,
     inclination_deg: float,
 ) -> float:
     """Return the loss of the undamaged pipe at rest with a conductivity factor. [W/m]"""

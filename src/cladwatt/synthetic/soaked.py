@@ -13,7 +13,7 @@ from cladwatt.synthetic.plant import Condition
 __all__ = ["soaked"]
 
 _INNERMOST, _OUTERMOST = 1.5, 0.5
-"""Of a layer's mean moisture, at its inner and its outer face: vapour condenses where it is cold."""
+"""Of a layer's mean moisture, at its inner and outer face: vapour condenses where it is cold."""
 _MOST_FROZEN = 4.0
 """What water adds to the conductivity, at most so many times as much where it is ice: the ratio of
 their conductivities at 0 °C."""
