@@ -73,7 +73,7 @@ def test_notebook_lines_and_the_one_that_loads_a_table(tmp_path, monkeypatch):
     code = block("notebook")
     assert len(code.splitlines()) == 5
     exec(compile(code, "README.md", "exec"), names)
-    assert len(names["regions"]) == 25
+    assert len(names["regions"]) == 33
     assert names["stretches"]["probability"].between(0, 1).all()
     cladwatt.write_results(names["assessment"], Path("sample_data/results"))
     loaded = block("pandas")
