@@ -11,7 +11,7 @@ from cladwatt.inverse.references import (
     with_frame_references,
 )
 from cladwatt.quantities import Quantity
-from cladwatt.survey.model import AccuracyStatement, Camera
+from cladwatt.survey.model import AccuracyStatement, Camera, Window
 
 FOIL_BOX = (200.0, 4.0, 230.0, 18.0)
 TAPE_BOX = (120.0, 40.0, 136.0, 56.0)
@@ -323,3 +323,62 @@ def test_what_a_reference_says_stands(bench, drawn_box):
     assert foil.region.band_emissivity == Quantity(0.05)
     assert tape.region.value == Quantity(0.88)
     assert contact.region.value == Quantity(330.0, 0.4)
+
+
+# ---- behind a window ----------------------------------------------------------------------
+
+
+def windowed(bench, hall_with, **changes):
+    window = Window(Quantity(0.6), Quantity(0.1), Quantity(305.0))
+    return bench.but(conditions=hall_with(window=window, **changes))
+
+
+def through_window(bench, lens_temperature):
+    """The measurement equation forwards: 0.6 passes, 0.1 mirrors the air, 0.3 is emitted. [K]"""
+    band, air = bench.band, bench.conditions.air_temperature.value
+    passed = 0.6 * band.radiance(lens_temperature)
+    return float(band.temperature(passed + 0.1 * band.radiance(air) + 0.3 * band.radiance(305.0)))
+
+
+def test_a_foil_behind_a_window_gives_what_it_mirrors(bench, hall_with, drawn_box):
+    run = windowed(bench, hall_with, reflected_temperature=Quantity(300.0, 5.0))
+    shown = through_window(run, foil_value(run, 303.15))
+    foil = drawn_box("foil", "foil", *FOIL_BOX, band_emissivity=Quantity(0.07))
+    (reading,) = read_references(np.full((96, 280), shown), [foil])
+    frame, remarks = used((reading,), run)
+    assert remarks[0].key == "remark.foil_used"
+    assert np.median(frame.reflected_temperature) == pytest.approx(303.15, abs=0.15)
+
+
+@pytest.mark.parametrize("role", ["tape", "contact"])
+def test_an_emissivity_is_found_behind_a_window(bench, hall_with, paint, drawn_box, role):
+    run = windowed(bench, hall_with).but(line=replace(bench.line, cladding=paint(0.8, 0.1)))
+    lens = bench.but(line=replace(bench.line, cladding=paint(0.6))).lens(SURFACE)
+    value = Quantity(0.95)
+    if role == "tape":
+        put(lens, TAPE_BOX, tape_value(run, SURFACE))
+    else:
+        value = Quantity(SURFACE, 0.1)
+    band, air = run.band, run.conditions.air_temperature.value
+    mixed = 0.6 * band.radiance(lens) + 0.1 * band.radiance(air) + 0.3 * band.radiance(305.0)
+    patch = drawn_box("patch", role, *TAPE_BOX, tag="HS-1", value=value)
+    readings = read_references(band.temperature(mixed), [run.region, patch])
+    line, _ = with_emissivity(run.line_draws(), "HS-1", run.frame_draws(), readings, run.book)
+    found = float(np.median(line.band_emissivity))
+    # tape cools where it sticks: half-normal, 2 %, its median 1.35 %
+    assert found == pytest.approx(0.6 * (1 - 0.0135 * (role == "tape")), abs=0.006)
+
+
+def test_a_background_is_compared_through_air_and_window(bench, hall_with, drawn_box, keys):
+    run = windowed(bench, hall_with).but(
+        camera=Camera(field_of_view_deg=30.0, accuracy=AccuracyStatement(2.0, 2.0)), count=2000
+    )
+    band, air = run.band, run.conditions.air_temperature.value
+    behind = band.temperature(0.98 * band.radiance(333.15) + 0.02 * band.radiance(air))
+    box = drawn_box("wall", "background", *FOIL_BOX, value=Quantity(333.15, 0.1))
+    # the camera reads 1 K too low
+    readings = read_references(np.full((96, 280), through_window(run, behind) - 1.0), [box])
+    frame, remarks = used(readings, run)
+    assert "remark.reading_not_used" not in keys(remarks)
+    offset = frame.calibration_offset(np.array([readings[0].reading]))
+    assert np.median(offset) == pytest.approx(1.0, abs=0.15)

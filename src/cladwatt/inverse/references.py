@@ -22,6 +22,7 @@ from cladwatt.physics.field_methods import (
     emissivity_from_reference,
     reflected_temperature_from_foil,
 )
+from cladwatt.physics.radiometry import object_radiance
 from cladwatt.quantities import Quantity, Remark
 from cladwatt.survey.region import Region
 from cladwatt.types import BoolArray, FloatArray
@@ -147,6 +148,7 @@ def with_frame_references(
         known = known + BACKGROUND_EMISSIVITY_U * book.normal(
             f"region:{reading.region.id}", "emissivity"
         )
+        known = _at_lens(frame, known)
         offset = frame.calibration_offset(np.array([reading.reading]))[:, 0]
         limit = offset / frame.calibration
         off = abs(float(np.median(known)) - reading.reading)
@@ -181,6 +183,33 @@ def with_frame_references(
     return frame, tuple(remarks)
 
 
+def _at_lens(frame: FrameDraws, temperature: FloatArray) -> FloatArray:
+    """Return what a black thing shows at the lens through air and window, (count,). [K]"""
+    band, through = frame.band, frame.window_transmission
+    air, window = band.radiance(frame.air_temperature), band.radiance(frame.window_temperature)
+    before = frame.transmission * band.radiance(temperature) + (1 - frame.transmission) * air
+    emitted = (1 - through - frame.window_reflectance) * window
+    return band.temperature(through * before + frame.window_reflectance * air + emitted)
+
+
+def _before_window(frame: FrameDraws, reading: float) -> FloatArray:
+    """Return what arrives at the window, else at the lens, camera error undone, (count,). [K]"""
+    seen = reading + frame.calibration_offset(np.array([reading]))[:, 0]
+    if np.all(frame.window_transmission == 1):
+        return np.asarray(seen)
+    band = frame.band
+    before = object_radiance(
+        band.radiance(seen),
+        emissivity=1.0,
+        reflected_radiance=None,
+        window_transmission=frame.window_transmission,
+        window_reflectance=frame.window_reflectance,
+        window_radiance=band.radiance(frame.window_temperature),
+        window_reflected_radiance=band.radiance(frame.air_temperature),
+    )
+    return band.temperature(before)
+
+
 def _foil(frame: FrameDraws, reading: ReferenceReading, book: DrawBook) -> FloatArray | None:
     """Return draws of the reflected temperature by a foil, or by the value read from it."""
     owner = f"region:{reading.region.id}"
@@ -189,7 +218,7 @@ def _foil(frame: FrameDraws, reading: ReferenceReading, book: DrawBook) -> Float
         return book.quantity(owner, "value", reading.region.value) + spread
     if not np.isfinite(reading.reading):
         return None
-    seen = reading.reading + frame.calibration_offset(np.array([reading.reading]))[:, 0]
+    seen = _before_window(frame, reading.reading)
     emissivity = reading.region.band_emissivity
     assert emissivity is not None
     return spread + reflected_temperature_from_foil(
@@ -261,7 +290,7 @@ def _emissivity(
 ) -> FloatArray:
     """Return draws of the emissivity beside a patch or at a contact reading; NaN where none."""
     owner = f"region:{reading.region.id}"
-    seen = reading.reading + frame.calibration_offset(np.array([reading.reading]))[:, 0]
+    seen = _before_window(frame, reading.reading)
     if reading.region.role == "contact":
         contact = reading.region.value
         assert contact is not None
@@ -275,7 +304,7 @@ def _emissivity(
         )
     tape = reading.region.value
     assert tape is not None
-    beside = reading.beside + frame.calibration_offset(np.array([reading.beside]))[:, 0]
+    beside = _before_window(frame, reading.beside)
     emissivity = emissivity_from_reference(
         beside,
         seen,
