@@ -364,7 +364,7 @@ def test_no_survey_file(tmp_path):
         ("indoors = true", 'indoors = "yes"', "indoors is 'yes'; expected true or false"),
         ("indoors = true", "relative_humidity = 55", "expected 0 <= relative_humidity <= 1"),
         ("indoors = true", "wind_speed_m_s = -1", "expected 0 <= wind_speed <= 40 [m/s]"),
-        ("indoors = true", "distance_m = 0", "expected 0 < distance <= 200 [m]"),
+        ("indoors = true", "distance_m = 0", "expected 0 < distance <= 150 [m]"),
         ('unit = "C"', 'unit = "Celsius"', 'unit is \'Celsius\'; expected one of "C", "K", "F"'),
         ('unit = "C"', "u_unit = 3", "unit takes no uncertainty"),
         ('timezone = "+01:00"', 'timezone = "Mars/Olympus"', "timezone is 'Mars/Olympus'"),

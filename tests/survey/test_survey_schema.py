@@ -136,7 +136,7 @@ def uncommented(text):
         "u_pipe_outside_diameter_mm = ", "wall_temperature_C = ", "u_wall_temperature_C = ",
         "layers = ", "photo = ", "labels = ", "accuracy_coverage_factor = ", "tracer_", "u_tracer_",
         "scale = ", "offset = ", "spectral_response = ", "surroundings = ", "steam_pressure",
-        "u_steam_pressure",
+        "u_steam_pressure", "sky_", "u_sky_",
     ):  # fmt: skip
         text = "\n".join(row for row in text.splitlines() if not row.startswith(line))
     return text

@@ -6,6 +6,7 @@ from typing import Literal
 
 from cladwatt.materials.tables import MaterialTables, default_quantity
 from cladwatt.quantities import Quantity
+from cladwatt.survey.contradictions import ask_of_camera, ask_of_conditions, ask_of_pressure
 from cladwatt.survey.fault_list import FaultList, shown
 from cladwatt.survey.model import (
     AccuracyStatement,
@@ -43,6 +44,7 @@ def build_site(table: Table, tables: MaterialTables, faults: FaultList) -> Site:
                 f"expected {other}_deg beside it",
             )  # fmt: skip
     pressure = table.quantity("pressure")
+    ask_of_pressure(table, pressure, altitude, faults)
     if pressure is None and altitude is not None:
         from cladwatt.physics.air import pressure_at_altitude
 
@@ -69,6 +71,7 @@ def build_camera(
 
     `response` is its spectral response where it names the file of one.
     """
+    ask_of_camera(table, faults)
     lower, upper = table.number("band_lower"), table.number("band_upper")
     if (lower is None) != (upper is None):
         name = "band_lower" if lower is not None else "band_upper"
@@ -195,6 +198,7 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
     air = table.quantity("air_temperature")
     humidity = _default(table, "relative_humidity", "relative_humidity", tables)
     around = build_surroundings(table, air, humidity, tables, faults)
+    ask_of_conditions(table, air, around.sky_total, faults)
     return Conditions(
         air_temperature=air,
         surroundings_temperature=around.temperature,

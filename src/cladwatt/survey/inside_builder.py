@@ -179,12 +179,12 @@ def _agreed(
         )
         if difference > 0:
             faults.ask(
-                table.place, "fluid_temperature", found,
+                table.place, table.spelling("fluid_temperature"), found,
                 "fluid_temperature is used, as of superheated steam; check both",
             )  # fmt: skip
             return fluid
         faults.add(
-            table.place, "fluid_temperature", found,
+            table.place, table.spelling("fluid_temperature"), found,
             "steam cannot be colder than that; check both, gauge or absolute too, and keep the one"
             " that was measured",
         )  # fmt: skip

@@ -318,8 +318,9 @@ CONDITIONS = (
         default="0.5, u 0.2",
     ),
     Key(
-        "distance", "quantity", "Camera to pipe", "distance", 0.0, 200.0, lower_open=True,
-        cut=(0.05, 400.0), u_relative=0.1, example="3.0",
+        "distance", "quantity",
+        "Camera to pipe, for the air between; further off declare atmosphere_transmission instead",
+        "distance", 0.0, 150.0, lower_open=True, cut=(0.05, 150.0), u_relative=0.1, example="3.0",
     ),
     Key(
         "atmosphere_transmission", "quantity", "True transmission of the air path", "ratio",

@@ -14,6 +14,7 @@ from cladwatt.materials.tables import (
     pipe_size,
 )
 from cladwatt.quantities import Quantity
+from cladwatt.survey.contradictions import ask_of_layers
 from cladwatt.survey.fault_list import FaultList
 from cladwatt.survey.inside_builder import build_inside, build_tracing
 from cladwatt.survey.keys import UNKNOWN_WORD
@@ -53,6 +54,7 @@ def build_line(
     air = site_pressure or default_quantity("air_pressure", tables)
     inside = build_inside(table, air, faults)
     tracing = build_tracing(table, inside.temperature, faults)
+    ask_of_layers(table, layers, inside.temperature, faults)
     if faults.errors > before or cladding is None:
         return None
     factor = table.quantity("installation_factor")
