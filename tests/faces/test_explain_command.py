@@ -421,6 +421,23 @@ def test_inside_film_supports_and_an_air_gap_follow_too(cladwatt, survey, edit):
     assert {"R_film", "T_wall_sound", "s_sup", "q'_lag_sound"} <= set(page.by_symbol)
     checked, loss = page.by_symbol["q'_check"].value, page.by_symbol["q'_lag_sound"].value
     assert checked == pytest.approx(loss, rel=2e-3)
+    # the gap's curve is for 10 K between its faces: what they really have moves it a little
+    own, curve = (page.by_symbol[name].value for name in ("k_solid_gap_1", "k_1_sound"))
+    assert own == pytest.approx(curve, rel=0.05)
+
+
+def test_steam_by_its_pressure_that_cools_along_the_line_follows_too(cladwatt, survey, edit, draw):
+    edit("fluid_temperature_C = 180.0",
+         'steam_pressure_bar = 9.0\nsteam_pressure_is = "gauge"\nflow_kg_s = 0.05\n'
+         "specific_heat_J_kg_K = 2600")  # fmt: skip
+    draw("steam", ("north-1", "HS-101", {"start_m": 120.0}))
+    ended = cladwatt("explain", survey, "north-1")
+    assert ended.code == ExitCode.DONE, ended.err
+    page = Page(ended.out)
+    page.follow()
+    # saturated steam of 10.013 bar: 179.95 °C (any steam table)
+    assert page.by_symbol["T_start"].value == pytest.approx(453.10, abs=0.05)
+    assert page.by_symbol["T_in"].value < page.by_symbol["T_start"].value - 30
 
 
 HALL = SurfaceExchange(np.array([303.15]), np.array([301.15]), np.array([1.2]), np.array([0.2]),

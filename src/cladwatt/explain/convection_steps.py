@@ -30,7 +30,7 @@ from cladwatt.types import FloatArray, FloatLike
 __all__ = ["convection_steps"]
 
 LEMMON = "quartic fitted to Lemmon and Jacobsen 2004"
-VAPOUR = "quintic fitted to IAPWS R12-08, R15-11, R6-95"
+VAPOUR = "polynomial fitted to IAPWS R12-08, R15-11, R6-95"
 WILKE = "Wilke 1950; Mason and Saxena 1958"
 INCROPERA = "Incropera et al., section 9.9"
 HORIZONTAL = "Churchill and Chu 1975, horizontal cylinder"

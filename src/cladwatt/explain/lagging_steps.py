@@ -6,6 +6,8 @@ from itertools import pairwise
 
 import numpy as np
 
+from cladwatt.explain.gap_steps import GAP_CURVE, Gap, gap_steps
+from cladwatt.explain.inside_steps import inside_steps
 from cladwatt.explain.steps import Pad, Section, source_of
 from cladwatt.explain.surface_steps import exchange_steps
 from cladwatt.inverse.outer_balance import outer_flux
@@ -57,7 +59,7 @@ def lagging_sections(seen: Seen, sound: SoundDraws) -> tuple[Section, Section]:
 def _given(pad: Pad, seen: Seen) -> None:
     """Write down the inside of the pipe, and what an overridden diameter has left out."""
     line = seen.line_draws
-    _inside(pad, seen)
+    inside_steps(pad, seen)
     film = film_resistance(line)
     if seen.region.outside_diameter is not None:
         source = source_of(seen.line.pipe_outside_diameter, "")
@@ -70,14 +72,6 @@ def _given(pad: Pad, seen: Seen) -> None:
         source = source_of(seen.line.inside_film, "")
         pad.given("film_coefficient", "h_in", _known(line.film_coefficient), "W/(m² K)", source)
         pad.found("film_resistance", "R_film", film, "m K/W", "1 / (pi d h_in)", "d h_in")
-
-
-def _inside(pad: Pad, seen: Seen) -> None:
-    """Write down the inside temperature."""
-    source = source_of(seen.line.inside_temperature, "")
-    if seen.line.flow is not None and seen.line.specific_heat is not None:
-        source += ", falling along the line by its loss"
-    pad.given("inside_temperature", "T_in", _known(seen.line_draws.inside_temperature), "K", source)
 
 
 def _known(draws: FloatArray | None) -> FloatArray:
@@ -116,9 +110,8 @@ class _Through:
         for number, (symbol, value) in enumerate(zip(faces[1:], temperatures[1:], strict=True), 1):
             key = "solved_surface" if number == len(self.layers) else "solved_interface"
             pad.given(key, symbol, value, "K", how)
-        for number, (hot, cold) in enumerate(pairwise(faces)):
-            mean = self.layers[number].conductivity.mean(*temperatures[number : number + 2])
-            self.layer(number, hot, cold, mean, resistances[number])
+        for number, ends in enumerate(pairwise(faces)):
+            self.layer(number, ends, temperatures[number : number + 2], resistances[number])
         sum_of = " + ".join(f"R_{number}{suffix}" for number in range(1, len(self.layers) + 1))
         if len(self.layers) > 1:
             pad.found("lagging_resistance", f"R{suffix}", sum(resistances), "m K/W", sum_of,
@@ -148,9 +141,15 @@ class _Through:
         return temperatures, resistances
 
     def layer(
-        self, number: int, hot: str, cold: str, mean: FloatArray, resistance: FloatArray
+        self,
+        number: int,
+        ends: tuple[str, str],
+        temperatures: list[FloatArray],
+        resistance: FloatArray,
     ) -> None:
         """Write down one layer's mean conductivity and resistance; `number` from 0."""
+        (hot, cold), conductivity = ends, self.layers[number].conductivity
+        is_gap = self.seen.line.layers[number].kind == "air_gap"
         pad, suffix, one = self.pad, self.suffix, number + 1
         specified = self.seen.line_draws.layers
         assert specified is not None
@@ -161,10 +160,12 @@ class _Through:
             if not self.is_sound:
                 source = self.seen.line.layers[number].conductivity_factor.source
                 pad.given("conductivity_factor", f"f_{one}", own, "-", source)
-        curve = _curve(self.layers[number].conductivity)
-        pad.found("mean_conductivity", f"k_{one}{suffix}", mean, "W/(m K)",
-                  f"mean of k(T) between {hot} and {cold}; {curve}", f"{hot} {cold}",
-                  CARSLAW)  # fmt: skip
+        curve = _curve(conductivity, *temperatures)
+        pad.found("mean_conductivity", f"k_{one}{suffix}", conductivity.mean(*temperatures),
+                  "W/(m K)", f"mean of k(T) between {hot} and {cold}; {curve}", f"{hot} {cold}",
+                  GAP_CURVE if is_gap else CARSLAW)  # fmt: skip
+        if is_gap and self.is_sound:
+            gap_steps(pad, self.gap(one, ends, temperatures))
         inner = "d" + "".join(f" + 2 t_{below}" for below in range(1, one))
         thick = " ".join(f"t_{below}" for below in range(1, one + 1))
         pad.found(
@@ -172,6 +173,15 @@ class _Through:
             f"ln(({inner} + 2 t_{one}) / ({inner})) / (2 pi {factors}k_{one}{suffix})",
             f"d {thick} {factors}k_{one}{suffix}", ISO_12241,
         )  # fmt: skip
+
+    def gap(self, number: int, ends: tuple[str, str], temperatures: list[FloatArray]) -> Gap:
+        """Return a layer that is an air gap, `number` from 1."""
+        inner = np.asarray(_known(self.seen.line_draws.pipe_diameter))
+        for layer in self.layers[: number - 1]:
+            inner = inner + 2 * np.asarray(layer.thickness)
+        outer = inner + 2 * np.asarray(self.layers[number - 1].thickness)
+        declared = self.seen.line.layers[number - 1]
+        return Gap(number, declared, ends, (temperatures[0], temperatures[1]), (inner, outer))
 
     def check(self, surface_temperature: float, symbol: str) -> None:
         """Write down that the surface gives off what is conducted."""
@@ -184,10 +194,13 @@ class _Through:
                        f"pi D q_sound, to be compared with {symbol}", "D q_sound")  # fmt: skip
 
 
-def _curve(conductivity: ConductivityIntegral) -> str:
-    """Return the nodes of a conductivity curve as text."""
-    nodes = zip(conductivity.temperature_nodes, conductivity.conductivity_nodes, strict=True)
-    listed = ", ".join(f"{k:.7g} at {temperature:g} K" for temperature, k in nodes)
+def _curve(conductivity: ConductivityIntegral, *faces: FloatArray) -> str:
+    """Return as text those nodes of a conductivity curve that lie between two faces, or next."""
+    at, k = conductivity.temperature_nodes, conductivity.conductivity_nodes
+    first = max(int(np.searchsorted(at, np.min(faces), side="right")) - 1, 0)
+    last = int(np.searchsorted(at, np.max(faces))) + 1
+    nodes = zip(at[first:last], k[first:last], strict=True)
+    listed = ", ".join(f"{value:.7g} at {temperature:g} K" for temperature, value in nodes)
     return f"k = {listed}, straight between"
 
 
@@ -216,7 +229,7 @@ def result_section(
         return None
     pad = Pad()
     if sound is None:
-        _inside(pad, seen)
+        inside_steps(pad, seen)
     found = lagging_resistance_from_surface(line.inside_temperature, surface_temperature, heat_loss)
     formula, inputs = "(T_in - T_face) / q'", "T_in T_face q'"
     film = film_resistance(line)

@@ -261,6 +261,8 @@ class _Explained:
                     (float(table.resistance[at]), float(table.resistance_low[at]),
                      float(table.resistance_high[at])),
                     float(table.resistance_ratio[at]),
+                    region.verdict.level,
+                    (region.verdict.reason, *region.remarks),
                 )  # fmt: skip
         return None
 

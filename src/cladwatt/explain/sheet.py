@@ -30,13 +30,21 @@ class Sheet:
         self.pad, self.suffix = pad, suffix
 
     def found(
-        self, key: str, symbol: str, value: FloatLike, unit: str, formula: str, source: str = ""
+        self,
+        key: str,
+        symbol: str,
+        value: FloatLike,
+        unit: str,
+        formula: str,
+        source: str = "",
+        *,
+        others: str = "",
     ) -> None:
-        """Write down a step; its inputs are read off the formula."""
+        """Write down a step; its inputs are read off the formula, `others` are added to them."""
         own = [name for _, name, _, _ in _FORMATTER.parse(formula) if name]
         words = set(re.findall(r"[A-Za-z]\w*", formula.format(**dict.fromkeys(own, " "))))
         inputs = [name + self.suffix for name in dict.fromkeys(own)]
-        inputs += [name for name in _SHARED if name in words]
+        inputs += [name for name in _SHARED if name in words] + others.split()
         shown = formula.format(**{name: name + self.suffix for name in own})
         self.pad.found(key, symbol + self.suffix, value, unit, shown, " ".join(inputs), source)
 

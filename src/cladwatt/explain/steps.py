@@ -85,6 +85,10 @@ class Reported:
     resistance: tuple[float, float, float]
     """[m K/W]"""
     resistance_ratio: float
+    verdict: str = ""
+    """Of the region: quantified, indicative or not quantified."""
+    reasons: tuple[Remark, ...] = ()
+    """Why, and what else is said of the region."""
 
 
 @dataclass(frozen=True)

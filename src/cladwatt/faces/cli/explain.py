@@ -186,7 +186,7 @@ def _row(band: "BandOfAngle", names: Sequence[str], *, mark: str) -> str:
 def _reported(explanation: "Explanation", width: int) -> Iterator[str]:
     """Yield what the assessment says of the same station."""
     from cladwatt.report.numbers import CONSOLE, format_interval
-    from cladwatt.report.wording import text
+    from cladwatt.report.wording import sentence, text
     from cladwatt.results.assessment import Interval
 
     found = explanation.reported
@@ -205,3 +205,7 @@ def _reported(explanation: "Explanation", width: int) -> Iterator[str]:
     for key, shown in rows:
         yield f"  {text(key):<32}  {shown}"
     yield from wrap(text("explain.reported_why"), width)
+    verdict = text(f"verdict.{found.verdict.replace(' ', '_')}")
+    yield from ["", text("explain.reported_verdict", verdict=verdict)]
+    for reason in found.reasons:
+        yield from wrap(sentence(reason), width, initial_indent="  ", subsequent_indent="  ")
