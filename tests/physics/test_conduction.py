@@ -5,7 +5,7 @@ from pathlib import Path
 import ht
 import numpy as np
 import pytest
-from scipy.integrate import quad
+from scipy.integrate import quad, solve_bvp
 
 from cladwatt.errors import InputError
 from cladwatt.physics.conduction import (
@@ -175,6 +175,27 @@ def test_fin_length():
     assert 200.0 * 1e-3 * curvature == pytest.approx(10.0 * profile[1], rel=1e-5)
     # 1 mm of aluminium spreads heat over a decimetre or two
     assert 0.1 < length < 0.2
+
+
+def test_a_step_under_a_sheet_is_spread_over_the_fin_length(evidence):
+    # k t T'' = h T - g(x), solved as a boundary value problem; g steps from 0 to 1 at x = 0
+    thickness, sheet, total = 0.8e-3, 50.0, 12.0
+    length = float(fin_length(thickness, sheet, total))
+    ends = 12 * length
+
+    def slope(x, y):
+        step = 0.5 * (1 + np.tanh(x / (0.01 * length)))
+        return np.vstack([y[1], (total * y[0] - step) / (sheet * thickness)])
+
+    def at_ends(left, right):
+        return np.array([left[0], right[0] - 1 / total])
+
+    nodes = np.linspace(-ends, ends, 2001)
+    found = solve_bvp(slope, at_ends, nodes, np.zeros((2, 2001)), tol=1e-6, max_nodes=50_000)
+    beside = np.array([-2.0, -1.0, 0.0]) * length
+    expected = found.sol(beside)[0] * total
+    ours = 0.5 * np.exp(beside / length)
+    evidence("sheet_as_fin", "share of the step", ours, expected, rel=2e-3)
 
 
 def test_critical_radius_is_where_the_resistance_is_least():

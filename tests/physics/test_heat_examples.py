@@ -7,7 +7,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
-from cladwatt.physics.conduction import critical_radius, cylinder_resistance
+from cladwatt.physics.conduction import critical_radius, cylinder_resistance, fin_length
 from cladwatt.physics.convection import (
     nusselt_churchill_bernstein,
     nusselt_churchill_chu_horizontal,
@@ -54,6 +54,7 @@ CHECKS = {
     "D7": "kreith_2_3",
     "D8": "geankoplis_4_3_2",
     "D12": "sukhatme_2_5",
+    "D13": "incropera_3_9",
 }  # fmt: skip
 
 
@@ -284,3 +285,18 @@ def test_d12_lagging_a_small_tube(agrees):
     diameter = 0.02 + 2 * np.linspace(0.0, 0.05, 501)
     total = film(500.0, 0.016) + cylinder_resistance(0.02, diameter, 0.2) + film(10.0, diameter)
     agrees("D12", "critical_radius", 50 * diameter[np.argmin(total)])
+
+
+@pytest.mark.parametrize(
+    ("rod", "conductivity"), [("copper", 398.0), ("aluminium", 180.0), ("steel", 14.0)]
+)
+def test_d13_heat_runs_along_a_fin(rod, conductivity, agrees, evidence):
+    # a rod gives off heat all round: a sheet of a quarter of its diameter gives off as much
+    length = fin_length(0.005 / 4, conductivity, 100.0)
+    section = PI * 0.005**2 / 4
+    agrees("D13", f"loss_{rod}", conductivity * section * 75.0 / length)
+    row = RESULTS["D13", f"loss_{rod}"]
+    printed, rel = float(row["published"]), float(row["tolerance_percent"]) / 100
+    by_hand = 75.0 * math.sqrt(100.0 * PI * 0.005 * conductivity * section)
+    evidence.recomputed("incropera_3_9", f"loss {rod}", by_hand, printed, unit="W", rel=rel,
+                        by="formula by hand")  # fmt: skip

@@ -13,6 +13,7 @@ from cladwatt.inverse.cautions import (
     remarks_of,
     verdict_caps,
 )
+from cladwatt.inverse.cladding_fin import spread_remark
 from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
@@ -203,6 +204,7 @@ def _concluded(
         probability_aged=aged,
         verdict=as_verdict(inputs, shares, narrowed, missing_of(seen)),
         stretches=stretches,
+        remarks=(*remarks_of(seen), *spread_remark(seen, sound, stretches)),
         variance_shares=shares,
         draws=draws,
     )
