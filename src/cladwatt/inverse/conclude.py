@@ -193,7 +193,6 @@ def _concluded(
         specified_loss=_interval(draws, "specified_loss"),
         declared_loss=declared_loss,
         declared_resistance=resistances.declared,
-        remarks=bare.remarks + declared_condition(declared_loss),
         excess=_interval(draws, "excess"),
         resistance=resistances.found,
         specified_resistance=resistances.specified,
@@ -204,7 +203,9 @@ def _concluded(
         probability_aged=aged,
         verdict=as_verdict(inputs, shares, narrowed, missing_of(seen)),
         stretches=stretches,
-        remarks=(*remarks_of(seen), *spread_remark(seen, sound, stretches)),
+        remarks=(
+            bare.remarks + declared_condition(declared_loss) + spread_remark(seen, sound, stretches)
+        ),
         variance_shares=shares,
         draws=draws,
     )

@@ -461,7 +461,8 @@ PIECE = (
 LAYER = (
     Key(
         "kind", "choice",
-        "Lagging, or air between two surfaces: a gap, or a poor contact some tenths of a mm wide", choices=("lagging", "air_gap"),
+        "Lagging, or air between two surfaces: a gap, or a poor contact some tenths of a mm wide",
+        choices=("lagging", "air_gap"),
         default="lagging", example='"lagging"',
     ),
     Key(
