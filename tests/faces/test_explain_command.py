@@ -297,6 +297,9 @@ CORNERS = {
     "riser": "R11",
     "outdoors in wind": "R13",
     "chilled": "R14",
+    "layers and an air gap": "R21",
+    "air that cools along the line, film inside": "R26",
+    "frost": "R33",
 }
 
 
