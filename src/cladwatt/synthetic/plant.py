@@ -143,6 +143,8 @@ class PlantFrame:
     """Which way the wind blows along an inclined run."""
     sheltered: bool = False
     """Whether the wind's uncertainty is left to the default for sheltered pipes."""
+    day_before: Literal["", "sun", "rain"] = ""
+    """What had been within a day, its traces gone."""
     camera_window: tuple[float, float] | None = None
     """Window the camera had been told of: its transmission and temperature. [-], [°C]"""
     upper_end_C: float | None = None
@@ -231,6 +233,7 @@ def _frame(table: dict[str, Any]) -> PlantFrame:
         pieces=tuple(_piece(piece) for piece in table.get("pieces", ())),
         sun=tuple(float(part) for part in table.get("sun", ())), wet=bool(table.get("wet", False)),
         wind_along=table.get("wind_along", ""), sheltered=bool(table.get("sheltered", False)),
+        day_before=table.get("day_before", ""),
         camera_window=_camera_window(table), upper_end_C=table.get("upper_end_C"),
     )  # fmt: skip
 

@@ -71,7 +71,9 @@ def slanted_coefficient(
     )  # fmt: skip
     prandtl = float(np.mean(film.prandtl))
     curve = np.log(nusselt_churchill_bernstein(_REYNOLDS, prandtl))
-    buoyant = np.exp(np.interp(np.log(free), curve, np.log(_REYNOLDS)))
+    # so fast that, straight up past the slanting pipe, it cools as free convection does
+    straight = free / yaw_factor_morgan(90.0 - inclination_deg)
+    buoyant = np.exp(np.interp(np.log(straight), curve, np.log(_REYNOLDS)))
     buoyant = buoyant * np.sign(surface_temperature - air_temperature)
     wind = wind_speed * diameter / film.kinematic_viscosity
     angle = np.radians(wind_angle_deg)

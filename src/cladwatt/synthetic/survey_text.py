@@ -130,6 +130,10 @@ def _settings(frame: PlantFrame) -> list[str]:
         transmission, celsius = frame.camera_window
         parts.append(f"camera_window_transmission = {transmission:g}")
         parts.append(f"camera_window_temperature_C = {celsius:g}")
+    if frame.day_before:
+        parts.append(f"{frame.day_before}_last_24h = true")
+    if frame.day_before == "rain":
+        parts.append("surface_wet = false")
     if frame.upper_end_C is not None:
         parts.append(f"range_upper_C = {frame.upper_end_C:g}")
     return parts
