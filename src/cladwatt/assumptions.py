@@ -21,6 +21,8 @@ _CONDITION_UNITS = {
     "sky_view_factor": "-",
     "cloud_cover": "-",
     "solar_irradiance": "W/m2",
+    "hours_since_rain": "h",
+    "hours_since_sun": "h",
 }
 
 

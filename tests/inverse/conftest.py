@@ -21,6 +21,7 @@ from cladwatt.inverse.observe import Observed, observe_region
 from cladwatt.inverse.region_estimate import estimate_regions
 from cladwatt.inverse.result import RegionResult
 from cladwatt.inverse.seen import FrameImage
+from cladwatt.inverse.water_draws import WaterDraws
 from cladwatt.measure.noise import FrameNoise
 from cladwatt.physics.band import Band
 from cladwatt.physics.conduction import ConductivityIntegral
@@ -105,6 +106,11 @@ def hall(**changes: Any) -> Conditions:
     return Conditions(**fields)
 
 
+def exact_water(count: int) -> WaterDraws:
+    """Water of 0.96 that covers from half a kelvin below the dew point; 0.2 mm after rain."""
+    return WaterDraws(*(np.full(count, value) for value in (0.96, 0.96, 0.5, 2e-4)))
+
+
 @dataclass(frozen=True)
 class Bench:
     """A line, a frame and a region, and what comes out of them."""
@@ -121,7 +127,7 @@ class Bench:
     seed: int = 1
     count: int = 200
     law_exact: bool = True
-    """Whether the convection law is taken as exact."""
+    """Whether the convection law, and what water does, are taken as exact."""
     noise: float = 0.0
     """Of a pixel. [K]"""
     optics: Any = None
@@ -142,7 +148,9 @@ class Bench:
         frame = draw_frame(self.book, "f1", self.conditions, self.camera, self.site)
         assert frame is not None
         if self.law_exact:
-            frame = replace(frame, convection_factor=np.ones(self.count))
+            frame = replace(
+                frame, convection_factor=np.ones(self.count), water=exact_water(self.count)
+            )
         return frame
 
     def line_draws(self) -> LineDraws:

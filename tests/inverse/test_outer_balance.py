@@ -7,7 +7,7 @@ import psychrolib
 import pytest
 
 from cladwatt.inverse.outer_balance import (
-    WATER_EMISSIVITY,
+    Vapour,
     may_condense,
     outer_flux,
     wetted_emissivity,
@@ -25,7 +25,9 @@ from cladwatt.quantities import Quantity
 AIR, HUMIDITY = 298.15, 0.65
 DEW = float(dew_point(AIR, HUMIDITY))
 STILL = SurfaceExchange(AIR, AIR, 0.0, 0.15, 0.9)
-HUMID = np.array(HUMIDITY)
+WATER_EMISSIVITY = 0.96
+"""Incropera et al., table A.11."""
+HUMID = Vapour(np.array(HUMIDITY), WATER_EMISSIVITY, 0.5)
 
 
 def test_above_the_dew_point_the_surface_is_dry():
@@ -112,9 +114,9 @@ def test_a_hopelessly_cold_draw_still_has_a_number_and_nan_stays():
 
 
 def test_draws_and_bands_broadcast():
-    humidity = np.array([0.3, 0.9])[:, None, None]
+    humid = Vapour(np.array([0.3, 0.9]), np.full(2, 0.96), np.full(2, 0.5)).beside()
     surface = np.full((2, 3, 4), 283.15)
-    flux = outer_flux(surface, STILL, humidity)
+    flux = outer_flux(surface, STILL, humid)
     dry = surface_heat_flux(surface, STILL)
     assert flux.shape == (2, 3, 4)
     assert np.array_equal(flux[0], dry[0])  # dew point 6 °C

@@ -7,7 +7,7 @@ import numpy as np
 import pytest
 from scipy.optimize import brentq
 
-from cladwatt.inverse.outer_balance import outer_flux
+from cladwatt.inverse.outer_balance import outer_flux, vapour_of
 from cladwatt.inverse.sound import film_resistance, outside_film, sound_draws
 from cladwatt.physics.condensation import latent_heat_flux
 from cladwatt.physics.humidity import dew_point
@@ -115,7 +115,7 @@ def test_what_crosses_the_lagging_is_what_air_surroundings_and_vapour_bring(chil
     assert np.all(surface < frame.dew_point)
     exchange = line.exchange(frame, line.lagged_diameter)
     dry = surface_heat_flux(surface, exchange)
-    wet = outer_flux(surface, exchange, frame.relative_humidity)
+    wet = outer_flux(surface, exchange, vapour_of(frame, line))
     perimeter = math.pi * line.lagged_diameter
     assert sound.specified_loss == pytest.approx(perimeter * wet, rel=1e-3)
     assert np.all(wet < 1.2 * dry)  # both negative: vapour brings at least a fifth more

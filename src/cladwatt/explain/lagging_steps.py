@@ -187,8 +187,8 @@ class _Through:
         """Write down that the surface gives off what is conducted."""
         seen = self.seen
         exchange = seen.line_draws.exchange(seen.frame, _known(seen.line_draws.lagged_diameter))
-        exchange_steps(self.pad, surface_temperature, exchange, seen.humidity, suffix=self.suffix)
-        flux = outer_flux(np.array([surface_temperature]), exchange, seen.humidity)
+        exchange_steps(self.pad, surface_temperature, exchange, seen.vapour, suffix=self.suffix)
+        flux = outer_flux(np.array([surface_temperature]), exchange, seen.vapour)
         loss = math.pi * np.asarray(exchange.diameter) * flux
         self.pad.found("closes", "q'_check", loss, "W/m",
                        f"pi D q_sound, to be compared with {symbol}", "D q_sound")  # fmt: skip

@@ -312,7 +312,7 @@ def recorded_steps(
         _radiance(pad, band, lens_temperature + offset, of, "lens_radiance_true")
     normal = "eps_n"
     if _shows_water(lens_temperature, view_angle, frame, line, surface_temperature):
-        water = float(frame.water_film_emissivity[0])
+        water = float(frame.water.band_emissivity[0])
         normal, film = "eps_w", np.maximum(line.band_emissivity, water)
         pad.found(
             "water_film", normal, film, "-",

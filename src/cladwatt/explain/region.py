@@ -205,7 +205,7 @@ class _Explained:
         recorded_steps(pad, lens, angle, self.nominal, seen.frame, seen.line_draws, surface)
         if seen.frame.wind_speed is not None and math.isfinite(surface):
             exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
-            exchange_steps(pad, surface, exchange, seen.humidity)
+            exchange_steps(pad, surface, exchange, seen.vapour)
         return BandOfAngle(share, tuple(pad.steps))
 
     def face_loss(self, pad: Pad, bands: tuple[BandOfAngle, ...], balance: Balance) -> float | None:

@@ -9,8 +9,7 @@ from cladwatt.explain.steps import Pad, Section, median_of, source_of
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.outer_balance import (
-    FILM_SPAN,
-    WATER_EMISSIVITY,
+    Vapour,
     outer_flux,
     wetted_emissivity,
 )
@@ -162,7 +161,7 @@ def exchange_steps(
     pad: Pad,
     surface_temperature: float,
     exchange: SurfaceExchange,
-    humidity: FloatArray | None,
+    vapour: Vapour | None,
     *,
     suffix: str = "",
 ) -> None:
@@ -175,8 +174,8 @@ def exchange_steps(
         [K]
     exchange : SurfaceExchange
         One draw.
-    humidity : (1,) array or None
-        Of the air where its vapour may condense on the line.
+    vapour : Vapour or None
+        That may condense on the line, one draw.
     suffix : str
         Behind the symbols that belong to this surface temperature.
 
@@ -190,10 +189,10 @@ def exchange_steps(
     fluxes = surface_fluxes(surface, exchange)
     sheet.found("convective_flux", "q_conv", fluxes.convection, "W/m²", "{h_c} ({T_s} - T_air)")
     emissivity, radiation = "eps_tot", fluxes.radiation
-    if humidity is not None:
-        wetted = wetted_emissivity(surface, exchange, humidity)
+    if vapour is not None:
+        wetted = wetted_emissivity(surface, exchange, vapour)
         if (wetted != exchange.total_emissivity).any():
-            emissivity = _wetted(sheet, surface, exchange, humidity, wetted)
+            emissivity = _wetted(sheet, surface, exchange, vapour, wetted)
             radiation = radiative_flux(
                 surface,
                 emissivity=wetted,
@@ -204,39 +203,38 @@ def exchange_steps(
         f"{emissivity} {STEFAN_BOLTZMANN:.7g} ({{T_s}}^4 - T_sur^4)", "Stefan-Boltzmann",
     )  # fmt: skip
     formula = "{q_conv} + {q_rad} - q_sun"
-    if humidity is not None:
-        _latent(sheet, surface, exchange, humidity)
+    if vapour is not None:
+        _latent(sheet, surface, exchange, vapour)
         formula += " + {q_lat}"
-    sheet.found("flux", "q", outer_flux(surface, exchange, humidity), "W/m²", formula)
+    sheet.found("flux", "q", outer_flux(surface, exchange, vapour), "W/m²", formula)
 
 
 def _wetted(
     sheet: Sheet,
     surface: FloatArray,
     exchange: SurfaceExchange,
-    humidity: FloatArray,
+    vapour: Vapour,
     wetted: FloatArray,
 ) -> str:
     """Write down the emissivity of what has condensed, and return its symbol."""
-    dew = dew_point(exchange.air_temperature, np.clip(humidity, 0.01, 1.0))
-    formula = f"film of water below T_dew: the larger of {WATER_EMISSIVITY:g} and eps_tot"
-    if (dew - surface < FILM_SPAN).any():
-        formula = f"eps_tot + {1 / FILM_SPAN:g} (T_dew - {{T_s}}) ({WATER_EMISSIVITY:g} - eps_tot)"
+    dew = dew_point(exchange.air_temperature, np.clip(vapour.relative_humidity, 0.01, 1.0))
+    film, span = (float(np.ravel(part)[0]) for part in vapour[1:])
+    formula = f"film of water below T_dew: the larger of {film:.10g} and eps_tot"
+    if (dew - surface < span).any():
+        formula = f"eps_tot + {1 / span:.10g} (T_dew - {{T_s}}) ({film:.10g} - eps_tot)"
     sheet.found("wetted_emissivity", "eps_wet", wetted, "-", formula,
                 "Incropera et al., table A.11")  # fmt: skip
     return "{eps_wet}"
 
 
-def _latent(
-    sheet: Sheet, surface: FloatArray, exchange: SurfaceExchange, humidity: FloatArray
-) -> None:
+def _latent(sheet: Sheet, surface: FloatArray, exchange: SurfaceExchange, vapour: Vapour) -> None:
     """Write down the heat of condensing vapour."""
     coefficient = surface_coefficients(surface, exchange)[0]
     air, pressure = exchange.air_temperature, exchange.pressure
     flux = latent_heat_flux(
         surface,
         air_temperature=air,
-        relative_humidity=humidity,
+        relative_humidity=vapour.relative_humidity,
         convection_coefficient=coefficient,
         pressure=pressure,
     )
@@ -258,7 +256,7 @@ def _latent(
     mass = vapour_mass_flux(
         surface,
         air_temperature=air,
-        relative_humidity=humidity,
+        relative_humidity=vapour.relative_humidity,
         convection_coefficient=coefficient,
         pressure=pressure,
     )

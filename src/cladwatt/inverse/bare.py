@@ -111,7 +111,7 @@ def bare_draws(seen: Seen, run: Run, sound_at: BoolArray, base: FloatArray) -> B
     probability = pipe_seen * odds / (1 + odds)
     wall = inside - WALL_DROP * drop * book.uniform(seen.owner, "bare_wall")
     ends = np.exp(ENDS_U * book.normal(seen.owner, "bare_ends"))
-    bare = outer_flux(wall, bare_line.exchange(seen.frame, pipe), seen.humidity) * ends
+    bare = outer_flux(wall, bare_line.exchange(seen.frame, pipe), seen.vapour) * ends
     all_round = bare * pipe / line.lagged_diameter
     share = SECTOR_SHARE[0] + np.ptp(SECTOR_SHARE) * book.uniform(owner, "sector_share")
     sector = share * all_round + (1 - share) * base

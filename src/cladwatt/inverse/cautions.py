@@ -3,10 +3,13 @@
 import numpy as np
 
 from cladwatt.inverse.face import surface_temperature_draws
+from cladwatt.inverse.film_states import film_remarks, fits_both
+from cladwatt.inverse.rain import DAY_HOURS, MAY_BE_WET, RainLeft, had_rained
 from cladwatt.inverse.seen import Seen
-from cladwatt.inverse.steady_state import is_settled
+from cladwatt.inverse.steady_state import is_settled, time_to_forget_sun
+from cladwatt.physics.clear_sky import HORIZON_DEG
 from cladwatt.physics.constants import ZERO_CELSIUS
-from cladwatt.quantities import Remark
+from cladwatt.quantities import Quantity, Remark
 from cladwatt.survey.model import Conditions
 
 __all__ = ["cautions_of", "in_the_sun", "missing_of", "refusals_of", "remarks_of", "verdict_caps"]
@@ -91,6 +94,7 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
     if tracer.kind != "none":
         power = () if tracer.power is None else (("power_W_per_m", tracer.power.value),)
         remarks.append(Remark("remark.tracer_heat", power))
+    remarks.extend(film_remarks(seen))
     humidity = seen.conditions.relative_humidity
     if seen.gain and humidity is not None and humidity.is_default:
         remarks.append(Remark("remark.humidity_assumed", (("share", humidity.value),)))
@@ -121,18 +125,39 @@ def _mirrors_a_neighbour(seen: Seen) -> bool:
     return standing_out > max(MIRRORED_LEAST, MIRRORED_SHARE * above)
 
 
-def refusals_of(seen: Seen) -> tuple[Remark, ...]:
+def refusals_of(seen: Seen, rain: RainLeft | None = None) -> tuple[Remark, ...]:
     """Return the reasons that allow no number at all.
 
+    Parameters
+    ----------
+    seen : Seen
+    rain : RainLeft, optional
+        What of the rain may still be there.
+
+    Notes
+    -----
     Water evaporates from a wet surface that is warmer than the dew point, and takes heat that
     the image does not show.
     """
     reasons = []
     if not seen.diameter_known:
         reasons.append(Remark("not_quantified.no_diameter"))
-    if seen.conditions.surface_wet and not seen.below_dew_point[seen.usable].all():
-        reasons.append(Remark("not_quantified.wet_surface"))
+    if not seen.below_dew_point[seen.usable].all():
+        if seen.conditions.surface_wet:
+            reasons.append(Remark("not_quantified.wet_surface"))
+        elif rain is not None and rain.share > MAY_BE_WET:
+            reasons.append(_may_be_wet(seen.conditions, rain))
     return tuple(reasons)
+
+
+def _may_be_wet(conditions: Conditions, rain: RainLeft) -> Remark:
+    since = conditions.hours_since_rain
+    parameters = [("share", rain.share)]
+    if since is not None:
+        parameters.append(("hours", since.value))
+    if np.isfinite(rain.drying_hours):
+        parameters.append(("drying_hours", rain.drying_hours))
+    return Remark("not_quantified.may_be_wet", tuple(parameters))
 
 
 def in_the_sun(conditions: Conditions) -> bool:
@@ -148,10 +173,37 @@ def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
     reasons = {
         "indicative.sun": in_the_sun(conditions),
         "indicative.traced": seen.line.tracing.kind != "none",
-        "indicative.rain": conditions.indoors is False and bool(conditions.rain_last_24h),
+        "indicative.sun_unknown": _sun_is_unknown(conditions),
+        "indicative.rain": had_rained(conditions) and _within_a_day(conditions.hours_since_rain),
         "indicative.not_steady": not is_settled(seen.line),
-        "indicative.sun_before": conditions.indoors is False and bool(conditions.sun_last_24h),
+        "indicative.sun_before": _sun_lingers(seen),
         "indicative.below_dew_point": bool(below > 0.05),
+        "indicative.wet_or_dry": fits_both(seen),
         "indicative.mostly_masked": bool(np.isfinite(seen.lens).mean() < 0.5),
     }
     return tuple(Remark(key) for key, holds in reasons.items() if holds)
+
+
+def _sun_is_unknown(conditions: Conditions) -> bool:
+    """Return whether the sun was up over an outdoor pipe and nobody said if it shone there."""
+    elevation = conditions.sun_elevation_deg
+    undeclared = conditions.sun_on_pipe is None and conditions.solar_irradiance is None
+    return elevation is not None and elevation > HORIZON_DEG and undeclared
+
+
+def _within_a_day(hours: Quantity | None) -> bool:
+    return hours is None or hours.value <= DAY_HOURS
+
+
+def _sun_lingers(seen: Seen) -> bool:
+    """Return whether the cladding and lagging may still hold heat of the last day's sun."""
+    conditions = seen.conditions
+    if conditions.indoors is not False or not conditions.sun_last_24h:
+        return False
+    if conditions.hours_since_sun is None:
+        return True
+    surface = float(np.nanmedian(seen.median_temperature[seen.usable]))
+    above_air = surface - float(np.median(seen.frame.air_temperature))
+    absorptance = float(np.median(seen.line_draws.solar_absorptance))
+    needed = time_to_forget_sun(seen.line, absorptance=absorptance, above_air=above_air)
+    return needed is None or conditions.hours_since_sun.value * 3600 < needed

@@ -18,7 +18,7 @@ from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.law_spread import with_own_spread
 from cladwatt.inverse.line_draws import LineDraws
-from cladwatt.inverse.outer_balance import may_condense, outer_flux
+from cladwatt.inverse.outer_balance import outer_flux, vapour_of
 from cladwatt.inverse.result import ComponentResult, Interval, interval_of
 from cladwatt.inverse.seen import FrameImage
 from cladwatt.inverse.sound import sound_draws
@@ -103,8 +103,7 @@ def estimate_component(
     clad = line if lagged else _bare(line, emissivity)
     frame = with_own_spread(frame, clad, diameter, temperature)
     exchange = clad.exchange(frame, diameter)
-    humidity = frame.relative_humidity if may_condense(frame, line) else None
-    per_metre = math.pi * diameter * outer_flux(temperature, exchange, humidity)
+    per_metre = math.pi * diameter * outer_flux(temperature, exchange, vapour_of(frame, line))
     if lagged and (sound := sound_draws(line, frame)) is not None:
         # such lengths are printed of the line as clad, not of what the box's own surface shows
         per_metre = sound.heat_loss

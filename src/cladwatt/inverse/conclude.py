@@ -178,7 +178,7 @@ def _concluded(
         spot_pixels=seen.camera.spot_pixels,
         infeasible_share=balance.infeasible,
         caps=verdict_caps(seen),
-        refusals=refusals_of(seen),
+        refusals=refusals_of(seen, balance.rain),
     )
     resistances = resistances_of(seen, draws.get("heat_loss"), sound)
     bare = _without_balance(seen, station_table(seen, loss, sound))
@@ -314,7 +314,7 @@ def _visible_rise(seen: Seen, balance: Balance) -> float:
     )[:, 0]
     exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
     temperature = np.fmax(temperature, COLDEST)
-    cooler, warmer = (outer_flux(temperature[:, side], exchange, seen.humidity) for side in (0, 1))
+    cooler, warmer = (outer_flux(temperature[:, side], exchange, seen.vapour) for side in (0, 1))
     slope = float(np.median(warmer - cooler))
     if not slope > 0:
         return 0.0

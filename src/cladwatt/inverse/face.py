@@ -11,14 +11,20 @@ import numpy as np
 
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
-from cladwatt.inverse.outer_balance import may_condense, outer_flux
+from cladwatt.inverse.outer_balance import may_condense, outer_flux, vapour_of
 from cladwatt.measure.face_bands import FaceBands
 from cladwatt.physics.emissivity import directional_emissivity
 from cladwatt.physics.lagged_pipe import SurfaceExchange
 from cladwatt.physics.radiometry import object_radiance
 from cladwatt.types import FloatArray, FloatLike
 
-__all__ = ["COLDEST", "FaceDraws", "face_draws", "surface_temperature_draws"]
+__all__ = [
+    "COLDEST",
+    "FaceDraws",
+    "dry_and_wet_readings",
+    "face_draws",
+    "surface_temperature_draws",
+]
 
 NODES = (17, 81)
 NODE_SPACING = 2.5
@@ -67,7 +73,9 @@ def face_draws(
     flux = None
     if frame.wind_speed is not None:
         exchange = _beside(line.exchange(frame, diameter))
-        flux = outer_flux(np.fmax(temperature, COLDEST), exchange, _humidity(frame, line))
+        vapour = vapour_of(frame, line)
+        beside = None if vapour is None else vapour.beside()
+        flux = outer_flux(np.fmax(temperature, COLDEST), exchange, beside)
     shares = face.extent / face.extent.sum()
     weights = np.concatenate(
         [
@@ -105,16 +113,34 @@ def surface_temperature_draws(
     frame : FrameDraws
     line : LineDraws
     """
-    dry = _seen_through(lens_temperature, view_angle, frame, line, line.band_emissivity)
     dew = frame.dew_point
     if dew is None or not may_condense(frame, line):
-        return dry
-    # below the dew point the surface shows a film of water, whatever is under it
-    film = np.maximum(line.band_emissivity, frame.water_film_emissivity)
-    wet = _seen_through(lens_temperature, view_angle, frame, replace(line, is_metal=False), film)
+        return _seen_through(lens_temperature, view_angle, frame, line, line.band_emissivity)
+    dry, wet = dry_and_wet_readings(lens_temperature, view_angle, frame, line)
     below = dew[:, None, None]
     # on bright cladding a film shows less radiance than the dry metal would mirror: NaN if dry
     return np.asarray(np.where(~(dry >= below) & (wet < below), wet, dry))
+
+
+def dry_and_wet_readings(
+    lens_temperature: FloatArray, view_angle: FloatArray, frame: FrameDraws, line: LineDraws
+) -> tuple[FloatArray, FloatArray]:
+    """Return what values at the lens read as cladding and as a film of water on it. [K]
+
+    Parameters
+    ----------
+    lens_temperature, view_angle, frame, line
+        As for `surface_temperature_draws`.
+
+    Returns
+    -------
+    dry, wet : (count, n_bands, n_values) array
+        Below the dew point the surface shows the film, whatever is under it.
+    """
+    dry = _seen_through(lens_temperature, view_angle, frame, line, line.band_emissivity)
+    film = np.maximum(line.band_emissivity, frame.water.band_emissivity)
+    wet = _seen_through(lens_temperature, view_angle, frame, replace(line, is_metal=False), film)
+    return dry, wet
 
 
 def _seen_through(
@@ -141,13 +167,6 @@ def _seen_through(
         window_reflected_radiance=air_radiance,
     )
     return band.temperature(surface)
-
-
-def _humidity(frame: FrameDraws, line: LineDraws) -> FloatArray | None:
-    """Return the air's humidity where its vapour may condense on the line, (count, 1, 1)."""
-    if frame.relative_humidity is None or not may_condense(frame, line):
-        return None
-    return frame.relative_humidity[:, None, None]
 
 
 def _beside(exchange: SurfaceExchange) -> SurfaceExchange:

@@ -60,7 +60,7 @@ def flux_bounds(seen: Seen) -> Bounds:
     if inside is None:
         return Bounds(-unbounded, unbounded)
     exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
-    bare = outer_flux(inside, exchange, seen.humidity)
+    bare = outer_flux(inside, exchange, seen.vapour)
     sun = np.asarray(exchange.absorbed_solar)
     air, surroundings = seen.frame.air_temperature, seen.frame.surroundings_temperature
     hot = inside >= np.maximum(air, surroundings)

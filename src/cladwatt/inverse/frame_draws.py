@@ -21,6 +21,7 @@ from cladwatt.inverse.surroundings_draws import (
     reflected_draws,
     surroundings_draws,
 )
+from cladwatt.inverse.water_draws import WaterDraws, draw_water
 from cladwatt.materials.load import shipped_tables
 from cladwatt.physics.atmosphere import air_path_transmission, air_path_transmission_uncertainty
 from cladwatt.physics.band import Band
@@ -78,8 +79,8 @@ class FrameDraws:
     irradiance: FloatArray
     relative_humidity: FloatArray | None
     """None where unknown."""
-    water_film_emissivity: FloatArray
-    """In the band, of what condenses on a line below the dew point."""
+    water: WaterDraws
+    """What condenses on a line below the dew point, and what rain leaves."""
     window_transmission: FloatArray
     window_reflectance: FloatArray
     window_temperature: FloatArray
@@ -144,8 +145,8 @@ def draw_frame(
     distance : float, optional
         Camera to pipe as the image shows it, where none is declared. [m]
     defaults : mapping of str to Quantity, optional
-        Distance where the image shows none either, emissivity of a water film; the shipped
-        table's where not given.
+        Distance where the image shows none either, what water does; the shipped table's where
+        not given.
     convection_model : str
         By name, see `physics.convection`.
 
@@ -207,9 +208,7 @@ def draw_frame(
             if conditions.relative_humidity is None
             else book.quantity(owner, "relative_humidity", conditions.relative_humidity)
         ),
-        water_film_emissivity=book.quantity(
-            "model", "water_film_emissivity", defaults["water_film_emissivity"]
-        ),
+        water=draw_water(book, owner, defaults),
         window_transmission=(
             still + 1
             if window is None

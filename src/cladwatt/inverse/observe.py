@@ -16,11 +16,12 @@ from cladwatt.inverse.joint import LevelEvidence
 from cladwatt.inverse.law_spread import with_own_spread
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.null import NullModel, null_of
+from cladwatt.inverse.rain import MAY_BE_WET, MOSTLY_WET, RainLeft, rain_left
 from cladwatt.inverse.seen import FrameImage, Seen
 from cladwatt.inverse.sound import SoundDraws, sound_draws
 from cladwatt.inverse.steady_state import is_settled
 from cladwatt.inverse.stretches import Run, find_runs, sound_stations
-from cladwatt.inverse.sunlit import sunlit_excess
+from cladwatt.inverse.sunlit import sun_on_run, sunlit_excess
 from cladwatt.measure.face_bands import bands_of
 from cladwatt.measure.strip import Strip, known_length_factor, sample_strip, straighten
 from cladwatt.survey.model import Camera, Conditions, Line
@@ -58,6 +59,7 @@ class Balance:
     infeasible : float
         Share of draws of the mean flux beyond the bounds.
     sound : SoundDraws or None
+    rain : RainLeft or None
     """
 
     null: NullModel
@@ -68,6 +70,7 @@ class Balance:
     bounds: Bounds
     infeasible: float
     sound: SoundDraws | None
+    rain: RainLeft | None = None
 
 
 @dataclass(frozen=True)
@@ -81,8 +84,8 @@ class Observed:
         """Return what the region says of its lagging as a whole, None where it says nothing.
 
         A traced line says nothing, its tracer's heat is not the fluid's; nor does a line that is
-        still warming up, or a wet surface. Nor does lagging declared wet or frozen: it is not
-        sound, and how much worse it is no published range tells of this pipe.
+        still warming up, or a surface that is or may be wet. Nor does lagging declared wet or
+        frozen: it is not sound, and how much worse it is no published range tells of this pipe.
         """
         balance, line = self.balance, self.seen.line
         if balance is None or balance.sound is None or line.tracing.kind != "none":
@@ -90,6 +93,8 @@ class Observed:
         if balance.sound.declared_loss is not None:
             return None
         if not is_settled(line) or self.seen.conditions.surface_wet:
+            return None
+        if balance.rain is not None and balance.rain.share > MAY_BE_WET:
             return None
         sound = balance.sound.heat_loss
         if not (np.abs(sound) > SMALLEST_SOUND_LOSS).all() or np.ptp(np.sign(sound)) > 0:
@@ -142,6 +147,7 @@ def observe_region(
         If nothing usable is left of the region.
     """
     strip = _strip(region, line, image, known_lengths, camera)
+    frame = sun_on_run(frame, conditions, line_draws.inclination_deg)
     lens = sample_strip(np.where(left_out, np.nan, image.lens_temperature), strip)
     component_at = _component_stations(strip, components)
     lens[:, _bulged(component_at, strip)] = np.nan
@@ -285,12 +291,10 @@ def _balance(seen: Seen) -> Balance | None:
     profile = seen.face.temperature.mean(axis=0)
     null = _null(seen)
     sign = -1 if seen.gain else 1
+    rain = rain_left(seen)
     # a wet surface dries in patches, which are no damage
-    runs = (
-        ()
-        if seen.conditions.surface_wet
-        else find_runs(profile, null, sign=sign, diameter_stations=seen.width)
-    )
+    is_wet = seen.conditions.surface_wet or (rain is not None and rain.share > MOSTLY_WET)
+    runs = () if is_wet else find_runs(profile, null, sign=sign, diameter_stations=seen.width)
     sound_at = sound_stations(profile, runs, clear_of=0.5 * seen.width)
     hidden = HiddenSide.draw(
         seen.book,
@@ -319,4 +323,5 @@ def _balance(seen: Seen) -> Balance | None:
         bounds=bounds,
         infeasible=_infeasible_share(seen, bounds, flux),
         sound=sound_draws(seen.line_draws, seen.frame) if seen.diameter_known else None,
+        rain=rain,
     )

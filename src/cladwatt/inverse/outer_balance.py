@@ -1,5 +1,7 @@
 """What leaves a surface altogether: the dry balance, condensing vapour and its film of water."""
 
+from typing import NamedTuple
+
 import numpy as np
 
 from cladwatt.inverse.frame_draws import FrameDraws
@@ -14,12 +16,21 @@ from cladwatt.physics.surface_balance import (
 )
 from cladwatt.types import FloatArray, FloatLike
 
-__all__ = ["FILM_SPAN", "WATER_EMISSIVITY", "may_condense", "outer_flux", "wetted_emissivity"]
+__all__ = ["Vapour", "may_condense", "outer_flux", "vapour_of", "wetted_emissivity"]
 
-WATER_EMISSIVITY = 0.96
-"""Total, of a film of water; ice and frost 0.95 to 0.98 (Incropera et al., table A.11). [-]"""
-FILM_SPAN = 0.5
-"""How far below the dew point a surface is wet all over; assumption. [K]"""
+
+class Vapour(NamedTuple):
+    """Vapour that may condense on a surface, and the film it leaves; all broadcast together."""
+
+    relative_humidity: FloatArray
+    film_emissivity: FloatLike
+    """Total, of the film. [-]"""
+    film_span: FloatLike
+    """How far below the dew point the surface is wet all over. [K]"""
+
+    def beside(self) -> "Vapour":
+        """Return it with its draws along the first of three axes."""
+        return Vapour(*(np.reshape(part, (-1, 1, 1)) for part in self))
 
 
 def may_condense(frame: FrameDraws, line: LineDraws) -> bool:
@@ -30,10 +41,16 @@ def may_condense(frame: FrameDraws, line: LineDraws) -> bool:
     return bool(np.median(inside) < np.percentile(dew, 97.5))
 
 
+def vapour_of(frame: FrameDraws, line: LineDraws) -> Vapour | None:
+    """Return the vapour that may condense on a line, each part (count,); None where none may."""
+    if frame.relative_humidity is None or not may_condense(frame, line):
+        return None
+    water = frame.water
+    return Vapour(frame.relative_humidity, water.total_emissivity, water.span)
+
+
 def outer_flux(
-    surface_temperature: FloatArray,
-    exchange: SurfaceExchange,
-    relative_humidity: FloatArray | None,
+    surface_temperature: FloatArray, exchange: SurfaceExchange, vapour: Vapour | None
 ) -> FloatArray:
     """Return the heat that leaves a surface; negative where it takes heat up.
 
@@ -43,8 +60,8 @@ def outer_flux(
         [K]
     exchange : SurfaceExchange
         Broadcasting with it.
-    relative_humidity : array or None
-        Broadcasting too; None where vapour cannot condense.
+    vapour : Vapour or None
+        Broadcasting too; None where none can condense.
 
     Returns
     -------
@@ -53,17 +70,17 @@ def outer_flux(
         point the surface radiates as the film of water on it does. [W/m2]
     """
     flux = surface_heat_flux(surface_temperature, exchange)
-    if relative_humidity is None:
+    if vapour is None:
         return flux
     convection, _ = surface_coefficients(surface_temperature, exchange)
     latent = latent_heat_flux(
         np.clip(surface_temperature, 233.15, 372.0),
         air_temperature=exchange.air_temperature,
-        relative_humidity=relative_humidity,
+        relative_humidity=vapour.relative_humidity,
         convection_coefficient=convection,
         pressure=exchange.pressure,
     )
-    wetted = wetted_emissivity(surface_temperature, exchange, relative_humidity)
+    wetted = wetted_emissivity(surface_temperature, exchange, vapour)
     film = radiative_flux(
         surface_temperature,
         emissivity=wetted - exchange.total_emissivity,
@@ -73,7 +90,7 @@ def outer_flux(
 
 
 def wetted_emissivity(
-    surface_temperature: FloatLike, exchange: SurfaceExchange, relative_humidity: FloatArray
+    surface_temperature: FloatLike, exchange: SurfaceExchange, vapour: Vapour
 ) -> FloatArray:
     """Return the total emissivity with what has condensed: the film's below the dew point.
 
@@ -82,15 +99,15 @@ def wetted_emissivity(
     surface_temperature : float or array
         [K]
     exchange : SurfaceExchange
-    relative_humidity : array
+    vapour : Vapour
 
     Returns
     -------
     array, broadcast shape
-        The cladding's down to the dew point, a film of water's from `FILM_SPAN` below it, linear
-        between; the cladding's where that is higher. [-]
+        The cladding's down to the dew point, the film's from its span below it, linear between;
+        the cladding's where that is higher. [-]
     """
-    dew = dew_point(exchange.air_temperature, np.clip(relative_humidity, 0.01, 1.0))
-    covered = np.clip((dew - np.asarray(surface_temperature)) / FILM_SPAN, 0.0, 1.0)
+    dew = dew_point(exchange.air_temperature, np.clip(vapour.relative_humidity, 0.01, 1.0))
+    covered = np.clip((dew - np.asarray(surface_temperature)) / vapour.film_span, 0.0, 1.0)
     dry = np.asarray(exchange.total_emissivity)
-    return np.asarray(dry + covered * np.maximum(WATER_EMISSIVITY - dry, 0.0))
+    return np.asarray(dry + covered * np.maximum(vapour.film_emissivity - dry, 0.0))

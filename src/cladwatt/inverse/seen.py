@@ -10,7 +10,7 @@ from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.face import FaceDraws
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.line_draws import LineDraws
-from cladwatt.inverse.outer_balance import may_condense
+from cladwatt.inverse.outer_balance import Vapour, vapour_of
 from cladwatt.measure.face_bands import FaceBands
 from cladwatt.measure.noise import FrameNoise
 from cladwatt.measure.strip import Strip
@@ -158,9 +158,9 @@ class Seen:
         return np.asarray(np.median(self.drawn.surface_temperature, axis=0))
 
     @property
-    def humidity(self) -> FloatArray | None:
-        """Humidity of the air where its vapour may condense on the line, (count,)."""
-        return self.frame.relative_humidity if may_condense(self.frame, self.line_draws) else None
+    def vapour(self) -> Vapour | None:
+        """Vapour that may condense on the line."""
+        return vapour_of(self.frame, self.line_draws)
 
     @property
     def perimeter(self) -> FloatArray:

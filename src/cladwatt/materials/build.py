@@ -21,6 +21,7 @@ _UNITS_PER_SI = {
     "m/s": 1.0,
     "Pa": 1.0,
     "um": 1e6,
+    "mm": 1e3,
 }
 _CONFIDENCE_ORDER: tuple[Confidence, ...] = ("low", "medium", "high", "declared")
 _SOLAR_BOUNDS = (0.03, 0.99)

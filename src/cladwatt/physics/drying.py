@@ -26,7 +26,7 @@ WATER_DENSITY: Final = 1000.0
 
 _COLDEST: Final = 213.15  # K, where the vapour pressure over ice still holds
 _HOTTEST: Final = 371.0  # K, short of boiling
-_HALVINGS: Final = 40
+_HALVINGS: Final = 28
 
 
 class WetSurface(NamedTuple):

@@ -218,7 +218,9 @@ def build_conditions(table: Table, tables: MaterialTables, faults: FaultList) ->
         solar_irradiance=table.quantity("solar_irradiance"),
         sun_on_pipe=table.flag("sun_on_pipe"),
         rain_last_24h=table.flag("rain_last_24h"),
+        hours_since_rain=table.quantity("hours_since_rain"),
         sun_last_24h=table.flag("sun_last_24h"),
+        hours_since_sun=table.quantity("hours_since_sun"),
         surface_wet=table.flag("surface_wet"),
         sheltered=table.flag("sheltered"),
         roll_deg=table.number("roll") or 0.0,
@@ -248,7 +250,7 @@ def _wind(table: Table, tables: MaterialTables) -> Quantity | None:
 
 
 def _ask_outdoors(table: Table, faults: FaultList) -> None:
-    """Ask outdoors for wind and what rain left wet, and how strong a sun on the pipe was."""
+    """Ask outdoors for the wind and for what rain left wet."""
     if table.flag("indoors") is False and not table.has("wind_speed"):
         faults.ask(
             table.place, "wind_speed_m_s",
@@ -256,17 +258,12 @@ def _ask_outdoors(table: Table, faults: FaultList) -> None:
             'declare the wind at the pipe or write "unknown"',
         )  # fmt: skip
     rained = table.flag("indoors") is False and table.flag("rain_last_24h")
-    if rained and not table.has("surface_wet"):
+    known = table.has("surface_wet") or table.quantity("hours_since_rain") is not None
+    if rained and not known:
         faults.ask(
             table.place, table.spelling("rain_last_24h"),
-            "it had rained, but surface_wet is missing: a warm surface still wet gets no number",
-            "declare surface_wet = true or false",
-        )  # fmt: skip
-    if table.flag("sun_on_pipe") and not table.has("solar_irradiance"):
-        faults.ask(
-            table.place, table.spelling("sun_on_pipe"),
-            "the sun shone on the pipe, but solar_irradiance_W_m2 is missing",
-            'declare it or write "unknown"',
+            "it had rained, but surface_wet is missing: a warm surface that may still be wet gets"
+            " no number", "declare surface_wet = true or false, else hours_since_rain",
         )  # fmt: skip
 
 

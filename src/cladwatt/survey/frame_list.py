@@ -20,6 +20,7 @@ from cladwatt.survey.frame_builder import (
 from cladwatt.survey.keys import CAMERA_PREFIX, UNKNOWN_WORD, section
 from cladwatt.survey.line_list import Entry, entries_of_csv, repeated
 from cladwatt.survey.model import FrameEntry
+from cladwatt.survey.sun_builder import with_sun
 from cladwatt.survey.surroundings_builder import read_pieces, without_rivals
 from cladwatt.survey.survey_source import Source
 from cladwatt.survey.table_reader import Table, read_table
@@ -63,6 +64,7 @@ class _Reader:
     tables: MaterialTables
     faults: FaultList
     zone: tzinfo | None
+    site: Table
 
 
 def read_frames(
@@ -92,7 +94,7 @@ def read_frames(
     -------
     Frames
     """
-    reader = _Reader(wide, source, tables, faults, zone_of(site, faults))
+    reader = _Reader(wide, source, tables, faults, zone_of(site, faults), site)
     entries = entries + _listed(head, source, faults)
     if not entries and not head.text("frame_list"):
         entries = _found_files(source, faults)
@@ -230,7 +232,9 @@ def _build(one: _Read, reader: _Reader) -> FrameEntry | None:
     )
     merged = table.over(without_rivals(table, reader.wide["conditions"]))
     _check_lone_u(merged, reader)
+    time = zoned(table, reader.zone, faults)
     conditions = build_conditions(merged, reader.tables, faults)
+    conditions = with_sun(conditions, merged, time, reader.site, faults)
     frame_format = build_format(table.over(reader.wide["format"]), faults)
     frame = FrameEntry(
         id=one.id,
@@ -238,7 +242,7 @@ def _build(one: _Read, reader: _Reader) -> FrameEntry | None:
         format=frame_format,
         recording=recording,
         conditions=conditions,
-        time=zoned(table, reader.zone, faults),
+        time=time,
         area=table.text("area"),
         note=table.text("note"),
         photo=_file(table, "photo", reader, ("photos", "frames")) if table.has("photo") else None,

@@ -361,10 +361,21 @@ CONDITIONS = (
     Key(
         "solar_irradiance", "quantity", "Sun on the pipe's projected area", "irradiance", 0.0,
         1500.0, cut=(0.0, 1600.0), u=20.0, u_relative=0.15, example="0",
+        default="0 where the sun was down by place and time; a clear sky's where it shone on the"
+        " pipe outdoors",
     ),
     _flag("sun_on_pipe", "Whether the sun shone on the pipe"),
     _flag("rain_last_24h", "Whether it rained in the last 24 hours"),
+    Key(
+        "hours_since_rain", "quantity", "Since it last rained on the pipe, in hours", "none",
+        0.0, 240.0, cut=(0.0, 240.0), u=0.25, u_relative=0.1, example="6",
+    ),
     _flag("sun_last_24h", "Whether the sun shone on the pipe in the last 24 hours"),
+    Key(
+        "hours_since_sun", "quantity", "Since the sun left the pipe, in hours", "none", 0.0, 240.0,
+        cut=(0.0, 240.0), u=0.25, u_relative=0.1, default="since sunset, by place and time",
+        example="5",
+    ),
     _flag("surface_wet", "Whether the surface was wet when it was recorded"),
     _flag(
         "sheltered", "Whether walls or other pipes shelter the pipe from the wind: a wind speed"

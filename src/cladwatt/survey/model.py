@@ -158,8 +158,14 @@ class Conditions:
     solar_irradiance: Quantity | None = None
     """Irradiance absorbed over the projected area of the pipe. [W/m2]"""
     sun_on_pipe: bool | None = None
+    sun_elevation_deg: float | None = None
+    """Of the sun outdoors, by place and time; None where either is unknown."""
     rain_last_24h: bool | None = None
+    hours_since_rain: Quantity | None = None
+    """Since the rain ended. [h]"""
     sun_last_24h: bool | None = None
+    hours_since_sun: Quantity | None = None
+    """Since the sun left the pipe, at the latest at sunset. [h]"""
     surface_wet: bool | None = None
     """Whether the surface was wet when it was recorded."""
     sheltered: bool | None = None
