@@ -11,17 +11,21 @@ from cladwatt.inverse import (
     bare,
     cautions,
     components,
+    film_states,
     frame_draws,
     hidden_side,
     joint,
     line_draws,
     null,
     observe,
+    rain,
     references,
+    steady_state,
     stretch_results,
     stretches,
     surroundings_draws,
     verdict,
+    water_draws,
 )
 from cladwatt.materials.load import shipped_tables
 from cladwatt.materials.tables import fitting_equivalent_length
@@ -29,6 +33,7 @@ from cladwatt.measure import strip
 from cladwatt.physics import convection_spread, yawed_wind
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.physics.field_methods import MINIMUM_SEPARATION
+from cladwatt.survey import sun_builder
 from cladwatt.survey.surroundings_builder import SKY_BAND_BELOW_AIR
 
 FOLDER = Path(cladwatt.__file__).parent / "guide"
@@ -36,6 +41,8 @@ PAGE = " ".join((FOLDER / "method.md").read_text(encoding="utf-8").split())
 DEFAULTS = shipped_tables().defaults
 FOIL, TAPE = DEFAULTS["foil_emissivity"], DEFAULTS["tape_emissivity"]
 DRAUGHT, STILL = DEFAULTS["air_speed_indoors"], DEFAULTS["air_speed_indoors_sheltered"]
+FILM, RAIN = DEFAULTS["water_film_total_emissivity"], DEFAULTS["rain_film_thickness"]
+SPAN = [water_draws.FILM_SPAN.value + side * 3**0.5 * water_draws.FILM_SPAN.u for side in (-1, 1)]
 CONTACT_U = DEFAULTS["u_contact_reading"]
 
 
@@ -78,6 +85,23 @@ VALUES = [
     f"no less than {percent(convection_spread.STILL_AIR_FLOOR)} in still air and "
     f"{percent(convection_spread.CROSS_FLOW_FLOOR)} across flow",
     f"a water film's emissivity of {DEFAULTS['water_film_emissivity'].value}",
+    f"with one of {FILM.value}, u {FILM.u}, over a span",
+    f"total emissivity of the film | {FILM.value}, u {FILM.u} |",
+    f"until wet all over | {SPAN[0]:.2g} to {SPAN[1]:.2g} K,",
+    f"more than {percent(film_states.NOTICED_SHARE)} of the draws that is told",
+    f"more than {-sun_builder.CLEARLY_DOWN_DEG:g}° below the horizon",
+    f"holds {percent(sun_builder.HAZE_U)} for haze and altitude",
+    f"haze and altitude, clear sky | u {percent(sun_builder.HAZE_U)} |",
+    f"no cover is declared | {sun_builder.MEAN_CLOUD_FACTOR:.2f} to 1,",
+    f"above {sun_builder.BRIGHTER_THAN_CLEAR:g} times a clear sky's is questioned",
+    f"in more than {percent(rain.MAY_BE_WET)} of the draws (what",
+    f"any hour of the last {rain.DAY_HOURS:g}",
+    f"beyond {percent(rain.MOSTLY_WET)} contrasts",
+    f"that rain leaves | {RAIN.value * 1e3:g} mm, u {RAIN.u * 1e3:g} mm, {RAIN.lower * 1e3:g} to"
+    f" {RAIN.upper * 1e3:g} mm |",
+    f"({percent(rain.UNKNOWN_HUMIDITY)} where unknown) to saturated",
+    f"fallen to {percent(steady_state.LACKING)} of what the surface",
+    f"for what lingers | {steady_state.STRONGEST_SUN:g} W/m² |",
     f"band and total emissivity | {line_draws.EMISSIVITY_CORRELATION} |",
     f"where no diameter is known | {observe.UNKNOWN_DIAMETER} m,",
     f"({Settings().draws} draws by default)",

@@ -9,8 +9,8 @@ from cladwatt.types import FloatArray
 
 __all__ = ["FILM_SPAN", "WaterDraws", "draw_water"]
 
-FILM_SPAN = Quantity(0.55, 0.9 / 12**0.5, shape="rectangular", source="assumption, no source")
-"""How far below the dew point a surface is wet all over: 0.1 to 1 K, from the first drops to a
+FILM_SPAN = Quantity(0.5, 0.8 / 12**0.5, shape="rectangular", source="assumption, no source")
+"""How far below the dew point a surface is wet all over: 0.1 to 0.9 K, from the first drops to a
 film that has run together. [K]"""
 
 

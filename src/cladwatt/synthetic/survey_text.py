@@ -26,6 +26,8 @@ inspector = "{inspector}"
 [site]
 name = "Orrenfell Board Mill"
 place = "{place}"
+latitude_deg = {latitude_deg}
+longitude_deg = {longitude_deg}
 altitude_m = {altitude_m}
 timezone = "{timezone}"
 
@@ -152,6 +154,8 @@ def _frame(frame: PlantFrame, date: str) -> str:
         parts += ["surroundings = [", *(_piece(piece) for piece in frame.pieces), "]"]
     if frame.sun:
         parts += ["sun_on_pipe = true", "sun_last_24h = true"]
+    elif not frame.indoors:
+        parts.append("sun_on_pipe = false")
     if frame.wet:
         parts += ["surface_wet = true", "rain_last_24h = true"]
     return "\n".join(parts)
