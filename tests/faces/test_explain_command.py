@@ -25,6 +25,7 @@ from cladwatt.explain.steps import Pad
 from cladwatt.explain.surface_steps import exchange_steps
 from cladwatt.faces.cli import explain as explain_command
 from cladwatt.faces.cli.messages import ExitCode
+from cladwatt.inverse.outer_balance import Vapour
 from cladwatt.physics.moist_air import vapour_mole_fraction
 from cladwatt.physics.surface_balance import SurfaceExchange, surface_heat_flux
 from cladwatt.results.assessment import Settings
@@ -467,7 +468,8 @@ def test_every_way_of_convection_follows(changes):
         shared["x_v"] = float(vapour_mole_fraction(303.15, humidity, 101325.0)[0])
     for symbol, value in shared.items():
         pad.given("flux", symbol, value, "-", "invented")
-    exchange_steps(pad, 345.0, exchange, humidity)
+    vapour = None if humidity is None else Vapour(humidity, np.array([0.96]), np.array([0.5]))
+    exchange_steps(pad, 345.0, exchange, vapour)
     printed = [row for step in pad.steps for row in explain_command._step(step, 100)]
     page = Page("\n".join(printed))
     assert page.follow() >= 10
