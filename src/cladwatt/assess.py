@@ -1,17 +1,19 @@
 """The one path every face calls: a survey in, an assessment out."""
 
-from collections.abc import Callable, Iterator, Sequence
+from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from concurrent.futures import Executor, ProcessPoolExecutor
 from importlib.metadata import version
 from itertools import repeat
 from multiprocessing import get_context
 
 import numpy as np
+from threadpoolctl import threadpool_limits
 
 from cladwatt.assumptions import assumptions_of
 from cladwatt.errors import InputError
-from cladwatt.frame_assessment import assess_frame, question_remark
+from cladwatt.frame_assessment import assess_frame, look_at_frame, question_remark
 from cladwatt.inverse.result import ComponentResult, RegionResult, interval_of
+from cladwatt.inverse.survey_joint import FrameEvidence, Message, messages_between
 from cladwatt.results.assessment import Assessment, FrameResult, LeftOut, LineTotal, Settings
 from cladwatt.results.versions import library_versions
 from cladwatt.survey.model import FrameEntry
@@ -74,18 +76,28 @@ def assess(
 def _frame_results(
     survey: Survey, settings: Settings, workers: int, executor: Executor | None
 ) -> Iterator[FrameResult]:
-    """Yield frame results in the survey's order."""
+    """Yield frame results in the survey's order: every frame is looked at, then assessed."""
     entries = survey.frames
     if executor is not None:
-        yield from executor.map(assess_frame, repeat(survey), entries, repeat(settings))
+        messages = _messages(executor.map(look_at_frame, repeat(survey), entries, repeat(settings)))
+        told = [messages.get(entry.id) for entry in entries]
+        yield from executor.map(assess_frame, repeat(survey), entries, repeat(settings), told)
     elif workers > 1 and len(entries) > 1:
         with ProcessPoolExecutor(
             workers, mp_context=get_context("spawn"), initializer=_keep, initargs=(survey, settings)
         ) as pool:
-            yield from pool.map(_assess_kept, entries)
+            messages = _messages(pool.map(_look_kept, entries))
+            told = [messages.get(entry.id) for entry in entries]
+            yield from pool.map(_assess_kept, entries, told)
     else:
+        messages = _messages(look_at_frame(survey, entry, settings) for entry in entries)
         for entry in entries:
-            yield assess_frame(survey, entry, settings)
+            yield assess_frame(survey, entry, settings, messages.get(entry.id))
+
+
+def _messages(looks: Iterable[FrameEvidence | None]) -> Mapping[str, Message]:
+    with threadpool_limits(limits=1, user_api="blas"):
+        return messages_between([look for look in looks if look is not None])
 
 
 _kept: list[tuple[Survey, Settings]] = []
@@ -96,9 +108,14 @@ def _keep(survey: Survey, settings: Settings) -> None:
     _kept[:] = [(survey, settings)]
 
 
-def _assess_kept(entry: FrameEntry) -> FrameResult:
+def _look_kept(entry: FrameEntry) -> FrameEvidence | None:
     survey, settings = _kept[0]
-    return assess_frame(survey, entry, settings)
+    return look_at_frame(survey, entry, settings)
+
+
+def _assess_kept(entry: FrameEntry, message: Message | None) -> FrameResult:
+    survey, settings = _kept[0]
+    return assess_frame(survey, entry, settings, message)
 
 
 def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ...]) -> Assessment:

@@ -1,7 +1,9 @@
 """One frame from its file to its results: read, corrected, drawn from, estimated."""
 
 import time
+from collections.abc import Mapping
 from dataclasses import replace
+from types import MappingProxyType
 from typing import NamedTuple
 
 import numpy as np
@@ -22,6 +24,12 @@ from cladwatt.inverse.references import (
 from cladwatt.inverse.region_estimate import estimate_regions
 from cladwatt.inverse.result import ComponentResult, RegionResult
 from cladwatt.inverse.seen import FrameImage
+from cladwatt.inverse.survey_joint import (
+    FrameEvidence,
+    Message,
+    frame_evidence,
+    shared_evidence,
+)
 from cladwatt.measure.noise import FrameNoise, estimate_noise
 from cladwatt.measure.outline import region_mask, widened
 from cladwatt.physics.radiometry import lens_radiance
@@ -38,11 +46,15 @@ __all__ = [
     "assess_frame",
     "fitting_regions",
     "lens_image",
+    "look_at_frame",
     "observe_with_references",
     "pipe_distance",
     "question_remark",
 ]
 
+FIRST_LOOK_DRAWS = 400
+"""Draws of a frame that is only looked at: enough for means and covariances of a few quantities,
+whatever number of draws the results are given with."""
 BLUR_MARGIN_PX = 2.0
 """How far left-out areas are widened: their rims are blurred into the pipe. [px]"""
 HIDDEN_SHARE = 0.9
@@ -51,8 +63,8 @@ LEFT_OUT_ROLES = frozenset({"pipe", "leave_out", "foil", "tape", "contact"})
 """Whatever else is drawn over a pipe may not be used for it; crossing pipes hide each other."""
 
 
-def assess_frame(survey: Survey, entry: FrameEntry, settings: Settings) -> FrameResult:
-    """Assess one frame; whatever cannot be assessed is left out with its reason.
+def look_at_frame(survey: Survey, entry: FrameEntry, settings: Settings) -> FrameEvidence | None:
+    """Look at a frame for what it tells the others of what they share.
 
     Parameters
     ----------
@@ -63,16 +75,48 @@ def assess_frame(survey: Survey, entry: FrameEntry, settings: Settings) -> Frame
 
     Returns
     -------
+    FrameEvidence or None
+        None where it tells nothing, or cannot be read.
+    """
+    with threadpool_limits(limits=1, user_api="blas"):
+        try:
+            frame = read_frame(entry, root=survey.root)
+        except InputError:
+            return None
+        regions, _ = fitting_regions(survey, entry, frame)
+        book = DrawBook(settings.seed, FIRST_LOOK_DRAWS)
+        look = _looked(survey, entry, frame, regions, book)
+        return frame_evidence(look.observed, book, entry.id)
+
+
+def assess_frame(
+    survey: Survey, entry: FrameEntry, settings: Settings, message: Message | None = None
+) -> FrameResult:
+    """Assess one frame; whatever cannot be assessed is left out with its reason.
+
+    Parameters
+    ----------
+    survey : Survey
+    entry : FrameEntry
+        One of its frames.
+    settings : Settings
+    message : Message, optional
+        What the other frames say of what they share with this one.
+
+    Returns
+    -------
     FrameResult
     """
     started = time.perf_counter()
     # the last bits of a matrix product hang on the number of threads: always one
     with threadpool_limits(limits=1, user_api="blas"):
-        result = _assess_one(survey, entry, settings)
+        result = _assess_one(survey, entry, settings, message)
     return replace(result, seconds=time.perf_counter() - started)
 
 
-def _assess_one(survey: Survey, entry: FrameEntry, settings: Settings) -> FrameResult:
+def _assess_one(
+    survey: Survey, entry: FrameEntry, settings: Settings, message: Message | None
+) -> FrameResult:
     try:
         frame = read_frame(entry, root=survey.root)
     except InputError as error:
@@ -81,7 +125,7 @@ def _assess_one(survey: Survey, entry: FrameEntry, settings: Settings) -> FrameR
     regions, left_out = fitting_regions(survey, entry, frame)
     found = _Found()
     if any(region.role in ("pipe", "component") for region in regions):
-        found = _assess_regions(survey, entry, frame, regions, settings)
+        found = _assess_regions(survey, entry, frame, regions, settings, message)
     remarks = frame.remarks + tuple(
         question_remark(question) for question in frame_questions(frame, entry, root=survey.root)
     )
@@ -148,17 +192,27 @@ class _Found(NamedTuple):
     left_out: tuple[LeftOut, ...] = ()
 
 
-def _assess_regions(
-    survey: Survey,
-    entry: FrameEntry,
-    frame: Frame,
-    regions: list[Region],
-    settings: Settings,
-) -> _Found:
-    """Estimate every pipe region and component of a frame."""
-    book = DrawBook(settings.seed, settings.draws)
+class _Look(NamedTuple):
+    """Everything that is seen of a frame before anything is concluded."""
+
+    observed: tuple[Observed, ...] = ()
+    used: tuple[tuple[Remark, ...], ...] = ()
+    """Per region, which references were used."""
+    left_out: tuple[LeftOut, ...] = ()
+    image: FrameImage | None = None
+    draws: FrameDraws | None = None
+    readings: tuple[ReferenceReading, ...] = ()
+    masks: Mapping[str, BoolArray] = MappingProxyType({})
+    missing_air: bool = False
+
+
+def _looked(
+    survey: Survey, entry: FrameEntry, frame: Frame, regions: list[Region], book: DrawBook
+) -> _Look:
+    """Draw what the frame's conditions may be, and read every pipe region off it."""
     pipes = [region for region in regions if region.role == "pipe"]
-    components = [region for region in regions if region.role == "component"]
+    if not any(region.role in ("pipe", "component") for region in regions):
+        return _Look()
     try:
         draws = draw_frame(
             book,
@@ -171,13 +225,11 @@ def _assess_regions(
             survey.convection_model,
         )
     except InputError as error:  # an air path that nothing is known of
-        return _Found(left_out=(LeftOut("frame", entry.id, entry.id, f"{entry.id}: {error}"),))
+        return _Look(left_out=(LeftOut("frame", entry.id, entry.id, f"{entry.id}: {error}"),))
     if draws is None:
         remark = Remark("missing.air_temperature")
-        return _Found(
-            components=tuple(unknown_component(one, remark.key) for one in components),
-            left_out=tuple(LeftOut("region", one.id, entry.id, "", remark) for one in pipes),
-        )
+        left = tuple(LeftOut("region", one.id, entry.id, "", remark) for one in pipes)
+        return _Look(left_out=left, missing_air=True)
     image = lens_image(survey, entry, frame)
     readings = read_references(image.lens_temperature, regions, survey.defaults)
     draws, remarks = with_frame_references(draws, readings, book)
@@ -195,22 +247,52 @@ def _assess_regions(
             continue
         observed.append(one)
         used.append(remarks + references)
+    return _Look(tuple(observed), tuple(used), tuple(left_out), image, draws, readings, masks)
+
+
+def _assess_regions(
+    survey: Survey,
+    entry: FrameEntry,
+    frame: Frame,
+    regions: list[Region],
+    settings: Settings,
+    message: Message | None,
+) -> _Found:
+    """Estimate every pipe region and component of a frame."""
+    book = DrawBook(settings.seed, settings.draws)
+    components = [region for region in regions if region.role == "component"]
+    look = _looked(survey, entry, frame, regions, book)
+    if look.image is None or look.draws is None:
+        reason = "missing.air_temperature"
+        unknown = components if look.missing_air else []
+        return _Found(
+            components=tuple(unknown_component(one, reason) for one in unknown),
+            left_out=look.left_out,
+        )
+    shared = None if message is None else shared_evidence(message, book)
+    results = estimate_regions(look.observed, book, entry.id, shared)
+    pipes = [region for region in regions if region.role == "pipe"]
     return _Found(
         regions=tuple(
             replace(result, remarks=result.remarks + references)
-            for result, references in zip(
-                estimate_regions(observed, book, entry.id), used, strict=True
-            )
+            for result, references in zip(results, look.used, strict=True)
         ),
         components=tuple(
-            _component(survey, _with_tag(region, pipes, masks), image, draws, readings, book)
+            _component(
+                survey,
+                _with_tag(region, pipes, look.masks),
+                look.image,
+                look.draws,
+                look.readings,
+                book,
+            )
             for region in components
         ),
-        left_out=tuple(left_out),
+        left_out=look.left_out,
     )
 
 
-def _with_tag(component: Region, pipes: list[Region], masks: dict[str, BoolArray]) -> Region:
+def _with_tag(component: Region, pipes: list[Region], masks: Mapping[str, BoolArray]) -> Region:
     """Return a component with the tag of the pipe it covers most of, where it names none."""
     if component.tag is not None or not pipes:
         return component
@@ -242,7 +324,7 @@ def observe_with_references(
     entry: FrameEntry,
     region: Region,
     regions: list[Region],
-    masks: dict[str, BoolArray],
+    masks: Mapping[str, BoolArray],
     image: FrameImage,
     frame: FrameDraws,
     readings: tuple[ReferenceReading, ...],
@@ -280,7 +362,7 @@ def observe_with_references(
 
 
 def _refuse_hidden(
-    region: Region, regions: list[Region], masks: dict[str, BoolArray], covered: BoolArray
+    region: Region, regions: list[Region], masks: Mapping[str, BoolArray], covered: BoolArray
 ) -> None:
     """Refuse a region that others hide, naming them: most likely one pipe was drawn twice."""
     own = masks[region.id]
@@ -305,7 +387,7 @@ def _refuse_hidden(
 
 
 def _covered(
-    region: Region, regions: list[Region], masks: dict[str, BoolArray], roles: frozenset[str]
+    region: Region, regions: list[Region], masks: Mapping[str, BoolArray], roles: frozenset[str]
 ) -> BoolArray:
     """Return the pixels of other regions with these roles."""
     covered = np.zeros_like(masks[region.id])

@@ -25,7 +25,16 @@ import numpy as np
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.types import BoolArray, FloatArray, IntArray
 
-__all__ = ["JointUpdate", "LevelEvidence", "joint_update"]
+__all__ = [
+    "MOST_TOGETHER",
+    "JointUpdate",
+    "LevelEvidence",
+    "SharedEvidence",
+    "Weighing",
+    "core_of",
+    "joint_update",
+    "weighing_of",
+]
 
 
 @dataclass(frozen=True)
@@ -64,6 +73,82 @@ class LevelEvidence:
 
     region_id: str
     relative_excess: FloatArray
+
+
+@dataclass(frozen=True)
+class SharedEvidence:
+    """What other frames say of what this one shares with them: m directions.
+
+    Attributes
+    ----------
+    draws, noise : (count, m) array
+        Draws of each direction, and standard normal draws of the error of what is said of it.
+    mean, variance : (m,) array
+        What is said of each, and how surely.
+    """
+
+    draws: FloatArray
+    noise: FloatArray
+    mean: FloatArray
+    variance: FloatArray
+
+
+@dataclass(frozen=True)
+class Weighing:
+    """What the regions' lagging may have done against what was seen.
+
+    Attributes
+    ----------
+    mean : (n,) array
+        Of the draws of y.
+    covariance : (n, n) array
+    means, variances : (n_combinations, n) array
+        Of y under each combination of states.
+    priors : (n_combinations,) array
+    numbers : (n_combinations, n) array of int
+        State of each region.
+    doubt : (n,) array
+        Largest variance added to a state of a region that none fits.
+    """
+
+    mean: FloatArray
+    covariance: FloatArray
+    means: FloatArray
+    variances: FloatArray
+    priors: FloatArray
+    numbers: IntArray
+    doubt: FloatArray
+
+    def weights(self) -> FloatArray:
+        """Return the posterior weight of each combination, (n_combinations,)."""
+        return self._weighed(self.mean, self.covariance)[0]
+
+    def tilted(self, mean: FloatArray, covariance: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Return the moments of a part u of y, known as (mean, covariance), after the weighing.
+
+        y is u, plus what has this object's mean and covariance.
+        """
+        total_mean, total = self.mean + mean, self.covariance + covariance
+        weights, totals = self._weighed(total_mean, total)
+        kept = weights > 1e-9
+        gain = np.linalg.solve(totals[kept], np.broadcast_to(covariance, totals[kept].shape))
+        gain = np.swapaxes(gain, 1, 2)
+        means = mean + np.einsum("cij,cj->ci", gain, self.means[kept] - total_mean)
+        within = covariance - gain @ covariance
+        moved = weights[kept] @ means
+        away = means - moved
+        between = np.einsum("c,ci,cj->ij", weights[kept], away, away)
+        return moved, np.einsum("c,cij->ij", weights[kept], within) + between
+
+    def _weighed(self, mean: FloatArray, covariance: FloatArray) -> tuple[FloatArray, FloatArray]:
+        """Return weights and the total covariance under each combination."""
+        total = covariance + np.einsum("ci,ij->cij", self.variances, np.eye(mean.size))
+        away = self.means - mean
+        solved = np.linalg.solve(total, away[:, :, None])[:, :, 0]
+        logarithm = -0.5 * np.einsum("ci,ci->c", away, solved)
+        logarithm -= 0.5 * np.linalg.slogdet(total)[1]
+        weights = self.priors * np.exp(logarithm - logarithm.max())
+        return weights / weights.sum(), total
 
 
 @dataclass(frozen=True)
@@ -113,7 +198,10 @@ class JointUpdate:
 
 
 def joint_update(
-    evidence: Sequence[LevelEvidence], book: DrawBook, frame_id: str
+    evidence: Sequence[LevelEvidence],
+    book: DrawBook,
+    frame_id: str,
+    shared: SharedEvidence | None = None,
 ) -> tuple[JointUpdate, ...]:
     """Weigh what the regions of a frame may have done.
 
@@ -123,6 +211,8 @@ def joint_update(
         One per region whose sound loss is known.
     book : DrawBook
     frame_id : str
+    shared : SharedEvidence, optional
+        What other frames say.
 
     Returns
     -------
@@ -134,7 +224,7 @@ def joint_update(
     .. [1] Burgers, van Leeuwen, Evensen, "Analysis scheme in the ensemble Kalman filter",
        Monthly Weather Review 126 (1998) 1719-1724.
     """
-    updates: list[JointUpdate] = []
+    updates: list[JointUpdate] = [] if shared is None else [_shared_update(shared)]
     # by id: what comes out must not hang on the order in which regions were drawn
     ordered = sorted(evidence, key=lambda one: one.region_id)
     for first in range(0, len(ordered), MOST_TOGETHER):
@@ -147,34 +237,67 @@ def joint_update(
     return tuple(updates)
 
 
+def _shared_update(shared: SharedEvidence) -> JointUpdate:
+    """Take in what other frames say: an observation of each direction, the same for all draws."""
+    count = shared.draws.shape[0]
+    covariance = np.atleast_2d(np.cov(shared.draws, rowvar=False, bias=True))
+    innovation = shared.mean + np.sqrt(shared.variance) * shared.noise - shared.draws
+    inverse = np.asarray(np.linalg.inv(covariance + np.diag(shared.variance)), dtype=float)
+    every = np.ones(count, dtype=bool)
+    return JointUpdate(
+        {}, frozenset(), shared.draws, every, ((np.flatnonzero(every), innovation, inverse),)
+    )
+
+
+def weighing_of(mean: FloatArray, covariance: FloatArray, observed: FloatArray) -> Weighing:
+    """Return the weighing of regions.
+
+    Parameters
+    ----------
+    mean : (n,) array
+        Of y.
+    covariance : (n, n) array
+        Of what the combinations are weighed against.
+    observed : (count, n) array
+        Draws of y, whose whole spread says whether any state fits.
+    """
+    doubt = _doubt(mean, observed.var(axis=0))
+    numbers = np.array(list(product(range(len(STATES)), repeat=mean.size)))
+    variances = np.square([state.sigma for state in STATES])[numbers]
+    return Weighing(
+        mean=mean,
+        covariance=covariance,
+        means=np.array([state.mean for state in STATES])[numbers],
+        variances=variances + doubt[np.arange(mean.size), numbers],
+        priors=np.prod(np.array([state.prior for state in STATES])[numbers], axis=1),
+        numbers=numbers,
+        doubt=doubt.max(axis=1),
+    )
+
+
 def _updated(regions: list[str], observed: FloatArray, book: DrawBook, owner: str) -> JointUpdate:
     """Weigh one group of regions and deal its draws out."""
-    core = _core_of(observed)
+    core = core_of(observed)
     mean = observed[core].mean(axis=0)
     covariance = np.atleast_2d(np.cov(observed[core], rowvar=False, bias=True))
-    doubt = _doubt(mean, np.diag(covariance))
-    numbers = np.array(list(product(range(len(STATES)), repeat=len(regions))))
-    means = np.array([state.mean for state in STATES])[numbers]
-    variances = np.square([state.sigma for state in STATES])[numbers]
-    variances = variances + doubt[np.arange(len(regions)), numbers]
-    priors = np.prod(np.array([state.prior for state in STATES])[numbers], axis=1)
-    weights = _weights(means, variances, priors, mean, covariance)
+    weighing = weighing_of(mean, covariance, observed[core])
+    weights = weighing.weights()
     dealt = np.searchsorted(np.cumsum(weights), book.uniform(owner, "lagging_state"))
-    dealt = np.minimum(dealt, len(numbers) - 1)
+    dealt = np.minimum(dealt, weights.size - 1)
     scatter = _keyed(book, regions, "sound_scatter")
-    disagreement = np.sqrt(doubt.max(axis=1)) * _keyed(book, regions, "disagreement")
+    disagreement = np.sqrt(weighing.doubt) * _keyed(book, regions, "disagreement")
     moves: list[tuple[IntArray, FloatArray, FloatArray]] = []
     for number in np.unique(dealt):
         chosen = np.flatnonzero(dealt == number)
-        total = covariance + np.diag(variances[number])
-        target = means[number] + np.sqrt(variances[number]) * scatter[chosen]
+        total = covariance + np.diag(weighing.variances[number])
+        target = weighing.means[number] + np.sqrt(weighing.variances[number]) * scatter[chosen]
         # what image and specification disagree by stays as uncertainty of both
         widening = disagreement[chosen] @ np.linalg.pinv(covariance) @ total
         innovation = target - observed[chosen] + widening
         moves.append((chosen, innovation, np.asarray(np.linalg.inv(total), dtype=float)))
-    is_aged = np.array([state.aged for state in STATES])[numbers]
+    is_aged = np.array([state.aged for state in STATES])[weighing.numbers]
     aged = dict(zip(regions, (weights @ is_aged).tolist(), strict=True))
-    doubted = frozenset(r for r, own in zip(regions, doubt, strict=True) if own.max() > 0)
+    doubted = frozenset(r for r, own in zip(regions, weighing.doubt, strict=True) if own > 0)
     return JointUpdate(aged, doubted, observed, core, tuple(moves))
 
 
@@ -183,7 +306,7 @@ def _keyed(book: DrawBook, regions: list[str], quantity: str) -> FloatArray:
     return np.stack([book.normal(f"region:{region}", quantity) for region in regions], axis=1)
 
 
-def _core_of(observed: FloatArray) -> BoolArray:
+def core_of(observed: FloatArray) -> BoolArray:
     """Return the draws that lie in no region's far tail, (count,)."""
     away = np.abs(observed - np.median(observed, axis=0))
     sigma = 1.4826 * np.median(away, axis=0)
@@ -204,20 +327,3 @@ def _doubt(mean: FloatArray, variance: FloatArray) -> FloatArray:
             distance = abs(level - STATES[nearest].mean)
             added[index, nearest] = (distance / LARGEST_DISAGREEMENT) ** 2
     return added
-
-
-def _weights(
-    means: FloatArray,
-    variances: FloatArray,
-    priors: FloatArray,
-    mean: FloatArray,
-    covariance: FloatArray,
-) -> FloatArray:
-    """Return the posterior weight of each combination of states."""
-    total = covariance + np.einsum("ci,ij->cij", variances, np.eye(mean.size))
-    away = means - mean
-    solved = np.linalg.solve(total, away[:, :, None])[:, :, 0]
-    logarithm = -0.5 * np.einsum("ci,ci->c", away, solved)
-    logarithm -= 0.5 * np.linalg.slogdet(total)[1]
-    weights = priors * np.exp(logarithm - logarithm.max())
-    return np.asarray(weights / weights.sum())

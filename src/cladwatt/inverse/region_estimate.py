@@ -4,7 +4,7 @@ from collections.abc import Sequence
 
 from cladwatt.inverse.conclude import conclude
 from cladwatt.inverse.draws import DrawBook
-from cladwatt.inverse.joint import joint_update
+from cladwatt.inverse.joint import SharedEvidence, joint_update
 from cladwatt.inverse.observe import Observed
 from cladwatt.inverse.result import RegionResult
 
@@ -12,7 +12,10 @@ __all__ = ["estimate_regions"]
 
 
 def estimate_regions(
-    observed: Sequence[Observed], book: DrawBook, frame_id: str
+    observed: Sequence[Observed],
+    book: DrawBook,
+    frame_id: str,
+    shared: SharedEvidence | None = None,
 ) -> tuple[RegionResult, ...]:
     """Estimate the pipe regions of one frame jointly.
 
@@ -22,6 +25,8 @@ def estimate_regions(
         All pipe regions of the frame, read with the same draws.
     book : DrawBook
     frame_id : str
+    shared : SharedEvidence, optional
+        What other frames say of what this one shares with them.
 
     Returns
     -------
@@ -29,5 +34,5 @@ def estimate_regions(
         In the same order.
     """
     evidence = [found for one in observed if (found := one.evidence()) is not None]
-    updates = joint_update(evidence, book, frame_id)
+    updates = joint_update(evidence, book, frame_id, shared)
     return tuple(conclude(one, updates) for one in observed)
