@@ -1,5 +1,6 @@
 """Conclusions on one region: loss, resistance, stretches, probabilities and verdict."""
 
+import math
 from collections.abc import Sequence
 from dataclasses import replace
 from typing import NamedTuple
@@ -17,6 +18,7 @@ from cladwatt.inverse.cladding_fin import spread_remark
 from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
+from cladwatt.inverse.local_damage import local_damage
 from cladwatt.inverse.observe import Balance, Observed
 from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.resistance import resistances_of
@@ -160,11 +162,22 @@ def _concluded(
     stretches: tuple[Stretch, ...] = ()
     local = aged = None
     loss = None
+    response = _response(seen, balance)
     if seen.diameter_known:
         loss = seen.perimeter[:, None] * balance.flux
         draws |= _loss_draws(seen.perimeter * mean_flux, sound, draws["length"])
-        stretches = stretches_of(seen, balance.runs, loss, seen.perimeter * balance.base)
-        local = float(1 - np.prod([1 - stretch.probability for stretch in stretches]))
+        damage = local_damage(
+            seen.face.temperature.mean(axis=0),
+            balance.null,
+            balance.runs,
+            sign=-1 if seen.gain else 1,
+            kelvin_per_rise=response.kelvin_per_rise,
+            spread_length=response.spread_length,
+        )
+        stretches = stretches_of(
+            seen, balance.runs, damage.runs, loss, seen.perimeter * balance.base
+        )
+        local = damage.probability
         level = declared_level(seen.perimeter * balance.base, sound, aged_level)
         aged = None if level is None else (1 - local) * level
     heat_loss = _interval(draws, "heat_loss")
@@ -173,7 +186,7 @@ def _concluded(
         heat_loss=heat_loss,
         excess=_interval(draws, "excess"),
         emissivity=seen.emissivity,
-        visible_rise_sigmas=_visible_rise(seen, balance),
+        visible_rise_sigmas=0.25 * response.kelvin_per_rise / balance.null.run_sigma(seen.width),
         width=seen.width,
         spot_pixels=seen.camera.spot_pixels,
         infeasible_share=balance.infeasible,
@@ -302,12 +315,17 @@ def _drivers(seen: Seen) -> dict[str, FloatArray]:
     }
 
 
-def _visible_rise(seen: Seen, balance: Balance) -> float:
-    """Return at how many standard uncertainties a 25 % rise over one diameter would show.
+class _Response(NamedTuple):
+    """What the image makes of a rise of the loss, in the median of the draws."""
 
-    The flux's slope against the value at the lens is taken from two values around the sound
-    level, in the median of the draws.
-    """
+    kelvin_per_rise: float
+    """At the lens, for a loss twice that at the sound level; 0 where none would show. [K]"""
+    spread_length: float
+    """Over which the cladding spreads heat, as a fin. [m]"""
+
+
+def _response(seen: Seen, balance: Balance) -> _Response:
+    """Take the flux's slope from two values around the sound level."""
     level = float(np.median(seen.face.temperature[:, balance.sound_at]))
     temperature = surface_temperature_draws(
         np.array([level - 0.5, level + 0.5]), np.zeros(1), seen.frame, seen.line_draws
@@ -316,10 +334,11 @@ def _visible_rise(seen: Seen, balance: Balance) -> float:
     temperature = np.fmax(temperature, COLDEST)
     cooler, warmer = (outer_flux(temperature[:, side], exchange, seen.vapour) for side in (0, 1))
     slope = float(np.median(warmer - cooler))
-    if not slope > 0:
-        return 0.0
-    rise = 0.25 * abs(float(np.median(balance.base))) / slope
-    return rise / balance.null.run_sigma(seen.width)
+    kelvin = float(np.median(temperature[:, 1] - temperature[:, 0]))
+    if not (slope > 0 and kelvin > 0):
+        return _Response(0.0, 0.0)
+    sheet = seen.line.cladding.conductivity * seen.line.cladding.thickness.value
+    return _Response(abs(float(np.median(balance.base))) / slope, math.sqrt(sheet * kelvin / slope))
 
 
 def _strip_temperature(seen: Seen) -> FloatArray:

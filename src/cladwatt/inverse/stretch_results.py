@@ -1,6 +1,7 @@
 """From runs of stations to stretches in metres and watts."""
 
 import math
+from collections.abc import Sequence
 from typing import NamedTuple
 
 import numpy as np
@@ -12,8 +13,6 @@ from cladwatt.types import FloatArray
 
 __all__ = ["stretches_of"]
 
-LOCAL_THRESHOLD = 0.10
-"""A stretch counts as damaged where it loses more than this above the sound level."""
 SMALLEST_PROBABILITY = 0.05
 """Runs less likely than this are not listed."""
 
@@ -28,7 +27,11 @@ class _Weighed(NamedTuple):
 
 
 def stretches_of(
-    seen: Seen, runs: tuple[Run, ...], loss: FloatArray, base_loss: FloatArray
+    seen: Seen,
+    runs: tuple[Run, ...],
+    probabilities: Sequence[float],
+    loss: FloatArray,
+    base_loss: FloatArray,
 ) -> tuple[Stretch, ...]:
     """Return the stretches behind the runs of a region.
 
@@ -37,6 +40,8 @@ def stretches_of(
     seen : Seen
         With known diameter.
     runs : tuple of Run
+    probabilities : sequence of float
+        That there is damage at each run.
     loss : (count, n_stations) array
         [W/m]
     base_loss : (count,) array
@@ -45,10 +50,13 @@ def stretches_of(
     Returns
     -------
     tuple of Stretch
-        The probability is that of the contrast times that of an excess above 10 %.
+        Runs likelier than `SMALLEST_PROBABILITY`.
     """
     scale = seen.length_draws() / float(np.sum(seen.strip.length[~seen.component_at]))
-    weighed = [_weigh(seen, run, loss, base_loss, scale) for run in runs]
+    weighed = [
+        _weigh(seen, run, probability, loss, base_loss, scale)
+        for run, probability in zip(runs, probabilities, strict=True)
+    ]
     kept = [one for one in weighed if one.probability > SMALLEST_PROBABILITY]
     everything = max(sum(float(np.median(np.abs(one.excess))) for one in kept), 1e-12)
     return tuple(
@@ -67,16 +75,18 @@ def stretches_of(
 
 
 def _weigh(
-    seen: Seen, run: Run, loss: FloatArray, base_loss: FloatArray, scale: FloatArray
+    seen: Seen,
+    run: Run,
+    probability: float,
+    loss: FloatArray,
+    base_loss: FloatArray,
+    scale: FloatArray,
 ) -> _Weighed:
     metres = np.where(seen.usable, seen.strip.length, 0.0)[run.stations]
     inside = np.where(metres > 0, loss[:, run.stations], 0.0)
     mean = np.asarray(inside @ (metres / max(float(metres.sum()), 1e-12)))
-    # a level against the fluid is impossible and does not speak against a clear contrast
-    sign = -1 if seen.gain else 1
-    above = sign * (mean - base_loss) > LOCAL_THRESHOLD * np.maximum(sign * base_loss, 0.0)
     excess = (mean - base_loss) * float(metres.sum()) * scale
-    return _Weighed(run, mean, excess, float(run.probability * above.mean()))
+    return _Weighed(run, mean, excess, probability)
 
 
 def _edge(seen: Seen, index: int, side: float, u_stations: float) -> Interval:

@@ -99,7 +99,7 @@ def shared_keys(observed: Observed) -> tuple[Key, ...]:
         names += [f"thickness_{number}", f"conductivity_factor_{number}"]
     if line.inside_film is not None:
         names.append("inside_film")
-    return (MODEL_KEY, ("camera","calibration"), *((owner, name) for name in names))
+    return (MODEL_KEY, ("camera", "calibration"), *((owner, name) for name in names))
 
 
 def frame_evidence(
