@@ -1,6 +1,5 @@
 """Conclusions on one region: loss, resistance, stretches, probabilities and verdict."""
 
-import math
 from collections.abc import Sequence
 from dataclasses import replace
 from typing import NamedTuple
@@ -14,7 +13,7 @@ from cladwatt.inverse.cautions import (
     remarks_of,
     verdict_caps,
 )
-from cladwatt.inverse.cladding_fin import spread_remark
+from cladwatt.inverse.cladding_fin import spread_remark, spreading_length
 from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
@@ -162,7 +161,7 @@ def _concluded(
     stretches: tuple[Stretch, ...] = ()
     local = aged = None
     loss = None
-    response = _response(seen, balance)
+    kelvin_per_rise = _kelvin_per_rise(seen, balance)
     if seen.diameter_known:
         loss = seen.perimeter[:, None] * balance.flux
         draws |= _loss_draws(seen.perimeter * mean_flux, sound, draws["length"])
@@ -171,8 +170,8 @@ def _concluded(
             balance.null,
             balance.runs,
             sign=-1 if seen.gain else 1,
-            kelvin_per_rise=response.kelvin_per_rise,
-            spread_length=response.spread_length,
+            kelvin_per_rise=kelvin_per_rise,
+            spread_length=spreading_length(seen, sound) or 0.0,
         )
         stretches = stretches_of(
             seen, balance.runs, damage.runs, loss, seen.perimeter * balance.base
@@ -186,7 +185,7 @@ def _concluded(
         heat_loss=heat_loss,
         excess=_interval(draws, "excess"),
         emissivity=seen.emissivity,
-        visible_rise_sigmas=0.25 * response.kelvin_per_rise / balance.null.run_sigma(seen.width),
+        visible_rise_sigmas=0.25 * kelvin_per_rise / balance.null.run_sigma(seen.width),
         width=seen.width,
         spot_pixels=seen.camera.spot_pixels,
         infeasible_share=balance.infeasible,
@@ -315,17 +314,12 @@ def _drivers(seen: Seen) -> dict[str, FloatArray]:
     }
 
 
-class _Response(NamedTuple):
-    """What the image makes of a rise of the loss, in the median of the draws."""
+def _kelvin_per_rise(seen: Seen, balance: Balance) -> float:
+    """Return what a loss twice that at the sound level shows at the lens; 0 where nothing. [K]
 
-    kelvin_per_rise: float
-    """At the lens, for a loss twice that at the sound level; 0 where none would show. [K]"""
-    spread_length: float
-    """Over which the cladding spreads heat, as a fin. [m]"""
-
-
-def _response(seen: Seen, balance: Balance) -> _Response:
-    """Take the flux's slope from two values around the sound level."""
+    The flux's slope against the value at the lens is taken from two values around the sound
+    level, in the median of the draws.
+    """
     level = float(np.median(seen.face.temperature[:, balance.sound_at]))
     temperature = surface_temperature_draws(
         np.array([level - 0.5, level + 0.5]), np.zeros(1), seen.frame, seen.line_draws
@@ -334,11 +328,7 @@ def _response(seen: Seen, balance: Balance) -> _Response:
     temperature = np.fmax(temperature, COLDEST)
     cooler, warmer = (outer_flux(temperature[:, side], exchange, seen.vapour) for side in (0, 1))
     slope = float(np.median(warmer - cooler))
-    kelvin = float(np.median(temperature[:, 1] - temperature[:, 0]))
-    if not (slope > 0 and kelvin > 0):
-        return _Response(0.0, 0.0)
-    sheet = seen.line.cladding.conductivity * seen.line.cladding.thickness.value
-    return _Response(abs(float(np.median(balance.base))) / slope, math.sqrt(sheet * kelvin / slope))
+    return abs(float(np.median(balance.base))) / slope if slope > 0 else 0.0
 
 
 def _strip_temperature(seen: Seen) -> FloatArray:
