@@ -19,9 +19,7 @@ PAGE = Path(__file__).parent.parent / "src/cladwatt/guide/inputs.md"
 
 RECORDED_ONLY = frozenset(
     {
-        "roll", "tracer_clock_position",
-        "tracer_temperature", "tracer_power", "pipe_material", "latitude", "longitude",
-        "access",
+        "pipe_material", "latitude", "longitude", "access",
     }
 )  # fmt: skip
 """Read, checked and kept, but no number of this version depends on them."""

@@ -7,7 +7,7 @@ import pytest
 
 from cladwatt.assumptions import assumptions_of
 from cladwatt.quantities import Quantity
-from cladwatt.survey.model import SurroundingsPiece
+from cladwatt.survey.model import SurroundingsPiece, Tracing
 from cladwatt.survey.survey_file import read_survey
 
 
@@ -29,6 +29,7 @@ def test_what_a_line_may_declare_is_listed(sample):
         flow=Quantity(0.5),
         specific_heat=Quantity(4180.0),
         supports_allowance=Quantity(0.15, 0.04),
+        tracing=Tracing("electric", 6.0, temperature=Quantity(360.0, 5.0), power=Quantity(20.0)),
     )
     rows = listed(replace(sample, lines={tag: more}))
     owner = f"line {tag}"
@@ -38,6 +39,8 @@ def test_what_a_line_may_declare_is_listed(sample):
         ("flow", 0.5, "kg/s"),
         ("specific_heat", 4180.0, "J/(kg K)"),
         ("supports_allowance", 0.15, "-"),
+        ("tracer_temperature", 360.0, "K"),
+        ("tracer_power", 20.0, "W/m"),
     ):
         row = rows[owner, name]
         assert (row.value, row.unit) == (value, unit)

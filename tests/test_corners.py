@@ -328,7 +328,7 @@ def clipped(shown: Shown) -> None:
 def accuracy_as_a_limit(shown: Shown) -> None:
     accuracy = shown.survey.camera.accuracy
     assert (accuracy.limit, accuracy.percent, accuracy.coverage_factor) == (2.0, 2.0, None)
-    share = dict(shown.region("R28").variance_shares)
+    share = dict(shown.region("R31").variance_shares)
     assert share["calibration"] > 0.3
 
 
@@ -415,18 +415,23 @@ def hangers(shown: Shown) -> None:
 
 
 def traced_at_most_indicative(shown: Shown, name: str) -> None:
-    """A loss that covers the truth, at most indicative, and no stripe taken for damage."""
+    """Losses that cover the truth, at most indicative, and no stripe taken for damage."""
     found = shown.region(name)
     assert found.verdict.level != "quantified"
     if found.verdict.level == "indicative":
         assert found.verdict.reason.key == "indicative.traced"
     assert not any(one.probability > 0.5 for one in found.stretches)
-    assert "remark.tracer_heat" in said(shown, name)
-    assert inside(shown.true[name]["heat_loss_W_per_m"], found.heat_loss)
+    assert "remark.traced_resistance" in said(shown, name)
+    true = shown.true[name]
+    assert inside(true["heat_loss_W_per_m"], found.heat_loss)
+    assert inside(true["tracer_heat_W_per_m"], found.tracer_heat)
+    assert inside(true["heat_loss_W_per_m"] - true["tracer_heat_W_per_m"], found.fluid_loss)
+    assert inside(true["excess_W_per_m"], found.excess)
 
 
 def steam_tracer(shown: Shown) -> None:
     assert shown.line("R24").tracing.kind == "steam"
+    assert "remark.tracer_by_temperature" in said(shown, "R24")
     traced_at_most_indicative(shown, "R24")
 
 
@@ -434,7 +439,9 @@ def electric_tracer(shown: Shown) -> None:
     tracing = shown.line("R28").tracing
     assert tracing.kind == "electric"
     assert tracing.power.value == 7.0
-    assert said(shown, "R28")["remark.tracer_heat"]["power_W_per_m"] == 7.0
+    assert said(shown, "R28")["remark.tracer_by_power"]["power_W_per_m"] == pytest.approx(
+        7.0, abs=0.05
+    )
     traced_at_most_indicative(shown, "R28")
 
 

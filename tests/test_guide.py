@@ -31,12 +31,10 @@ def test_every_key_is_on_the_page_of_inputs():
 
 
 def test_what_is_kept_only_is_used_by_nothing():
-    attributes = {"latitude": "latitude_deg", "longitude": "longitude_deg", "roll": "roll_deg",
+    attributes = {"latitude": "latitude_deg", "longitude": "longitude_deg",
                   "wind_angle": "conditions.wind_angle_deg",
                   "convection": "survey.convection_model",
-                  "tracer_clock_position": "clock_position",
-                  "tracer_temperature": "tracing.temperature",
-                  "tracer_power": "tracing.power", "flow": "line.flow",
+                  "flow": "line.flow",
                   "specific_heat": "line.specific_heat"}  # fmt: skip
     names = [attributes.get(name, name) for name in inputs["RECORDED_ONLY"]]
     taken = re.compile(

@@ -24,6 +24,8 @@ from cladwatt.inverse import (
     stretch_results,
     stretches,
     surroundings_draws,
+    tracer_place,
+    tracing,
     verdict,
     water_draws,
 )
@@ -106,6 +108,22 @@ VALUES = [
     f"where no diameter is known | {observe.UNKNOWN_DIAMETER} m,",
     f"({Settings().draws} draws by default)",
     f"by {stretches.CANDIDATE_SIGMA} u are candidates",
+    f"steeper than {tracer_place.STEEPEST_DEG:g}° or within "
+    f"{math.degrees(math.asin(tracer_place.LEAST_LEVEL)):.0f}° of the plumb line",
+    f"{tracing.POOL} tracers that might lie there",
+    f"a fluid less than {tracing.LEAST_DRIVE:g} K above the air",
+    f"of a cable | {1e3 * tracing.TRACER_RADIUS['steam']:g} mm, "
+    f"{1e3 * tracing.TRACER_RADIUS['electric']:g} mm, each with sigma of the "
+    f"logarithm {tracing.TRACER_RADIUS_SPREAD} |",
+    f"to the tracer's temperature | {tracing.LEAST_COVERED} to {tracing.MOST_COVERED},",
+    f"loose to cemented | {tracing.CONTACT} W/(m K), sigma of the logarithm "
+    f"{tracing.CONTACT_SPREAD} |",
+    f"cannot be told | {tracing.UNKNOWN_RISE:g}, sigma of the logarithm "
+    f"{tracing.UNKNOWN_RISE_SPREAD} |",
+    f"from level | {math.degrees(tracer_place.CLOCK_U):.0f}°; "
+    f"{math.degrees(tracer_place.TILT_U):.0f}° |",
+    f"band to band | u {percent(tracing.UNEVEN_U)}; u {percent(tracing.PATCH_U)} |",
+    f"what is mirrored | u {tracing.MIRRORED_U:g} K, times",
     f"patches hang together | {null.PATCH_LENGTH} m |",
     f"prior of local damage in a region | {stretches.PRIOR_LOCAL} |",
     f"contrast of damage | 0 to {stretches.LARGEST_CONTRAST:g} u,",

@@ -85,6 +85,8 @@ def _line(line: Line) -> list[Assumption]:
         ("specific_heat", line.specific_heat, "J/(kg K)"),
         ("installation_factor", line.installation_factor, "-"),
         ("supports_allowance", line.supports_allowance, "-"),
+        ("tracer_temperature", line.tracing.temperature, "K"),
+        ("tracer_power", line.tracing.power, "W/m"),
         ("band_emissivity", cladding.band_emissivity, "-"),
         ("total_emissivity", cladding.total_emissivity, "-"),
         ("cladding_thickness", cladding.thickness, "m"),

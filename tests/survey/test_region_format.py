@@ -44,6 +44,16 @@ def test_widths_per_vertex_start_and_direction(drawn):
     assert (region.start, region.direction) == (12.5, -1)
 
 
+def test_whether_a_direction_was_declared_is_kept(drawn, box):
+    # a tracer's clock position looks along growing stations, which an outline does not order
+    (plain, forward, backward, outline), _ = parsed(
+        drawn("a"), drawn("b", direction="forward"), drawn("c", direction="backward"),
+        drawn("d", width_px=None, geometry=box(10, 10, 30), direction="forward"),
+    )  # fmt: skip
+    directed = [one.is_directed for one in (plain, forward, backward, outline)]
+    assert directed == [False, True, True, False]
+
+
 def test_an_outline_with_a_hole(drawn, box):
     outline = box(10, 10, 30)
     outline["coordinates"].append(box(15, 15, 5)["coordinates"][0])
@@ -294,9 +304,10 @@ def test_read_write_read_gives_equal_regions(survey_folder, drawn, box, tmp_path
         drawn("e", role="known_length", tag=None, width_px=None, value_m=2.51, u_value_m=0.003),
         drawn("f", role="component", width_px=None, geometry=box(90, 5), kind="valve",
               lagged=False),
+        drawn("g", direction="forward"),
     )  # fmt: skip
     first = read_survey(survey_folder.root).regions_of("f01")
-    assert len(first) == 6
+    assert len(first) == 7
     path = tmp_path / "f01.geojson"
     write_regions(path, first)
     faults = FaultList()

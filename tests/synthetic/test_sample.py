@@ -168,7 +168,8 @@ def test_the_truth_agrees_with_itself(whole):
         throughout = region["kind"] in ("aged", "soaked")
         local = not throughout and region["kind"] != "sound"
         assert bool(region["stretches"]) == local
-        ratio = region["heat_loss_W_per_m"] / region["sound_loss_W_per_m"]
+        loss = region.get("untraced_loss_W_per_m", region["heat_loss_W_per_m"])
+        ratio = loss / region["sound_loss_W_per_m"]
         assert region["damaged"] == (local or (throughout and ratio > 1.1))
         # what flows along the pipe into a body is missing beside it; one line is not at rest
         at_rest = "hours_at_temperature" not in truth["lines"][region["tag"]]
@@ -324,6 +325,15 @@ def test_every_rarer_case_is_declared_and_true(whole):
     assert by_id["R25"]["water_on_surface"] > 0.3
     traced = by_id["R24"]
     assert 0.1 < traced["tracer_heat_W_per_m"] / traced["heat_loss_W_per_m"] < 0.8
+    assert 1.02 < traced["heat_loss_W_per_m"] / traced["untraced_loss_W_per_m"] < 1.6
+    # the reference of a traced line is the same line with its tracer off
+    assert traced["excess_W_per_m"] == pytest.approx(
+        traced["untraced_loss_W_per_m"] - traced["sound_loss_W_per_m"], abs=1e-4
+    )
+    assert abs(traced["excess_W_per_m"]) < 0.03 * traced["sound_loss_W_per_m"]
+    cable = by_id["R28"]
+    # a cable on the pipe's wall warms the fluid: what leaves hardly grows
+    assert 1.0 < cable["heat_loss_W_per_m"] / cable["untraced_loss_W_per_m"] < 1.1
     young = by_id["R22"]
     assert young["heat_loss_W_per_m"] < 0.97 * young["sound_loss_W_per_m"]
     assert young["inside_heat_W_per_m"] > 1.1 * young["heat_loss_W_per_m"]

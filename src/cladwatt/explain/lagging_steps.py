@@ -10,9 +10,11 @@ from cladwatt.explain.gap_steps import GAP_CURVE, Gap, gap_steps
 from cladwatt.explain.inside_steps import inside_steps
 from cladwatt.explain.steps import Pad, Section, source_of
 from cladwatt.explain.surface_steps import exchange_steps
+from cladwatt.explain.tracer_steps import tracer_steps
 from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.sound import SoundDraws, film_resistance
+from cladwatt.inverse.tracing import Stripe
 from cladwatt.physics.conduction import ConductivityIntegral, cylinder_resistance
 from cladwatt.physics.lagged_pipe import LaggingLayer, lagging_resistance_from_surface
 from cladwatt.types import FloatArray
@@ -205,7 +207,11 @@ def _curve(conductivity: ConductivityIntegral, *faces: FloatArray) -> str:
 
 
 def result_section(
-    seen: Seen, sound: SoundDraws | None, heat_loss: float, surface_temperature: float
+    seen: Seen,
+    sound: SoundDraws | None,
+    heat_loss: float,
+    surface_temperature: float,
+    stripe: Stripe | None = None,
 ) -> Section | None:
     """Return the resistance found and what it is compared with.
 
@@ -218,6 +224,8 @@ def result_section(
         At the station. [W/m]
     surface_temperature : float
         Mean over the seen face of the station. [K]
+    stripe : Stripe or None
+        Of a traced line.
 
     Returns
     -------
@@ -240,6 +248,12 @@ def result_section(
         several = "R_spec" if line.layers is not None and len(line.layers) > 1 else "R_1_spec"
         ratio = found / sound.specified_resistance
         pad.found("resistance_ratio", "ratio", ratio, "-", f"R / {several}", f"R {several}")
-        excess = heat_loss - sound.heat_loss
-        pad.found("excess", "excess", excess, "W/m", "q' - q'_sound", "q' q'_sound")
+    if stripe is not None:
+        tracer_steps(pad, seen, stripe, heat_loss)
+    if sound is not None and (stripe is None or stripe.is_split):
+        untraced, symbol = heat_loss, "q'"
+        if stripe is not None:
+            untraced, symbol = float(stripe.untraced(np.array([heat_loss]))[0]), "q'_off"
+        pad.found("excess", "excess", untraced - sound.heat_loss, "W/m", f"{symbol} - q'_sound",
+                  f"{symbol} q'_sound")  # fmt: skip
     return pad.section("result")

@@ -14,6 +14,7 @@ from cladwatt.explain.recorded_steps import (
 )
 from cladwatt.explain.steps import BandOfAngle, Explanation, Pad, Reported, Section
 from cladwatt.explain.surface_steps import exchange_steps, surface_section
+from cladwatt.explain.tracer_steps import stripe_steps
 from cladwatt.frame_assessment import assess_frame
 from cladwatt.inverse.cautions import missing_of
 from cladwatt.inverse.face import surface_temperature_draws
@@ -187,7 +188,7 @@ class _Explained:
         """Return the sections on the lagging."""
         sound = balance.sound
         sections = [] if sound is None else list(lagging_sections(self.seen, sound))
-        result = result_section(self.seen, sound, loss, temperature)
+        result = result_section(self.seen, sound, loss, temperature, balance.stripe)
         return sections if result is None else [*sections, result]
 
     def band(self, number: int) -> BandOfAngle:
@@ -214,16 +215,20 @@ class _Explained:
         flux = sum(band.share * band.value("q") for band in bands)
         pad.found("face_flux", "q_face", flux, "W/m²", "sum of share times q over the bands", "q")
         hidden = self.hidden(balance)
-        level = float(balance.base[0])
+        level, stripe = float(balance.base[0]), balance.stripe
         whole_share = hidden.seen_share + (1 - hidden.seen_share) * float(hidden.excess_share[0])
         pad.given("sound_level", "q_level", level, "W/m²",
                   f"the same steps, mean of {balance.sound_at.sum()} sound stations")  # fmt: skip
         pad.given("seen_share", "s_seen", hidden.seen_share, "-", "angle of the used face / 360")
         pad.given("hidden_excess", "s_hid", hidden.excess_share, "-", "evenness of the seen face")
+        found = "q_face"
+        if stripe is not None:
+            found, flux = "f_tr q_face", flux * float(stripe.factor[0])
+            stripe_steps(pad, stripe)
         whole = level + (flux - level) * whole_share
         pad.found("whole_flux", "q_whole", whole, "W/m²",
-                  "q_level + (q_face - q_level) (s_seen + (1 - s_seen) s_hid)",
-                  "q_level q_face s_seen s_hid")  # fmt: skip
+                  f"q_level + ({found} - q_level) (s_seen + (1 - s_seen) s_hid)",
+                  f"q_level {found} s_seen s_hid")  # fmt: skip
         self.note_difference(whole, float(balance.flux[0, self.index]))
         if not seen.diameter_known:
             return None
@@ -240,7 +245,13 @@ class _Explained:
             seen.book,
             seen.owner,
             seen_share=float(seen.face.extent.sum() / (2 * np.pi)),
-            seen=evenness_of(seen.face, balance.runs, balance.sound_at, sign=sign),
+            seen=evenness_of(
+                seen.face,
+                balance.runs,
+                balance.sound_at,
+                sign=sign,
+                usual=None if balance.stripe is None else balance.stripe.usual,
+            ),
         )
 
     def note_difference(self, whole: float, engine: float) -> None:

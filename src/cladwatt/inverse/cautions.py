@@ -7,6 +7,7 @@ from cladwatt.inverse.film_states import film_remarks, fits_both
 from cladwatt.inverse.rain import DAY_HOURS, MAY_BE_WET, RainLeft, had_rained
 from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.steady_state import is_settled, time_to_forget_sun
+from cladwatt.inverse.tracing import can_split
 from cladwatt.physics.clear_sky import HORIZON_DEG
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.quantities import Quantity, Remark
@@ -34,6 +35,7 @@ def missing_of(seen: Seen) -> tuple[Remark, ...]:
         "missing.diameter": line.lagged_diameter is None,
         "missing.wind": seen.frame.wind_speed is None,
         "missing.humidity": seen.gain and seen.conditions.relative_humidity is None,
+        "missing.tracer_heat": seen.line.tracing.kind != "none" and not can_split(seen),
     }
     return tuple(Remark(key) for key, is_missing in unknown.items() if is_missing)
 
@@ -91,7 +93,7 @@ def remarks_of(seen: Seen) -> tuple[Remark, ...]:
         parameters = (("id", ", ".join(seen.known_lengths)), ("reason", reason))
         remarks.append(Remark("remark.reading_not_used", parameters))
     tracer = seen.line.tracing
-    if tracer.kind != "none":
+    if tracer.kind != "none" and (seen.frame.wind_speed is None or not can_split(seen)):
         power = () if tracer.power is None else (("power_W_per_m", tracer.power.value),)
         remarks.append(Remark("remark.tracer_heat", power))
     remarks.extend(film_remarks(seen))

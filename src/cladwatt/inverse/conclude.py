@@ -33,6 +33,7 @@ from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.sound import SoundDraws
 from cladwatt.inverse.station_table import station_table
 from cladwatt.inverse.stretch_results import stretches_of
+from cladwatt.inverse.tracing import stripe_remarks
 from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
 from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray
@@ -135,6 +136,8 @@ def _shifted_balance(observed: Observed, shift: _Shift, perimeter: FloatArray) -
         evidence = observed.evidence()
         if shift.updates and evidence is not None:
             base = sound.heat_loss * (1 + shift(evidence.relative_excess)) / perimeter
+            if balance.stripe is not None:
+                base = base * (1 + balance.stripe.rise)
     contrast = shift(balance.flux - balance.base[:, None])
     return replace(balance, flux=base[:, None] + contrast, base=base, sound=sound)
 
@@ -164,9 +167,9 @@ def _concluded(
     kelvin_per_rise = _kelvin_per_rise(seen, balance)
     if seen.diameter_known:
         loss = seen.perimeter[:, None] * balance.flux
-        draws |= _loss_draws(seen.perimeter * mean_flux, sound, draws["length"])
+        draws |= _loss_draws(seen.perimeter * mean_flux, balance, draws["length"])
         damage = local_damage(
-            seen.face.temperature.mean(axis=0),
+            seen.face.temperature[balance.bands].mean(axis=0),
             balance.null,
             balance.runs,
             sign=-1 if seen.gain else 1,
@@ -177,7 +180,7 @@ def _concluded(
             seen, balance.runs, damage.runs, loss, seen.perimeter * balance.base
         )
         local = damage.probability
-        level = declared_level(seen.perimeter * balance.base, sound, aged_level)
+        level = declared_level(seen.perimeter * balance.untraced_base, sound, aged_level)
         aged = None if level is None else (1 - local) * level
     heat_loss = _interval(draws, "heat_loss")
     shares = variance_shares(draws["heat_loss"], drivers) if heat_loss else ()
@@ -195,6 +198,8 @@ def _concluded(
     resistances = resistances_of(seen, draws.get("heat_loss"), sound)
     bare = _without_balance(seen, station_table(seen, loss, sound))
     declared_loss = _interval(draws, "declared_loss")
+    stripe = balance.stripe
+    traced = () if stripe is None else stripe_remarks(stripe, seen.perimeter * mean_flux)
     return replace(
         bare,
         heat_flux=interval_of(mean_flux),
@@ -206,6 +211,8 @@ def _concluded(
         declared_loss=declared_loss,
         declared_resistance=resistances.declared,
         excess=_interval(draws, "excess"),
+        tracer_heat=_interval(draws, "tracer_heat"),
+        fluid_loss=_interval(draws, "fluid_loss"),
         resistance=resistances.found,
         specified_resistance=resistances.specified,
         resistance_ratio=resistances.ratio,
@@ -216,7 +223,10 @@ def _concluded(
         verdict=as_verdict(inputs, shares, narrowed, missing_of(seen)),
         stretches=stretches,
         remarks=(
-            bare.remarks + declared_condition(declared_loss) + spread_remark(seen, sound, stretches)
+            *bare.remarks,
+            *traced,
+            *declared_condition(declared_loss),
+            *spread_remark(seen, sound, stretches),
         ),
         variance_shares=shares,
         draws=draws,
@@ -260,20 +270,26 @@ def _without_balance(seen: Seen, stations: StationTable) -> RegionResult:
     )
 
 
-def _loss_draws(
-    loss: FloatArray, sound: SoundDraws | None, length: FloatArray
-) -> dict[str, FloatArray]:
+def _loss_draws(loss: FloatArray, balance: Balance, length: FloatArray) -> dict[str, FloatArray]:
+    """Return the draws of the loss and what it is compared with.
+
+    A tracer's heat is no excess; where it cannot be told from the fluid's there is none.
+    """
     draws = {"heat_loss": loss, "total_loss": loss * length}
+    sound, stripe = balance.sound, balance.stripe
     if sound is not None:
-        excess = loss - sound.heat_loss
-        draws |= {
-            "sound_loss": sound.heat_loss,
-            "specified_loss": sound.specified_loss,
-            "excess": excess,
-            "total_excess": excess * length,
-        }
+        draws |= {"sound_loss": sound.heat_loss, "specified_loss": sound.specified_loss}
         if sound.declared_loss is not None:
             draws["declared_loss"] = sound.declared_loss
+    if stripe is not None and not stripe.is_split:
+        return draws
+    untraced = loss
+    if stripe is not None:
+        heat, untraced = stripe.heat(loss), stripe.untraced(loss)
+        draws |= {"tracer_heat": heat, "fluid_loss": loss - heat}
+    if sound is not None:
+        excess = untraced - sound.heat_loss
+        draws |= {"excess": excess, "total_excess": excess * length}
     return draws
 
 
@@ -311,6 +327,11 @@ def _drivers(seen: Seen) -> dict[str, FloatArray]:
         "convection": np.log(seen.frame.convection_factor),
         "diameter": seen.diameter,
         "hidden_side": normal(seen.owner, "unevenness"),
+        **(
+            {}
+            if seen.line.tracing.kind == "none"
+            else {"tracer": normal(seen.owner, "tracer_dealt")}
+        ),
     }
 
 

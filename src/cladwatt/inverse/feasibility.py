@@ -53,7 +53,8 @@ def flux_bounds(seen: Seen) -> Bounds:
     Bounds
         A line warmer than everything outside cannot take heat up through its lagging, nor lose
         more than with its surface at the fluid's temperature; one colder than everything the
-        other way round. Sun moves the first bound by what it brings.
+        other way round. Sun moves the first bound by what it brings. Beside a tracer more can leave
+        than at the fluid's temperature: up to what leaves at the tracer's, where that is declared.
     """
     inside = seen.line_draws.inside_temperature
     unbounded = np.full(seen.book.count, np.inf)
@@ -69,4 +70,10 @@ def flux_bounds(seen: Seen) -> Bounds:
     high = np.where(hot, np.maximum(bare, 0.0), unbounded)
     low = np.where(cold, np.minimum(bare, 0.0), low)
     high = np.where(cold, 0.0, high)
+    tracer = seen.line.tracing
+    if tracer.kind != "none":
+        high = unbounded
+        if tracer.temperature is not None:
+            hottest = np.maximum(inside, tracer.temperature.value + 2 * tracer.temperature.u)
+            high = np.maximum(outer_flux(hottest, exchange, seen.vapour), 0.0)
     return Bounds(low, high)

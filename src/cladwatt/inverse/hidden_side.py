@@ -41,7 +41,12 @@ class Evenness:
 
 
 def evenness_of(
-    face: FaceBands, runs: tuple[Run, ...], sound_at: BoolArray, *, sign: int
+    face: FaceBands,
+    runs: tuple[Run, ...],
+    sound_at: BoolArray,
+    *,
+    sign: int,
+    usual: FloatArray | None = None,
 ) -> Evenness:
     """Return how the strongest run lies across the face.
 
@@ -52,6 +57,8 @@ def evenness_of(
     sound_at : (n_stations,) array of bool
     sign : {1, -1}
         1 where damage is warmer than sound.
+    usual : (n_bands,) array, optional
+        What each band gives off on sound lagging over an even one, beside a tracer.
     """
     bands = face.temperature.shape[0]
     if not runs or bands < 3:
@@ -61,6 +68,8 @@ def evenness_of(
     inside = inside[:, np.isfinite(inside[0])]
     level = face.temperature[:, sound_at].mean(axis=1)
     contrast = np.maximum(sign * (inside.mean(axis=1) - level), 0.0)
+    if usual is not None:
+        contrast = contrast / usual
     if contrast.max() <= 0:
         return Evenness()
     mean = float(np.average(contrast, weights=face.extent))

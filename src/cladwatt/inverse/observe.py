@@ -22,6 +22,7 @@ from cladwatt.inverse.sound import SoundDraws, sound_draws
 from cladwatt.inverse.steady_state import is_settled
 from cladwatt.inverse.stretches import Run, find_runs, sound_stations
 from cladwatt.inverse.sunlit import sun_on_run, sunlit_excess
+from cladwatt.inverse.tracing import Stripe, clear_bands, stripe_of
 from cladwatt.measure.face_bands import bands_of
 from cladwatt.measure.strip import Strip, known_length_factor, sample_strip, straighten
 from cladwatt.survey.model import Camera, Conditions, Line
@@ -60,6 +61,8 @@ class Balance:
         Share of draws of the mean flux beyond the bounds.
     sound : SoundDraws or None
     rain : RainLeft or None
+    stripe : Stripe or None
+        Of a traced line.
     """
 
     null: NullModel
@@ -71,6 +74,17 @@ class Balance:
     infeasible: float
     sound: SoundDraws | None
     rain: RainLeft | None = None
+    stripe: Stripe | None = None
+
+    @property
+    def bands(self) -> BoolArray | slice:
+        """Bands of angle in which contrast is looked for: those beside a tracer's stripe."""
+        return slice(None) if self.stripe is None else clear_bands(self.stripe)
+
+    @property
+    def untraced_base(self) -> FloatArray:
+        """Flux at the sound level without the tracer, (count,). [W/m2]"""
+        return self.base if self.stripe is None else self.stripe.untraced(self.base)
 
 
 @dataclass(frozen=True)
@@ -83,12 +97,14 @@ class Observed:
     def evidence(self) -> LevelEvidence | None:
         """Return what the region says of its lagging as a whole, None where it says nothing.
 
-        A traced line says nothing, its tracer's heat is not the fluid's; nor does a line that is
-        still warming up, or a surface that is or may be wet. Nor does lagging declared wet or
-        frozen: it is not sound, and how much worse it is no published range tells of this pipe.
+        A traced line says nothing where its tracer's heat cannot be told from the fluid's; nor
+        does a line that is still warming up, or a surface that is or may be wet. Nor does lagging
+        declared wet or frozen: it is not sound, and how much worse it is no published range tells.
         """
         balance, line = self.balance, self.seen.line
-        if balance is None or balance.sound is None or line.tracing.kind != "none":
+        if balance is None or balance.sound is None:
+            return None
+        if balance.stripe is not None and not balance.stripe.is_split:
             return None
         if balance.sound.declared_loss is not None:
             return None
@@ -100,7 +116,7 @@ class Observed:
         if not (np.abs(sound) > SMALLEST_SOUND_LOSS).all() or np.ptp(np.sign(sound)) > 0:
             return None
         # as seen, impossible or not: clipped here alone, draws would not be moved all the way
-        relative = self.seen.perimeter * balance.base / sound - 1
+        relative = self.seen.perimeter * balance.untraced_base / sound - 1
         return LevelEvidence(self.seen.region.id, relative) if np.isfinite(relative).all() else None
 
 
@@ -271,12 +287,26 @@ def _infeasible_share(seen: Seen, bounds: Bounds, flux: FloatArray) -> float:
     return bounds.beyond(np.where(dark, np.nan, seen.mean_along(flux)))
 
 
-def _null(seen: Seen) -> NullModel:
+def _contrast(
+    seen: Seen, bands: BoolArray, is_wet: bool
+) -> tuple[NullModel, tuple[Run, ...], BoolArray]:
+    """Return the null, what stands out along the strip in these bands, and the sound stations."""
+    profile = seen.face.temperature[bands].mean(axis=0)
+    null = _null(seen, bands)
+    # a wet surface dries in patches, which are no damage
+    runs: tuple[Run, ...] = ()
+    if not is_wet:
+        sign = -1 if seen.gain else 1
+        runs = find_runs(profile, null, sign=sign, diameter_stations=seen.width)
+    return null, runs, sound_stations(profile, runs, clear_of=0.5 * seen.width)
+
+
+def _null(seen: Seen, bands: BoolArray) -> NullModel:
     metres = seen.strip.length
     return null_of(
-        seen.face.temperature,
+        seen.face.temperature[bands],
         noise=seen.image.noise,
-        pixels_per_station=seen.strip.used_width,
+        pixels_per_station=seen.strip.used_width * float(bands.mean()),
         station_length=float(np.median(metres)) if np.isfinite(metres).all() else 0.005,
         reflected_temperature=float(np.median(seen.frame.reflected_temperature)),
         emissivity=seen.emissivity,
@@ -288,19 +318,23 @@ def _balance(seen: Seen) -> Balance | None:
     """Balance the heat of the seen face, with what stands out and what is hidden."""
     if seen.drawn.heat_flux is None:
         return None
-    profile = seen.face.temperature.mean(axis=0)
-    null = _null(seen)
     sign = -1 if seen.gain else 1
     rain = rain_left(seen)
-    # a wet surface dries in patches, which are no damage
-    is_wet = seen.conditions.surface_wet or (rain is not None and rain.share > MOSTLY_WET)
-    runs = () if is_wet else find_runs(profile, null, sign=sign, diameter_stations=seen.width)
-    sound_at = sound_stations(profile, runs, clear_of=0.5 * seen.width)
+    is_wet = bool(seen.conditions.surface_wet) or (rain is not None and rain.share > MOSTLY_WET)
+    sound = sound_draws(seen.line_draws, seen.frame) if seen.diameter_known else None
+    every = np.ones(seen.face.view_angle.size, dtype=bool)
+    null, runs, sound_at = _contrast(seen, every, is_wet)
+    stripe = stripe_of(seen, sound_at, sound)
+    if stripe is not None and not clear_bands(stripe).all():
+        # a tracer that wanders under the lagging must not look like damage
+        null, runs, sound_at = _contrast(seen, clear_bands(stripe), is_wet)
     hidden = HiddenSide.draw(
         seen.book,
         seen.owner,
         seen_share=float(seen.face.extent.sum() / (2 * np.pi)),
-        seen=evenness_of(seen.face, runs, sound_at, sign=sign),
+        seen=evenness_of(
+            seen.face, runs, sound_at, sign=sign, usual=None if stripe is None else stripe.usual
+        ),
     )
     bounds = flux_bounds(seen)
     seen_flux = seen.drawn.heat_flux
@@ -310,6 +344,8 @@ def _balance(seen: Seen) -> Balance | None:
     seen_base = seen_flux[:, sound_at].mean(axis=1)
     flux = whole_flux(seen_flux, seen_base, hidden)
     base = seen_base * (1 + hidden.unevenness)
+    if stripe is not None:
+        flux, base = flux * stripe.factor[:, None], base * stripe.factor
     for run in runs:
         bare = bare_draws(seen, run, sound_at, base)
         if bare is not None:
@@ -322,6 +358,7 @@ def _balance(seen: Seen) -> Balance | None:
         base=bounds.filled(base[:, None], np.ones(1, dtype=bool))[:, 0],
         bounds=bounds,
         infeasible=_infeasible_share(seen, bounds, flux),
-        sound=sound_draws(seen.line_draws, seen.frame) if seen.diameter_known else None,
+        sound=sound,
+        stripe=stripe,
         rain=rain,
     )

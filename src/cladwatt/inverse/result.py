@@ -183,6 +183,10 @@ class RegionResult:
     """With the lagging wet or frozen as it was declared found; None where declared dry. [W/m]"""
     declared_resistance: Interval | None = None
     """Of that lagging. [m K/W]"""
+    tracer_heat: Interval | None = None
+    """Of the loss, what comes from the tracer of a traced line. [W/m]"""
+    fluid_loss: Interval | None = None
+    """The rest; negative where the tracer warms the fluid. [W/m]"""
     air_temperature: float | None = None
     """Declared air temperature of the frame; strip pictures are centred on it. [K]"""
     strip_temperature: FloatArray | None = field(default=None, repr=False, compare=False)

@@ -193,6 +193,8 @@ def _figures(region: RegionResult, language: str) -> list[tuple[str, str]]:
     quantities = [
         ("heat_gain" if region.gain else "heat_loss", signed(region, region.heat_loss), "W/m"),
         ("image_loss", signed(region, region.image_loss), "W/m"),
+        ("tracer_heat", region.tracer_heat, "W/m"),
+        ("fluid_loss", region.fluid_loss, "W/m"),
         ("total_region_loss", signed(region, region.total_loss), "W"),
         ("heat_flux", signed(region, region.heat_flux), "W/m²"),
         ("sound_loss", signed(region, region.sound_loss), "W/m"),

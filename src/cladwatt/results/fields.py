@@ -104,6 +104,14 @@ _REGION = {
     "probability_aged": Field("", "probability of ageing throughout above 10 % over sound"),
     "variance_shares": Field("", "part of the variance of the loss by declared quantity"),
     "air_temperature": Field("°C", "declared air temperature of the frame"),
+    "tracer_heat": Field(
+        "W/m",
+        "of the loss, what comes from the tracer: its power, or, by its temperature, what it gives "
+        "straight to the lagging",
+    ),
+    "fluid_loss": Field(
+        "W/m", "loss less the tracer's heat; negative where the tracer warms the fluid"
+    ),
 }
 _LINE = {
     "length": Field("m", "length of pipe drawn, all regions of the line"),

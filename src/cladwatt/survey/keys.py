@@ -626,7 +626,8 @@ LINE = (
         example='"none"',
     ),
     _setting(
-        "tracer_clock_position", "Where the tracer lies, 12 is up, looking along the line", "none",
+        "tracer_clock_position", "Where the tracer lies, 12 is up, looking along growing stations",
+        "none",
         lower=0.0, upper=12.0, example="6",
     ),
     _temperature(

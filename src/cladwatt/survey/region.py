@@ -44,6 +44,8 @@ class Region:
     """Station of the first vertex along the line. [m]"""
     direction: Literal[1, -1] = 1
     """Whether stations grow (1) or fall (-1) from first to last vertex."""
+    is_directed: bool = False
+    """Whether that was declared: a tracer's clock position looks along growing stations."""
     value: Quantity | None = None
     """A reading that belongs here: K for foil, contact, background; - for tape; m for a length."""
     note: str = ""

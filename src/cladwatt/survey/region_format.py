@@ -311,6 +311,7 @@ def _build(table: Table, shape: _Shape, number: int, place: Place) -> Region:
         lagged=table.flag("lagged"),
         start=table.number("start") or 0.0,
         direction=-1 if table.text("direction") == "backward" else 1,
+        is_directed=table.has("direction") and shape.centreline is not None,
         value=table.quantity("value") if table.has("value") else None,
         note=table.text("note"),
         band_emissivity=table.quantity("emissivity"),
@@ -325,6 +326,12 @@ def _build(table: Table, shape: _Shape, number: int, place: Place) -> Region:
 _VALUE_SPELLING = {"tape": "value", "known_length": "value_m"}
 
 
+def _direction(region: Region) -> str | None:
+    if region.direction == -1:
+        return "backward"
+    return "forward" if region.is_directed else None
+
+
 def _properties(region: Region) -> dict[str, object]:
     """Return the properties as written: K and m, which survive reading back to the last bit."""
     found: dict[str, object] = {"id": region.id, "role": region.role}
@@ -333,7 +340,7 @@ def _properties(region: Region) -> dict[str, object]:
         ("kind", region.kind or None),
         ("lagged", region.lagged),
         ("start_m", region.start or None),
-        ("direction", "backward" if region.direction == -1 else None),
+        ("direction", _direction(region)),
         ("inclination_deg", region.inclination_deg),
         ("note", region.note or None),
     )

@@ -6,7 +6,7 @@ import numpy as np
 
 from cladwatt.synthetic.bodies import PlacedBody, bodies_on, lay_bodies
 from cladwatt.synthetic.columns import ColumnModel
-from cladwatt.synthetic.conduction_3d import heat_up, solve_columns
+from cladwatt.synthetic.conduction_3d import SurfaceFlux, heat_up, solve_columns
 from cladwatt.synthetic.damage import Damage, DamageKind, draw_damage, lay_in
 from cladwatt.synthetic.exchange import (
     Weather,
@@ -60,10 +60,12 @@ class PipeTruth:
         while it warms up. [W/m]
     tracer_heat : (n_x,) array or None
         What a steam tracer gives straight to the lagging, or an electric one in all. [W/m]
+    untraced_loss : (n_x,) array or None
+        Loss of the same pipe with the tracer off. [W/m]
     water_share : (n_x,) array
         Share of the surface under water.
     sound_loss, specified_loss : float
-        In the same conditions, all at rest. [W/m]
+        In the same conditions, all at rest, any tracer off. [W/m]
     skin : Skin
         What the camera sees.
     is_soaked : bool
@@ -83,6 +85,7 @@ class PipeTruth:
     resistance: FloatArray
     inside_heat: FloatArray
     tracer_heat: FloatArray | None
+    untraced_loss: FloatArray | None
     water_share: FloatArray
     sound_loss: float
     specified_loss: float
@@ -156,6 +159,17 @@ def _tracer_heat(plant: PlantLine, line: LineTruth, given: FloatArray) -> FloatA
     return heat
 
 
+def _untraced_loss(
+    plant: PlantLine, line: LineTruth, model: ColumnModel, flux: SurfaceFlux
+) -> FloatArray | None:
+    """Return the loss of the same pipe with its tracer off, None where it has none. [W/m]"""
+    if plant.tracer_clock is None:
+        return None
+    inside = inside_of(replace(plant, tracer_clock=None), line, model.exposed.shape[1])
+    off = replace(model, inside_temperature=inside)
+    return solve_columns(off, flux).heat_loss(float(model.cell_length))
+
+
 def _plain_loss(
     line: LineTruth,
     plant: PlantLine,
@@ -164,8 +178,8 @@ def _plain_loss(
     weather: Weather,
     inclination_deg: float,
 ) -> float:
-    """Return the loss of the undamaged pipe at rest with a conductivity factor. [W/m]"""
-    dry = replace(line, found_curve=None)
+    """Return the loss of the undamaged pipe at rest, untraced, with this factor. [W/m]"""
+    dry, plant = replace(line, found_curve=None), replace(plant, tracer_clock=None)
     model = _model(dry, plant, frame, (2, _AROUND), 1.0, np.full(2, factor))
     mean = Weather(
         *(None if part is None else part.mean(axis=0, keepdims=True).repeat(2, axis=0)
@@ -289,6 +303,7 @@ def build_pipe(
         resistance=(line.fluid_temperature - surface) / heat_loss,
         inside_heat=given.sum(axis=1),
         tracer_heat=_tracer_heat(plant, line, given),
+        untraced_loss=_untraced_loss(plant, line, model, flux),
         water_share=(share * water).sum(axis=1),
         sound_loss=_plain_loss(line, plant, frame, installed, weather, slope),
         specified_loss=_plain_loss(line, plant, frame, 1.0, weather, slope),

@@ -43,8 +43,10 @@ truth_stations.csv  along every drawn part: loss, mean surface temperature aroun
 A loss is heat given off to the room, negative on a chilled line. It is what leaves the surface:
 condensing water brings heat, drying water takes it, and what the sun leaves in the cladding is
 taken off. "without components" leaves out the pipe under a drawn flange, valve or support. On a
-traced line a part of the loss comes from the tracer; on a line that has just come to temperature
-the loss still grows, while the sound one is that at rest. Lagging that is "soaked" is wet or frozen
+traced line a part of the loss comes from the tracer: "tracer heat" is what a steam tracer gives
+straight to the lagging, of an electric one all its power; "untraced" is the loss with the tracer
+off, and so are sound and specified losses. On a line that has just come to temperature the loss
+still grows, while the sound one is that at rest. Lagging that is "soaked" is wet or frozen
 throughout; its sound loss is that of the same lagging dry.
 """
 
@@ -88,7 +90,9 @@ def region_truth(pipe: PipeTruth, frame_id: str, drawn: tuple[float, float]) -> 
             "remaining_thickness": round(damage.remaining, 3),
         })  # fmt: skip
     kind = "soaked" if pipe.is_soaked and damage.kind == "sound" else damage.kind
-    aged = kind in ("aged", "soaked") and mean / pipe.sound_loss > AGED_THRESHOLD
+    untraced = pipe.heat_loss if pipe.untraced_loss is None else pipe.untraced_loss
+    by_fluid = float(untraced[counted].mean())
+    aged = kind in ("aged", "soaked") and by_fluid / pipe.sound_loss > AGED_THRESHOLD
     length = drawn[1] - drawn[0]
     return {
         "region_id": pipe.plant.id,
@@ -105,7 +109,7 @@ def region_truth(pipe: PipeTruth, frame_id: str, drawn: tuple[float, float]) -> 
         ),
         "sound_loss_W_per_m": _rounded(pipe.sound_loss),
         "specified_loss_W_per_m": _rounded(pipe.specified_loss),
-        "excess_W_per_m": _rounded(mean - pipe.sound_loss),
+        "excess_W_per_m": _rounded(by_fluid - pipe.sound_loss),
         "resistance_m_K_per_W": _rounded(float(1 / np.mean(1 / pipe.resistance[counted]))),
         "surface_temperature_C": round(
             float(pipe.surface_temperature[counted].mean()) - ZERO_CELSIUS, 3
@@ -121,9 +125,12 @@ def region_truth(pipe: PipeTruth, frame_id: str, drawn: tuple[float, float]) -> 
 
 
 def _tracer(pipe: PipeTruth, counted: Any) -> dict[str, float]:
-    if pipe.tracer_heat is None:
+    if pipe.tracer_heat is None or pipe.untraced_loss is None:
         return {}
-    return {"tracer_heat_W_per_m": _rounded(float(pipe.tracer_heat[counted].mean()))}
+    return {
+        "tracer_heat_W_per_m": _rounded(float(pipe.tracer_heat[counted].mean())),
+        "untraced_loss_W_per_m": _rounded(float(pipe.untraced_loss[counted].mean())),
+    }
 
 
 def _component(
