@@ -10,7 +10,7 @@ import numpy as np
 import pytest
 import tifffile
 
-from cladwatt.assess import assess, assess_frame
+from cladwatt.assess import assess, assess_among_others, assess_frame
 from cladwatt.assumptions import assumptions_of
 from cladwatt.errors import Fault, InputError
 from cladwatt.physics.band import Band
@@ -252,9 +252,10 @@ def test_what_the_camera_had_applied_does_not_matter(folder, assessed, recording
     assert entry.recording == undone
     tifffile.imwrite(folder.root / "d.tiff", again)
     other = dataclasses.replace(entry, path=folder.root / "d.tiff", recording=recording)
-    survey = dataclasses.replace(folder.only("c"), frames=(other,))
+    alone = folder.only("c")
+    survey = dataclasses.replace(alone, frames=(other,))
     result = assess(survey, settings=assessed.settings).regions[0]
-    before = region_of(assessed, "c1")
+    before = region_of(assess(alone, settings=assessed.settings), "c1")
     assert result.heat_loss.median == pytest.approx(before.heat_loss.median, rel=1e-4)
     assert result.heat_loss.high == pytest.approx(before.heat_loss.high, rel=1e-4)
     assert len(result.stretches) == len(before.stretches)
@@ -279,9 +280,14 @@ def test_order_of_frames_changes_no_region(folder):
     assert two.total_loss.median == pytest.approx(one.total_loss.median)
 
 
-def test_a_frame_alone_is_the_frame_among_others(folder):
+def test_one_frame_among_others_is_that_of_the_whole_survey(folder):
+    one = assess_among_others(folder.survey, folder.survey.frame("b"), SETTINGS)
+    assert same(one, assess(folder.survey, settings=SETTINGS).frames[1])
+
+
+def test_a_frame_alone_is_all_there_is_of_a_survey_of_one(folder):
     alone = assess_frame(folder.survey, folder.survey.frame("b"), SETTINGS)
-    assert same(alone, assess(folder.survey, settings=SETTINGS).frames[1])
+    assert same(alone, assess(folder.only("b"), settings=SETTINGS).frames[0])
 
 
 def test_seed_decides_the_draws_and_hardly_the_result(mill):

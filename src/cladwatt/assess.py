@@ -20,7 +20,7 @@ from cladwatt.survey.model import FrameEntry
 from cladwatt.survey.survey import Survey
 from cladwatt.types import FloatArray
 
-__all__ = ["Progress", "assess", "assess_frame"]
+__all__ = ["Progress", "assess", "assess_among_others", "assess_frame"]
 
 Progress = Callable[[int, int, str], None]
 """Called with frames done, frames in all and the frame just finished."""
@@ -93,6 +93,25 @@ def _frame_results(
         messages = _messages(look_at_frame(survey, entry, settings) for entry in entries)
         for entry in entries:
             yield assess_frame(survey, entry, settings, messages.get(entry.id))
+
+
+def assess_among_others(survey: Survey, entry: FrameEntry, settings: Settings) -> FrameResult:
+    """Assess one frame as it stands in the whole survey, all others only looked at.
+
+    Parameters
+    ----------
+    survey : Survey
+    entry : FrameEntry
+        One of its frames.
+    settings : Settings
+
+    Returns
+    -------
+    FrameResult
+        The same as `assess` gives for it.
+    """
+    messages = _messages(look_at_frame(survey, other, settings) for other in survey.frames)
+    return assess_frame(survey, entry, settings, messages.get(entry.id))
 
 
 def _messages(looks: Iterable[FrameEvidence | None]) -> Mapping[str, Message]:

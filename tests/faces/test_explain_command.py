@@ -19,6 +19,7 @@ from pathlib import Path
 import numpy as np
 import pytest
 
+from cladwatt.assess import assess_among_others
 from cladwatt.explain.nominal import NominalBook
 from cladwatt.explain.region import explain_region
 from cladwatt.explain.steps import Pad
@@ -639,7 +640,7 @@ def test_bare_pipe_is_named_where_the_steps_do_not_hold(cladwatt):
 def test_what_assessing_says_stands_beside_the_steps(survey):
     read = read_survey(survey)
     explained = explain_region(read, "north-1")
-    result = cladwatt_assess.assess_frame(read, read.frame("steam"), Settings()).regions[0]
+    result = assess_among_others(read, read.frame("steam"), Settings()).regions[0]
     at = abs(result.stations.station - explained.station).argmin()
     assert explained.reported.heat_loss[0] == result.stations.heat_loss[at]
     assert explained.reported.resistance_ratio == result.stations.resistance_ratio[at]

@@ -70,7 +70,7 @@ def test_a_sound_pipe_is_found_sound(bench, hall_with):
     assert result.excess.median == pytest.approx(0, abs=1e-3 * float(sound.heat_loss))
     assert result.excess.low < 0 < result.excess.high
     assert result.stretches == ()
-    assert result.probability_local == 0
+    assert result.probability_local < 0.01
     # resistance: (inside - surface) / loss; the factor multiplies the conductivity
     drop = 453.15 - float(sound.surface_temperature)
     assert result.resistance.median == pytest.approx(drop / float(sound.heat_loss), rel=1e-3)

@@ -4,6 +4,7 @@ import math
 
 import numpy as np
 
+from cladwatt.assess import assess_among_others
 from cladwatt.errors import FaultyInputError, InputError
 from cladwatt.explain.lagging_steps import lagging_sections, result_section
 from cladwatt.explain.nominal import NominalRegion, nominal_region
@@ -15,7 +16,6 @@ from cladwatt.explain.recorded_steps import (
 from cladwatt.explain.steps import BandOfAngle, Explanation, Pad, Reported, Section
 from cladwatt.explain.surface_steps import exchange_steps, surface_section
 from cladwatt.explain.tracer_steps import stripe_steps
-from cladwatt.frame_assessment import assess_frame
 from cladwatt.inverse.cautions import missing_of
 from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.frame_draws import band_of
@@ -261,7 +261,7 @@ class _Explained:
 
     def reported(self) -> Reported | None:
         """Return what the assessment says of the same station."""
-        result = assess_frame(self.survey, self.nominal.entry, self.settings)
+        result = assess_among_others(self.survey, self.nominal.entry, self.settings)
         for region in result.regions:
             if region.region_id == self.region.id and region.heat_loss is not None:
                 table, at = region.stations, self.index
