@@ -125,10 +125,13 @@ VALUES = [
     f"band to band | u {percent(tracing.UNEVEN_U)}; u {percent(tracing.PATCH_U)} |",
     f"what is mirrored | u {tracing.MIRRORED_U:g} K, times",
     f"patches hang together | {null.PATCH_LENGTH} m |",
-    f"prior of local damage in a region | {stretches.PRIOR_LOCAL} |",
-    f"contrast of damage | 0 to {stretches.LARGEST_CONTRAST:g} u,",
-    f"Student, {stretches.NULL_FREEDOM:g} degrees of freedom |",
-    f"damaged from | {percent(stretch_results.LOCAL_THRESHOLD)} above",
+    f"prior of local damage in a region | {local_damage.PRIOR_LOCAL} |",
+    f"| {local_damage.RISES[0]} to {local_damage.RISES[-1]:.0f}, all factors equally likely |",
+    f"| {local_damage.SHORTEST} m to {local_damage.LONGEST_SHARE} of the region,",
+    "| {}, {} and {} m, rough".format(*local_damage.PATCH_LENGTHS),
+    f"| {local_damage.SCATTER_FACTORS[0]} to {local_damage.SCATTER_FACTORS[-1]}, about log-normal |",
+    f"a sound pipe's own loss along it | {percent(local_damage.SCATTER_ALONG)} |",
+    f"first looked at\nwith {frame_assessment.FIRST_LOOK_DRAWS} draws",
     f"Stretches below {percent(stretch_results.SMALLEST_PROBABILITY)} are not listed",
     f"is within {percent(bare.NEAR_FLUID)} of the fluid's temperature",
     f"bare steel | {bare.BARE_EMISSIVITY.value}, u {bare.BARE_EMISSIVITY.u} |",
@@ -172,8 +175,10 @@ def test_words_for_numbers():
     assert "less than half as far from the air" in PAGE
     assert joint.MOST_TOGETHER == 5
     assert "More than five regions in a frame are taken in groups of five" in PAGE
-    assert frame_draws.SHARED_SHARE == 2 / 3
-    assert "| 2/3 of the variance |" in PAGE
+    assert (frame_draws.SHARED_CALIBRATION, frame_draws.SHARED_CONVECTION) == (0.5, 2 / 3)
+    assert "| 1/2, 2/3 of the variance |" in PAGE
+    assert survey_joint.LEAST_VARIANCE == 0.5
+    assert "no surer than half of the prior's variance" in PAGE
     assert verdict.SPOTS_ACROSS == 3
     assert verdict.LEAST_GAIN == 0.1
     assert "by at least a tenth" in PAGE

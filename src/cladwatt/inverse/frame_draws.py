@@ -1,6 +1,6 @@
 """Draws of what a frame declares, each with the scope its error has.
 
-Scopes (who shares a draw): the camera's calibration belongs to the survey for two thirds of its
+Scopes (who shares a draw): the camera's calibration belongs to the survey for half of its
 variance and to the frame for the rest; air, reflected and radiative temperature, wind, humidity
 and air path to the frame; the convection law to the whole run for two thirds of its variance and
 to the frame for the rest; what a region mirrors to the region. The shares are an assumption:
@@ -36,7 +36,7 @@ from cladwatt.types import FloatArray
 
 __all__ = ["FrameDraws", "band_of", "draw_frame", "mirrored"]
 
-SHARED_SHARE = 2 / 3
+SHARED_CALIBRATION, SHARED_CONVECTION = 0.5, 2 / 3
 """Share of variance of calibration and convection law common to the survey (assumption)."""
 SPREAD_AT_RISE, SPREAD_AT_DIAMETER = 10.0, 0.2
 """Rise over the air [K] and diameter [m] for which the spread of published correlations stands
@@ -232,7 +232,7 @@ def _window_reflectance(book: DrawBook, window: Window) -> FloatArray:
 
 def _calibration(book: DrawBook, owner: str, accuracy: AccuracyStatement) -> FloatArray:
     """Return the calibration error as a share of the limit."""
-    normal = book.mixed("calibration", ("camera", SHARED_SHARE), (owner, 1 - SHARED_SHARE))
+    normal = book.mixed("calibration", ("camera", SHARED_CALIBRATION), (owner, 1 - SHARED_CALIBRATION))
     if accuracy.coverage_factor is None:
         return np.asarray(2 * ndtr(normal) - 1)
     return normal / accuracy.coverage_factor
@@ -283,7 +283,7 @@ def _law_sigma(conditions: Conditions) -> float:
 
 def _convection_factor(book: DrawBook, owner: str, sigma: float) -> FloatArray:
     """Draw the factor by which the convection law is off here, log-normal about 1."""
-    normal = book.mixed("convection", ("model", SHARED_SHARE), (owner, 1 - SHARED_SHARE))
+    normal = book.mixed("convection", ("model", SHARED_CONVECTION), (owner, 1 - SHARED_CONVECTION))
     return np.asarray(np.exp(sigma * normal))
 
 

@@ -12,9 +12,7 @@ What frames say is a mixture (each region may be sound or aged); it is replaced 
 that has its moments in the light of all others (expectation propagation), never narrower by a
 frame that only adds doubt.
 
-Not shared between frames: the camera's calibration. Two thirds of its variance are drawn alike
-for the whole survey, so that totals do not average it out; but that a camera is off by the same
-everywhere is too bold to let one frame correct another by it.
+Frames of one camera share half of the variance of its calibration (see `inverse.frame_draws`).
 
 References
 ----------
@@ -37,11 +35,14 @@ __all__ = ["FrameEvidence", "Message", "frame_evidence", "messages_between", "sh
 Key = tuple[str, str]
 """Owner and quantity of standard normal draws."""
 
-MODEL_KEY: Key = ("model", "convection")
+SURVEY_KEYS: tuple[Key, ...] = (("camera", "calibration"), ("model", "convection"))
 SWEEPS = 8
 DAMPING = 0.7
 TELLING = 0.97
 """A direction whose variance the other frames leave above this share says nothing."""
+LEAST_VARIANCE = 0.5
+"""However many frames say it, what they say of a direction is taken for no surer than this share
+of the prior's variance: that it is the same in all of them is itself an assumption."""
 MOST_DIRECTIONS = 6
 
 
@@ -99,7 +100,7 @@ def shared_keys(observed: Observed) -> tuple[Key, ...]:
         names += [f"thickness_{number}", f"conductivity_factor_{number}"]
     if line.inside_film is not None:
         names.append("inside_film")
-    return (MODEL_KEY, ("camera", "calibration"), *((owner, name) for name in names))
+    return (*SURVEY_KEYS, *((owner, name) for name in names))
 
 
 def frame_evidence(
@@ -259,7 +260,8 @@ def _cavity_message(
     if not kept.size:
         return None
     directions = vectors[:, kept].T
-    return Message(frame.keys, directions, directions @ shift / values[kept], 1 / values[kept])
+    mean = directions @ shift / values[kept]
+    return Message(frame.keys, directions, mean, np.maximum(1 / values[kept], LEAST_VARIANCE))
 
 
 def shared_evidence(message: Message, book: DrawBook) -> SharedEvidence:
