@@ -6,7 +6,7 @@ from pathlib import Path
 import pytest
 
 import cladwatt
-from cladwatt import Settings
+from cladwatt import Settings, frame_assessment
 from cladwatt.inverse import (
     bare,
     cautions,
@@ -16,6 +16,7 @@ from cladwatt.inverse import (
     hidden_side,
     joint,
     line_draws,
+    local_damage,
     null,
     observe,
     rain,
@@ -24,6 +25,7 @@ from cladwatt.inverse import (
     stretch_results,
     stretches,
     surroundings_draws,
+    survey_joint,
     tracer_place,
     tracing,
     verdict,
@@ -129,9 +131,9 @@ VALUES = [
     f"| {local_damage.RISES[0]} to {local_damage.RISES[-1]:.0f}, all factors equally likely |",
     f"| {local_damage.SHORTEST} m to {local_damage.LONGEST_SHARE} of the region,",
     "| {}, {} and {} m, rough".format(*local_damage.PATCH_LENGTHS),
-    f"| {local_damage.SCATTER_FACTORS[0]} to {local_damage.SCATTER_FACTORS[-1]}, about log-normal |",
+    "| {} to {}, about log-normal |".format(*local_damage.SCATTER_FACTORS[[0, -1]]),
     f"a sound pipe's own loss along it | {percent(local_damage.SCATTER_ALONG)} |",
-    f"first looked at\nwith {frame_assessment.FIRST_LOOK_DRAWS} draws",
+    f"first looked at with {frame_assessment.FIRST_LOOK_DRAWS} draws",
     f"Stretches below {percent(stretch_results.SMALLEST_PROBABILITY)} are not listed",
     f"is within {percent(bare.NEAR_FLUID)} of the fluid's temperature",
     f"bare steel | {bare.BARE_EMISSIVITY.value}, u {bare.BARE_EMISSIVITY.u} |",

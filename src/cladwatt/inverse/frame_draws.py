@@ -232,7 +232,9 @@ def _window_reflectance(book: DrawBook, window: Window) -> FloatArray:
 
 def _calibration(book: DrawBook, owner: str, accuracy: AccuracyStatement) -> FloatArray:
     """Return the calibration error as a share of the limit."""
-    normal = book.mixed("calibration", ("camera", SHARED_CALIBRATION), (owner, 1 - SHARED_CALIBRATION))
+    normal = book.mixed(
+        "calibration", ("camera", SHARED_CALIBRATION), (owner, 1 - SHARED_CALIBRATION)
+    )
     if accuracy.coverage_factor is None:
         return np.asarray(2 * ndtr(normal) - 1)
     return normal / accuracy.coverage_factor
