@@ -14,12 +14,14 @@ __all__ = [
     "RegionResult",
     "StationTable",
     "Stretch",
+    "StretchSide",
     "Verdict",
     "VerdictLevel",
     "interval_of",
 ]
 
 VerdictLevel = Literal["quantified", "indicative", "not quantified"]
+StretchSide = Literal["upper side", "underside", "all round", "not known"]
 
 
 @dataclass(frozen=True)
@@ -125,6 +127,10 @@ class Stretch:
     """Of the region's summed local excess."""
     outline: tuple[tuple[float, float], ...]
     """In the frame. [px]"""
+    side: StretchSide = "not known"
+    """Where around the pipe the damage lies, if there is any."""
+    side_probability: float = float("nan")
+    """That it lies there; NaN where it is not known."""
 
 
 @dataclass(frozen=True)

@@ -22,6 +22,7 @@ from cladwatt.results.assessment import (
     Interval,
     LineTotal,
     RegionResult,
+    Stretch,
 )
 
 __all__ = [
@@ -63,7 +64,7 @@ class RegionView:
     region: RegionResult
     svg: Markup
     figures: tuple[tuple[str, str], ...]
-    stretches: tuple[tuple[str, str, str, str, str, str], ...]
+    stretches: tuple[tuple[str, ...], ...]
     verdict: str
     level: str
     reason: str
@@ -223,7 +224,7 @@ def _figures(region: RegionResult, language: str) -> list[tuple[str, str]]:
     return rows
 
 
-def _stretch_rows(region: RegionResult, language: str) -> list[tuple[str, str, str, str, str, str]]:
+def _stretch_rows(region: RegionResult, language: str) -> list[tuple[str, ...]]:
     quantified = region.verdict.level != "not quantified"
     instead = text("report.not_quantified", language)
     rows = []
@@ -235,11 +236,20 @@ def _stretch_rows(region: RegionResult, language: str) -> list[tuple[str, str, s
                 format_interval(stretch.start, "", most=2),
                 format_interval(stretch.end, "", most=2),
                 format_probability(stretch.probability),
+                _side(stretch, language),
                 format_interval(loss, "") if quantified and loss else instead,
                 format_interval(excess, "") if quantified and excess else instead,
             )
         )
     return rows
+
+
+def _side(stretch: Stretch, language: str) -> str:
+    """Return which side of the pipe is damaged, with the probability of that."""
+    words = text(f"side.{stretch.side.replace(' ', '_')}", language)
+    if stretch.side == "not known":
+        return words
+    return f"{words}, P {format_probability(stretch.side_probability)}"
 
 
 def line_view(line: LineTotal, language: str) -> LineView:

@@ -222,6 +222,7 @@ STRETCH_COLUMNS: tuple[Column[StretchRow], ...] = (
     Column("gain", "", "true where the line gains heat", lambda row: bool(row[0].gain)),
     Column("verdict", "", "verdict of the region", lambda row: row[0].verdict.level),
     *_stretch_figures(),
+    Column("side", "", "upper side, underside, all round or not known", lambda row: row[1].side),
 )
 
 COMPONENT_COLUMNS: tuple[Column[ComponentResult], ...] = (

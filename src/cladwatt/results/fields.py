@@ -77,6 +77,7 @@ _STRETCH = {
     "excess": Field("W", "loss above the sound rest of the region, over the whole stretch"),
     "share_of_excess": Field("", "part of the region's summed local excess"),
     "outline": Field("px", "outline in the frame"),
+    "side_probability": Field("", "probability that the damage lies on that side"),
 }
 _REGION = {
     "length": Field("m", "length of pipe drawn"),
