@@ -8,6 +8,7 @@ import pytest
 import cladwatt
 from cladwatt import Settings, frame_assessment
 from cladwatt.inverse import (
+    advice,
     bare,
     cautions,
     components,
@@ -182,19 +183,24 @@ def test_words_for_numbers():
     assert survey_joint.LEAST_VARIANCE == 0.5
     assert "no surer than half of the prior's variance" in PAGE
     assert verdict.SPOTS_ACROSS == 3
-    assert verdict.LEAST_GAIN == 0.1
     assert "by at least a tenth" in PAGE
 
 
-def test_what_each_measurement_would_leave():
-    names = {"advice.tape_patch": "tape patch", "advice.reflector": "foil",
-             "advice.contact_temperature": "contact temperature",
-             "advice.air_temperature": "air temperature", "advice.other_hour": "another hour",
-             "advice.wind": "wind", "advice.closer_frame": "closer frame",
-             "advice.inside_temperature": "inside temperature"}  # fmt: skip
-    missing = [
-        f"{names[key]} {percent(left)}"
-        for key, left in verdict._ADVICE.values()
-        if f"{names[key]} {percent(left)}" not in PAGE
+def test_what_each_measurement_would_tell():
+    rows = [
+        f"the foil: the mean over the half space, without what the region mirrors itself |"
+        f" {references.FOIL_U:g} K",
+        f"{advice.BACKGROUND_U:g} K of the probe, {references.BACKGROUND_EMISSIVITY_U:g} K of",
+        f"| air temperature | itself | {advice.AIR_U:g} K |",
+        f"| surroundings | their temperature | {advice.SURROUNDINGS_U:g} K |",
+        f"{advice.WIND_U:g} m/s or {percent(advice.WIND_U_RELATIVE)}, the larger",
+        f"| inside temperature | itself | {advice.INSIDE_U:g} K |",
+        f"logarithm of the specified resistance | {advice.LAGGING_U:g} |",
+        f"{advice.HOUR_LEAVES:g} is left |",
+        f"sharper than {advice.SHARPEST:g} of the draws' spread",
     ]
-    assert missing == []
+    assert [row for row in rows if row not in PAGE] == []
+    assert advice.CLOSER_LEAVES == 1 / 3
+    assert "transmission of the air path | a third is left |" in PAGE
+    assert advice.READINGS == (0.1, 0.3, 0.5, 0.7, 0.9)
+    assert advice.LEAST_GAIN == 0.1

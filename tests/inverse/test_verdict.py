@@ -1,4 +1,4 @@
-"""The verdict's thresholds, the shares of variance and the advice that follows from them."""
+"""The verdict's thresholds, the shares of variance, and which advice goes with a verdict."""
 
 from typing import Any
 
@@ -9,7 +9,6 @@ from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.result import Interval
 from cladwatt.inverse.verdict import (
     VerdictInputs,
-    advice_of,
     as_verdict,
     give_verdict,
     variance_shares,
@@ -153,46 +152,43 @@ def test_nothing_to_share():
     assert variance_shares(np.full(4000, np.nan), drivers) == ()
 
 
-def test_advice_names_the_measurement_behind_the_largest_share():
-    advice = advice_of(
-        (("wind_speed", 0.7), ("air_temperature", 0.2)), {}, wide(1.0), emissivity=0.9
-    )
-    assert advice is not None
-    assert advice.key == "advice.wind"
-    promised = dict(advice.parameters)
-    assert promised["width_now"] == pytest.approx(50)
-    assert 0 < promised["width_then"] < promised["width_now"]
+WIND = Remark("advice.wind", (("width_now", 50.0), ("width_then", 30.0)))
+
+
+def test_advice_goes_with_the_verdict():
+    assert as_verdict(inputs(), WIND).advice == WIND
+    assert as_verdict(inputs(), None).advice is None
+
+
+def test_finding_out_what_is_unknown_comes_before_any_measurement():
+    advice = as_verdict(inputs(), WIND, (Remark("missing.lagging"),)).advice
+    assert advice == Remark("advice.lagging_data")
 
 
 @pytest.mark.parametrize(
-    ("shares", "emissivity"),
-    [
-        ((("hidden_side", 0.9), ("convection", 0.1)), 0.9),
-        ((("air_temperature", 0.09),), 0.9),
-        ((("reflected_temperature", 0.8),), 0.95),
-        ((), 0.9),
-    ],
-    ids=["nothing measurable", "all small", "reflector on paint", "no shares"],
+    ("changes", "key"),
+    [({"caps": (Remark("indicative.sun"),)}, "other_hour"), ({"width": 11.0}, "closer_frame")],
 )
-def test_no_advice_where_no_measurement_helps(shares, emissivity):
-    assert advice_of(shares, {}, wide(1.0), emissivity=emissivity) is None
+def test_without_a_measurement_that_narrows_what_lifts_the_reason_is_advised(changes, key):
+    assert as_verdict(inputs(**changes), None).advice == Remark(f"advice.{key}")
+    assert as_verdict(inputs(**changes), WIND).advice == WIND
 
 
-def test_reflector_is_advised_on_metal():
-    advice = advice_of((("reflected_temperature", 0.8),), {}, wide(1.0), emissivity=0.3)
-    assert advice is not None
-    assert advice.key == "advice.reflector"
+def test_shares_are_first_order_indices_of_another_library(evidence):
+    from SALib.analyze import sobol as analyze
+    from SALib.sample import sobol as sample
 
+    names = ["air_temperature", "wind_speed", "calibration"]
+    problem = {"num_vars": 3, "names": names, "bounds": [[0, 1]] * 3, "dists": ["norm"] * 3}
 
-def test_no_advice_without_a_loss():
-    shares = (("wind_speed", 0.7),)
-    assert advice_of(shares, {}, None, emissivity=0.9) is None
-    assert as_verdict(inputs(heat_loss=None), shares, {}).advice is None
-    assert as_verdict(inputs(heat_loss=wide(0.5)), shares, {}).advice is not None
+    def loss(x):
+        # about linear, as a loss is in its draws, with a bend and an interaction
+        return 50 + 3 * x[:, 0] + 2 * x[:, 1] - x[:, 2] + 0.3 * x[:, 0] * x[:, 1]
 
-
-def test_a_measurement_promises_less_where_the_joint_estimate_knows_already():
-    shares = (("wind_speed", 0.7),)
-    fresh = dict(advice_of(shares, {}, wide(1.0), emissivity=0.9).parameters)
-    known = advice_of(shares, {"wind_speed": 0.1}, wide(1.0), emissivity=0.9)
-    assert known is None or dict(known.parameters)["width_then"] > fresh["width_then"]
+    taken = sample.sample(problem, 2048, seed=4)
+    indices = analyze.analyze(problem, loss(taken), seed=4)
+    book = DrawBook(11, 20_000)
+    drivers = {name: book.normal("test", name) for name in names}
+    found = dict(variance_shares(loss(np.stack(list(drivers.values()), axis=1)), drivers))
+    for number, name in enumerate(names):
+        evidence("salib_first_order", name, found[name], indices["S1"][number], abs=0.02, scale=1.0)

@@ -1,11 +1,11 @@
 """Conclusions on one region: loss, resistance, stretches, probabilities and verdict."""
 
 from collections.abc import Sequence
-from dataclasses import replace
-from typing import NamedTuple
+from dataclasses import dataclass, replace
 
 import numpy as np
 
+from cladwatt.inverse.advice import Measurement, best_measurement, measurements_of
 from cladwatt.inverse.cautions import (
     cautions_of,
     missing_of,
@@ -63,20 +63,16 @@ def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionR
     seen = _shifted_seen(observed.seen, shift)
     balance = _shifted_balance(observed, shift, seen.perimeter)
     aged = next((u.aged[seen.region.id] for u in updates if seen.region.id in u.aged), None)
-    prior = _drivers(observed.seen)
-    drivers = {name: shift(draws) for name, draws in prior.items()}
-    narrowed = {
-        name: float(np.std(drivers[name]) / spread)
-        for name, draws in prior.items()
-        if (spread := np.std(draws)) > 0
-    }
-    result = _concluded(seen, balance, image_loss, aged, drivers, narrowed)
+    drivers = {name: shift(draws) for name, draws in _drivers(observed.seen).items()}
+    measurements = measurements_of(seen, balance.sound, shift)
+    result = _concluded(seen, balance, image_loss, aged, drivers, measurements)
     if any(seen.region.id in update.doubted for update in updates):
         return replace(result, remarks=(*result.remarks, Remark("remark.specification_doubted")))
     return result
 
 
-class _Shift(NamedTuple):
+@dataclass(frozen=True)
+class _Shift:
     """All updates of a frame, one after the other."""
 
     updates: Sequence[JointUpdate]
@@ -156,7 +152,7 @@ def _concluded(
     image_loss: Interval | None,
     aged_level: float | None,
     drivers: dict[str, FloatArray],
-    narrowed: dict[str, float],
+    measurements: Sequence[Measurement],
 ) -> RegionResult:
     bounds, sound = balance.bounds, balance.sound
     mean_flux = bounds.applied(seen.mean_along(balance.flux))
@@ -184,6 +180,7 @@ def _concluded(
         aged = None if level is None else (1 - local) * level
     heat_loss = _interval(draws, "heat_loss")
     shares = variance_shares(draws["heat_loss"], drivers) if heat_loss else ()
+    advice = best_measurement(draws.get("heat_loss"), measurements)
     inputs = VerdictInputs(
         heat_loss=heat_loss,
         excess=_interval(draws, "excess"),
@@ -220,7 +217,7 @@ def _concluded(
         probability_damaged=None if local is None else local + (aged or 0.0),
         probability_local=local,
         probability_aged=aged,
-        verdict=as_verdict(inputs, shares, narrowed, missing_of(seen)),
+        verdict=as_verdict(inputs, advice, missing_of(seen)),
         stretches=stretches,
         remarks=(
             *bare.remarks,

@@ -27,7 +27,13 @@ from cladwatt.quantities import Quantity, Remark
 from cladwatt.survey.region import Region
 from cladwatt.types import BoolArray, FloatArray
 
-__all__ = ["ReferenceReading", "read_references", "with_emissivity", "with_frame_references"]
+__all__ = [
+    "ReferenceReading",
+    "at_lens",
+    "read_references",
+    "with_emissivity",
+    "with_frame_references",
+]
 
 FOIL_U = 0.5
 """Mean over the half space against what this cladding reflects; assumption. [K]"""
@@ -148,7 +154,7 @@ def with_frame_references(
         known = known + BACKGROUND_EMISSIVITY_U * book.normal(
             f"region:{reading.region.id}", "emissivity"
         )
-        known = _at_lens(frame, known)
+        known = at_lens(frame, known)
         offset = frame.calibration_offset(np.array([reading.reading]))[:, 0]
         limit = offset / frame.calibration
         off = abs(float(np.median(known)) - reading.reading)
@@ -183,7 +189,7 @@ def with_frame_references(
     return frame, tuple(remarks)
 
 
-def _at_lens(frame: FrameDraws, temperature: FloatArray) -> FloatArray:
+def at_lens(frame: FrameDraws, temperature: FloatArray) -> FloatArray:
     """Return what a black thing shows at the lens through air and window, (count,). [K]"""
     band, through = frame.band, frame.window_transmission
     air, window = band.radiance(frame.air_temperature), band.radiance(frame.window_temperature)

@@ -1,4 +1,4 @@
-"""The verdict: what may be said of a region's number, its reason, and what would help most."""
+"""The verdict: what may be said of a region's number, its reason, and what carries its width."""
 
 import math
 from collections.abc import Mapping
@@ -10,7 +10,7 @@ from cladwatt.inverse.result import Interval, Verdict, VerdictLevel
 from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray
 
-__all__ = ["VerdictInputs", "advice_of", "as_verdict", "give_verdict", "variance_shares"]
+__all__ = ["VerdictInputs", "as_verdict", "give_verdict", "variance_shares"]
 
 QUANTIFIED_WIDTH = 0.40
 INDICATIVE_WIDTH = 1.20
@@ -23,23 +23,20 @@ METAL_EMISSIVITY = 0.7
 SPOTS_ACROSS = 3.0
 INFEASIBLE_SHARE = 0.3
 
-_ADVICE: dict[str, tuple[str, float]] = {
-    # quantity: (advice key, share of its uncertainty that the measurement leaves)
-    "band_emissivity": ("advice.tape_patch", 0.35),
-    "reflected_temperature": ("advice.reflector", 0.25),
-    "calibration": ("advice.contact_temperature", 0.6),
-    "air_temperature": ("advice.air_temperature", 0.3),
-    "surroundings_temperature": ("advice.other_hour", 0.5),
-    "wind_speed": ("advice.wind", 0.4),
-    "transmission": ("advice.closer_frame", 0.4),
-    "inside_temperature": ("advice.inside_temperature", 0.4),
-}
 _FIND_OUT = {
     "missing.inside_temperature": "advice.inside_temperature",
     "missing.lagging": "advice.lagging_data",
 }
-LEAST_GAIN = 0.1
-"""Advice that would narrow the interval by less than this share is not given."""
+_LIFTS = {
+    "indicative.sun": "advice.other_hour",
+    "indicative.sun_unknown": "advice.other_hour",
+    "indicative.sun_before": "advice.other_hour",
+    "indicative.rain": "advice.other_hour",
+    "indicative.not_steady": "advice.other_hour",
+    "indicative.narrow_pipe": "advice.closer_frame",
+    "not_quantified.too_narrow": "advice.closer_frame",
+}
+"""What would lift a reason, where no measurement would narrow the loss."""
 
 
 @dataclass(frozen=True)
@@ -153,64 +150,16 @@ def variance_shares(
     return tuple(sorted(shares, key=lambda item: -item[1]))
 
 
-def advice_of(
-    shares: tuple[tuple[str, float], ...],
-    narrowed: Mapping[str, float],
-    heat_loss: Interval | None,
-    *,
-    emissivity: float,
-) -> Remark | None:
-    """Return the one measurement that would narrow the loss most, with the widths it promises.
-
-    Parameters
-    ----------
-    shares : tuple of (name, share)
-    narrowed : mapping of name to float
-        What is left of each quantity's declared uncertainty after the joint estimate.
-    heat_loss : Interval or None
-    emissivity : float
-
-    Returns
-    -------
-    Remark or None
-        Half widths now and then, in percent; None where nothing measurable would narrow the
-        interval by a tenth.
-    """
-    if heat_loss is None or not heat_loss.median:
-        return None
-    now = 50 * heat_loss.relative_width
-    best: tuple[float, str] | None = None
-    for name, share in shares:
-        if name in _ADVICE and share >= 0.1:
-            key, left = _ADVICE[name]
-            # the measurement adds to what the joint estimate knows of the quantity already
-            measured = left / math.sqrt(1 - left**2)
-            left = 1 / math.hypot(1.0, narrowed.get(name, 1.0) / measured)
-            if key == "advice.reflector" and emissivity > 0.9:
-                continue
-            then = now * math.sqrt(max(1 - share * (1 - left**2), 0.02))
-            if best is None or then < best[0]:
-                best = (then, key)
-    if best is None or best[0] > (1 - LEAST_GAIN) * now:
-        return None
-    return _remark(best[1], width_now=now, width_then=best[0])
-
-
 def as_verdict(
-    inputs: VerdictInputs,
-    shares: tuple[tuple[str, float], ...],
-    narrowed: Mapping[str, float],
-    missing: tuple[Remark, ...] = (),
+    inputs: VerdictInputs, advice: Remark | None, missing: tuple[Remark, ...] = ()
 ) -> Verdict:
     """Return the full verdict with its advice.
 
     Parameters
     ----------
     inputs : VerdictInputs
-    shares : tuple of (name, share)
-        As `variance_shares` gives them.
-    narrowed : mapping of name to float
-        As for `advice_of`.
+    advice : Remark or None
+        The measurement that would help most, see `inverse.advice`.
     missing : tuple of Remark
         What is unknown; finding that out comes before any measurement.
     """
@@ -218,5 +167,6 @@ def as_verdict(
     for remark in missing:
         if remark.key in _FIND_OUT:
             return Verdict(level, reason, Remark(_FIND_OUT[remark.key]))
-    advice = advice_of(shares, narrowed, inputs.heat_loss, emissivity=inputs.emissivity)
+    if advice is None and reason.key in _LIFTS:
+        advice = Remark(_LIFTS[reason.key])
     return Verdict(level, reason, advice)
