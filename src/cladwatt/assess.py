@@ -2,6 +2,7 @@
 
 from collections.abc import Callable, Iterable, Iterator, Mapping, Sequence
 from concurrent.futures import Executor, ProcessPoolExecutor
+from dataclasses import replace
 from importlib.metadata import version
 from itertools import repeat
 from multiprocessing import get_context
@@ -12,6 +13,8 @@ from threadpoolctl import threadpool_limits
 from cladwatt.assumptions import assumptions_of
 from cladwatt.errors import InputError
 from cladwatt.frame_assessment import assess_frame, look_at_frame, question_remark
+from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.line_log import log_lines
 from cladwatt.inverse.result import ComponentResult, RegionResult, interval_of
 from cladwatt.inverse.survey_joint import FrameEvidence, Message, messages_between
 from cladwatt.results.assessment import Assessment, FrameResult, LeftOut, LineTotal, Settings
@@ -139,7 +142,9 @@ def _assess_kept(entry: FrameEntry, message: Message | None) -> FrameResult:
 
 def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ...]) -> Assessment:
     """Put frame results together, with totals that keep what regions share."""
-    regions = [region for frame in frames for region in frame.regions]
+    found = [region for frame in frames for region in frame.regions]
+    logged = log_lines(found, DrawBook(settings.seed, settings.draws).normal)
+    regions = [_counted_once(region, logged.counted) for region in found]
     hot = [region for region in regions if not region.gain and "total_loss" in region.draws]
     chilled = [region for region in regions if region.gain and "total_loss" in region.draws]
     known = [region for region in hot if "total_excess" in region.draws]
@@ -164,7 +169,11 @@ def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ..
         left_out=_survey_left_out(survey)
         + tuple(item for frame in frames for item in frame.left_out),
         assumptions=assumptions_of(survey),
-        remarks=tuple(question_remark(f) for f in survey.faults if f.severity == "question"),
+        remarks=(
+            *(question_remark(f) for f in survey.faults if f.severity == "question"),
+            *logged.remarks,
+        ),
+        logs=logged.logs,
         camera={
             "model": camera.model,
             "serial": camera.serial,
@@ -174,6 +183,14 @@ def _assembled(survey: Survey, settings: Settings, frames: tuple[FrameResult, ..
             "band_um": f"{camera.band[0] * 1e6:.4g}-{camera.band[1] * 1e6:.4g}",
         },
     )
+
+
+def _counted_once(
+    region: RegionResult, counted: Mapping[str, Mapping[str, FloatArray]]
+) -> RegionResult:
+    """Return a region for the sums: of metres that others show too with its share of them."""
+    once = counted.get(region.region_id)
+    return region if once is None else replace(region, draws={**region.draws, **once})
 
 
 def _losing_and_gaining(

@@ -17,6 +17,7 @@ from cladwatt.inverse.cladding_fin import spread_remark, spreading_length
 from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
+from cladwatt.inverse.line_profile import line_profile
 from cladwatt.inverse.local_damage import local_damage
 from cladwatt.inverse.observe import Balance, Observed
 from cladwatt.inverse.outer_balance import outer_flux
@@ -227,6 +228,7 @@ def _concluded(
         ),
         variance_shares=shares,
         draws=draws,
+        profile=line_profile(seen, loss, draws.get("heat_loss")),
     )
 
 

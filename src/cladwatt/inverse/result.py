@@ -11,6 +11,7 @@ from cladwatt.types import FloatArray, IntArray
 __all__ = [
     "ComponentResult",
     "Interval",
+    "LineProfile",
     "RegionResult",
     "StationTable",
     "Stretch",
@@ -134,6 +135,34 @@ class Stretch:
 
 
 @dataclass(frozen=True)
+class LineProfile:
+    """A region's draws along its line, in bins of `inverse.line_profile.BIN` from station 0.
+
+    Attributes
+    ----------
+    first : int
+        Number of the first bin.
+    low, high : float
+        Stations of its ends. [m]
+    loss : (n_draws, n_bins) array
+        Loss per metre, its mean over what is seen held to the region's; the region's where
+        nothing is seen. [W/m]
+    conductance : (n_draws, n_bins) array or None
+        Of the lagging. [W/(m K)]
+    metres, seen : (n_bins,) array
+        Of pipe without components, and of that what carries a number. [m]
+    """
+
+    first: int
+    low: float
+    high: float
+    loss: FloatArray
+    conductance: FloatArray | None
+    metres: FloatArray
+    seen: FloatArray
+
+
+@dataclass(frozen=True)
 class RegionResult:
     """What one pipe region came to. Intervals are None where the reason stands in `missing`."""
 
@@ -199,6 +228,8 @@ class RegionResult:
     """Corrected median temperature straightened, (n_across, n_stations), NaN where left out. [K]"""
     draws: dict[str, FloatArray] = field(default_factory=dict, repr=False, compare=False)
     """Draws by quantity: heat_loss, total_loss, sound_loss, excess, length, ... (n_draws,)."""
+    profile: LineProfile | None = field(default=None, repr=False, compare=False)
+    """Along the line, where the region's station is declared; for the log of the line alone."""
 
 
 @dataclass(frozen=True)

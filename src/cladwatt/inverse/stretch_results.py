@@ -94,7 +94,7 @@ def _edge(seen: Seen, index: int, side: float, u_stations: float) -> Interval:
     strip, region = seen.strip, seen.region
     step = float(strip.length[index])
     middle = float(strip.station[index]) + region.direction * side * step
-    by_scale = strip.scale_uncertainty * abs(middle - region.start)
+    by_scale = strip.scale_uncertainty * abs(middle - region.origin)
     reach = 1.96 * math.hypot(u_stations * step, by_scale)
     low, high = sorted((float(strip.station[0]), float(strip.station[-1])))
     return Interval(middle, max(middle - reach, low - step), min(middle + reach, high + step))

@@ -213,7 +213,7 @@ def _stations(
         length = np.hypot(length, receding)
     length = length * (nearer if known_length is None else known_length)
     position = np.cumsum(length) - length / 2
-    return region.start + region.direction * position, length
+    return region.origin + region.direction * position, length
 
 
 def _scale_uncertainty(width: FloatArray, vertices: int, known_length: float | None) -> float:

@@ -3,6 +3,7 @@
 from dataclasses import dataclass, field
 from typing import Literal
 
+from cladwatt.inverse.line_result import LineLog, LogBin, LogOverlap, LogStretch
 from cladwatt.inverse.result import (
     ComponentResult,
     Interval,
@@ -23,7 +24,11 @@ __all__ = [
     "FrameResult",
     "Interval",
     "LeftOut",
+    "LineLog",
     "LineTotal",
+    "LogBin",
+    "LogOverlap",
+    "LogStretch",
     "RegionResult",
     "Settings",
     "StationTable",
@@ -64,7 +69,7 @@ class FrameResult:
 
 @dataclass(frozen=True)
 class LineTotal:
-    """Sum over the drawn regions of one line, shared errors kept."""
+    """Sum over the drawn regions of one line, shared errors kept; metres in its log count once."""
 
     tag: str
     area: str
@@ -130,6 +135,8 @@ class Assessment:
     """Over all components that lose heat; in none of the totals above. [W]"""
     component_gain: Interval | None = None
     """Over all components that gain heat, as a positive gain. [W]"""
+    logs: tuple[LineLog, ...] = ()
+    """Of every line with a region whose station along it is declared."""
 
     @property
     def regions(self) -> tuple[RegionResult, ...]:

@@ -31,7 +31,7 @@ class DataError(ResultsError):
 
 
 NOT_STORED: dict[type, frozenset[str]] = {
-    RegionResult: frozenset({"stations", "strip_temperature", "draws"}),
+    RegionResult: frozenset({"stations", "strip_temperature", "draws", "profile"}),
     ComponentResult: frozenset({"draws"}),
     FrameResult: frozenset({"seconds"}),
 }

@@ -11,6 +11,8 @@ from cladwatt.quantities import Remark
 from cladwatt.results.assessment import (
     ComponentResult,
     Interval,
+    LineLog,
+    LogBin,
     RegionResult,
     StationTable,
     Stretch,
@@ -20,6 +22,7 @@ from cladwatt.types import FloatArray
 
 __all__ = [
     "COMPONENT_COLUMNS",
+    "LOG_COLUMNS",
     "REGION_COLUMNS",
     "STATION_COLUMNS",
     "STRETCH_COLUMNS",
@@ -34,6 +37,7 @@ __all__ = [
 Cell = str | float | int | bool | None
 Row = TypeVar("Row")
 StretchRow = tuple[RegionResult, Stretch]
+LogRow = tuple[LineLog, LogBin]
 
 
 @dataclass(frozen=True)
@@ -160,6 +164,19 @@ def _stretch_figures() -> list[Column[StretchRow]]:
     return columns
 
 
+def _log_figures() -> list[Column[LogRow]]:
+    columns: list[Column[LogRow]] = []
+    for field in FIELDS[LogBin]:
+
+        def get(row: LogRow, field: str = field) -> float | Interval | None:
+            found: float | Interval | None = getattr(row[1], field)
+            return found
+
+        interval = field in ("heat_loss", "resistance")
+        columns += _figure_columns(LogBin, field, get, interval=interval)
+    return columns
+
+
 def _component_figures() -> list[Column[ComponentResult]]:
     columns: list[Column[ComponentResult]] = []
     for field in FIELDS[ComponentResult]:
@@ -225,6 +242,16 @@ STRETCH_COLUMNS: tuple[Column[StretchRow], ...] = (
     Column("side", "", "upper side, underside, all round or not known", lambda row: row[1].side),
 )
 
+LOG_COLUMNS: tuple[Column[LogRow], ...] = (
+    Column("tag", "", "tag of the line", lambda row: row[0].tag),
+    Column("area", "", "area of the plant", lambda row: row[0].area),
+    Column("gain", "", "true where the line gains heat", lambda row: bool(row[0].gain)),
+    *_log_figures(),
+    Column(
+        "regions", "", "regions that show it, joined by |", lambda row: "|".join(row[1].regions)
+    ),
+)
+
 COMPONENT_COLUMNS: tuple[Column[ComponentResult], ...] = (
     Column("frame_id", "", "frame the component is drawn on", lambda c: c.frame_id),
     Column("region_id", "", "component as drawn", lambda c: c.region_id),
@@ -279,6 +306,10 @@ def columns_text() -> str:
         ("regions.csv: one row per region", _described(REGION_COLUMNS)),
         ("stretches.csv: one row per damaged stretch", _described(STRETCH_COLUMNS)),
         ("stations.csv: one row per station along a region", _described(STATION_COLUMNS)),
+        (
+            "line_log.csv: one row per tenth of a metre seen of a line with declared stations",
+            _described(LOG_COLUMNS),
+        ),
         ("components.csv: one row per flange, valve or hanger", _described(COMPONENT_COLUMNS)),
         ("flags in stations.csv", [(str(f.name).lower(), s) for f, s in FLAG_SENTENCES.items()]),
     ):

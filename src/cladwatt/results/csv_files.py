@@ -11,6 +11,7 @@ import numpy as np
 from cladwatt.results.assessment import Assessment, RegionResult
 from cladwatt.results.columns import (
     COMPONENT_COLUMNS,
+    LOG_COLUMNS,
     REGION_COLUMNS,
     STATION_COLUMNS,
     STRETCH_COLUMNS,
@@ -79,7 +80,7 @@ def _write_stations(path: Path, regions: Iterable[RegionResult]) -> None:
 
 
 def write_tables(assessment: Assessment, folder: Path) -> None:
-    """Write the tables of regions, stretches, stations and components, and ``COLUMNS.txt``.
+    """Write the tables of regions, stretches, stations, lines and components, and ``COLUMNS.txt``.
 
     Parameters
     ----------
@@ -97,5 +98,7 @@ def write_tables(assessment: Assessment, folder: Path) -> None:
     _write(folder / "regions.csv", REGION_COLUMNS, iter(regions))
     _write(folder / "stretches.csv", STRETCH_COLUMNS, stretches)
     _write_stations(folder / "stations.csv", regions)
+    logged = ((log, part) for log in assessment.logs for part in log.bins)
+    _write(folder / "line_log.csv", LOG_COLUMNS, logged)
     _write(folder / "components.csv", COMPONENT_COLUMNS, iter(assessment.components))
     (folder / "COLUMNS.txt").write_text(columns_text(), encoding="utf-8", newline="\n")

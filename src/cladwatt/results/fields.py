@@ -11,7 +11,11 @@ from cladwatt.results.assessment import (
     Assessment,
     Assumption,
     ComponentResult,
+    LineLog,
     LineTotal,
+    LogBin,
+    LogOverlap,
+    LogStretch,
     RegionResult,
     StationTable,
     Stretch,
@@ -116,8 +120,36 @@ _REGION = {
 }
 _LINE = {
     "length": Field("m", "length of pipe drawn, all regions of the line"),
-    "total_loss": Field("W", "heat loss over the drawn regions of the line"),
+    "total_loss": Field("W", "heat loss over the drawn regions, metres of its log once"),
     "excess": Field("W", "loss found minus sound loss over the drawn regions"),
+}
+_LOG_BIN = {
+    "station": Field("m", "where this part of the line begins"),
+    "length": Field("m", "pipe drawn here, every metre once"),
+    "covered": Field("m", "of that, what at least one frame shows"),
+    "heat_loss": Field("W/m", "heat loss per metre by all frames together, negative for a gain"),
+    "sound_loss": Field("W/m", "what sound lagging would lose in the same conditions"),
+    "resistance": Field("m·K/W", "thermal resistance of the lagging found"),
+    "resistance_ratio": Field("", "resistance found over resistance specified"),
+    "probability_damaged": Field("", "probability of damage here, or of marked ageing"),
+}
+_LOG_OVERLAP = {
+    "start": Field("m", "where several frames begin to show the line"),
+    "end": Field("m", "where they end"),
+    "heat_losses": Field("W/m", "mean heat loss per metre by each region"),
+    "weights": Field("", "weight of each region"),
+    "heat_loss": Field("W/m", "combined; wider where they disagree"),
+    "standard_uncertainties_apart": Field("", "of the two furthest apart, shared errors cancelled"),
+}
+_LOG_STRETCH = {
+    "start": Field("m", "where the stretch begins along the line"),
+    "end": Field("m", "where the stretch ends along the line"),
+    "probability": Field("", "probability that there is local damage here, by all frames"),
+    "excess": Field("W", "loss above the sound rest, over the whole stretch"),
+}
+_LOG = {
+    "not_seen": Field("m", "between the first and the last metre: no frame shows it, from and to"),
+    "covered_length": Field("m", "length of line seen, every metre once"),
 }
 _COMPONENT = {
     "surface_temperature": Field("°C", "temperature of the component as seen"),
@@ -143,6 +175,10 @@ FIELDS: dict[type, dict[str, Field]] = {
     Stretch: _STRETCH,
     RegionResult: _REGION,
     LineTotal: _LINE,
+    LineLog: _LOG,
+    LogBin: _LOG_BIN,
+    LogOverlap: _LOG_OVERLAP,
+    LogStretch: _LOG_STRETCH,
     ComponentResult: _COMPONENT,
     Assessment: _ASSESSMENT,
     Assumption: _ASSUMPTION,

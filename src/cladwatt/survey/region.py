@@ -40,8 +40,8 @@ class Region:
     kind: str = ""
     """Of a component: flange, valve, pipe support, ..."""
     lagged: bool | None = None
-    start: float = 0.0
-    """Station of the first vertex along the line. [m]"""
+    start: float | None = None
+    """Station of the first vertex along the line; None where nobody declared it. [m]"""
     direction: Literal[1, -1] = 1
     """Whether stations grow (1) or fall (-1) from first to last vertex."""
     is_directed: bool = False
@@ -59,3 +59,8 @@ class Region:
     """Angle of the axis from the horizontal, 0 to 90, overriding the line's."""
     feature: int = 0
     """Position in its file, from 1."""
+
+    @property
+    def origin(self) -> float:
+        """Station its own stations count from: as declared, else 0. [m]"""
+        return 0.0 if self.start is None else self.start

@@ -114,8 +114,8 @@ class PlantPipe:
     """In a corner frame: what it may have, drawn by lot."""
     inclination_deg: float | None = None
     """Of a riser or drop, over its line's."""
-    start_m: float = 0.0
-    """Along the line, of what is drawn first."""
+    start_m: float | None = None
+    """Along the line, of what is drawn first; None where the inspector did not say."""
 
 
 @dataclass(frozen=True)
@@ -218,8 +218,12 @@ def _pipe(table: dict[str, Any]) -> PlantPipe:
         crossed_by=table.get("crossed_by", ""),
         clear=tuple(table["clear"]) if "clear" in table else None,
         tape=table.get("tape"), kinds=tuple(table.get("kinds", ())),
-        inclination_deg=table.get("inclination_deg"), start_m=float(table.get("start_m", 0.0)),
+        inclination_deg=table.get("inclination_deg"), start_m=_start(table),
     )  # fmt: skip
+
+
+def _start(table: dict[str, Any]) -> float | None:
+    return float(table["start_m"]) if "start_m" in table else None
 
 
 def _frame(table: dict[str, Any]) -> PlantFrame:
