@@ -35,7 +35,7 @@ STATION_U = 0.1
 """Standard uncertainty of one frame's stations against another's; assumption. [m]"""
 DISAGREE = 1.96
 """Standard uncertainties apart from which two frames do not agree."""
-SMALLEST_OWN_SHARE = 0.05
+SMALLEST_OWN_SHARE = 0.02
 """Of a variance that is always taken for a frame's own, so that none gets all the weight."""
 FIRM = 0.05
 """A sound loss with draws below this share of its median is none to compare against."""
