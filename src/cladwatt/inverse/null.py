@@ -66,6 +66,7 @@ def null_of(
     reflected_temperature: float,
     emissivity: float,
     indoors: bool,
+    lagging_scatter: float = 0.0,
 ) -> NullModel:
     """Return the null of a region, partly from itself.
 
@@ -84,6 +85,8 @@ def null_of(
     emissivity : float
         Declared, in the band.
     indoors : bool
+    lagging_scatter : float
+        What uneven sound lagging adds to the patches on a line that is not steady. [K]
 
     Returns
     -------
@@ -101,9 +104,10 @@ def null_of(
     rough = robust_sigma(np.diff(station_mean, 2)) / math.sqrt(6)
     relative_patch = 0.03 if emissivity >= 0.7 else 0.12 if emissivity >= 0.25 else 0.15
     scene = 0.7 if indoors else 2.0
+    patches = relative_patch * abs(level - reflected_temperature)
     return NullModel(
         station_sigma=max(noise.sigma / math.sqrt(independent), rough),
-        patch_sigma=relative_patch * abs(level - reflected_temperature),
+        patch_sigma=math.hypot(patches, lagging_scatter),
         own_sigma=_band_differences(lens_temperature, station_length),
         scene_sigma=0.5 * (1 - emissivity) * scene,
         station_length=station_length,

@@ -2,24 +2,26 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass, replace
+from typing import NamedTuple
 
 import numpy as np
 
 from cladwatt.errors import Fault, RegionError
 from cladwatt.inverse.bare import bare_draws, with_bare
+from cladwatt.inverse.beside_components import beside_components
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.face import face_draws, surface_temperature_draws
 from cladwatt.inverse.feasibility import Bounds, flux_bounds
 from cladwatt.inverse.frame_draws import FrameDraws
 from cladwatt.inverse.hidden_side import HiddenSide, evenness_of, whole_flux
-from cladwatt.inverse.joint import LevelEvidence
+from cladwatt.inverse.joint import SOUND_SCATTER, LevelEvidence
 from cladwatt.inverse.law_spread import with_own_spread
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.null import NullModel, null_of
 from cladwatt.inverse.rain import MAY_BE_WET, MOSTLY_WET, RainLeft, rain_left
 from cladwatt.inverse.seen import FrameImage, Seen
 from cladwatt.inverse.sound import SoundDraws, sound_draws
-from cladwatt.inverse.steady_state import is_settled
+from cladwatt.inverse.steady_state import is_settled, warming_gain
 from cladwatt.inverse.stretches import Run, find_runs, sound_stations
 from cladwatt.inverse.sunlit import sun_on_run, sunlit_excess
 from cladwatt.inverse.tracing import Stripe, clear_bands, stripe_of
@@ -166,6 +168,7 @@ def observe_region(
     frame = sun_on_run(frame, conditions, line_draws.inclination_deg)
     lens = sample_strip(np.where(left_out, np.nan, image.lens_temperature), strip)
     component_at = _component_stations(strip, components)
+    body = lens.mean(axis=0)
     lens[:, _bulged(component_at, strip)] = np.nan
     recorded = np.where(np.isfinite(lens), sample_strip(image.recorded_temperature, strip), np.nan)
     face = bands_of(lens, strip.view_angle, BANDS_OF_ANGLE)
@@ -198,6 +201,7 @@ def observe_region(
         known_lengths=tuple(marked.id for marked in known_lengths),
         image=image,
         book=book,
+        body=body,
     )
     return Observed(seen, _balance(seen))
 
@@ -287,22 +291,40 @@ def _infeasible_share(seen: Seen, bounds: Bounds, flux: FloatArray) -> float:
     return bounds.beyond(np.where(dark, np.nan, seen.mean_along(flux)))
 
 
-def _contrast(
-    seen: Seen, bands: BoolArray, is_wet: bool
-) -> tuple[NullModel, tuple[Run, ...], BoolArray]:
-    """Return the null, what stands out along the strip in these bands, and the sound stations."""
+class _Contrast(NamedTuple):
+    """What stands out along a strip, against what."""
+
+    null: NullModel
+    searched: FloatArray
+    """Profile without what components add to it, NaN where nothing is searched. [K]"""
+    runs: tuple[Run, ...]
+    sound_at: BoolArray
+
+
+def _contrast(seen: Seen, bands: BoolArray, is_wet: bool) -> _Contrast:
+    """Seek what stands out along the strip in these bands of angle."""
     profile = seen.face.temperature[bands].mean(axis=0)
     null = _null(seen, bands)
+    sign = -1 if seen.gain else 1
+    beside = beside_components(seen, profile, sign)
+    searched = beside.searched(profile, sign)
+    carries = beside.sound(searched)
     # a wet surface dries in patches, which are no damage
     runs: tuple[Run, ...] = ()
     if not is_wet:
-        sign = -1 if seen.gain else 1
-        runs = find_runs(profile, null, sign=sign, diameter_stations=seen.width)
-    return null, runs, sound_stations(profile, runs, clear_of=0.5 * seen.width)
+        found = find_runs(
+            searched, null, sign=sign, diameter_stations=seen.width, level_from=carries
+        )
+        runs = tuple(beside.widened(run) for run in found)
+    sound_at = sound_stations(carries, runs, clear_of=0.5 * seen.width)
+    return _Contrast(null, searched, runs, sound_at)
 
 
 def _null(seen: Seen, bands: BoolArray) -> NullModel:
     metres = seen.strip.length
+    gain = warming_gain(seen.line)
+    level = float(np.nanmedian(seen.face.temperature))
+    warmth = abs(level - float(np.median(seen.frame.air_temperature)))
     return null_of(
         seen.face.temperature[bands],
         noise=seen.image.noise,
@@ -311,6 +333,7 @@ def _null(seen: Seen, bands: BoolArray) -> NullModel:
         reflected_temperature=float(np.median(seen.frame.reflected_temperature)),
         emissivity=seen.emissivity,
         indoors=seen.conditions.indoors is not False,
+        lagging_scatter=0.0 if gain == 1 else SOUND_SCATTER * gain * warmth,
     )
 
 
@@ -323,11 +346,12 @@ def _balance(seen: Seen) -> Balance | None:
     is_wet = bool(seen.conditions.surface_wet) or (rain is not None and rain.share > MOSTLY_WET)
     sound = sound_draws(seen.line_draws, seen.frame) if seen.diameter_known else None
     every = np.ones(seen.face.view_angle.size, dtype=bool)
-    null, runs, sound_at = _contrast(seen, every, is_wet)
-    stripe = stripe_of(seen, sound_at, sound)
+    contrast = _contrast(seen, every, is_wet)
+    stripe = stripe_of(seen, contrast.sound_at, sound)
     if stripe is not None and not clear_bands(stripe).all():
         # a tracer that wanders under the lagging must not look like damage
-        null, runs, sound_at = _contrast(seen, clear_bands(stripe), is_wet)
+        contrast = _contrast(seen, clear_bands(stripe), is_wet)
+    runs, sound_at = contrast.runs, contrast.sound_at
     hidden = HiddenSide.draw(
         seen.book,
         seen.owner,
@@ -351,7 +375,7 @@ def _balance(seen: Seen) -> Balance | None:
         if bare is not None:
             flux = with_bare(flux, bare)
     return Balance(
-        null=null,
+        null=contrast.null,
         runs=runs,
         sound_at=sound_at,
         flux=bounds.filled(flux, seen.usable),

@@ -67,6 +67,8 @@ class Seen:
         Ids of the known lengths marked on this line.
     gain : bool
         Whether the line is colder than the air.
+    body : (n_stations,) array or None
+        Mean across at the lens with the components in it, NaN where left out otherwise. [K]
     """
 
     region: Region
@@ -87,6 +89,7 @@ class Seen:
     known_lengths: tuple[str, ...]
     image: FrameImage
     book: DrawBook
+    body: FloatArray | None = None
 
     @property
     def owner(self) -> str:

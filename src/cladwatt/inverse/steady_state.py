@@ -6,7 +6,7 @@ from itertools import accumulate
 from cladwatt.physics.time_constant import StepResponse, layered_step_response, time_until_within
 from cladwatt.survey.model import Line
 
-__all__ = ["is_settled", "settling_time", "time_to_forget_sun"]
+__all__ = ["is_settled", "settling_time", "time_to_forget_sun", "warming_gain"]
 
 LACKING = 0.05
 """Share of the final change that the surface may lack; the loss lacks the same."""
@@ -22,6 +22,9 @@ STRONGEST_SUN = 1000.0
 """On a face square to a clear sky's sun; assumption. [W/m2]"""
 SMALLEST_RISE = 0.5
 """What a surface nearer to the air counts as being above it; assumption. [K]"""
+
+LEAST_REACHED = 0.05
+"""Share of its final warmth below which a surface shows nothing of its lagging; assumption."""
 
 
 def settling_time(line: Line) -> float | None:
@@ -103,3 +106,30 @@ def is_settled(line: Line) -> bool:
         return True
     needed = settling_time(line)
     return needed is None or line.hours_at_temperature.value * 3600 >= MARGIN * needed
+
+
+def warming_gain(line: Line) -> float:
+    """Return how many times as far apart lagging of different conductivity looks while it warms up.
+
+    Parameters
+    ----------
+    line : Line
+
+    Returns
+    -------
+    float
+        Relative change of the surface's warmth over that of the conductivity: 1 where the line
+        has settled, or nothing is declared of it.
+
+    Notes
+    -----
+    By its slowest mode the surface has reached ``w = 1 - A exp(-t/tau)`` of its warmth, and tau
+    goes with the inverse of the conductivity, so that ``d ln(k w) / d ln k`` is
+    ``1 + (t/tau) (1 - w) / w``.
+    """
+    response = None if is_settled(line) else _response(line)
+    if response is None or line.hours_at_temperature is None:
+        return 1.0
+    periods = line.hours_at_temperature.value * 3600 / float(response.time_constant)
+    lacking = min(float(response.amplitude) * math.exp(-periods), 1 - LEAST_REACHED)
+    return 1 + periods * lacking / (1 - lacking)

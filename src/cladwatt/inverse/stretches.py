@@ -48,7 +48,12 @@ class Run:
 
 
 def find_runs(
-    profile: FloatArray, null: NullModel, *, sign: int, diameter_stations: float
+    profile: FloatArray,
+    null: NullModel,
+    *,
+    sign: int,
+    diameter_stations: float,
+    level_from: FloatArray | None = None,
 ) -> tuple[Run, ...]:
     """Find the runs that stand out from the sound level.
 
@@ -61,6 +66,8 @@ def find_runs(
         1 where damage is warmer than sound (hot lines), -1 for chilled ones.
     diameter_stations : float
         Stations per diameter of the pipe.
+    level_from : (n_stations,) array, optional
+        The profile where its sound level may be taken, NaN elsewhere.
 
     Returns
     -------
@@ -71,7 +78,8 @@ def find_runs(
     usable = np.isfinite(excess)
     if usable.sum() < 8:
         return ()
-    level = _sound_level(excess[usable], null, diameter_stations)
+    carries = usable if level_from is None else usable & np.isfinite(level_from)
+    level = _sound_level(excess[carries], null, diameter_stations)
     excess = excess - level
     marked = _candidates(excess, null, diameter_stations)
     fine = moving_mean(excess, 3)
