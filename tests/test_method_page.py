@@ -10,7 +10,9 @@ from cladwatt import Settings, frame_assessment
 from cladwatt.inverse import (
     advice,
     bare,
+    beside_components,
     cautions,
+    component_estimates,
     components,
     film_states,
     frame_draws,
@@ -33,7 +35,7 @@ from cladwatt.inverse import (
     water_draws,
 )
 from cladwatt.materials.load import shipped_tables
-from cladwatt.materials.tables import fitting_equivalent_length
+from cladwatt.materials.tables import fitting_equivalent_length, hanger_share
 from cladwatt.measure import strip
 from cladwatt.physics import convection_spread, yawed_wind
 from cladwatt.physics.constants import ZERO_CELSIUS
@@ -58,7 +60,22 @@ def bare_length(kind: str) -> str:
 
 def clad_length(kind: str) -> str:
     amount = fitting_equivalent_length(kind, lagged=True).amount
-    return f"lagged | {amount.lower:g} to {amount.upper:g} m of the clad line,"
+    return f"lagged | adds {amount.lower:g} to {amount.upper:g} m of the clad line,"
+
+
+def bare_on_clad(kind: str) -> str:
+    amount = fitting_equivalent_length(kind, lagged=False, counts_as="lagged_pipe").amount
+    small, large = components.PRINTED_TEMPERATURES
+    degrees = f"{small - ZERO_CELSIUS:g} to {large - ZERO_CELSIUS:g} °C"
+    return (
+        f"bare, on a lagged line | adds {amount.lower:g} to {amount.upper:g} m of the clad line, "
+        f"all equally likely; DN 50 to 100, {degrees}"
+    )
+
+
+def tried_lengths() -> str:
+    low, middle, high = beside_components.LENGTH_FACTORS
+    return f"at {low}, {middle:g} and {high} times L"
 
 
 def percent(share: float) -> str:
@@ -66,6 +83,12 @@ def percent(share: float) -> str:
 
 
 VALUES = [
+    f"not searched beside a component | {beside_components.NOT_SEARCHED:g} L |",
+    f"no sound level taken from beside a component | {beside_components.NOT_SOUND:g} L | "
+    f"{percent(round(math.exp(-beside_components.NOT_SOUND), 2))} of the warmth",
+    f"fitted over | {beside_components.FITTED:g} L beyond the first usable station, "
+    f"{tried_lengths()}",
+    f"scatter of sound lagging, {percent(joint.SOUND_SCATTER)} (section 8), times that",
     f"emissivity of foil | {FOIL.value}, u {FOIL.u} |",
     f"emissivity of tape | {TAPE.value}, u {TAPE.u} |",
     f"u of a contact reading | {CONTACT_U.value} K |",
@@ -159,7 +182,14 @@ VALUES = [
     f"pair of flanges, {bare_length('flange')}",
     f"valve, {clad_length('valve')}",
     f"pair of flanges, {clad_length('flange')}",
-    f"for the component at hand | {percent(components.SHAPE_U)} |",
+    f"valve, {bare_on_clad('valve')}",
+    f"pair of flanges, {bare_on_clad('flange')}",
+    f"of a clad line for the component at hand | {percent(components.PRINTED_U)} |",
+    f"for the component at hand, beyond its u | {percent(components.SHAPE_U)} |",
+    f"loss by what is seen of it | {percent(components.UNSEEN_U)} |",
+    f"by its silhouette, and by print | {percent(component_estimates.SILHOUETTE_U)} each |",
+    f"{percent(hanger_share(indoors=True).value)} of the line's loss indoors, "
+    f"{percent(hanger_share(indoors=False).value)} outdoors",
     f"the {components.FAR_PERCENTILE:.0f}th percentile of the outline",
     f"more than {percent(components.MOST_CLIPPED)} of the outline is clipped",
     f"above {cautions.TOUCH_CAUTION - ZERO_CELSIUS:.1f} °C",

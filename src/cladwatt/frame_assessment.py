@@ -1,7 +1,7 @@
 """One frame from its file to its results: read, corrected, drawn from, estimated."""
 
 import time
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from dataclasses import replace
 from types import MappingProxyType
 from typing import NamedTuple
@@ -279,14 +279,9 @@ def _assess_regions(
         ),
         components=tuple(
             _component(
-                survey,
-                _with_tag(region, pipes, look.masks),
-                look.image,
-                look.draws,
-                look.readings,
-                book,
+                survey, entry, region, look.image, look.draws, look.readings, book, look.observed
             )
-            for region in components
+            for region in (_with_tag(one, pipes, look.masks) for one in components)
         ),
         left_out=look.left_out,
     )
@@ -303,11 +298,13 @@ def _with_tag(component: Region, pipes: list[Region], masks: Mapping[str, BoolAr
 
 def _component(
     survey: Survey,
+    entry: FrameEntry,
     region: Region,
     image: FrameImage,
     frame: FrameDraws,
     readings: tuple[ReferenceReading, ...],
     book: DrawBook,
+    observed: Sequence[Observed],
 ) -> ComponentResult:
     """Estimate one component with what its line and the references tell."""
     line = None if region.tag is None else survey.lines.get(region.tag)
@@ -315,7 +312,14 @@ def _component(
         return unknown_component(region, "not_quantified.component_no_line")
     drawn, _ = with_emissivity(draw_line(book, line), line.tag, frame, readings, book)
     return estimate_component(
-        region, image=image, frame=frame, line=drawn, book=book, tables=survey.tables
+        region,
+        image=image,
+        frame=frame,
+        line=drawn,
+        book=book,
+        tables=survey.tables,
+        pipes=[one.seen for one in observed],
+        indoors=entry.conditions.indoors is not False,
     )
 
 

@@ -9,6 +9,7 @@ from cladwatt.errors import TableError
 from cladwatt.materials.tables import (
     fitting_equivalent_length,
     hanger_share,
+    hanger_spacing,
     lagging_material,
     load_tables,
 )
@@ -163,3 +164,38 @@ def test_a_lone_uncertainty_of_an_own_material_is_said(own):
     folder = own("lagging_materials", "material,u_density_kg_per_m3\n,kg/m3\nfelt,20\n")
     with pytest.raises(TableError, match="it stands without density_kg_per_m3"):
         load_tables(folder)
+
+
+def spaced_in_feet():
+    with (PUBLISHED / "hanger_spacing_feet.csv").open(encoding="utf-8", newline="") as file:
+        return list(csv.DictReader(file))
+
+
+@pytest.mark.parametrize("row", spaced_in_feet(), ids=lambda row: f"NPS {row['nps']}")
+def test_hangers_are_as_far_apart_as_the_print_in_feet_says(row, evidence):
+    # ASME B31.1, Table 121.5, from memory; ours is in metres to a decimetre
+    found = hanger_spacing(float(row["outside_diameter_mm"]) / 1000)
+    printed = [0.3048 * float(row["water_ft"]), 0.3048 * float(row["vapour_ft"])]
+    evidence(
+        "asme_b31_1_spacing", f"NPS {row['nps']}", [found.lower, found.upper], printed, unit="m",
+        abs=0.06,
+    )  # fmt: skip
+
+
+def test_hangers_between_the_sizes_and_beyond_them():
+    four, between, six = (hanger_spacing(size) for size in (0.1143, 0.14, 0.1683))
+    assert four.lower < between.lower < six.lower
+    # bending: the span goes with the root of the diameter, as the table does
+    assert between.lower == pytest.approx(four.lower * (0.14 / 0.1143) ** 0.5, rel=0.02)
+    assert hanger_spacing(2.0).upper == hanger_spacing(0.6096).upper
+    assert hanger_spacing(0.01).lower == hanger_spacing(0.0334).lower
+
+
+def test_a_users_spacing_takes_its_place_and_a_crossed_one_is_refused(own):
+    head = "dn,outside_diameter_mm,water_m,vapour_m\n1,mm,m,m\n"
+    tables = load_tables(own("hanger_spacing", head + "100,114.3,2.5,3.0\n"))
+    found = hanger_spacing(0.1143, tables=tables)
+    assert (found.lower, found.upper) == (2.5, 3.0)
+    assert found.confidence == "declared"
+    with pytest.raises(TableError, match=r"found 3\.5 and 3; expected water_m <= vapour_m"):
+        load_tables(own("hanger_spacing", head + "100,114.3,3.5,3.0\n"))

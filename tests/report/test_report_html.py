@@ -147,7 +147,7 @@ def test_components_have_a_section_of_their_own(page):
     ):  # fmt: skip
         assert needed in words, needed
     hanger = words.split("hanger · hanger-1")[1].split("valve · valve-9")[0]
-    assert "a share of a line's loss, not watts of one hanger" in hanger
+    assert "a share of a line's loss, and the sound loss of this line is not known" in hanger
     assert "not in these totals; they are estimated apart" in page.words
 
 

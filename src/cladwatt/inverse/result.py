@@ -252,3 +252,7 @@ class ComponentResult:
     """Of the equivalent length."""
     draws: dict[str, FloatArray] = field(default_factory=dict, repr=False, compare=False)
     """Draws of heat_loss, (n_draws,)."""
+    table_loss: Interval | None = None
+    """By what is printed of such components on a line as clad. [W]"""
+    image_loss: Interval | None = None
+    """By the temperature seen and the body's surface; `heat_loss` weighs both. [W]"""

@@ -7,11 +7,11 @@ from typing import cast
 
 from cladwatt.errors import Fault
 from cladwatt.materials.placed import Placed, confidence_of, source_of
-from cladwatt.materials.rows import COUNTS_AS, CountsAs, Fitting
+from cladwatt.materials.rows import COUNTS_AS, CountsAs, Fitting, HangerSpacing
 from cladwatt.materials.table_text import normalised_key
 from cladwatt.quantities import Quantity
 
-__all__ = ["build_fittings", "fitting_kind"]
+__all__ = ["build_fittings", "build_hanger_spacing", "fitting_kind"]
 
 _KINDS = {
     "flange_pair": "flange",
@@ -53,6 +53,35 @@ def build_fittings(
         if fitting is not None:
             built[fitting.key] = fitting
     return built
+
+
+def build_hanger_spacing(
+    placed_rows: Iterable[Placed], shorts: Mapping[str, str], faults: list[Fault]
+) -> tuple[HangerSpacing, ...]:
+    """Return the spacing of hangers by rising diameter; what is wrong is appended to `faults`."""
+    built = []
+    for placed in placed_rows:
+        record = placed.record
+        water, vapour = record.needed("water_m"), record.needed("vapour_m")
+        if vapour < water:
+            faults.append(
+                placed.fault(
+                    "water_m, vapour_m",
+                    f"found {water:g} and {vapour:g}",
+                    "expected water_m <= vapour_m: a lighter pipe needs fewer hangers",
+                )
+            )
+            continue
+        built.append(
+            HangerSpacing(
+                outside_diameter=1e-3 * record.needed("outside_diameter_mm"),
+                water=water,
+                vapour=vapour,
+                source=source_of(placed, shorts),
+                confidence=confidence_of(placed),
+            )
+        )
+    return tuple(sorted(built, key=lambda one: one.outside_diameter))
 
 
 def _fitting(placed: Placed, shorts: Mapping[str, str], faults: list[Fault]) -> Fitting | None:

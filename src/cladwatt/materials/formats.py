@@ -162,6 +162,18 @@ TABLE_FORMATS: dict[str, TableFormat] = {
             ),
         ),
         TableFormat(
+            "hanger_spacing",
+            "how far apart the hangers of a line are, by its size",
+            (
+                _number("dn", "1", 4.0, 3000.0, required=True),
+                _number("outside_diameter_mm", "mm", 5.0, 3200.0, required=True),
+                _number("water_m", "m", 0.3, 30.0, required=True),
+                _number("vapour_m", "m", 0.3, 30.0, required=True),
+                *_ORIGIN,
+                Column("note"),
+            ),
+        ),
+        TableFormat(
             "air_properties",
             "dry air at 101 325 Pa",
             (

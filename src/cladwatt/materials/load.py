@@ -13,7 +13,7 @@ from cladwatt.materials.build import (
     build_defaults,
     build_lagging,
 )
-from cladwatt.materials.fittings import build_fittings
+from cladwatt.materials.fittings import build_fittings, build_hanger_spacing
 from cladwatt.materials.formats import TABLE_FORMATS
 from cladwatt.materials.pipes import build_pipe_sizes, parse_nps
 from cladwatt.materials.placed import Placed
@@ -21,6 +21,7 @@ from cladwatt.materials.rows import (
     AirRow,
     CladdingMaterial,
     Fitting,
+    HangerSpacing,
     LaggingMaterial,
     PipeSize,
 )
@@ -67,6 +68,8 @@ class MaterialTables:
         The user's files that were read.
     fittings : mapping of key to Fitting
         Flanges, valves and hangers; those of the user last.
+    hanger_spacing : tuple of HangerSpacing
+        By rising diameter.
     """
 
     lagging: Mapping[str, LaggingMaterial]
@@ -77,6 +80,7 @@ class MaterialTables:
     rows: Mapping[str, TableRows]
     user_files: tuple[Path, ...] = ()
     fittings: Mapping[str, Fitting] = field(default_factory=dict)
+    hanger_spacing: tuple[HangerSpacing, ...] = ()
 
 
 def load_tables(extra_folder: Path | None = None) -> MaterialTables:
@@ -135,6 +139,7 @@ def _merged_tables(extra_folder: Path | None) -> MaterialTables:
         rows={name: _text_rows(name, placed[name]) for name in TABLE_NAMES},
         user_files=tuple(user_files),
         fittings=build_fittings(placed["fittings"], shorts, faults),
+        hanger_spacing=build_hanger_spacing(placed["hanger_spacing"], shorts, faults),
     )
     if faults:
         raise TableError(*faults)

@@ -136,6 +136,17 @@ class PipeSize:
 
 
 @dataclass(frozen=True)
+class HangerSpacing:
+    """How far apart hangers are on a size of pipe, with water and with steam or gas in it. [m]"""
+
+    outside_diameter: float
+    water: float
+    vapour: float
+    source: str
+    confidence: Confidence
+
+
+@dataclass(frozen=True)
 class Fitting:
     """What one fitting of a line counts as.
 

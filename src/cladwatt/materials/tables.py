@@ -5,6 +5,8 @@ error that lists the nearest names, never a guess.
 """
 
 import difflib
+import math
+from bisect import bisect_left
 from collections.abc import Mapping
 from typing import Literal, TypeVar
 
@@ -42,6 +44,7 @@ __all__ = [
     "default_quantity",
     "fitting_equivalent_length",
     "hanger_share",
+    "hanger_spacing",
     "lagging_material",
     "load_tables",
     "pipe_outside_diameter",
@@ -196,6 +199,46 @@ def hanger_share(*, indoors: bool, tables: MaterialTables | None = None) -> Quan
     """
     rows = (tables or shipped_tables()).fittings
     return rows["hanger_indoors" if indoors else "hanger_outdoors"].amount
+
+
+def hanger_spacing(outside_diameter: float, *, tables: MaterialTables | None = None) -> Quantity:
+    """Return how far apart the hangers of a line are likely to be. [m]
+
+    Parameters
+    ----------
+    outside_diameter : float
+        Of the pipe. [m]
+    tables : MaterialTables, optional
+        The survey's tables; what ships where left out.
+
+    Returns
+    -------
+    Quantity
+        From the spacing with water in the pipe to that with steam or gas, all equally likely;
+        between the sizes of the table with the root of the diameter, beyond them that of the
+        nearest.
+
+    Examples
+    --------
+    >>> found = hanger_spacing(0.1143)
+    >>> found.lower, found.upper
+    (4.3, 5.2)
+    """
+    rows = (tables or shipped_tables()).hanger_spacing
+    after = bisect_left([row.outside_diameter for row in rows], outside_diameter)
+    small, large = rows[max(after - 1, 0)], rows[min(after, len(rows) - 1)]
+    share = 0.0
+    if large.outside_diameter > small.outside_diameter:
+        start = math.sqrt(small.outside_diameter)
+        share = math.sqrt(outside_diameter) - start
+        share /= math.sqrt(large.outside_diameter) - start
+    nearer = large if share > 0.5 else small
+    low = small.water + share * (large.water - small.water)
+    high = small.vapour + share * (large.vapour - small.vapour)
+    return Quantity(
+        0.5 * (low + high), (high - low) / math.sqrt(12.0), low, high,
+        shape="rectangular", source=nearer.source, confidence=nearer.confidence,
+    )  # fmt: skip
 
 
 def pipe_size(

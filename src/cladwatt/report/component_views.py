@@ -2,10 +2,11 @@
 
 from dataclasses import dataclass
 
+from cladwatt.materials.fittings import fitting_kind
 from cladwatt.report.findings import component_sums
 from cladwatt.report.numbers import as_gain, celsius_interval, format_interval
 from cladwatt.report.wording import sentence, text
-from cladwatt.results.assessment import Assessment, ComponentResult
+from cladwatt.results.assessment import Assessment, ComponentResult, Interval
 
 __all__ = ["ComponentView", "component_sources", "component_view", "components_sum"]
 
@@ -30,12 +31,14 @@ def component_view(one: ComponentResult, language: str) -> ComponentView:
         return text(f"report.{key}", language, **values)
 
     surface, length, loss = one.surface_temperature, one.equivalent_length, one.heat_loss
-    of = "component_of_lagged" if one.lagged else "component_of_bare"
+    of_clad = one.lagged or fitting_kind(one.kind) == "hanger"
+    of = "component_of_lagged" if of_clad else "component_of_bare"
     shown = said("not_known")
     if loss is not None:
-        gains = loss.median < 0
-        shown = format_interval(as_gain(loss) if gains else loss, "")
-        shown += f" {said('gain_mark')}" if gains else ""
+        shown = _loss(loss, said("gain_mark"))
+        if one.image_loss is not None and one.table_loss is not None:
+            image, table = (_loss(by, "") for by in (one.image_loss, one.table_loss))
+            shown = said("component_two", loss=shown, image=image, table=table)
     return ComponentView(
         name=f"{one.kind or said('not_stated')} · {one.region_id}",
         tag=one.tag,
@@ -51,6 +54,13 @@ def component_view(one: ComponentResult, language: str) -> ComponentView:
     )
 
 
+def _loss(loss: Interval, mark: str) -> str:
+    """Return a loss, or a gain as a positive one with its mark."""
+    if loss.median < 0:
+        return f"{format_interval(as_gain(loss), '')} {mark}".strip()
+    return format_interval(loss, "")
+
+
 def components_sum(assessment: Assessment, language: str) -> str:
     """Return what all components come to, losses and gains apart; empty where none is known."""
     sums = [
@@ -63,5 +73,10 @@ def components_sum(assessment: Assessment, language: str) -> str:
 def component_sources(assessment: Assessment) -> str:
     """Return the sources of the equivalent lengths that were used, each once."""
     # where the uncertainty comes from stands after it
-    sources = (one.source.partition("; u: ")[0] for one in assessment.components if one.source)
+    sources = (
+        source.partition("; u: ")[0]
+        for one in assessment.components
+        for source in one.source.split(" | ")
+        if source
+    )
     return "; ".join(dict.fromkeys(sources))

@@ -154,9 +154,11 @@ _LOG = {
 _COMPONENT = {
     "surface_temperature": Field("°C", "temperature of the component as seen"),
     "equivalent_length": Field(
-        "m", "pipe it counts as: bare for a bare one, clad for a lagged one"
+        "m", "pipe it counts as: bare for a bare one, clad for a lagged one and a hanger"
     ),
     "heat_loss": Field("W", "what the component loses, negative for a gain"),
+    "table_loss": Field("W", "the same by print: the metres of line such a component adds"),
+    "image_loss": Field("W", "the same by the image: flux at the temperature seen times surface"),
 }
 _ASSESSMENT = {
     "total_loss": Field("W", "heat loss of all hot regions"),
