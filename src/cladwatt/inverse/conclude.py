@@ -166,7 +166,7 @@ def _concluded(
         loss = seen.perimeter[:, None] * balance.flux
         draws |= _loss_draws(seen.perimeter * mean_flux, balance, draws["length"])
         damage = local_damage(
-            seen.face.temperature[balance.bands].mean(axis=0),
+            balance.searched,
             balance.null,
             balance.runs,
             sign=-1 if seen.gain else 1,

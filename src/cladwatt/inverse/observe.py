@@ -51,6 +51,9 @@ class Balance:
     Attributes
     ----------
     null : NullModel
+    searched : (n_stations,) array
+        Lens temperature along the strip without what components add to it, NaN in gaps and
+        where nothing is searched. [K]
     runs : tuple of Run
     sound_at : (n_stations,) array of bool
         Stations that carry the sound level.
@@ -68,6 +71,7 @@ class Balance:
     """
 
     null: NullModel
+    searched: FloatArray
     runs: tuple[Run, ...]
     sound_at: BoolArray
     flux: FloatArray
@@ -376,6 +380,7 @@ def _balance(seen: Seen) -> Balance | None:
             flux = with_bare(flux, bare)
     return Balance(
         null=contrast.null,
+        searched=contrast.searched,
         runs=runs,
         sound_at=sound_at,
         flux=bounds.filled(flux, seen.usable),
