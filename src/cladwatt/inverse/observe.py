@@ -83,11 +83,6 @@ class Balance:
     stripe: Stripe | None = None
 
     @property
-    def bands(self) -> BoolArray | slice:
-        """Bands of angle in which contrast is looked for: those beside a tracer's stripe."""
-        return slice(None) if self.stripe is None else clear_bands(self.stripe)
-
-    @property
     def untraced_base(self) -> FloatArray:
         """Flux at the sound level without the tracer, (count,). [W/m2]"""
         return self.base if self.stripe is None else self.stripe.untraced(self.base)
