@@ -227,7 +227,7 @@ def _figures(region: RegionResult, language: str) -> list[tuple[str, str]]:
 def _stretch_rows(region: RegionResult, language: str) -> list[tuple[str, ...]]:
     quantified = region.verdict.level != "not quantified"
     instead = text("report.not_quantified", language)
-    rows = []
+    rows: list[tuple[str, ...]] = []
     for stretch in region.stretches:
         loss, excess = signed(region, stretch.heat_loss), signed(region, stretch.excess)
         rows.append(
