@@ -93,6 +93,7 @@ def region(name: str, frame_id: str, tag: str, **changes: Any) -> RegionResult:
         missing=(Remark("missing.wind"),),
         cautions=(Remark("caution.touch", (("temperature_C", 71.25),)), Remark("caution.asbestos")),
         variance_shares=(("air temperature / frame", 0.6), ("emissivity", 0.3)),
+        kinds=(("wet", 0.6), ("sound", 0.4)),
         air_temperature=293.15,
         strip_temperature=np.array([[300.0, NAN, 301.5], [302.0, 303.0, 304.0]]),
         draws={"heat_loss": np.array([1.0, NAN, INF, -2.5]), "excess": np.linspace(0, 1, 7)},

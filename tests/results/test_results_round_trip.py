@@ -131,7 +131,7 @@ def test_every_figure_of_the_results_has_a_unit_and_a_meaning(owner):
         for name, hint in hints.items()
         if {float, Interval} & {hint, *typing.get_args(hint)}
         or (owner is StationTable)
-        or name in ("outline", "variance_shares")
+        or name in ("outline", "variance_shares", "kinds")
     }
     assert set(FIELDS[owner]) == figures
 

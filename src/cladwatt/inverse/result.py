@@ -132,6 +132,9 @@ class Stretch:
     """Where around the pipe the damage lies, if there is any."""
     side_probability: float = float("nan")
     """That it lies there; NaN where it is not known."""
+    kinds: tuple[tuple[str, float], ...] = ()
+    """Probability of each kind of damage if there is local damage here, likeliest first; they add
+    up to 1. Empty where none can be weighed."""
 
 
 @dataclass(frozen=True)
@@ -212,6 +215,9 @@ class RegionResult:
     remarks: tuple[Remark, ...] = ()
     variance_shares: tuple[tuple[str, float], ...] = ()
     """Share of the variance of the loss by declared quantity, largest first."""
+    kinds: tuple[tuple[str, float], ...] = ()
+    """Probability of sound, aged and each kind of local damage, likeliest first; they add up to 1.
+    Empty where that of ageing is not known."""
     image_loss: Interval | None = None
     """Mean loss per metre as the image gives it by itself, the specification unused. [W/m]"""
     declared_loss: Interval | None = None

@@ -138,7 +138,7 @@ def _region_figures() -> list[Column[RegionResult]]:
     )  # fmt: skip
     columns: list[Column[RegionResult]] = []
     for field in FIELDS[RegionResult]:
-        if field == "variance_shares":
+        if field in ("variance_shares", "kinds"):
             continue
 
         def get(region: RegionResult, field: str = field) -> float | Interval | None:
@@ -152,7 +152,7 @@ def _region_figures() -> list[Column[RegionResult]]:
 def _stretch_figures() -> list[Column[StretchRow]]:
     columns: list[Column[StretchRow]] = []
     for field in FIELDS[Stretch]:
-        if field == "outline":
+        if field in ("outline", "kinds"):
             continue
 
         def get(row: StretchRow, field: str = field) -> float | Interval | None:
@@ -209,7 +209,11 @@ def _repeated(get: Callable[[RegionResult], str]) -> Callable[[RegionResult], li
 
 
 def _shares_text(region: RegionResult) -> str:
-    return "; ".join(f"{name}={share:.3g}" for name, share in region.variance_shares)
+    return _named_shares(region.variance_shares)
+
+
+def _named_shares(shares: tuple[tuple[str, float], ...]) -> str:
+    return "; ".join(f"{name}={share:.3g}" for name, share in shares)
 
 
 REGION_COLUMNS: tuple[Column[RegionResult], ...] = (
@@ -225,6 +229,8 @@ REGION_COLUMNS: tuple[Column[RegionResult], ...] = (
     *_region_figures(),
     Column("stretches", "", "number of damaged stretches found", lambda r: len(r.stretches)),
     Column("variance_shares", "", "part of the variance of the loss by quantity", _shares_text),
+    Column("kinds", "", "probability of sound, aged and each kind of local damage",
+           lambda r: _named_shares(r.kinds)),
     Column("missing", "", "what could not be given, and why", lambda r: remark_text(*r.missing)),
     Column("cautions", "", "cautions, as keys", lambda r: remark_text(*r.cautions)),
     Column("remarks", "", "other remarks, as keys", lambda r: remark_text(*r.remarks)),
@@ -240,6 +246,12 @@ STRETCH_COLUMNS: tuple[Column[StretchRow], ...] = (
     Column("verdict", "", "verdict of the region", lambda row: row[0].verdict.level),
     *_stretch_figures(),
     Column("side", "", "upper side, underside, all round or not known", lambda row: row[1].side),
+    Column(
+        "kinds",
+        "",
+        "probability of each kind of damage, if there is local damage here",
+        lambda row: _named_shares(row[1].kinds),
+    ),
 )
 
 LOG_COLUMNS: tuple[Column[LogRow], ...] = (

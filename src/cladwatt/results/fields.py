@@ -82,6 +82,7 @@ _STRETCH = {
     "share_of_excess": Field("", "part of the region's summed local excess"),
     "outline": Field("px", "outline in the frame"),
     "side_probability": Field("", "probability that the damage lies on that side"),
+    "kinds": Field("", "probability of each kind of damage, if there is local damage here"),
 }
 _REGION = {
     "length": Field("m", "length of pipe drawn"),
@@ -108,6 +109,7 @@ _REGION = {
     "probability_local": Field("", "probability of local damage"),
     "probability_aged": Field("", "probability of ageing throughout above 10 % over sound"),
     "variance_shares": Field("", "part of the variance of the loss by declared quantity"),
+    "kinds": Field("", "probability of sound, aged and each kind of local damage"),
     "air_temperature": Field("°C", "declared air temperature of the frame"),
     "tracer_heat": Field(
         "W/m",
