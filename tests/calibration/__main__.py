@@ -3,6 +3,7 @@
 import argparse
 import sys
 import time
+from collections.abc import Sequence
 from pathlib import Path
 
 from tests.calibration.cases import Case, columns_of
@@ -11,6 +12,7 @@ from tests.calibration.picture import picture
 from tests.calibration.summary import Summary, summarise
 from tests.calibration.surveys import assessed
 from tests.calibration.tables import tables_of
+from tests.calibration.totals import TotalCase, totals_table
 from tests.calibration.wording import plain_table
 
 from cladwatt.results.assessment import Settings
@@ -60,10 +62,12 @@ def build_parser() -> argparse.ArgumentParser:
     return parser
 
 
-def write_page(summary: Summary, run: Run, guide: Path = GUIDE) -> None:
+def write_page(
+    summary: Summary, run: Run, guide: Path = GUIDE, totals: Sequence[TotalCase] = ()
+) -> None:
     """Write page and picture into the guide."""
     (guide / "images").mkdir(parents=True, exist_ok=True)
-    (guide / "calibration.md").write_bytes(page_text(summary, run).encode())
+    (guide / "calibration.md").write_bytes(page_text(summary, run, totals).encode())
     (guide / "images" / "calibration.svg").write_bytes(picture(summary).encode())
 
 
@@ -79,10 +83,12 @@ def main(arguments: list[str] | None = None) -> int:
     started = time.perf_counter()
     cases: list[Case] = []
     left_out: list[str] = []
+    totals: list[TotalCase] = []
     results = assessed(seeds, workers=options.workers, keep=options.keep, oracle=options.oracle)
     for done, result in enumerate(results, start=1):
         cases.extend(result.cases)
         left_out.extend(result.left_out)
+        totals.extend(result.totals)
         print(
             f"seed {result.seed}  {done}/{len(seeds)}  {len(result.cases)} regions  drawn in "
             f"{result.seconds_drawing:.1f} s, assessed in {result.seconds_assessing:.1f} s",
@@ -95,13 +101,13 @@ def main(arguments: list[str] | None = None) -> int:
     print(f"{summary.seeds} surveys, {summary.frames} frames, {summary.regions} regions")
     if left_out:
         print("without a loss: " + ", ".join(left_out))
-    for table in tables_of(summary):
+    for table in [*tables_of(summary), totals_table(totals)]:
         print(f"\n{table.title}\n\n{plain_table(table.header, table.rows)}")
         if table.note:
             print(table.note.replace("\\*", "*"))
     if options.write:
         write_page(
-            summary, Run(seeds[0], seeds[-1], Settings().draws, len(left_out))
+            summary, Run(seeds[0], seeds[-1], Settings().draws, len(left_out)), totals=totals
         )  # fmt: skip
     print(f"\n{time.perf_counter() - started:.0f} s in all", file=sys.stderr)
     return 0

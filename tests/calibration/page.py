@@ -1,11 +1,13 @@
 """The guide's page of the bench; every number on it comes from the run."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 from tests.calibration.aims import judged
 from tests.calibration.measures import ESTIMATORS
 from tests.calibration.summary import Summary
 from tests.calibration.tables import Table, tables_of
+from tests.calibration.totals import TotalCase, totals_table
 
 __all__ = ["Run", "page_text"]
 
@@ -81,9 +83,11 @@ _LIMITS = """\
 """
 
 
-def page_text(summary: Summary, run: Run) -> str:
+def page_text(summary: Summary, run: Run, totals: Sequence[TotalCase] = ()) -> str:
     """Return the page in Markdown."""
     aims, *tables = tables_of(summary)
+    if totals:
+        tables.append(totals_table(totals))
     parts = [
         _HEAD.format(
             command=run.command, seeds=summary.seeds, frames=summary.frames,

@@ -18,6 +18,7 @@ from tests.calibration.baselines import declared_losses, spreadsheet_loss
 from tests.calibration.cases import LOCAL_KINDS, Case
 from tests.calibration.counting import longest_run, overlap_of
 from tests.calibration.oracle import with_true_inputs
+from tests.calibration.totals import TotalCase, total_cases
 
 from cladwatt.assess import assess
 from cladwatt.results.assessment import RegionResult, Settings
@@ -50,6 +51,7 @@ class SurveyCases:
     """Regions with a truth but without a loss."""
     seconds_drawing: float
     seconds_assessing: float
+    totals: tuple[TotalCase, ...] = ()
 
 
 @contextmanager
@@ -84,7 +86,8 @@ def survey_cases(seed: int, *, keep: Path | None = None, oracle: bool = False) -
         stations = _station_truth(folder / "truth" / "truth_stations.csv")
         survey = read_survey(folder)
         started = time.perf_counter()
-        found = _found(survey)
+        assessment = assess(survey, settings=Settings())
+        found = {region.region_id: region for region in assessment.regions}
         seconds = time.perf_counter() - started
         plain = _spreadsheet(survey)
         best = _found(with_true_inputs(survey, truth)) if oracle else {}
@@ -97,7 +100,12 @@ def survey_cases(seed: int, *, keep: Path | None = None, oracle: bool = False) -
             continue
         case = _case(seed, survey, truth, true, result, stations[name], plain[name])
         cases.append(_with_oracle(case, best.get(name)))
-    return SurveyCases(seed, tuple(cases), tuple(left_out), seconds_drawing, seconds)
+    true_totals = {
+        true["region_id"]: true["heat_loss_W_per_m"] * _true_length(true, stations)
+        for true in truth["regions"]
+    }
+    totals = total_cases(seed, assessment, true_totals)
+    return SurveyCases(seed, tuple(cases), tuple(left_out), seconds_drawing, seconds, totals)
 
 
 def assessed(
@@ -110,6 +118,12 @@ def assessed(
         return
     with ProcessPoolExecutor(workers, mp_context=get_context("spawn")) as pool:
         yield from pool.map(one, seeds)
+
+
+def _true_length(true: dict[str, Any], stations: dict[str, "StationTruth"]) -> float:
+    """Return the drawn length without components. [m]"""
+    component = float(stations[true["region_id"]].component.mean())
+    return float(true["length_m"] * (1 - component))
 
 
 def _found(survey: Survey) -> dict[str, RegionResult]:
@@ -163,7 +177,8 @@ def _case(
     ratio = true["heat_loss_W_per_m"] / true["sound_loss_W_per_m"]
     specified, as_specified = declared_losses(line, conditions)
     matters = _matters(true, truth["lines"][true["tag"]], stations)
-    overlap, offset = _stretch_scores(true, result, matters)
+    drawn = next(one for one in survey.regions_of(true["frame_id"]) if one.id == true["region_id"])
+    overlap, offset = _stretch_scores(true, result, matters, drawn.origin)
     return Case(
         seed=seed,
         frame_id=true["frame_id"],
@@ -176,7 +191,7 @@ def _case(
         emissivity=line.cladding.band_emissivity.value,
         true_loss=true["heat_loss_W_per_m"],
         true_sound=true["sound_loss_W_per_m"],
-        true_length=true["length_m"] * (1 - float(stations.component.mean())),
+        true_length=_true_length(true, {true["region_id"]: stations}),
         matters=matters,
         aged_ratio=ratio if true["kind"] == "aged" else 1.0,
         loss=result.heat_loss.median,
@@ -233,7 +248,7 @@ def _matters(true: dict[str, Any], line: dict[str, float], stations: StationTrut
 
 
 def _stretch_scores(
-    true: dict[str, Any], result: RegionResult, matters: bool
+    true: dict[str, Any], result: RegionResult, matters: bool, origin: float
 ) -> tuple[float, float]:
     """Return the overlap of a long stretch that matters, the relative offset of a short one."""
     nan = float("nan")
@@ -241,7 +256,7 @@ def _stretch_scores(
         return nan, nan
     real = (true["stretches"][0]["start_m"], true["stretches"][0]["end_m"])
     found = [
-        (stretch.start.median, stretch.end.median)
+        (stretch.start.median - origin, stretch.end.median - origin)
         for stretch in result.stretches
         if stretch.probability > FOUND_ABOVE
     ]

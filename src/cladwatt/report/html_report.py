@@ -97,6 +97,7 @@ def report_html(assessment: Assessment, *, language: str = "en") -> str:
         component_view,
         components_sum,
     )
+    from cladwatt.report.line_views import log_views
 
     drawn = strip_pictures(assessment, language, heading=False)
     findings = ranked_findings(assessment)
@@ -121,6 +122,7 @@ def report_html(assessment: Assessment, *, language: str = "en") -> str:
         "components": [component_view(one, language) for one in assessment.components],
         "components_sum": components_sum(assessment, language),
         "component_sources": component_sources(assessment),
+        "logs": log_views(assessment, language),
         "lines": [views.line_view(line, language) for line in assessment.lines],
         "left_out": all_left_out(assessment),
         "survey_remarks": [sentence(r, language) for r in unique_remarks(assessment.remarks)],
