@@ -222,6 +222,13 @@ def test_a_frame_that_is_not_quantified_gives_way():
     assert np.median(summed(logged(region("A", 0, 20), poor))) == pytest.approx(120.0, rel=0.02)
 
 
+def test_numbers_that_may_not_be_printed_are_in_no_remark():
+    unsure = [region(name, 0, 20, own=90.0, verdict="not quantified") for name in "AB"]
+    log = logged(*unsure).logs[0]
+    assert len(log.overlaps) == 1
+    assert log.remarks == ()
+
+
 def test_stations_by_default_are_no_place():
     one, two = region("A", 0, 20, placed=False), region("B", 0, 20, placed=False)
     found = logged(one, two)

@@ -150,7 +150,9 @@ def _logged(
         stretches=_stretches(grid),
         not_seen=_not_seen(grid),
         covered_length=sum(one.covered for one in bins),
-        remarks=tuple(_overlap_remark(one.tag, overlap) for overlap in named),
+        remarks=tuple(
+            _overlap_remark(one.tag, overlap) for overlap in named if _is_told(grid, overlap)
+        ),
     )
     return log, _counted(grid)
 
@@ -158,7 +160,7 @@ def _logged(
 def _grid_of(placed: Sequence[RegionResult]) -> _Grid:
     def order(region: RegionResult) -> tuple[float, str]:
         assert region.profile is not None
-        return region.profile.low, region.region_id
+        return round(region.profile.low, 2), region.region_id
 
     regions = sorted(placed, key=order)
     profiles = [one.profile for one in regions if one.profile is not None]
@@ -426,6 +428,12 @@ def _counted(grid: _Grid) -> dict[str, dict[str, FloatArray]]:
             draws["total_excess"] = draws["total_loss"] - length * region.draws["sound_loss"]
         counted[region.region_id] = draws
     return counted
+
+
+def _is_told(grid: _Grid, overlap: LogOverlap) -> bool:
+    """Return whether its numbers may be printed: those of images that bear one."""
+    levels = {one.region_id: one.verdict.level for one in grid.regions}
+    return all(levels[one] != "not quantified" for one in overlap.regions)
 
 
 def _overlap_remark(tag: str, overlap: LogOverlap) -> Remark:

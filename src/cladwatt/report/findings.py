@@ -15,6 +15,7 @@ __all__ = [
     "component_sums",
     "is_finding",
     "ranked_findings",
+    "seen_again",
     "signed",
     "where_damaged",
 ]
@@ -107,11 +108,37 @@ def _rank(finding: Finding) -> tuple[bool, float, float]:
 def ranked_findings(assessment: Assessment) -> tuple[Finding, ...]:
     """Return the findings, largest expected excess first.
 
-    Those whose excess is not known or not quantified follow, by probability; equals keep the
-    order of the survey.
+    Damage that several frames of a line show is one finding (`seen_again`). Those whose excess is
+    not known or not quantified follow, by probability; equals keep the order of the survey.
     """
-    found = [finding_of(region) for region in assessment.regions if is_finding(region)]
+    again = seen_again(assessment)
+    found = [
+        finding_of(region)
+        for region in assessment.regions
+        if is_finding(region) and region.region_id not in again
+    ]
     return tuple(sorted(found, key=_rank))
+
+
+def seen_again(assessment: Assessment) -> frozenset[str]:
+    """Return the regions that find nothing but damage another frame of their line shows better.
+
+    By the log of the line: each of their likely stretches is one with a stretch of a region that
+    stands before them in it, and they are not aged throughout.
+    """
+    elsewhere: dict[str, str] = {}
+    for log in assessment.logs:
+        for stretch in log.stretches:
+            first, *others = stretch.members
+            if stretch.probability >= LIKELY:
+                elsewhere |= dict.fromkeys(others, first)
+    found = set()
+    for region in assessment.regions:
+        likely = [one.id for one in region.stretches if one.probability >= LIKELY]
+        aged = (region.probability_aged or 0.0) >= LIKELY
+        if likely and not aged and all(one in elsewhere for one in likely):
+            found.add(region.region_id)
+    return frozenset(found)
 
 
 def where_damaged(region: RegionResult) -> tuple[tuple[float, float], ...]:

@@ -660,8 +660,8 @@ REGION = (
     _text("kind", "Of a component: flange, valve, hanger, or one of tables/fittings.csv"),
     _flag("lagged", "Whether a component is lagged; bare where it does not say"),
     _setting(
-        "start", "Station of the first vertex along the line", "distance", lower=-1e5, upper=1e5,
-        default="0",
+        "start", "Station of the first vertex along the line; by it frames of a line form one log",
+        "distance", lower=-1e5, upper=1e5, default="not declared, counted from 0",
     ),
     Key(
         "direction", "choice", "Whether stations grow or fall from the first vertex to the last",
