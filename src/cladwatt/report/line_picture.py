@@ -9,7 +9,15 @@ import numpy as np
 from cladwatt.report import colours
 from cladwatt.report.numbers import as_gain, format_number, format_probability
 from cladwatt.report.strip_sheet import LEFT, NUMBER, RIGHT, SMALL, TICK, WIDTH, wrapped
-from cladwatt.report.svg import Axis, Drawing, clip_text, isolated, nice_ticks, tick_decimals
+from cladwatt.report.svg import (
+    Axis,
+    Drawing,
+    clip_text,
+    isolated,
+    nice_ticks,
+    text_width,
+    tick_decimals,
+)
 from cladwatt.report.wording import text
 from cladwatt.results.assessment import LineLog, LogBin, RegionResult
 
@@ -35,11 +43,14 @@ class _Along:
     """Drawing units per metre."""
 
     def __call__(self, station: float) -> float:
-        place = self.starts[0]
-        for (low, high), start in zip(self.parts, self.starts, strict=True):
-            if station >= low:
-                place = start + self.scale * (min(station, high) - low)
-        return place
+        def apart(row: int) -> float:
+            low, high = self.parts[row]
+            return max(low - station, station - high, 0.0)
+
+        # a station in a break goes to the nearer side of it
+        row = min(range(len(self.parts)), key=apart)
+        low, high = self.parts[row]
+        return self.starts[row] + self.scale * (min(max(station, low), high) - low)
 
 
 def _along(log: LineLog, ends: Mapping[str, tuple[float, float]]) -> _Along:
@@ -101,7 +112,7 @@ def line_svg(log: LineLog, regions: Mapping[str, RegionResult], language: str = 
         quantifies hatched.
     """
     ends = {name: _ends(regions[name]) for name in log.regions}
-    top = BAR_TOP + BAR_STEP * len(log.regions) + GAP
+    top = BAR_TOP + BAR_STEP * len(log.regions) + GAP + 4
     prefix = "l" + hashlib.sha256(log.tag.encode("utf-8", "replace")).hexdigest()[:10]
     described = text(
         "line_log.described", language, tag=isolated(clip_text(log.tag, 200)),
@@ -146,7 +157,10 @@ def _draw_regions(sheet: _Sheet) -> None:
         for x in (x1, x2):
             svg.line(x, top, x, bottom, stroke=colours.QUIET, stroke_dasharray="2 3")
         words = sheet.say("agree" if overlap.agree else "disagree")
-        svg.text(RIGHT + 12, BAR_TOP + 12, words, font_size=12, fill=colours.QUIET)
+        half = text_width(words, 12) / 2
+        middle = min(max((x1 + x2) / 2, LEFT + half), RIGHT - half)
+        svg.text(middle, bottom + 14, words, text_anchor="middle", font_size=12,
+                 fill=colours.INK if overlap.agree else colours.LOSS)  # fmt: skip
 
 
 def _draw_blanks(sheet: _Sheet, top: float, bottom: float) -> None:
