@@ -18,7 +18,8 @@ FLOORS = {
     "inverse": 4,
     "results": 5,
     "report": 6,
-    "assess": 7, "frame_assessment": 7, "assumptions": 7, "explain": 7, "synthetic": 7,
+    "assess": 7, "frame_assessment": 7, "assumptions": 7, "explain": 7, "planning": 7,
+    "synthetic": 7,
     "faces": 8, "__main__": 8, "__init__": 8,
 }  # fmt: skip
 """Floor of every part of the package, by the name behind ``cladwatt.``."""
@@ -29,6 +30,7 @@ APART = {
     ("assess", "synthetic"),
     ("assumptions", "synthetic"),
     ("explain", "synthetic"),
+    ("planning", "synthetic"),
 }
 
 OUTSIDE = {"physics": {"numpy", "scipy"}, "materials": set(), "errors": set(), "quantities": set(),

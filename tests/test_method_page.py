@@ -14,6 +14,7 @@ from cladwatt.inverse import (
     cautions,
     component_estimates,
     components,
+    detectable,
     film_states,
     frame_draws,
     hidden_side,
@@ -24,6 +25,7 @@ from cladwatt.inverse import (
     local_damage,
     null,
     observe,
+    plan,
     rain,
     references,
     steady_state,
@@ -220,6 +222,18 @@ def test_words_for_numbers():
     assert "no surer than half of the prior's variance" in PAGE
     assert verdict.SPOTS_ACROSS == 3
     assert "by at least a tenth" in PAGE
+
+
+def test_what_a_plan_imagines():
+    rows = [
+        f"{plan.Viewpoint().columns} pixels along a row",
+        f"{plan.FIELD_OF_VIEW_DEG:g}° of view and {plan.NOISE:g} K of noise",
+        f"over {percent(plan.DRAWN_SHARE)} of the width",
+        f"{plan.LENGTHS[0]:g} m and {plan.LENGTHS[1]:g} m, is found by {detectable.PROFILES} prof",
+    ]
+    assert [row for row in rows if row not in PAGE] == []
+    assert detectable.DETECTION == 0.95
+    assert detectable.FALSE_ALARM == 0.05
 
 
 def test_what_each_measurement_would_tell():

@@ -174,6 +174,10 @@ def test_without_a_measurement_that_narrows_what_lifts_the_reason_is_advised(cha
     assert as_verdict(inputs(**changes), WIND).advice == WIND
 
 
+def test_a_pipe_too_narrow_for_any_number_is_seen_from_closer_whatever_else_helps():
+    assert as_verdict(inputs(width=2.0), WIND).advice == Remark("advice.closer_frame")
+
+
 def test_shares_are_first_order_indices_of_another_library(evidence):
     from SALib.analyze import sobol as analyze
     from SALib.sample import sobol as sample

@@ -37,7 +37,14 @@ from cladwatt.physics.field_methods import MINIMUM_SEPARATION
 from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray
 
-__all__ = ["LEAST_GAIN", "Measurement", "best_measurement", "measurements_of", "width_after"]
+__all__ = [
+    "LEAST_GAIN",
+    "Measurement",
+    "best_measurement",
+    "measurements_of",
+    "ranked_measurements",
+    "width_after",
+]
 
 AIR_U = 0.3
 """A shaded thermometer near the pipe; assumption. [K]"""
@@ -148,17 +155,29 @@ def best_measurement(loss: FloatArray | None, measurements: Sequence[Measurement
         Half widths now and then, in percent; None where nothing would narrow the interval by a
         tenth.
     """
+    ranked = ranked_measurements(loss, measurements)
+    return ranked[0] if ranked else None
+
+
+def ranked_measurements(
+    loss: FloatArray | None, measurements: Sequence[Measurement]
+) -> tuple[Remark, ...]:
+    """Return every measurement that narrows the loss by a tenth, the best first.
+
+    Parameters
+    ----------
+    loss, measurements
+        As for `best_measurement`.
+    """
     if loss is None:
-        return None
+        return ()
     now = _half_width(loss, np.ones_like(loss))
     widths = [(width_after(loss, one), one.key) for one in _telling(loss, measurements)]
-    widths = [(width, key) for width, key in widths if math.isfinite(width)]
-    if not widths or not math.isfinite(now):
-        return None
-    then, key = min(widths)
-    if then > (1 - LEAST_GAIN) * now:
-        return None
-    return Remark(key, (("width_now", 100 * now), ("width_then", 100 * then)))
+    return tuple(
+        Remark(key, (("width_now", 100 * now), ("width_then", 100 * then)))
+        for then, key in sorted(widths)
+        if then <= (1 - LEAST_GAIN) * now
+    )
 
 
 def _telling(loss: FloatArray, measurements: Sequence[Measurement]) -> list[Measurement]:

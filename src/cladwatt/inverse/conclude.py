@@ -39,7 +39,7 @@ from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
 from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray
 
-__all__ = ["conclude"]
+__all__ = ["Shift", "conclude", "kelvin_per_rise", "moved"]
 
 
 def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionResult:
@@ -60,9 +60,7 @@ def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionR
         seen = observed.seen
         return _without_balance(seen, station_table(seen, None, None))
     image_loss = _image_loss(observed.seen, observed.balance)
-    shift = _Shift(updates)
-    seen = _shifted_seen(observed.seen, shift)
-    balance = _shifted_balance(observed, shift, seen.perimeter)
+    seen, balance, shift = moved(observed, updates)
     aged = next((u.aged[seen.region.id] for u in updates if seen.region.id in u.aged), None)
     drivers = {name: shift(draws) for name, draws in _drivers(observed.seen).items()}
     measurements = measurements_of(seen, balance.sound, shift)
@@ -73,15 +71,23 @@ def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionR
 
 
 @dataclass(frozen=True)
-class _Shift:
+class Shift:
     """All updates of a frame, one after the other."""
 
     updates: Sequence[JointUpdate]
 
     def __call__(self, values: FloatArray) -> FloatArray:
+        """Return draws, (count,) or (count, n), after the joint estimate."""
         for update in self.updates:
             values = update.apply(values)
         return values
+
+
+def moved(observed: Observed, updates: Sequence[JointUpdate]) -> tuple[Seen, Balance, Shift]:
+    """Return what was seen and its balance after the joint estimate, and what moves draws so."""
+    shift = Shift(updates)
+    seen = _shifted_seen(observed.seen, shift)
+    return seen, _shifted_balance(observed, shift, seen.perimeter), shift
 
 
 def _image_loss(seen: Seen, balance: Balance) -> Interval | None:
@@ -91,7 +97,7 @@ def _image_loss(seen: Seen, balance: Balance) -> Interval | None:
     return interval_of(seen.perimeter * balance.bounds.applied(seen.mean_along(balance.flux)))
 
 
-def _shifted_seen(seen: Seen, shift: _Shift) -> Seen:
+def _shifted_seen(seen: Seen, shift: Shift) -> Seen:
     """Return what was seen with what its conclusions rest on moved.
 
     Impossible draws of the surface count as the coldest.
@@ -111,7 +117,7 @@ def _shifted_seen(seen: Seen, shift: _Shift) -> Seen:
     )
 
 
-def _shifted_balance(observed: Observed, shift: _Shift, perimeter: FloatArray) -> Balance:
+def _shifted_balance(observed: Observed, shift: Shift, perimeter: FloatArray) -> Balance:
     """Move the balance; the sound level by its ratio to what sound lagging would lose.
 
     Flux is sound loss times ratio: moved by itself, its draws would keep the sound loss's error
@@ -139,7 +145,7 @@ def _shifted_balance(observed: Observed, shift: _Shift, perimeter: FloatArray) -
     return replace(balance, flux=base[:, None] + contrast, base=base, sound=sound)
 
 
-def _shifted_loss(loss: FloatArray, shift: _Shift) -> FloatArray:
+def _shifted_loss(loss: FloatArray, shift: Shift) -> FloatArray:
     """Move a loss by its logarithm, which keeps its sign; as it is where it may change sign."""
     size = np.abs(loss)
     if np.ptp(np.sign(loss)) > 0 or not (size > 0.05 * np.median(size)).all():
@@ -161,7 +167,7 @@ def _concluded(
     stretches: tuple[Stretch, ...] = ()
     local = aged = None
     loss = None
-    kelvin_per_rise = _kelvin_per_rise(seen, balance)
+    lens_per_rise = kelvin_per_rise(seen, balance)
     if seen.diameter_known:
         loss = seen.perimeter[:, None] * balance.flux
         draws |= _loss_draws(seen.perimeter * mean_flux, balance, draws["length"])
@@ -170,7 +176,7 @@ def _concluded(
             balance.null,
             balance.runs,
             sign=-1 if seen.gain else 1,
-            kelvin_per_rise=kelvin_per_rise,
+            kelvin_per_rise=lens_per_rise,
             spread_length=spreading_length(seen, sound) or 0.0,
         )
         stretches = stretches_of(
@@ -186,7 +192,7 @@ def _concluded(
         heat_loss=heat_loss,
         excess=_interval(draws, "excess"),
         emissivity=seen.emissivity,
-        visible_rise_sigmas=0.25 * kelvin_per_rise / balance.null.run_sigma(seen.width),
+        visible_rise_sigmas=0.25 * lens_per_rise / balance.null.run_sigma(seen.width),
         width=seen.width,
         spot_pixels=seen.camera.spot_pixels,
         infeasible_share=balance.infeasible,
@@ -334,7 +340,7 @@ def _drivers(seen: Seen) -> dict[str, FloatArray]:
     }
 
 
-def _kelvin_per_rise(seen: Seen, balance: Balance) -> float:
+def kelvin_per_rise(seen: Seen, balance: Balance) -> float:
     """Return what a loss twice that at the sound level shows at the lens; 0 where nothing. [K]
 
     The flux's slope against the value at the lens is taken from two values around the sound

@@ -34,9 +34,10 @@ _LIFTS = {
     "indicative.rain": "advice.other_hour",
     "indicative.not_steady": "advice.other_hour",
     "indicative.narrow_pipe": "advice.closer_frame",
-    "not_quantified.too_narrow": "advice.closer_frame",
 }
 """What would lift a reason, where no measurement would narrow the loss."""
+_LIFTS_ALONE = {"not_quantified.too_narrow": "advice.closer_frame"}
+"""What alone would lift a reason, whatever else narrows the loss."""
 
 
 @dataclass(frozen=True)
@@ -167,6 +168,8 @@ def as_verdict(
     for remark in missing:
         if remark.key in _FIND_OUT:
             return Verdict(level, reason, Remark(_FIND_OUT[remark.key]))
-    if advice is None and reason.key in _LIFTS:
+    if reason.key in _LIFTS_ALONE:
+        advice = Remark(_LIFTS_ALONE[reason.key])
+    elif advice is None and reason.key in _LIFTS:
         advice = Remark(_LIFTS[reason.key])
     return Verdict(level, reason, advice)

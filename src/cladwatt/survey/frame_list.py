@@ -75,6 +75,8 @@ def read_frames(
     source: Source,
     tables: MaterialTables,
     faults: FaultList,
+    *,
+    needed: bool = True,
 ) -> Frames:
     """Return every frame that can be used.
 
@@ -89,6 +91,8 @@ def read_frames(
     source : Source
     tables : MaterialTables
     faults : FaultList
+    needed : bool
+        Whether it is a fault that there are none.
 
     Returns
     -------
@@ -97,7 +101,7 @@ def read_frames(
     reader = _Reader(wide, source, tables, faults, zone_of(site, faults), site)
     entries = entries + _listed(head, source, faults)
     if not entries and not head.text("frame_list"):
-        entries = _found_files(source, faults)
+        entries = _found_files(source, faults, needed=needed)
     read = [_read_entry(entry, reader) for entry in entries]
     _ask_for_missing([one.table for one in read], wide, faults)
     twice = repeated(one.id for one in read)
@@ -128,7 +132,7 @@ def _listed(head: Table, source: Source, faults: FaultList) -> list[Entry]:
         return []
 
 
-def _found_files(source: Source, faults: FaultList) -> list[Entry]:
+def _found_files(source: Source, faults: FaultList, *, needed: bool) -> list[Entry]:
     """Take every frame file in ``frames/`` where the survey lists none."""
     folder = source.root / "frames"
     names = []
@@ -138,7 +142,7 @@ def _found_files(source: Source, faults: FaultList) -> list[Entry]:
             for path in folder.iterdir()
             if path.suffix.lower() in FRAME_SUFFIXES and not path.name.startswith((".", "~"))
         )
-    if not names:
+    if not names and needed:
         faults.add(
             Place("survey.toml"), "", "the survey lists no frames and frames/ holds none",
             "expected [[frame]] tables, frame_list in [survey], or files in frames/",

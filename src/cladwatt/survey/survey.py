@@ -9,7 +9,7 @@ from cladwatt.errors import Fault
 from cladwatt.materials.load import MaterialTables, shipped_tables
 from cladwatt.physics.convection_laws import ConvectionModel
 from cladwatt.quantities import Quantity
-from cladwatt.survey.model import Camera, FrameEntry, Line, Site
+from cladwatt.survey.model import Camera, Conditions, FrameEntry, Line, Site
 from cladwatt.survey.region import Region
 
 __all__ = ["Survey"]
@@ -39,6 +39,8 @@ class Survey:
         What ships, with the survey's own ``tables/`` added.
     convection_model : str
         Name of the correlations of convection, see `cladwatt.physics.convection`.
+    conditions : Conditions
+        Those for the whole survey, which frames may override.
     """
 
     root: Path
@@ -54,6 +56,7 @@ class Survey:
     digests: Mapping[str, str] = field(default_factory=dict)
     tables: MaterialTables | None = field(default=None, repr=False, compare=False)
     convection_model: ConvectionModel = "churchill"
+    conditions: Conditions = field(default_factory=Conditions)
 
     @property
     def defaults(self) -> Mapping[str, Quantity]:

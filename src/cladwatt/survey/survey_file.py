@@ -8,7 +8,7 @@ from pathlib import Path
 from cladwatt.errors import Fault, FaultyInputError, SurveyFileError, TableError
 from cladwatt.materials.load import MaterialTables, load_tables, shipped_tables
 from cladwatt.survey.fault_list import FaultList, Place, shown
-from cladwatt.survey.frame_builder import build_camera, build_site
+from cladwatt.survey.frame_builder import build_camera, build_conditions, build_site
 from cladwatt.survey.frame_list import read_frames
 from cladwatt.survey.keys import SECTIONS, TOP_LEVEL, section
 from cladwatt.survey.line_builder import build_line
@@ -34,13 +34,15 @@ SURVEY_FILE = "survey.toml"
 _MAXIMUM_BYTES = 64 * 1024 * 1024
 
 
-def read_survey(folder: str | Path) -> Survey:
+def read_survey(folder: str | Path, *, frames_needed: bool = True) -> Survey:
     """Read a survey folder.
 
     Parameters
     ----------
     folder : str or Path
         Folder with ``survey.toml``, its frames and ``regions/``.
+    frames_needed : bool
+        Whether a survey without frames is faulty; one still to be walked has none.
 
     Returns
     -------
@@ -58,19 +60,23 @@ def read_survey(folder: str | Path) -> Survey:
     --------
     >>> survey = read_survey("sample_data")  # doctest: +SKIP
     """
-    survey, faults = load_survey(folder)
+    survey, faults = load_survey(folder, frames_needed=frames_needed)
     stopping = faults.stopping()
     if survey is None or stopping:
         raise SurveyFileError(*stopping)
     return replace(survey, faults=tuple(faults.faults))
 
 
-def load_survey(folder: str | Path) -> tuple[Survey | None, FaultList]:
+def load_survey(
+    folder: str | Path, *, frames_needed: bool = True
+) -> tuple[Survey | None, FaultList]:
     """Read as much of a survey as can be read.
 
     Parameters
     ----------
     folder : str or Path
+    frames_needed : bool
+        As for `read_survey`.
 
     Returns
     -------
@@ -88,7 +94,8 @@ def load_survey(folder: str | Path) -> tuple[Survey | None, FaultList]:
     except FaultyInputError as error:
         faults.faults.extend(error.faults)
         return None, faults
-    return _Document(document, LineFinder(text), source, faults).survey(), faults
+    read = _Document(document, LineFinder(text), source, faults, frames_needed=frames_needed)
+    return read.survey(), faults
 
 
 def _opened(root: Path) -> Source:
@@ -124,6 +131,7 @@ class _Document:
     source: Source
     faults: FaultList
     tables: MaterialTables = field(default_factory=shipped_tables)
+    frames_needed: bool = True
 
     def survey(self) -> Survey:
         self._check_top_level()
@@ -139,8 +147,9 @@ class _Document:
         }
         wide["conditions"] = read_pieces(wide["conditions"], self.faults)
         frames = read_frames(
-            self._entries("frame"), head, site_table, wide, self.source, self.tables, self.faults
-        )
+            self._entries("frame"), head, site_table, wide, self.source, self.tables, self.faults,
+            needed=self.frames_needed,
+        )  # fmt: skip
         lines, dropped, written = self._lines(head, site)
         usable = {frame.id: frame for frame in frames.entries}
         regions = read_all_regions(
@@ -165,6 +174,7 @@ class _Document:
             digests=dict(sorted(self.source.digests.items())),
             tables=self.tables,
             convection_model=convection,
+            conditions=build_conditions(wide["conditions"], self.tables, FaultList()),
         )
 
     def _check_top_level(self) -> None:

@@ -8,7 +8,7 @@ from collections.abc import Sequence
 from typing import NoReturn
 
 from cladwatt.errors import CladwattError
-from cladwatt.faces.cli import assess, check, explain, sample, schema, start, tables
+from cladwatt.faces.cli import assess, check, explain, plan, sample, schema, start, tables
 from cladwatt.faces.cli.common import global_options
 from cladwatt.faces.cli.messages import ExitCode, Messages, end_output
 
@@ -62,7 +62,7 @@ def build_parser() -> argparse.ArgumentParser:
     global_options(parser, main=True)
     parser.add_argument("--version", action=_Version, help="print the version and stop")
     commands = parser.add_subparsers(title="commands", metavar="COMMAND", required=True)
-    for module in (assess, check, explain, start, sample, tables, schema):
+    for module in (assess, check, explain, plan, start, sample, tables, schema):
         module.add(commands)
     return parser
 

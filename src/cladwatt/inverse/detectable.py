@@ -1,0 +1,237 @@
+"""The smallest damage that a strip can show, by what the assessment weighs it with.
+
+Profiles of a sound pipe are drawn from the null of `inverse.local_damage`: patches of six kinds of
+smoothness and length, their strength uncertain, a mirrored scene, noise, level and trend free.
+What is set against a threshold is the Bayes factor of a stretch of one length, anywhere in the
+strip, against none. The threshold is what 95 % of sound strips stay below; the smallest damage is
+the rise that lifts 95 % of strips with such a stretch in their middle above it. Only the stretch's
+own length is looked for, and only what overlaps it counts for it.
+
+References
+----------
+.. [1] Kay, *Fundamentals of Statistical Signal Processing: Detection Theory*, Prentice Hall 1998,
+   chapter 9 (unknown noise parameters).
+"""
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import NamedTuple
+
+import numpy as np
+
+from cladwatt.inverse.local_damage import (
+    LONGEST_SHARE,
+    SCATTER_ALONG,
+    SCATTER_FACTORS,
+    SCATTER_WEIGHTS,
+    TREND_SHARE,
+    _Bins,
+    _patch_covariances,
+    _shape,
+)
+from cladwatt.inverse.null import NullModel
+from cladwatt.types import FloatArray, IntArray
+
+__all__ = ["DETECTION", "FALSE_ALARM", "SoundProfiles", "smallest_rise"]
+
+DETECTION, FALSE_ALARM = 0.95, 0.05
+PROFILES = 300
+"""Sound pipes drawn."""
+TRIED = np.geomspace(0.02, 20.0, 24)
+"""Rises over the sound loss that are tried; between two the share found is interpolated."""
+
+
+@dataclass(frozen=True)
+class SoundProfiles:
+    """Profiles of a sound pipe as the null draws them.
+
+    Attributes
+    ----------
+    null : NullModel
+    bins : _Bins
+        Places along the strip.
+    values : (n_profiles, n_bins) array
+        [K]
+    kelvin_per_rise : float
+        Kelvin at the lens for a loss twice the sound one.
+    spread_length : float
+        Decay length along the cladding. [m]
+    """
+
+    null: NullModel
+    bins: _Bins
+    values: FloatArray
+    kelvin_per_rise: float
+    spread_length: float
+
+    @classmethod
+    def draw(
+        cls,
+        null: NullModel,
+        stations: int,
+        random: np.random.Generator,
+        *,
+        kelvin_per_rise: float,
+        spread_length: float,
+        profiles: int = PROFILES,
+    ) -> "SoundProfiles":
+        """Draw sound profiles of a strip of so many stations."""
+        bins = _Bins.of(np.zeros(stations), null.station_length)
+        nothing = np.zeros((profiles, bins.value.size))
+        sound = cls(null, bins, nothing, kelvin_per_rise, spread_length)
+        factors = random.choice(SCATTER_FACTORS, profiles, p=SCATTER_WEIGHTS)
+        kinds = sound.patches()
+        kind = random.integers(len(kinds), size=profiles)
+        values = sound.white * random.standard_normal(nothing.shape)
+        values += random.standard_normal((profiles, 2)) @ sound.free
+        for number, one in enumerate(kinds):
+            chosen = kind == number
+            roots, vectors = np.linalg.eigh(one)
+            drawn = random.standard_normal((int(chosen.sum()), bins.value.size))
+            patches = (drawn * np.sqrt(np.maximum(roots, 0.0))) @ vectors.T
+            values[chosen] += factors[chosen, None] * patches
+        return cls(null, bins, values, kelvin_per_rise, spread_length)
+
+    @property
+    def white(self) -> FloatArray:
+        """Independent scatter of each bin. [K]"""
+        return np.asarray(self.null.station_sigma / np.sqrt(self.bins.number))
+
+    @property
+    def free(self) -> FloatArray:
+        """Level and trend, each at one standard deviation, (2, n_bins). [K]"""
+        along = (self.bins.place - self.bins.place.mean()) / max(np.ptp(self.bins.place), 1e-9)
+        trend = TREND_SHARE * self.null.scene_sigma
+        return np.stack([np.full(along.size, 1e3), trend * along])
+
+    @property
+    def length(self) -> float:
+        """Of the strip. [m]"""
+        return float(np.ptp(self.bins.place)) + self.bins.size
+
+    def patches(self) -> list[FloatArray]:
+        """Return the covariance of every kind of patches. [K2]"""
+        return _patch_covariances(self.bins, self.null, SCATTER_ALONG * self.kelvin_per_rise)
+
+    def shapes(self, length: float, centre: FloatArray) -> FloatArray:
+        """Return unit stretches with these centres [m], spread along, (n, n_bins)."""
+        low, high = centre[:, None] - length / 2, centre[:, None] + length / 2
+        place = self.bins.place[None, :]
+        return _shape(place, low, high, self.spread_length, self.bins.size)
+
+    @property
+    def middle(self) -> float:
+        """Of the strip. [m]"""
+        return float(self.bins.place[0] + self.bins.place[-1]) / 2
+
+
+class _Terms(NamedTuple):
+    """What one kind and strength of patches makes of profiles and shapes.
+
+    The last shape is that of the damage.
+    """
+
+    logarithm: FloatArray
+    """Weight of this kind for a sound profile, (p,)."""
+    along: FloatArray
+    """Of profile and shape, (p, m)."""
+    power: FloatArray
+    """Of shapes, (m,)."""
+    with_damage: FloatArray
+    """Of shapes and damage, (m,)."""
+
+
+def smallest_rise(sound: SoundProfiles, length: float) -> float:
+    """Return the smallest rise of the loss over a length that shows.
+
+    Parameters
+    ----------
+    sound : SoundProfiles
+    length : float
+        Of the stretch. [m]
+
+    Returns
+    -------
+    float
+        Share of the sound loss, detected in 95 % with a false alarm on 5 % of sound strips;
+        infinite where the strip is too short for a contrast or nothing shows at the lens. [-]
+    """
+    too_long = length > LONGEST_SHARE * sound.length
+    if too_long or not sound.kelvin_per_rise > 0 or sound.bins.value.size < 8:
+        return float("inf")
+    half = length / 2
+    step = max(length / 6, sound.bins.size / 2)
+    first, last = sound.bins.place[0] + half, sound.bins.place[-1] - half
+    places = np.linspace(first, last, max(2, int(np.ceil((last - first) / step)) + 1))
+    shapes = sound.shapes(length, np.append(places, sound.middle))
+    terms = list(_terms(sound, shapes))
+    every = np.arange(places.size)
+    threshold = np.quantile(_evidence(terms, sound.kelvin_per_rise, every, 0.0), 1 - FALSE_ALARM)
+    # where it is itself, and what overlaps it
+    near = np.append(np.flatnonzero(np.abs(places - sound.middle) < length), places.size)
+    height = sound.kelvin_per_rise
+    found = [_evidence(terms, height, near, height * rise, of=places.size) for rise in TRIED]
+    share = np.mean(np.array(found) > threshold, axis=1)
+    return _crossing(np.maximum.accumulate(share))
+
+
+def _terms(sound: SoundProfiles, shapes: FloatArray) -> Iterator[_Terms]:
+    """Yield the terms of every kind and strength of patches."""
+    white = sound.white
+    for covariance in sound.patches():
+        roots, vectors = np.linalg.eigh(covariance / np.outer(white, white))
+        roots = np.maximum(roots, 0.0)
+        data, marks, free = (
+            (part / white) @ vectors for part in (sound.values, shapes, sound.free)
+        )
+        for factor, weight in zip(SCATTER_FACTORS, SCATTER_WEIGHTS, strict=True):
+            inverse = 1 / (1 + factor**2 * roots)
+            inner = np.eye(2) + (free * inverse) @ free.T
+            cleared = marks - np.linalg.solve(inner, (free * inverse) @ marks.T).T @ free
+            left = data - np.linalg.solve(inner, (free * inverse) @ data.T).T @ free
+            fit = (data * left * inverse).sum(axis=1)
+            fit += np.linalg.slogdet(inner)[1] - np.log(inverse).sum()
+            yield _Terms(
+                logarithm=np.log(weight) - 0.5 * fit,
+                along=(left * inverse) @ marks.T,
+                power=(marks * cleared * inverse).sum(axis=1),
+                with_damage=(marks * inverse) @ cleared[-1],
+            )
+
+
+def _evidence(
+    terms: list[_Terms],
+    height: float,
+    shapes: IntArray,
+    lifted: float,
+    of: int | None = None,
+) -> FloatArray:
+    """Return the logarithm of the Bayes factor of each profile, lifted by damage [K], (p,).
+
+    By Laplace's approximation over the height, whose prior is as wide as a doubled loss.
+    """
+    sound, damaged = [], []
+    for one in terms:
+        fit = 2 * lifted * one.along[:, -1] + lifted**2 * one.power[-1]
+        logarithm = one.logarithm - 0.5 * fit
+        along = one.along[:, shapes] + lifted * one.with_damage[shapes]
+        power = one.power[shapes]
+        # the best height, at the price of having looked for it
+        best = np.maximum(along, 0.0) ** 2 / (2 * power) - 0.5 * np.log1p(height**2 * power)
+        top = best.max(axis=1)
+        mean = np.exp(best - top[:, None]).sum(axis=1) / (of or shapes.size)
+        sound.append(logarithm)
+        damaged.append(logarithm + top + np.log(mean))
+    return np.asarray(np.logaddexp.reduce(damaged, axis=0) - np.logaddexp.reduce(sound, axis=0))
+
+
+def _crossing(share: FloatArray) -> float:
+    """Return the rise at which the share found reaches what is asked; infinite where none does."""
+    if share[-1] < DETECTION:
+        return float("inf")
+    above = int(np.argmax(share >= DETECTION))
+    if above == 0:
+        return float(TRIED[0])
+    low, high = share[above - 1], share[above]
+    part = (DETECTION - low) / (high - low)
+    return float(TRIED[above - 1] * (TRIED[above] / TRIED[above - 1]) ** part)
