@@ -19,7 +19,6 @@ from cladwatt.explain.tracer_steps import stripe_steps
 from cladwatt.inverse.cautions import missing_of
 from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.frame_draws import band_of
-from cladwatt.inverse.hidden_side import HiddenSide, evenness_of
 from cladwatt.inverse.observe import Balance, Observed
 from cladwatt.quantities import Remark
 from cladwatt.results.assessment import Settings
@@ -214,13 +213,14 @@ class _Explained:
         seen = self.seen
         flux = sum(band.share * band.value("q") for band in bands)
         pad.found("face_flux", "q_face", flux, "W/m²", "sum of share times q over the bands", "q")
-        hidden = self.hidden(balance)
+        hidden = balance.hidden
+        excess = float(hidden.excess_share[0, self.index])
         level, stripe = float(balance.base[0]), balance.stripe
-        whole_share = hidden.seen_share + (1 - hidden.seen_share) * float(hidden.excess_share[0])
+        whole_share = hidden.seen_share + (1 - hidden.seen_share) * excess
         pad.given("sound_level", "q_level", level, "W/m²",
                   f"the same steps, mean of {balance.sound_at.sum()} sound stations")  # fmt: skip
         pad.given("seen_share", "s_seen", hidden.seen_share, "-", "angle of the used face / 360")
-        pad.given("hidden_excess", "s_hid", hidden.excess_share, "-", "evenness of the seen face")
+        pad.given("hidden_excess", "s_hid", excess, "-", "contrast across the seen face")
         found = "q_face"
         if stripe is not None:
             found, flux = "f_tr q_face", flux * float(stripe.factor[0])
@@ -236,23 +236,6 @@ class _Explained:
         pad.found("perimeter", "P", perimeter, "m", "pi D", "D")
         pad.found("heat_loss", "q'", perimeter * whole, "W/m", "P q_whole", "P q_whole")
         return perimeter * whole
-
-    def hidden(self, balance: Balance) -> HiddenSide:
-        """Return what the side not seen is taken to do, at nominal values."""
-        seen = self.seen
-        sign = -1 if seen.gain else 1
-        return HiddenSide.draw(
-            seen.book,
-            seen.owner,
-            seen_share=float(seen.face.extent.sum() / (2 * np.pi)),
-            seen=evenness_of(
-                seen.face,
-                balance.runs,
-                balance.sound_at,
-                sign=sign,
-                usual=None if balance.stripe is None else balance.stripe.usual,
-            ),
-        )
 
     def note_difference(self, whole: float, engine: float) -> None:
         """Say where the assessment uses more than these steps."""

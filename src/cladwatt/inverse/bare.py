@@ -14,13 +14,14 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from cladwatt.inverse.face import surface_temperature_draws
+from cladwatt.inverse.opening import BLUR_PX, AcrossPipe, Opening, weigh_openings
 from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.stretches import Run
 from cladwatt.quantities import Quantity
 from cladwatt.types import BoolArray, FloatArray, IntArray
 
-__all__ = ["BareDraws", "bare_draws", "with_bare"]
+__all__ = ["BareDraws", "bare_draws", "cut_face_loss", "with_bare"]
 
 BARE_EMISSIVITY = Quantity(0.85, 0.07, lower=0.5, upper=0.97)
 """Oxidised or rusted steel, band and total: handbooks give 0.61 to 0.96 (Incropera et al., table
@@ -31,21 +32,15 @@ WALL_DROP = 0.03
 """Largest drop between fluid and outside of the wall, over the same; assumption."""
 ENDS_U = 0.1
 """Relative standard uncertainty for what cut ends lose or shelter; assumption."""
-PRIOR_BARE = 0.5
-"""Of a stretch whose middle shows the pipe; a missing sector is the rest. Assumption."""
-SECTOR_SHARE = (0.15, 0.6)
-"""Share of the circumference that a missing sector opens, all equally likely; assumption."""
+SHELTER = 0.15
+"""Most that an opening's own walls shelter the pipe in it, over its loss; assumption."""
+CUT_FACE_COEFFICIENT = 10.0
+"""Convection and radiation at a cut face of lagging, as at any body in still air; assumption.
+[W/(m2 K)]"""
 LEAST_PROBABILITY = 0.02
-EDGE_SIGMA = 2.0
-EDGE_SIGMA_SHARE = 0.01
-"""Scatter of what shows beside a pipe about background or lagging: 2 K and 1 % of the drop from
-fluid to air; assumption."""
-LIKELIHOOD_FLOOR = 0.01
-BLUR_PX = 3.0
-"""How far the glow of the hot pipe reaches beyond its edge in the image. [px]"""
-FARTHEST_BESIDE = 0.97
-"""Up to where lagging is looked for, in half widths of the lagged pipe."""
-BACKGROUND_AT = 1.35
+PLACES_ACROSS = np.linspace(-0.97, 0.97, 39)
+"""Where it is read what shows across, in half widths of the lagged pipe."""
+BACKGROUND_AT = (1.2, 1.35, 1.5)
 """Where the background is looked for, in half widths."""
 
 
@@ -60,11 +55,14 @@ class BareDraws:
         That it is bare all round.
     flux : (count,) array
         Loss per square metre of cladding, NaN in draws in which neither is the case. [W/m2]
+    opening : Opening
+        Which openings may show so.
     """
 
     run: Run
     probability: float
     flux: FloatArray
+    opening: Opening | None = None
 
 
 def bare_draws(seen: Seen, run: Run, sound_at: BoolArray, base: FloatArray) -> BareDraws | None:
@@ -86,8 +84,9 @@ def bare_draws(seen: Seen, run: Run, sound_at: BoolArray, base: FloatArray) -> B
 
     Notes
     -----
-    With a sector missing, that share of the circumference loses what the bare pipe does, the
-    rest what sound lagging does: radial heat only, and no shelter in the opening.
+    With a sector missing, that share of the circumference loses what the bare pipe does, less
+    what the opening's walls shelter; the rest loses what sound lagging does, and heat leaves the
+    two cut faces beside the opening.
     """
     line = seen.line_draws
     inside, pipe = line.inside_temperature, line.pipe_diameter
@@ -98,67 +97,89 @@ def bare_draws(seen: Seen, run: Run, sound_at: BoolArray, base: FloatArray) -> B
     bare_line = replace(
         line, band_emissivity=emissivity, total_emissivity=emissivity, is_metal=False
     )
-    middle = seen.face.temperature[len(seen.face.view_angle) // 2, run.stations]
+    shown_across = _across(seen, run, sound_at)
+    thinner = float(np.median(pipe / line.lagged_diameter))
+    strongest = shown_across.strongest(thinner)
+    if strongest is None:
+        return None
     shown = surface_temperature_draws(
-        np.array([np.nanmedian(middle)]), np.zeros(1), seen.frame, bare_line
+        np.array([seen.sign * strongest]), np.zeros(1), seen.frame, bare_line
     )[:, 0, 0]
     drop = inside - seen.frame.air_temperature
     pipe_seen = float(np.mean(np.abs(shown - inside) < NEAR_FLUID * np.abs(drop)))
     if pipe_seen < LEAST_PROBABILITY:
         return None
-    thinner = float(np.median(pipe / line.lagged_diameter))
-    odds = PRIOR_BARE / (1 - PRIOR_BARE) * _edges_favour_bare(seen, run, sound_at, thinner)
-    probability = pipe_seen * odds / (1 + odds)
+    opening = weigh_openings(shown_across, thinner)
+    probability = pipe_seen * opening.bare
     wall = inside - WALL_DROP * drop * book.uniform(seen.owner, "bare_wall")
     ends = np.exp(ENDS_U * book.normal(seen.owner, "bare_ends"))
     bare = outer_flux(wall, bare_line.exchange(seen.frame, pipe), seen.vapour) * ends
     all_round = bare * pipe / line.lagged_diameter
-    share = SECTOR_SHARE[0] + np.ptp(SECTOR_SHARE) * book.uniform(owner, "sector_share")
-    sector = share * all_round + (1 - share) * base
+    share = opening.share(book.uniform(owner, "sector_share"))
+    sheltered = 1 - SHELTER * book.uniform(owner, "sector_shelter")
+    cut = 2 * cut_face_loss(line.lagged_diameter, pipe, seen.perimeter * base, drop)
+    sector = share * all_round * sheltered + (1 - share) * base + cut / seen.perimeter
     kind = book.uniform(owner, "bare_kind")
     return BareDraws(
         run=run,
         probability=probability,
         flux=np.where(kind < probability, all_round, np.where(kind < pipe_seen, sector, np.nan)),
+        opening=opening,
     )
 
 
-def _edges_favour_bare(seen: Seen, run: Run, sound_at: BoolArray, thinner: float) -> float:
-    """Return the likelihood of what shows beside the pipe, bare over missing sector.
+def cut_face_loss(
+    lagged_diameter: FloatArray, pipe_diameter: FloatArray, loss: FloatArray, drop: FloatArray
+) -> FloatArray:
+    """Return what a cut face of lagging beside an opening adds to the loss. [W/m]
 
-    `thinner` is the pipe's diameter over the lagged one's. Between the pipe's edge and the
-    lagging's a bare stretch lets the background through, on both sides. With a sector missing
-    lagging goes on at one side at least: somewhere there its sound level shows or, inside the
-    opening, something warmer, beside a cut face that may be as cool as the background.
+    Parameters
+    ----------
+    lagged_diameter, pipe_diameter : array
+        [m]
+    loss : array
+        Of the sound lagging. [W/m]
+    drop : array
+        Fluid minus air. [K]
+
+    Notes
+    -----
+    What a cut draws from the lagging beyond what passes anyway, by superposition: at a distance
+    y from the pipe it is driven by the temperature theta(y) that would be there without the cut,
+    reaches the face along a quarter of a circle about the corner and leaves it with h. The sum of
+    ``theta / (pi y / (2 k) + 1 / h)`` over the thickness is ``(2 k / pi)`` times that of theta
+    over ``ln(1 + pi h y / (2 k))``. theta falls with ln r; k follows from the sound loss.
     """
-    nearest = thinner + BLUR_PX / (seen.width / 2)
-    if nearest > FARTHEST_BESIDE:
-        return 1.0
-    within = np.arange(run.first, run.last + 1)
+    thickness = (lagged_diameter - pipe_diameter) / 2
+    with np.errstate(divide="ignore", invalid="ignore"):
+        conducted = loss * np.log(lagged_diameter / pipe_diameter) / (2 * math.pi)
+        conductivity = np.maximum(conducted / drop, 1e-3)
+    slope = (math.pi * CUT_FACE_COEFFICIENT / 2) / conductivity
+    place, weight = np.polynomial.legendre.leggauss(8)
+    far = np.log1p(slope * thickness)
+    y = np.expm1(far * (1 + place[:, None]) / 2) / slope
+    radius = pipe_diameter / 2
+    left = 1 - np.log1p(y / radius) / np.log(lagged_diameter / pipe_diameter)
+    return np.asarray(2 / math.pi * conductivity * drop * far / 2 * (weight @ left))
+
+
+def _across(seen: Seen, run: Run, sound_at: BoolArray) -> AcrossPipe:
+    """Read what shows across the middle half of a run, and beside it."""
+    quarter = (run.last - run.first) // 4
+    within = np.arange(run.first + quarter, run.last + 1 - quarter)
     sound = np.flatnonzero(sound_at)
-    sign = -1 if seen.gain else 1
-    assert seen.line_draws.inside_temperature is not None
-    drop = np.median(seen.line_draws.inside_temperature - seen.frame.air_temperature)
-    scatter = EDGE_SIGMA + EDGE_SIGMA_SHARE * abs(float(drop))
-    positions = np.linspace(nearest, FARTHEST_BESIDE, 6)
-    through, goes_on = [], []
-    for side in (-1.0, 1.0):
-        strongest = max(sign * _beside(seen, side * position, within) for position in positions)
-        background = sign * _beside(seen, side * BACKGROUND_AT, within)
-        lagging = sign * _beside(seen, side * (1 + thinner) / 2, sound)
-        if not np.isfinite([strongest, background, lagging]).all():
-            continue
-        through.append(_likelihood((strongest - background) / scatter))
-        goes_on.append(_likelihood(min(strongest - lagging, 0.0) / scatter))
-    if len(through) < 2:
-        return 1.0
-    sector = (goes_on[0] * goes_on[1] + goes_on[0] * through[1] + through[0] * goes_on[1]) / 3
-    return through[0] * through[1] / sector
-
-
-def _likelihood(away: float) -> float:
-    """Return a likelihood with a floor, since other things may lie beside a pipe."""
-    return math.exp(-0.5 * away**2) + LIKELIHOOD_FLOOR
+    beside = np.array(
+        [[seen.sign * _beside(seen, side * place, within) for place in BACKGROUND_AT]
+         for side in (-1, 1)]
+    )  # fmt: skip
+    return AcrossPipe(
+        across=PLACES_ACROSS,
+        value=np.array([seen.sign * _beside(seen, place, within) for place in PLACES_ACROSS]),
+        lagging=np.array([seen.sign * _beside(seen, place, sound) for place in PLACES_ACROSS]),
+        background=np.median(beside, axis=1),
+        background_scatter=np.std(beside, axis=1),
+        blur=BLUR_PX / (seen.width / 2),
+    )
 
 
 def _beside(seen: Seen, across: float, stations: IntArray) -> float:

@@ -17,10 +17,10 @@ from cladwatt.inverse.cladding_fin import spread_remark, spreading_length
 from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
+from cladwatt.inverse.kelvin_per_rise import kelvin_of_rise
 from cladwatt.inverse.line_profile import line_profile
 from cladwatt.inverse.local_damage import local_damage
 from cladwatt.inverse.observe import Balance, Observed
-from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.resistance import resistances_of
 from cladwatt.inverse.result import (
     Interval,
@@ -34,12 +34,13 @@ from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.sound import SoundDraws
 from cladwatt.inverse.station_table import station_table
 from cladwatt.inverse.stretch_results import stretches_of
+from cladwatt.inverse.stretch_side import sides_of
 from cladwatt.inverse.tracing import stripe_remarks
 from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
 from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray
 
-__all__ = ["Shift", "conclude", "kelvin_per_rise", "moved"]
+__all__ = ["Shift", "conclude", "moved"]
 
 
 def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionResult:
@@ -167,7 +168,7 @@ def _concluded(
     stretches: tuple[Stretch, ...] = ()
     local = aged = None
     loss = None
-    lens_per_rise = kelvin_per_rise(seen, balance)
+    lens_per_rise = kelvin_of_rise(seen, balance.sound_at, balance.base)
     if seen.diameter_known:
         loss = seen.perimeter[:, None] * balance.flux
         draws |= _loss_draws(seen.perimeter * mean_flux, balance, draws["length"])
@@ -180,7 +181,12 @@ def _concluded(
             spread_length=spreading_length(seen, sound) or 0.0,
         )
         stretches = stretches_of(
-            seen, balance.runs, damage.runs, loss, seen.perimeter * balance.base
+            seen,
+            balance.runs,
+            damage.runs,
+            loss,
+            seen.perimeter * balance.base,
+            sides_of(seen, balance),
         )
         local = damage.probability
         level = declared_level(seen.perimeter * balance.untraced_base, sound, aged_level)
@@ -338,23 +344,6 @@ def _drivers(seen: Seen) -> dict[str, FloatArray]:
             else {"tracer": normal(seen.owner, "tracer_dealt")}
         ),
     }
-
-
-def kelvin_per_rise(seen: Seen, balance: Balance) -> float:
-    """Return what a loss twice that at the sound level shows at the lens; 0 where nothing. [K]
-
-    The flux's slope against the value at the lens is taken from two values around the sound
-    level, in the median of the draws.
-    """
-    level = float(np.median(seen.face.temperature[:, balance.sound_at]))
-    temperature = surface_temperature_draws(
-        np.array([level - 0.5, level + 0.5]), np.zeros(1), seen.frame, seen.line_draws
-    )[:, 0]
-    exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
-    temperature = np.fmax(temperature, COLDEST)
-    cooler, warmer = (outer_flux(temperature[:, side], exchange, seen.vapour) for side in (0, 1))
-    slope = float(np.median(warmer - cooler))
-    return abs(float(np.median(balance.base))) / slope if slope > 0 else 0.0
 
 
 def _strip_temperature(seen: Seen) -> FloatArray:

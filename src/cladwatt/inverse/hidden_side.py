@@ -1,85 +1,38 @@
 """The side of the pipe the camera does not see: most of its circumference.
 
-Sound lagging is taken to be the same all round but for a small unevenness. Damage may go all
-round or sit on one side; the seen face says in part which, by how evenly the contrast lies
-across it.
+Sound lagging is taken to be the same all round but for a small unevenness. Where damage lies is
+weighed run by run from how it stands out across the seen face (`around_pipe`).
 """
 
+import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
 
+from cladwatt.inverse.around_pipe import AroundPipe, BandContrast, weigh_sides
 from cladwatt.inverse.draws import DrawBook
+from cladwatt.inverse.null import PATCH_LENGTH, NullModel
+from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.stretches import Run
-from cladwatt.measure.face_bands import FaceBands
 from cladwatt.types import BoolArray, FloatArray
 
-__all__ = ["Evenness", "HiddenSide", "evenness_of", "whole_flux"]
+__all__ = ["HiddenSide", "around_run", "hidden_side", "top_angle", "whole_flux"]
 
 UNEVENNESS = 0.04
 """Relative standard uncertainty of the whole circumference's loss from the seen face's on a
 sound pipe: convection differs between top and bottom, and the lagging around; assumption."""
-ALL_ROUND_EVEN, ALL_ROUND_UNEVEN = 0.8, 0.05
-"""Share of damage that goes all round, given an even and an uneven face; assumption."""
-EVEN_FROM, UNEVEN_BELOW = 0.7, 0.3
-
-
-@dataclass(frozen=True)
-class Evenness:
-    """How damage lies across the seen face.
-
-    Attributes
-    ----------
-    evenness : float
-        Weaker edge band over the strongest band, 0 to 1; 1 where nothing stands out.
-    edge : float
-        Stronger edge band over the mean: what the hidden side may continue with.
-    """
-
-    evenness: float = 1.0
-    edge: float = 1.0
-
-
-def evenness_of(
-    face: FaceBands,
-    runs: tuple[Run, ...],
-    sound_at: BoolArray,
-    *,
-    sign: int,
-    usual: FloatArray | None = None,
-) -> Evenness:
-    """Return how the strongest run lies across the face.
-
-    Parameters
-    ----------
-    face : FaceBands
-    runs : tuple of Run
-    sound_at : (n_stations,) array of bool
-    sign : {1, -1}
-        1 where damage is warmer than sound.
-    usual : (n_bands,) array, optional
-        What each band gives off on sound lagging over an even one, beside a tracer.
-    """
-    bands = face.temperature.shape[0]
-    if not runs or bands < 3:
-        return Evenness()
-    strongest = max(runs, key=lambda run: run.contrast * (run.last - run.first + 1))
-    inside = face.temperature[:, strongest.stations]
-    inside = inside[:, np.isfinite(inside[0])]
-    level = face.temperature[:, sound_at].mean(axis=1)
-    contrast = np.maximum(sign * (inside.mean(axis=1) - level), 0.0)
-    if usual is not None:
-        contrast = contrast / usual
-    if contrast.max() <= 0:
-        return Evenness()
-    mean = float(np.average(contrast, weights=face.extent))
-    edges = contrast[[0, -1]]
-    return Evenness(float(edges.min() / contrast.max()), float(edges.max() / mean))
+STEEPEST_DEG = 60.0
+"""Of a pipe of which it is told what is its upper side."""
+LEAST_ACROSS = 0.5
+"""Part of gravity in the picture that has to lie across the pipe for that."""
+LAGGING_SPREADS = 1 / 3
+"""Of its thickness: how far lagging itself spreads heat around; assumption."""
 
 
 @dataclass(frozen=True)
 class HiddenSide:
-    """Draws for the hidden part, each (count,).
+    """Draws for the hidden part.
 
     Attributes
     ----------
@@ -87,32 +40,135 @@ class HiddenSide:
         Seen part of the circumference.
     unevenness : (count,) array
         Relative difference of the whole from the seen, on sound lagging.
-    excess_share : (count,) array
-        Excess of the hidden part as a share of the seen part's.
+    excess_share : (count, n_stations) array
+        Excess of the hidden part as a share of the seen part's; that of the nearest run.
+    around : tuple of AroundPipe or None
+        Of each run; None where nothing tells.
     """
 
     seen_share: float
     unevenness: FloatArray
     excess_share: FloatArray
+    around: tuple[AroundPipe | None, ...]
 
-    @classmethod
-    def draw(cls, book: DrawBook, owner: str, seen_share: float, seen: Evenness) -> "HiddenSide":
-        """Draw for one region.
 
-        Damage goes all round (hidden excess about as large as the seen one, 10 % uncertain) or
-        it is one-sided: the hidden excess then lies anywhere from nothing to a fifth more than
-        the stronger edge of the face shows.
-        """
-        towards_even = np.clip((seen.evenness - UNEVEN_BELOW) / (EVEN_FROM - UNEVEN_BELOW), 0, 1)
-        share = ALL_ROUND_UNEVEN + towards_even * (ALL_ROUND_EVEN - ALL_ROUND_UNEVEN)
-        all_round = book.uniform(owner, "hidden_kind") < share
-        near_one = 1 + 0.1 * book.normal(owner, "hidden_excess")
-        one_sided = 1.2 * np.clip(seen.edge, 0.2, 1.0) * book.uniform(owner, "hidden_part")
-        return cls(
-            seen_share=seen_share,
-            unevenness=UNEVENNESS * book.normal(owner, "unevenness"),
-            excess_share=np.where(all_round, near_one, one_sided),
+def hidden_side(
+    seen: Seen,
+    runs: tuple[Run, ...],
+    sound_at: BoolArray,
+    null: NullModel,
+    *,
+    kelvin_per_rise: float,
+    spread_length: float,
+    usual: FloatArray | None = None,
+) -> HiddenSide:
+    """Draw for one region.
+
+    Parameters
+    ----------
+    seen : Seen
+    runs : tuple of Run
+    sound_at : (n_stations,) array of bool
+    null : NullModel
+    kelvin_per_rise : float
+        Kelvin at the lens for a loss twice the sound one. [K]
+    spread_length : float
+        Decay length along the cladding. [m]
+    usual : (n_bands,) array, optional
+        What each band gives off on sound lagging over an even one, beside a tracer.
+    """
+    seen_share = float(seen.face.extent.sum() / (2 * np.pi))
+    around = tuple(
+        around_run(seen, run, sound_at, null, kelvin_per_rise, spread_length, usual) for run in runs
+    )
+    shares = [_share(seen.book, seen.owner, run, one, seen_share) for run, one in
+              zip(runs, around, strict=True)]  # fmt: skip
+    return HiddenSide(
+        seen_share=seen_share,
+        unevenness=UNEVENNESS * seen.book.normal(seen.owner, "unevenness"),
+        excess_share=_nearest(shares, runs, seen.usable.size, seen.book.count),
+        around=around,
+    )
+
+
+def _share(
+    book: DrawBook, owner: str, run: Run, around: AroundPipe | None, seen_share: float
+) -> FloatArray:
+    if around is None:
+        return np.ones(book.count)
+    return around.draw(book, f"{owner}:{run.first}", seen_share)
+
+
+def _nearest(
+    shares: Sequence[FloatArray], runs: tuple[Run, ...], stations: int, count: int
+) -> FloatArray:
+    """Give every station the share of the run nearest to it; 1 without runs."""
+    if not runs:
+        return np.ones((count, stations))
+    at = np.arange(stations)
+    apart = [np.maximum(np.maximum(run.first - at, at - run.last), 0) for run in runs]
+    return np.stack(shares, axis=1)[:, np.argmin(apart, axis=0)]
+
+
+def around_run(
+    seen: Seen,
+    run: Run,
+    sound_at: BoolArray,
+    null: NullModel,
+    kelvin_per_rise: float,
+    spread_length: float,
+    usual: FloatArray | None = None,
+) -> AroundPipe | None:
+    """Weigh where around the pipe a run lies; None where the face does not tell."""
+    temperature = seen.face.temperature
+    bands = temperature.shape[0]
+    inside = temperature[:, run.stations]
+    inside = inside[:, np.isfinite(inside).all(axis=0)]
+    if bands < 3 or not kelvin_per_rise > 0 or not inside.size or not sound_at.any():
+        return None
+    contrast = seen.sign * (inside.mean(axis=1) - temperature[:, sound_at].mean(axis=1))
+    if usual is not None:
+        contrast = contrast / usual
+    if not contrast @ seen.face.extent > 0:
+        return None
+    stations = inside.shape[1]
+    patches = null.own_sigma / math.sqrt(1 + stations * null.station_length / PATCH_LENGTH)
+    radius = float(np.median(seen.diameter)) / 2
+    lagging = 0.0
+    if seen.line_draws.pipe_diameter is not None:
+        lagging = max(radius - float(np.median(seen.line_draws.pipe_diameter)) / 2, 0.0)
+    return weigh_sides(
+        BandContrast(
+            contrast=contrast,
+            face=seen.face,
+            # what the mean over bands scatters by, a band by itself scatters more
+            band_sigma=math.hypot(
+                patches * math.sqrt(bands / 2), null.station_sigma * math.sqrt(bands / stations)
+            ),
+            common_sigma=null.run_sigma(stations),
+            kelvin_per_rise=kelvin_per_rise,
+            spread_angle=math.hypot(spread_length, LAGGING_SPREADS * lagging) / radius,
+            top=top_angle(seen),
         )
+    )
+
+
+def top_angle(seen: Seen) -> float | None:
+    """Return where the top of the pipe is, from the side facing the camera. [rad]
+
+    A camera level with a lying pipe sees the top at 90 degrees, towards where gravity does not
+    pull in the picture; how far it looks up or down is not declared and counts as uncertain.
+    """
+    if seen.line_draws.inclination_deg > STEEPEST_DEG:
+        return None
+    strip, roll = seen.strip, math.radians(seen.conditions.roll_deg)
+    x = float(np.median(strip.sample_x[-1] - strip.sample_x[0]))
+    y = float(np.median(strip.sample_y[-1] - strip.sample_y[0]))
+    # roll turns "down" clockwise on the screen, y runs down
+    across = (-x * math.sin(roll) + y * math.cos(roll)) / max(math.hypot(x, y), 1e-9)
+    if abs(across) < LEAST_ACROSS:
+        return None
+    return -math.copysign(math.pi / 2, across)
 
 
 def whole_flux(seen: FloatArray, base: FloatArray, hidden: HiddenSide) -> FloatArray:
@@ -133,4 +189,4 @@ def whole_flux(seen: FloatArray, base: FloatArray, hidden: HiddenSide) -> FloatA
     """
     share = hidden.seen_share + (1 - hidden.seen_share) * hidden.excess_share
     level = base * (1 + hidden.unevenness)
-    return np.asarray(level[:, None] + (seen - base[:, None]) * share[:, None])
+    return np.asarray(level[:, None] + (seen - base[:, None]) * share)

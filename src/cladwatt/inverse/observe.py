@@ -7,14 +7,16 @@ from typing import NamedTuple
 import numpy as np
 
 from cladwatt.errors import Fault, RegionError
-from cladwatt.inverse.bare import bare_draws, with_bare
+from cladwatt.inverse.bare import BareDraws, bare_draws, with_bare
 from cladwatt.inverse.beside_components import beside_components
+from cladwatt.inverse.cladding_fin import spreading_length
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.face import face_draws, surface_temperature_draws
 from cladwatt.inverse.feasibility import Bounds, flux_bounds
 from cladwatt.inverse.frame_draws import FrameDraws
-from cladwatt.inverse.hidden_side import HiddenSide, evenness_of, whole_flux
+from cladwatt.inverse.hidden_side import HiddenSide, hidden_side, whole_flux
 from cladwatt.inverse.joint import SOUND_SCATTER, LevelEvidence
+from cladwatt.inverse.kelvin_per_rise import kelvin_of_rise
 from cladwatt.inverse.law_spread import with_own_spread
 from cladwatt.inverse.line_draws import LineDraws
 from cladwatt.inverse.null import NullModel, null_of
@@ -65,6 +67,9 @@ class Balance:
     infeasible : float
         Share of draws of the mean flux beyond the bounds.
     sound : SoundDraws or None
+    hidden : HiddenSide
+    bare : tuple of BareDraws or None
+        Of each run; None where the pipe is not seen.
     rain : RainLeft or None
     stripe : Stripe or None
         Of a traced line.
@@ -79,6 +84,8 @@ class Balance:
     bounds: Bounds
     infeasible: float
     sound: SoundDraws | None
+    hidden: HiddenSide
+    bare: tuple[BareDraws | None, ...]
     rain: RainLeft | None = None
     stripe: Stripe | None = None
 
@@ -340,7 +347,6 @@ def _balance(seen: Seen) -> Balance | None:
     """Balance the heat of the seen face, with what stands out and what is hidden."""
     if seen.drawn.heat_flux is None:
         return None
-    sign = -1 if seen.gain else 1
     rain = rain_left(seen)
     is_wet = bool(seen.conditions.surface_wet) or (rain is not None and rain.share > MOSTLY_WET)
     sound = sound_draws(seen.line_draws, seen.frame) if seen.diameter_known else None
@@ -351,28 +357,28 @@ def _balance(seen: Seen) -> Balance | None:
         # a tracer that wanders under the lagging must not look like damage
         contrast = _contrast(seen, clear_bands(stripe), is_wet)
     runs, sound_at = contrast.runs, contrast.sound_at
-    hidden = HiddenSide.draw(
-        seen.book,
-        seen.owner,
-        seen_share=float(seen.face.extent.sum() / (2 * np.pi)),
-        seen=evenness_of(
-            seen.face, runs, sound_at, sign=sign, usual=None if stripe is None else stripe.usual
-        ),
-    )
     bounds = flux_bounds(seen)
     seen_flux = seen.drawn.heat_flux
     sun = sunlit_excess(seen)
     if sun is not None:
         seen_flux = seen_flux - sun[:, None]
     seen_base = seen_flux[:, sound_at].mean(axis=1)
+    hidden = hidden_side(
+        seen,
+        runs,
+        sound_at,
+        contrast.null,
+        usual=None if stripe is None else stripe.usual,
+        kelvin_per_rise=kelvin_of_rise(seen, sound_at, seen_base),
+        spread_length=spreading_length(seen, sound) or 0.0,
+    )
     flux = whole_flux(seen_flux, seen_base, hidden)
     base = seen_base * (1 + hidden.unevenness)
     if stripe is not None:
         flux, base = flux * stripe.factor[:, None], base * stripe.factor
-    for run in runs:
-        bare = bare_draws(seen, run, sound_at, base)
-        if bare is not None:
-            flux = with_bare(flux, bare)
+    bare = tuple(bare_draws(seen, run, sound_at, base) for run in runs)
+    for one in bare:
+        flux = flux if one is None else with_bare(flux, one)
     return Balance(
         null=contrast.null,
         searched=contrast.searched,
@@ -383,6 +389,8 @@ def _balance(seen: Seen) -> Balance | None:
         bounds=bounds,
         infeasible=_infeasible_share(seen, bounds, flux),
         sound=sound,
+        hidden=hidden,
+        bare=bare,
         stripe=stripe,
         rain=rain,
     )

@@ -14,11 +14,12 @@ import numpy as np
 from cladwatt.errors import RegionError
 from cladwatt.inverse.advice import measurements_of, ranked_measurements
 from cladwatt.inverse.cladding_fin import spreading_length
-from cladwatt.inverse.conclude import conclude, kelvin_per_rise, moved
+from cladwatt.inverse.conclude import conclude, moved
 from cladwatt.inverse.detectable import SoundProfiles, smallest_rise
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.frame_draws import FrameDraws, draw_frame, mirrored
 from cladwatt.inverse.joint import joint_update
+from cladwatt.inverse.kelvin_per_rise import kelvin_of_rise
 from cladwatt.inverse.line_draws import LineDraws, draw_line
 from cladwatt.inverse.observe import Observed, observe_region
 from cladwatt.inverse.outer_balance import outer_flux, vapour_of
@@ -264,7 +265,7 @@ def _concluded(observed: Observed, book: DrawBook, distance: float) -> LinePlan:
     updates = joint_update([] if evidence is None else [evidence], book, owner)
     result = conclude(observed, updates)
     seen, balance, shift = moved(observed, updates)
-    lens = kelvin_per_rise(seen, balance)
+    lens = kelvin_of_rise(seen, balance.sound_at, balance.base)
     profiles = SoundProfiles.draw(
         balance.null,
         seen.strip.x.size,

@@ -102,6 +102,11 @@ class Seen:
         return self.line_draws.lagged_diameter is not None
 
     @property
+    def sign(self) -> int:
+        """1 where damage is warmer than sound, -1 on a line colder than the air."""
+        return -1 if self.gain else 1
+
+    @property
     def width(self) -> float:
         """Median width of the pipe. [px]"""
         return float(np.median(self.strip.width))

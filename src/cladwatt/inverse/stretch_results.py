@@ -8,6 +8,7 @@ import numpy as np
 
 from cladwatt.inverse.result import Interval, Stretch, interval_of
 from cladwatt.inverse.seen import Seen
+from cladwatt.inverse.stretch_side import Side
 from cladwatt.inverse.stretches import Run
 from cladwatt.types import FloatArray
 
@@ -24,6 +25,7 @@ class _Weighed(NamedTuple):
     excess: FloatArray
     """(count,) [W]"""
     probability: float
+    side: Side
 
 
 def stretches_of(
@@ -32,6 +34,7 @@ def stretches_of(
     probabilities: Sequence[float],
     loss: FloatArray,
     base_loss: FloatArray,
+    sides: Sequence[Side],
 ) -> tuple[Stretch, ...]:
     """Return the stretches behind the runs of a region.
 
@@ -46,6 +49,8 @@ def stretches_of(
         [W/m]
     base_loss : (count,) array
         At the sound level; like `loss` as seen, possible or not. [W/m]
+    sides : sequence of Side
+        Of each run.
 
     Returns
     -------
@@ -54,8 +59,8 @@ def stretches_of(
     """
     scale = seen.length_draws() / float(np.sum(seen.strip.length[~seen.component_at]))
     weighed = [
-        _weigh(seen, run, probability, loss, base_loss, scale)
-        for run, probability in zip(runs, probabilities, strict=True)
+        _weigh(seen, run, probability, loss, base_loss, scale, side)
+        for run, probability, side in zip(runs, probabilities, sides, strict=True)
     ]
     kept = [one for one in weighed if one.probability > SMALLEST_PROBABILITY]
     everything = max(sum(float(np.median(np.abs(one.excess))) for one in kept), 1e-12)
@@ -69,6 +74,8 @@ def stretches_of(
             excess=interval_of(one.excess),
             share_of_excess=float(np.median(np.abs(one.excess))) / everything,
             outline=_outline(seen, one.run),
+            side=one.side.side,
+            side_probability=one.side.probability,
         )
         for number, one in enumerate(kept, start=1)
     )
@@ -81,12 +88,13 @@ def _weigh(
     loss: FloatArray,
     base_loss: FloatArray,
     scale: FloatArray,
+    side: Side,
 ) -> _Weighed:
     metres = np.where(seen.usable, seen.strip.length, 0.0)[run.stations]
     inside = np.where(metres > 0, loss[:, run.stations], 0.0)
     mean = np.asarray(inside @ (metres / max(float(metres.sum()), 1e-12)))
     excess = (mean - base_loss) * float(metres.sum()) * scale
-    return _Weighed(run, mean, excess, probability)
+    return _Weighed(run, mean, excess, probability, side)
 
 
 def _edge(seen: Seen, index: int, side: float, u_stations: float) -> Interval:
