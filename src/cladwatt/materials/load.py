@@ -13,6 +13,7 @@ from cladwatt.materials.build import (
     build_defaults,
     build_lagging,
 )
+from cladwatt.materials.damage_kinds import build_damage_kinds
 from cladwatt.materials.fittings import build_fittings, build_hanger_spacing
 from cladwatt.materials.formats import TABLE_FORMATS
 from cladwatt.materials.pipes import build_pipe_sizes, parse_nps
@@ -20,6 +21,7 @@ from cladwatt.materials.placed import Placed
 from cladwatt.materials.rows import (
     AirRow,
     CladdingMaterial,
+    DamageKind,
     Fitting,
     HangerSpacing,
     LaggingMaterial,
@@ -43,6 +45,7 @@ _KEY_COLUMN = {
     "claddings": "cladding",
     "defaults": "quantity",
     "fittings": "fitting",
+    "damage_kinds": "kind",
     "sources": "source",
     "air_properties": "temperature_K",
 }
@@ -68,6 +71,8 @@ class MaterialTables:
         The user's files that were read.
     fittings : mapping of key to Fitting
         Flanges, valves and hangers; those of the user last.
+    damage_kinds : mapping of key to DamageKind
+        Of damage to lagging, with its prior.
     hanger_spacing : tuple of HangerSpacing
         By rising diameter.
     """
@@ -81,6 +86,7 @@ class MaterialTables:
     user_files: tuple[Path, ...] = ()
     fittings: Mapping[str, Fitting] = field(default_factory=dict)
     hanger_spacing: tuple[HangerSpacing, ...] = ()
+    damage_kinds: Mapping[str, DamageKind] = field(default_factory=dict)
 
 
 def load_tables(extra_folder: Path | None = None) -> MaterialTables:
@@ -140,6 +146,7 @@ def _merged_tables(extra_folder: Path | None) -> MaterialTables:
         user_files=tuple(user_files),
         fittings=build_fittings(placed["fittings"], shorts, faults),
         hanger_spacing=build_hanger_spacing(placed["hanger_spacing"], shorts, faults),
+        damage_kinds=build_damage_kinds(placed["damage_kinds"], shorts, faults),
     )
     if faults:
         raise TableError(*faults)

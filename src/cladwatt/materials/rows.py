@@ -11,6 +11,7 @@ __all__ = [
     "CladdingMaterial",
     "Confidence",
     "CountsAs",
+    "DamageKind",
     "Fitting",
     "LaggingMaterial",
     "PipeSize",
@@ -170,6 +171,41 @@ class Fitting:
     lagged: bool
     counts_as: CountsAs
     amount: Quantity
+
+
+@dataclass(frozen=True)
+class DamageKind:
+    """What one kind of damage may look like.
+
+    Parameters
+    ----------
+    key, name : str
+    severity : (float, float)
+        Range; what it means is the kind's own, see the table. [-]
+    length : (float, float)
+        Along the pipe, every factor equally likely. [m]
+    sides : (float, float, float, float)
+        Probability that it goes all round, or lies on the upper side, the underside or a flank.
+    half_angle_deg : (float, float)
+        Half of the sector it takes where it does not go all round. [deg]
+    edge : (float, float)
+        Length over which it sets in. [m]
+    prior : float
+        Probability that a region has it.
+    source : str
+    confidence : {"declared", "high", "medium", "low"}
+    """
+
+    key: str
+    name: str
+    severity: tuple[float, float]
+    length: tuple[float, float]
+    sides: tuple[float, float, float, float]
+    half_angle_deg: tuple[float, float]
+    edge: tuple[float, float]
+    prior: float
+    source: str
+    confidence: Confidence
 
 
 @dataclass(frozen=True)
