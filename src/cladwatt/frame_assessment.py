@@ -270,7 +270,13 @@ def _assess_regions(
             left_out=look.left_out,
         )
     shared = None if message is None else shared_evidence(message, book)
-    results = estimate_regions(look.observed, book, entry.id, shared)
+    results = estimate_regions(
+        look.observed,
+        book,
+        entry.id,
+        shared,
+        None if survey.tables is None else survey.tables.damage_kinds,
+    )
     pipes = [region for region in regions if region.role == "pipe"]
     return _Found(
         regions=tuple(

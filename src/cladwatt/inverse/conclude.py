@@ -1,6 +1,6 @@
 """Conclusions on one region: loss, resistance, stretches, probabilities and verdict."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, replace
 
 import numpy as np
@@ -18,6 +18,7 @@ from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
 from cladwatt.inverse.kelvin_per_rise import kelvin_of_rise
+from cladwatt.inverse.kinds import KindShares, local_prior, region_kinds, shares_of_region
 from cladwatt.inverse.line_profile import line_profile
 from cladwatt.inverse.local_damage import local_damage
 from cladwatt.inverse.observe import Balance, Observed
@@ -37,13 +38,19 @@ from cladwatt.inverse.stretch_results import stretches_of
 from cladwatt.inverse.stretch_side import sides_of
 from cladwatt.inverse.tracing import stripe_remarks
 from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
+from cladwatt.materials.load import shipped_tables
+from cladwatt.materials.rows import DamageKind
 from cladwatt.quantities import Remark
 from cladwatt.types import FloatArray
 
 __all__ = ["Shift", "conclude", "moved"]
 
 
-def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionResult:
+def conclude(
+    observed: Observed,
+    updates: Sequence[JointUpdate] = (),
+    kinds: Mapping[str, DamageKind] | None = None,
+) -> RegionResult:
     """Draw the conclusions on a region.
 
     Parameters
@@ -52,6 +59,8 @@ def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionR
     updates : sequence of JointUpdate
         What the frame's regions and the specification say together; without any the result is
         what the image says by itself.
+    kinds : mapping of key to DamageKind, optional
+        What damage may look like, and its priors; what ships where left out.
 
     Returns
     -------
@@ -65,7 +74,7 @@ def conclude(observed: Observed, updates: Sequence[JointUpdate] = ()) -> RegionR
     aged = next((u.aged[seen.region.id] for u in updates if seen.region.id in u.aged), None)
     drivers = {name: shift(draws) for name, draws in _drivers(observed.seen).items()}
     measurements = measurements_of(seen, balance.sound, shift)
-    result = _concluded(seen, balance, image_loss, aged, drivers, measurements)
+    result = _concluded(seen, balance, image_loss, aged, drivers, measurements, kinds)
     if any(seen.region.id in update.doubted for update in updates):
         return replace(result, remarks=(*result.remarks, Remark("remark.specification_doubted")))
     return result
@@ -161,25 +170,31 @@ def _concluded(
     aged_level: float | None,
     drivers: dict[str, FloatArray],
     measurements: Sequence[Measurement],
+    kinds: Mapping[str, DamageKind] | None = None,
 ) -> RegionResult:
     bounds, sound = balance.bounds, balance.sound
     mean_flux = bounds.applied(seen.mean_along(balance.flux))
     draws = {"length": seen.length_draws()}
     stretches: tuple[Stretch, ...] = ()
+    whole: KindShares = ()
     local = aged = None
     loss = None
     lens_per_rise = kelvin_of_rise(seen, balance.sound_at, balance.base)
     if seen.diameter_known:
         loss = seen.perimeter[:, None] * balance.flux
         draws |= _loss_draws(seen.perimeter * mean_flux, balance, draws["length"])
+        kinds = shipped_tables().damage_kinds if kinds is None else kinds
+        spread = spreading_length(seen, sound) or 0.0
         damage = local_damage(
             balance.searched,
             balance.null,
             balance.runs,
             sign=-1 if seen.gain else 1,
             kelvin_per_rise=lens_per_rise,
-            spread_length=spreading_length(seen, sound) or 0.0,
+            spread_length=spread,
+            prior=local_prior(kinds),
         )
+        weighed = region_kinds(seen, balance, spread, kinds)
         stretches = stretches_of(
             seen,
             balance.runs,
@@ -187,10 +202,12 @@ def _concluded(
             loss,
             seen.perimeter * balance.base,
             sides_of(seen, balance),
+            weighed.runs,
         )
         local = damage.probability
         level = declared_level(seen.perimeter * balance.untraced_base, sound, aged_level)
         aged = None if level is None else (1 - local) * level
+        whole = shares_of_region(weighed, damage, local, aged)
     heat_loss = _interval(draws, "heat_loss")
     shares = variance_shares(draws["heat_loss"], drivers) if heat_loss else ()
     advice = best_measurement(draws.get("heat_loss"), measurements)
@@ -232,6 +249,7 @@ def _concluded(
         probability_aged=aged,
         verdict=as_verdict(inputs, advice, missing_of(seen)),
         stretches=stretches,
+        kinds=whole,
         remarks=(
             *bare.remarks,
             *traced,

@@ -21,10 +21,11 @@ from cladwatt.inverse.kind_levels import SurfaceLevels
 from cladwatt.materials.rows import DamageKind
 from cladwatt.types import FloatArray
 
-__all__ = ["Shown", "View", "show"]
+__all__ = ["FEW_SAMPLES", "SAMPLES", "Shown", "View", "show"]
 
-SAMPLES = 4000
-"""Per kind; the region's draws are gone through again and again."""
+SAMPLES, FEW_SAMPLES = 3000, 500
+"""Per kind, where something stands out and where nothing does; the region's draws are gone
+through again and again."""
 BLUR_SIGMA = 1.3
 """Of lens and sampling. [px]"""
 DENSER = (1.0, 1.3)
@@ -36,6 +37,10 @@ SHEET_CLOSED = 0.5
 """Share of open joints that lie under their sheet; assumption."""
 SPREAD_FACTOR = 0.3
 """Relative spread of the length over which the cladding spreads heat; assumption."""
+CUT_FACE = 0.5
+"""Beside a pipe that is seen, at most this share of its rise shows; assumption."""
+PIPE_EDGE = 0.15
+"""Over which a pipe's edge is seen to fall, in half widths of the lagged pipe; a band's width."""
 SOFT_EDGE = 0.35
 """Over which a sector ends around the pipe, besides the cladding's spread; assumption. [rad]"""
 QUARTERS_OF_FIN, QUARTERS_OF_RAMP, QUARTERS_OF_BLUR = 2 * math.log(2), 0.5, 1.349
@@ -164,12 +169,9 @@ def _cover(
     kind: DamageKind, view: View, drawn: dict[str, FloatArray], spread: FloatArray
 ) -> FloatArray:
     """Return how far each band of angle shows the damage, (n_samples, n_bands)."""
-    count, bands = drawn["side"].size, view.band_angle.size
-    thin = view.pipe_diameter / view.diameter
-    if kind.key == "bare" and math.isfinite(thin):
-        # beyond the thinner pipe's edge the background shows
-        seen = np.clip((thin - np.abs(np.sin(view.band_angle))) / 0.1 + 0.5, 0.0, 1.0)
-        return np.broadcast_to(np.maximum(seen, 1e-3), (count, bands))
+    count = drawn["side"].size
+    if kind.key == "bare":
+        return _pipe_within(view, drawn["half_angle"])
     bounds = np.cumsum(kind.sides)
     side = np.searchsorted(bounds[:-1], drawn["side"], side="right")
     around = drawn["second"]
@@ -180,7 +182,26 @@ def _cover(
     apart = np.abs(np.angle(np.exp(1j * (view.band_angle - middle[:, None]))))
     soft = np.hypot(SOFT_EDGE, 2 * spread / (view.diameter / 2))
     covered = np.clip((half[:, None] - apart) / soft[:, None] + 0.5, 0.0, 1.0)
-    return np.where((side == 0)[:, None], 1.0, covered)
+    covered = np.where((side == 0)[:, None], 1.0, covered)
+    if kind.key == "missing_sector":
+        return covered * _pipe_within(view, drawn["own"])
+    if kind.key == "open_joint":
+        closed = drawn["own"] < SHEET_CLOSED
+        return np.where(closed[:, None], covered, covered * _pipe_within(view, drawn["edge"]))
+    return covered
+
+
+def _pipe_within(view: View, beside: FloatArray) -> FloatArray:
+    """Return how far each band shows a pipe thinner than its lagging, (count, n_bands).
+
+    Beyond its edge there is something between the background and cut faces that the pipe warms.
+    """
+    thin = view.pipe_diameter / view.diameter
+    within = np.ones(view.band_angle.size)
+    if math.isfinite(thin):
+        away = np.abs(np.sin(view.band_angle))
+        within = np.clip((thin - away) / PIPE_EDGE + 0.5, 0.0, 1.0)
+    return np.asarray(within + (1 - within) * (CUT_FACE * beside)[:, None])
 
 
 def _rise(

@@ -49,7 +49,12 @@ class Features:
 
 
 def features_of(
-    seen: Seen, run: Run, sound_at: BoolArray, null: NullModel, bands: BoolArray
+    seen: Seen,
+    run: Run,
+    sound_at: BoolArray,
+    null: NullModel,
+    bands: BoolArray,
+    searched: FloatArray,
 ) -> Features | None:
     """Return what one run shows; None where it stands out nowhere.
 
@@ -61,10 +66,12 @@ def features_of(
     null : NullModel
     bands : (n_bands,) array of bool
         Those in which contrast is looked for.
+    searched : (n_stations,) array
+        Profile in which the run was found. [K]
     """
     face = seen.face.temperature[bands]
     sign, step = (-1 if seen.gain else 1), null.station_length
-    profile = sign * (face.mean(axis=0) - face[:, sound_at].mean())
+    profile = sign * (searched - np.nanmean(searched[sound_at]))
     fine = moving_mean(profile, 3)
     inside = fine[run.stations]
     if not np.isfinite(inside).any():

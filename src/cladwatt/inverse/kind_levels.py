@@ -13,14 +13,16 @@ from cladwatt.inverse.bare import BARE_EMISSIVITY
 from cladwatt.inverse.face import surface_temperature_draws
 from cladwatt.inverse.outer_balance import outer_flux
 from cladwatt.inverse.seen import Seen
-from cladwatt.types import BoolArray, FloatArray
+from cladwatt.types import BoolArray, FloatArray, IntArray
 
 __all__ = ["SurfaceLevels", "read_off", "surface_levels"]
 
-SURFACE_NODES = 14
-LENS_NODES = 22
+SURFACE_NODES = 10
+LENS_NODES = 18
 LEAST_DROP = 3.0
 """Between fluid and surface; below it no level tells anything. [K]"""
+FAR_BELOW = -1e4
+"""Stands where a surface would have no radiance left. [K]"""
 LEAST_USABLE = 0.2
 """Share of draws that must hold a physical sound level."""
 
@@ -56,7 +58,7 @@ class SurfaceLevels:
     sound_resistance: FloatArray
     sign: int
 
-    def take(self, index: FloatArray) -> "SurfaceLevels":
+    def take(self, index: IntArray) -> "SurfaceLevels":
         """Return the levels of a choice of draws."""
         return replace(
             self,
@@ -151,19 +153,20 @@ def surface_levels(seen: Seen, base: FloatArray, sound_at: BoolArray) -> Surface
     nodes = np.linspace(0.0, 1.0, SURFACE_NODES) ** 2
     surface = sound[:, None] + nodes * (inside - sound)[:, None]
     exchange = seen.line_draws.exchange(seen.frame, seen.diameter)
-    outer = np.stack([outer_flux(one, exchange, seen.vapour) for one in surface.T], axis=1)
+    vapour = seen.vapour
+    outer = np.stack([outer_flux(one, exchange, vapour) for one in surface.T], axis=1)
     flux = np.where(usable, base, sign)[:, None] + outer - outer[:, :1]
     more = np.maximum.accumulate(np.maximum(sign * flux, 1e-9), axis=1)
     drop = np.abs(inside[:, None] - surface)
     left = np.minimum.accumulate(drop / more / (drop[:, :1] / more[:, :1]), axis=1)
     level = float(np.median(seen.face.temperature[:, sound_at]))
-    clad, bare, values = _seen_at(seen, level, inside)
+    clad, bare, values, has_level = _seen_at(seen, level, inside)
     start = clad[:, :1]
     rise = np.stack(
         [read_off(sign * (clad - start), values, sign * (one - sound)) for one in surface.T],
         axis=1,
     )
-    good = np.flatnonzero(usable & np.isfinite(rise).all(axis=1) & np.isfinite(bare).all(axis=1))
+    good = np.flatnonzero(usable & has_level & np.isfinite(rise).all(axis=1))
     if good.size < LEAST_USABLE * usable.size:
         return None
     return SurfaceLevels(
@@ -174,8 +177,11 @@ def surface_levels(seen: Seen, base: FloatArray, sound_at: BoolArray) -> Surface
 
 def _seen_at(
     seen: Seen, level: float, inside: FloatArray
-) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return what values at the lens read as cladding and as a pipe, and their rises."""
+) -> tuple[FloatArray, FloatArray, FloatArray, BoolArray]:
+    """Return what values at the lens read as cladding and as a pipe, and their rises.
+
+    The last says in which draws the sound level leaves the surface any radiance.
+    """
     sign = -1 if seen.gain else 1
     span = max(1.05 * abs(float(np.median(inside)) - level), 2.0)
     steps = np.linspace(0.0, 1.0, LENS_NODES) ** 2 * span
@@ -187,7 +193,7 @@ def _seen_at(
         for one in (line, pipe)
     ]
     clad, bare = (
-        sign * np.maximum.accumulate(np.where(np.isfinite(one), sign * one, -np.inf), axis=1)
+        sign * np.maximum.accumulate(np.where(np.isfinite(one), sign * one, FAR_BELOW), axis=1)
         for one in read
     )
-    return clad, bare, np.broadcast_to(steps, clad.shape)
+    return clad, bare, np.broadcast_to(steps, clad.shape), np.isfinite(read[0][:, 0])

@@ -23,13 +23,14 @@ from dataclasses import dataclass
 import numpy as np
 from scipy.special import ndtr
 
-from cladwatt.inverse.kind_families import SAMPLES, Shown, View, show
+from cladwatt.inverse.kind_families import FEW_SAMPLES, SAMPLES, Shown, View, show
 from cladwatt.inverse.kind_features import Features, features_of, top_view_angle
 from cladwatt.inverse.kind_levels import SurfaceLevels, surface_levels
 from cladwatt.inverse.local_damage import LocalDamage
 from cladwatt.inverse.null import NullModel
 from cladwatt.inverse.observe import Balance
 from cladwatt.inverse.seen import Seen
+from cladwatt.inverse.tracing import clear_bands
 from cladwatt.materials.damage_kinds import WHOLE_KINDS
 from cladwatt.materials.rows import DamageKind
 from cladwatt.types import FloatArray
@@ -57,7 +58,7 @@ SHAPE_KERNEL = 0.2
 """Of each band over the strongest; assumption."""
 SHAPE_INDEPENDENT = 0.5
 """Bands that tell something of their own, over all: neighbours share heat; assumption."""
-OTHERWISE = 0.03
+OTHERWISE = 0.01
 """Least likelihood of a kind over that of the likeliest: damage keeps to no family; assumption."""
 SEEN_FROM = 2.5
 """Standard uncertainties from which a stretch stands out, as `stretches` looks for it."""
@@ -101,8 +102,9 @@ def region_kinds(seen: Seen, balance: Balance, view_spread: float,
         Decay length along the cladding. [m]
     kinds : mapping of key to DamageKind
     """
-    bands = np.zeros(seen.face.view_angle.size, dtype=bool)
-    bands[balance.bands] = True
+    bands = np.ones(seen.face.view_angle.size, dtype=bool)
+    if balance.stripe is not None:
+        bands = clear_bands(balance.stripe)
     pipe = seen.line_draws.pipe_diameter
     view = View(
         band_angle=seen.face.view_angle[bands],
@@ -112,21 +114,22 @@ def region_kinds(seen: Seen, balance: Balance, view_spread: float,
         pipe_diameter=math.nan if pipe is None else float(np.median(pipe)),
         station_length=balance.null.station_length,
     )
-    levels = _spread_out(surface_levels(seen, balance.base, balance.sound_at))
-    shown = {kind.key: show(kind, levels, view, seen.book.seed) for kind in _local(kinds)}
+    samples = SAMPLES if balance.runs else FEW_SAMPLES
+    levels = _spread_out(surface_levels(seen, balance.base, balance.sound_at), samples)
+    shown = {kind.key: show(kind, levels, view, seen.book.seed, samples) for kind in _local(kinds)}
     priors = {kind.key: kind.prior for kind in _local(kinds)}
     runs = []
     for run in balance.runs:
-        found = features_of(seen, run, balance.sound_at, balance.null, bands)
+        found = features_of(seen, run, balance.sound_at, balance.null, bands, balance.searched)
         runs.append(() if found is None else posterior(found, shown, priors))
     return RegionKinds(tuple(runs), _hidden(shown, priors, balance.null))
 
 
-def _spread_out(levels: SurfaceLevels | None) -> SurfaceLevels | None:
+def _spread_out(levels: SurfaceLevels | None, samples: int) -> SurfaceLevels | None:
     """Return as many draws as there are samples, each as often as the others."""
     if levels is None:
         return None
-    return levels.take(np.arange(SAMPLES) % levels.inside.size)
+    return levels.take(np.arange(samples) % levels.inside.size)
 
 
 def posterior(
@@ -185,9 +188,7 @@ def _normal(values: FloatArray, at: float, sigma: float) -> FloatArray:
     return np.asarray(-0.5 * ((values - at) / sigma) ** 2)
 
 
-def _hidden(
-    shown: Mapping[str, Shown], priors: Mapping[str, float], null: NullModel
-) -> KindShares:
+def _hidden(shown: Mapping[str, Shown], priors: Mapping[str, float], null: NullModel) -> KindShares:
     """Return the probability of each kind if it does not stand out."""
     weights = {}
     for name, prior in priors.items():

@@ -1,12 +1,13 @@
 """The regions of a frame from what each shows to what is concluded of all of them together."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 
 from cladwatt.inverse.conclude import conclude
 from cladwatt.inverse.draws import DrawBook
 from cladwatt.inverse.joint import SharedEvidence, joint_update
 from cladwatt.inverse.observe import Observed
 from cladwatt.inverse.result import RegionResult
+from cladwatt.materials.rows import DamageKind
 
 __all__ = ["estimate_regions"]
 
@@ -16,6 +17,7 @@ def estimate_regions(
     book: DrawBook,
     frame_id: str,
     shared: SharedEvidence | None = None,
+    kinds: Mapping[str, DamageKind] | None = None,
 ) -> tuple[RegionResult, ...]:
     """Estimate the pipe regions of one frame jointly.
 
@@ -27,6 +29,8 @@ def estimate_regions(
     frame_id : str
     shared : SharedEvidence, optional
         What other frames say of what this one shares with them.
+    kinds : mapping of key to DamageKind, optional
+        What damage may look like; what ships where left out.
 
     Returns
     -------
@@ -35,4 +39,4 @@ def estimate_regions(
     """
     evidence = [found for one in observed if (found := one.evidence()) is not None]
     updates = joint_update(evidence, book, frame_id, shared)
-    return tuple(conclude(one, updates) for one in observed)
+    return tuple(conclude(one, updates, kinds) for one in observed)

@@ -26,6 +26,7 @@ class _Weighed(NamedTuple):
     """(count,) [W]"""
     probability: float
     side: Side
+    kinds: tuple[tuple[str, float], ...]
 
 
 def stretches_of(
@@ -35,6 +36,7 @@ def stretches_of(
     loss: FloatArray,
     base_loss: FloatArray,
     sides: Sequence[Side],
+    kinds: Sequence[tuple[tuple[str, float], ...]],
 ) -> tuple[Stretch, ...]:
     """Return the stretches behind the runs of a region.
 
@@ -51,6 +53,8 @@ def stretches_of(
         At the sound level; like `loss` as seen, possible or not. [W/m]
     sides : sequence of Side
         Of each run.
+    kinds : sequence of (name, probability) pairs
+        Of damage at each run, if it is local damage.
 
     Returns
     -------
@@ -59,8 +63,8 @@ def stretches_of(
     """
     scale = seen.length_draws() / float(np.sum(seen.strip.length[~seen.component_at]))
     weighed = [
-        _weigh(seen, run, probability, loss, base_loss, scale, side)
-        for run, probability, side in zip(runs, probabilities, sides, strict=True)
+        _weigh(seen, run, probability, loss, base_loss, scale, side, each)
+        for run, probability, side, each in zip(runs, probabilities, sides, kinds, strict=True)
     ]
     kept = [one for one in weighed if one.probability > SMALLEST_PROBABILITY]
     everything = max(sum(float(np.median(np.abs(one.excess))) for one in kept), 1e-12)
@@ -76,6 +80,7 @@ def stretches_of(
             outline=_outline(seen, one.run),
             side=one.side.side,
             side_probability=one.side.probability,
+            kinds=one.kinds,
         )
         for number, one in enumerate(kept, start=1)
     )
@@ -89,12 +94,13 @@ def _weigh(
     base_loss: FloatArray,
     scale: FloatArray,
     side: Side,
+    kinds: tuple[tuple[str, float], ...],
 ) -> _Weighed:
     metres = np.where(seen.usable, seen.strip.length, 0.0)[run.stations]
     inside = np.where(metres > 0, loss[:, run.stations], 0.0)
     mean = np.asarray(inside @ (metres / max(float(metres.sum()), 1e-12)))
     excess = (mean - base_loss) * float(metres.sum()) * scale
-    return _Weighed(run, mean, excess, probability, side)
+    return _Weighed(run, mean, excess, probability, side, kinds)
 
 
 def _edge(seen: Seen, index: int, side: float, u_stations: float) -> Interval:
