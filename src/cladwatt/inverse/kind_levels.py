@@ -73,7 +73,8 @@ class SurfaceLevels:
 
     def rise_with(self, left: FloatArray) -> FloatArray:
         """Return the rise at the lens with a share of the resistance left, (count,). [K]"""
-        return read_off(-self.left, self.rise, -left)
+        # between nodes the rise is close to linear in this, over weak and strong damage alike
+        return read_off(_straightened(self.left), self.rise, _straightened(left))
 
     def rise_wet(self, factor: FloatArray) -> FloatArray:
         """Return the rise with the lagging below boiling this much more conductive. [K]
@@ -86,7 +87,7 @@ class SurfaceLevels:
         needed = np.maximum(1 - dry, 1e-6) / cooler
         # past the boiling front no wetness is enough: nodes there stand in falling order
         needed = np.maximum.accumulate(needed, axis=1)
-        return read_off(np.log(needed), self.rise, np.log(factor))
+        return read_off(np.sqrt(needed), self.rise, np.sqrt(factor))
 
     @property
     def _drop_full(self) -> FloatArray:
@@ -102,6 +103,10 @@ class SurfaceLevels:
 
 BOILING = 373.15
 """Of water in open lagging. [K]"""
+
+
+def _straightened(left: FloatArray) -> FloatArray:
+    return np.asarray(np.maximum(left, 1e-4) ** -0.5)
 
 
 def read_off(x: FloatArray, y: FloatArray, at: FloatArray) -> FloatArray:
