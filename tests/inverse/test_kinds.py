@@ -7,9 +7,10 @@ import numpy as np
 import pytest
 from tests.inverse.conftest import Bench
 
+from cladwatt.inverse.hidden_side import top_angle
 from cladwatt.inverse.joint import STATES
 from cladwatt.inverse.kind_families import View, _along, show
-from cladwatt.inverse.kind_features import Features, features_of, top_view_angle
+from cladwatt.inverse.kind_features import Features, features_of
 from cladwatt.inverse.kind_levels import read_off, surface_levels
 from cladwatt.inverse.kinds import (
     EDGE_KERNEL,
@@ -111,11 +112,11 @@ def test_reading_off_row_by_row():
 def test_upper_side_lies_where_the_frame_says(bench):
     seen = bench.observe(bench.lens(320.0)).seen
     # rows grow downwards, and across points downwards along a line drawn to the right
-    assert top_view_angle(seen) == pytest.approx(-math.pi / 2)
+    assert top_angle(seen) == pytest.approx(-math.pi / 2)
     upside_down = replace(seen, conditions=replace(seen.conditions, roll_deg=180.0))
-    assert top_view_angle(upside_down) == pytest.approx(math.pi / 2)
+    assert top_angle(upside_down) == pytest.approx(math.pi / 2)
     sideways = replace(seen, conditions=replace(seen.conditions, roll_deg=90.0))
-    assert top_view_angle(sideways) is None
+    assert top_angle(sideways) is None
 
 
 def drawn_features(shown, index, random):

@@ -10,12 +10,7 @@ from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.stretches import Run
 from cladwatt.types import BoolArray, FloatArray
 
-__all__ = ["Features", "features_of", "top_view_angle"]
-
-STEEPEST_DEG = 60.0
-"""Of a pipe of which it is told what is its upper side."""
-LEAST_LEVEL = 0.5
-"""Part of gravity in the picture that has to lie across the pipe for that."""
+__all__ = ["Features", "features_of"]
 
 
 @dataclass(frozen=True)
@@ -124,22 +119,3 @@ def _edges(fine: FloatArray, run: Run, plateau: float, null: NullModel) -> tuple
     noise = null.station_sigma / math.sqrt(3) / (0.5 * plateau / length)
     step = null.station_length
     return length * step, math.hypot(1.0, math.sqrt(2) * min(noise, 2.0 * length)) * step
-
-
-def top_view_angle(seen: Seen) -> float | None:
-    """Return the view angle at which a lying pipe's upper side is; None where it is not told.
-
-    The camera is taken as level with the pipe: its upper side then lies at one edge.
-    """
-    if seen.line_draws.inclination_deg > STEEPEST_DEG:
-        return None
-    roll = math.radians(seen.conditions.roll_deg)
-    x, y = (float(p[-1] - p[0]) for p in (seen.strip.x, seen.strip.y))
-    length = math.hypot(x, y)
-    if not length > 0:
-        return None
-    # across points to the right of the way along; gravity runs down the screen
-    downwards = (y * math.sin(roll) + x * math.cos(roll)) / length
-    if abs(downwards) < LEAST_LEVEL:
-        return None
-    return -math.copysign(math.pi / 2, downwards)

@@ -23,8 +23,9 @@ from dataclasses import dataclass
 import numpy as np
 from scipy.special import ndtr
 
+from cladwatt.inverse.hidden_side import top_angle
 from cladwatt.inverse.kind_families import FEW_SAMPLES, SAMPLES, Shown, View, show
-from cladwatt.inverse.kind_features import Features, features_of, top_view_angle
+from cladwatt.inverse.kind_features import Features, features_of
 from cladwatt.inverse.kind_levels import SurfaceLevels, surface_levels
 from cladwatt.inverse.local_damage import LocalDamage
 from cladwatt.inverse.null import NullModel
@@ -108,7 +109,7 @@ def region_kinds(seen: Seen, balance: Balance, view_spread: float,
     pipe = seen.line_draws.pipe_diameter
     view = View(
         band_angle=seen.face.view_angle[bands],
-        top=top_view_angle(seen),
+        top=top_angle(seen),
         spread_length=view_spread,
         diameter=float(np.median(seen.diameter)),
         pipe_diameter=math.nan if pipe is None else float(np.median(pipe)),
