@@ -1,0 +1,1 @@
+"""Whether advised measurements narrow the loss as promised, counted on drawn surveys."""
