@@ -236,6 +236,8 @@ def test_words_for_numbers():
     assert "More than five regions in a frame are taken in groups of five" in PAGE
     assert (frame_draws.SHARED_CALIBRATION, frame_draws.SHARED_CONVECTION) == (0.5, 2 / 3)
     assert "| 1/2, 2/3 of the variance |" in PAGE
+    assert (local_damage.MISFIT, local_damage.MISFIT_ELSEWHERE) == (3, 7)
+    assert "a logarithm of 3 counts for nothing, of 7 where no run" in PAGE
     assert survey_joint.LEAST_VARIANCE == 0.5
     assert "no surer than half of the prior's variance" in PAGE
     assert verdict.SPOTS_ACROSS == 3

@@ -66,12 +66,11 @@ def test_conditions_belong_to_their_frame(hall_with, name):
     assert same[0].std() == pytest.approx(1.5, rel=0.02)
 
 
-@pytest.mark.parametrize("name", ["calibration", "convection_factor"])
-def test_camera_and_convection_law_are_partly_shared_by_all_frames(hall_with, name):
+@pytest.mark.parametrize(("name", "share"), [("calibration", 1 / 2), ("convection_factor", 2 / 3)])
+def test_camera_and_convection_law_are_partly_shared_by_all_frames(hall_with, name, share):
     one = getattr(frame_of(hall_with()), name)
     two = getattr(frame_of(hall_with(), "f2"), name)
-    # two thirds of the variance in common
-    assert correlation(one, two) == pytest.approx(2 / 3, abs=0.06)
+    assert correlation(one, two) == pytest.approx(share, abs=0.06)
 
 
 def test_a_limit_of_error_is_rectangular(hall_with):

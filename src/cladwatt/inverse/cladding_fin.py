@@ -12,13 +12,18 @@ from cladwatt.physics.conduction import fin_length
 from cladwatt.physics.surface_balance import surface_coefficients
 from cladwatt.quantities import Remark
 
-__all__ = ["spread_remark", "spreading_length"]
+__all__ = ["edge_spread", "spread_remark", "spreading_length"]
 
 SHORT = 2.0
 """A stretch this many fin lengths long shows 1 - 1/e of its contrast in its middle, a shorter one
 less: where a step under a sheet lies, half of it shows, and the rest comes as exp(-x / length)."""
 LEAST = 0.02
 """A sheet that spreads heat less far than this is not worth a word. [m]"""
+
+
+LAGGING_SPREAD, LENS_SPREAD = 0.3, 1.5
+"""Decay of a step along lagging, over its thickness (1 / pi between two plane faces that hold
+their temperature), and of a step through the lens, in stations (assumption)."""
 
 
 def spreading_length(seen: Seen, sound: SoundDraws | None) -> float | None:
@@ -65,3 +70,23 @@ def spread_remark(
     if shortest > SHORT * length:
         return ()
     return (Remark("remark.spread_by_cladding", (("length_m", length),)),)
+
+
+def edge_spread(seen: Seen, sound: SoundDraws | None, station_length: float) -> float:
+    """Return how far the edges of damage are spread by cladding, lagging and lens. [m]
+
+    Parameters
+    ----------
+    seen : Seen
+    sound : SoundDraws or None
+    station_length : float
+        [m]
+    """
+    lagging = sum(layer.thickness.value for layer in seen.line.layers if layer.thickness)
+    return float(
+        np.sqrt(
+            (spreading_length(seen, sound) or 0.0) ** 2
+            + (LAGGING_SPREAD * lagging) ** 2
+            + (LENS_SPREAD * station_length) ** 2
+        )
+    )

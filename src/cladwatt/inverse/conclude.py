@@ -13,7 +13,7 @@ from cladwatt.inverse.cautions import (
     remarks_of,
     verdict_caps,
 )
-from cladwatt.inverse.cladding_fin import spread_remark, spreading_length
+from cladwatt.inverse.cladding_fin import edge_spread, spread_remark
 from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
@@ -35,7 +35,7 @@ from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.sound import SoundDraws
 from cladwatt.inverse.station_table import station_table
 from cladwatt.inverse.stretch_results import stretches_of
-from cladwatt.inverse.stretch_side import sides_of
+from cladwatt.inverse.stretch_side import Side, sides_of
 from cladwatt.inverse.tracing import stripe_remarks
 from cladwatt.inverse.verdict import VerdictInputs, as_verdict, variance_shares
 from cladwatt.materials.load import shipped_tables
@@ -191,18 +191,18 @@ def _concluded(
             balance.runs,
             sign=-1 if seen.gain else 1,
             kelvin_per_rise=lens_per_rise,
-            spread_length=spread,
+            spread_length=edge_spread(seen, sound, balance.null.station_length),
             prior=local_prior(kinds),
         )
         weighed = region_kinds(seen, balance, spread, kinds)
+        of_kinds = weighed.runs
+        runs, likely, sides = balance.runs, damage.runs, sides_of(seen, balance)
+        if damage.hidden is not None:
+            runs, likely = (*runs, damage.hidden), (*likely, damage.hidden.probability)
+            sides = (*sides, Side())
+            of_kinds = (*of_kinds, ())
         stretches = stretches_of(
-            seen,
-            balance.runs,
-            damage.runs,
-            loss,
-            seen.perimeter * balance.base,
-            sides_of(seen, balance),
-            weighed.runs,
+            seen, runs, likely, loss, seen.perimeter * balance.base, sides, of_kinds
         )
         local = damage.probability
         level = declared_level(seen.perimeter * balance.untraced_base, sound, aged_level)

@@ -25,9 +25,9 @@ from cladwatt.inverse.local_damage import (
     SCATTER_FACTORS,
     SCATTER_WEIGHTS,
     TREND_SHARE,
-    _Bins,
-    _patch_covariances,
-    _shape,
+    Bins,
+    patch_covariances,
+    spread_step,
 )
 from cladwatt.inverse.null import NullModel
 from cladwatt.types import FloatArray, IntArray
@@ -48,7 +48,7 @@ class SoundProfiles:
     Attributes
     ----------
     null : NullModel
-    bins : _Bins
+    bins : Bins
         Places along the strip.
     values : (n_profiles, n_bins) array
         [K]
@@ -59,7 +59,7 @@ class SoundProfiles:
     """
 
     null: NullModel
-    bins: _Bins
+    bins: Bins
     values: FloatArray
     kelvin_per_rise: float
     spread_length: float
@@ -76,7 +76,7 @@ class SoundProfiles:
         profiles: int = PROFILES,
     ) -> "SoundProfiles":
         """Draw sound profiles of a strip of so many stations."""
-        bins = _Bins.of(np.zeros(stations), null.station_length)
+        bins = Bins.of(np.zeros(stations), null.station_length)
         nothing = np.zeros((profiles, bins.value.size))
         sound = cls(null, bins, nothing, kelvin_per_rise, spread_length)
         factors = random.choice(SCATTER_FACTORS, profiles, p=SCATTER_WEIGHTS)
@@ -111,13 +111,16 @@ class SoundProfiles:
 
     def patches(self) -> list[FloatArray]:
         """Return the covariance of every kind of patches. [K2]"""
-        return _patch_covariances(self.bins, self.null, SCATTER_ALONG * self.kelvin_per_rise)
+        return patch_covariances(self.bins, self.null, SCATTER_ALONG * self.kelvin_per_rise)
 
     def shapes(self, length: float, centre: FloatArray) -> FloatArray:
         """Return unit stretches with these centres [m], spread along, (n, n_bins)."""
         low, high = centre[:, None] - length / 2, centre[:, None] + length / 2
         place = self.bins.place[None, :]
-        return _shape(place, low, high, self.spread_length, self.bins.size)
+        begins, ends = (
+            spread_step(place - edge, self.spread_length, self.bins.size) for edge in (low, high)
+        )
+        return begins - ends
 
     @property
     def middle(self) -> float:

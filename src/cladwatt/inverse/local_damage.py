@@ -2,7 +2,7 @@
 
 Sound: the profile along the strip is a level, a slow trend, patches that hang together over a
 length, and noise of single stations. Damaged: the same plus one stretch, of any length and place,
-that loses more by any factor from 0.15 to twelvefold of the sound loss, spread along by the
+that loses more by any factor from 0.12 to twelvefold of the sound loss, spread along by the
 cladding. Both are weighed by their marginal likelihood, the stretch's place, length and height
 integrated out; so where damage could not show, the probability stays what it was before the image
 was looked at, and where it would show and does not, it falls.
@@ -24,16 +24,23 @@ import numpy as np
 
 from cladwatt.inverse.null import PATCH_LENGTH, NullModel
 from cladwatt.inverse.stretches import Run
-from cladwatt.types import FloatArray
+from cladwatt.types import FloatArray, IntArray
 
-__all__ = ["PRIOR_LOCAL", "LocalDamage", "local_damage"]
+__all__ = [
+    "PRIOR_LOCAL",
+    "Bins",
+    "LocalDamage",
+    "local_damage",
+    "patch_covariances",
+    "spread_step",
+]
 
 PRIOR_LOCAL = 0.25
 """Prior probability of local damage somewhere in a region; assumption."""
 SCATTER_ALONG = 0.05
 """Scatter of a sound pipe's own loss along it, by joints, density and air; assumption."""
 MOST_BINS = 100
-RISES = np.geomspace(0.15, 12.0, 28)
+RISES = np.geomspace(0.12, 12.0, 16)
 """Loss of a stretch over sound, less one; every factor equally likely."""
 SHOULDER = 5.0
 """Templates beside a run count with it where they are not e^5 times likelier than those on it."""
@@ -41,7 +48,13 @@ SHORTEST = 0.02
 """[m]"""
 LONGEST_SHARE = 0.75
 """Of the region; what is longer is ageing throughout."""
-LENGTHS = 14
+MISFIT, MISFIT_ELSEWHERE = 3.0, 7.0
+"""Logarithm of the odds that count for nothing: no sound pipe is quite the model's, the less so
+where nothing stands out by itself; assumption."""
+SPREADS = (0.4, 1.3)
+"""How far edges are spread over what is reckoned, each as likely; assumption."""
+NEGLIGIBLE = 14.0
+"""Logarithm below the best from which a kind of scatter is left out."""
 SCATTER_FACTORS = np.array([0.5, 0.8, 1.25, 2.0, 3.2])
 SCATTER_WEIGHTS = np.array([0.10, 0.30, 0.33, 0.20, 0.07])
 """Patches of a sound pipe over what they are taken for; log-normal, sigma 0.6; assumption."""
@@ -60,11 +73,15 @@ class LocalDamage:
     runs : tuple of float
         Posterior probability of damage at each run.
     elsewhere : float
-        That there is damage which stands out nowhere.
+        That there is damage beside them.
+    hidden : Run or None
+        Where that is, if it is likelier than not: a stretch that shows by its edges rather than
+        by its height.
     """
 
     runs: tuple[float, ...]
     elsewhere: float
+    hidden: Run | None = None
 
     @property
     def probability(self) -> float:
@@ -112,11 +129,34 @@ def local_damage(
         anywhere = np.logaddexp(factors.at, factors.beside)
         # beside a strong run, its own shoulders are no other damage
         at = anywhere if factors.at > factors.beside - SHOULDER else factors.at
-        found.append(_share(prior, at, anywhere))
+        found.append(_share(prior, _heard(at, MISFIT), _heard(anywhere, MISFIT)))
     factors = _factors(profile, null, (), list(runs), sign, kelvin_per_rise, spread_length)
-    # what stands out nowhere may hide, and is no evidence beyond that
-    beside = min(factors.beside, 0.0)
-    return LocalDamage(tuple(found), _share(prior, beside, beside))
+    beside = _heard(factors.beside, MISFIT_ELSEWHERE)
+    elsewhere = _share(prior, beside, beside)
+    hidden = None
+    if elsewhere > 0.5:
+        hidden = _run_at(factors.likeliest, sign * profile, null, elsewhere)
+    return LocalDamage(tuple(found), elsewhere, hidden)
+
+
+def _run_at(
+    span: tuple[float, float], excess: FloatArray, null: NullModel, probability: float
+) -> Run:
+    """Return the stations of a stretch as a run."""
+    last_station = excess.size - 1
+    first = int(np.clip(np.ceil(span[0] / null.station_length), 0, last_station))
+    last = int(np.clip(np.floor(span[1] / null.station_length), first, last_station))
+    inside = np.zeros(excess.size, dtype=bool)
+    inside[first : last + 1] = True
+    contrast = float(np.nanmean(excess[inside]) - np.nanmedian(excess[~inside]))
+    u = max(0.5, excess.size / MOST_BINS / 2)
+    sigmas = contrast / null.run_sigma(last - first + 1)
+    return Run(first, last, contrast, sigmas, u, u, probability)
+
+
+def _heard(factor: float, misfit: float) -> float:
+    """Return what of a Bayes factor's logarithm counts: for damage, what is beyond the misfit."""
+    return max(min(factor, 0.0), factor - misfit)
 
 
 def _share(prior: float, found: float, anywhere: float) -> float:
@@ -132,6 +172,8 @@ class _Factors(NamedTuple):
     """Of damage at the run."""
     beside: float
     """Of damage elsewhere."""
+    likeliest: tuple[float, float] = (0.0, 0.0)
+    """Start and end of the likeliest stretch of all. [m]"""
 
 
 def _factors(
@@ -149,20 +191,21 @@ def _factors(
         margin = max(2, (run.last - run.first) // 4)
         excess[max(0, run.first - margin) : run.last + margin + 1] = np.nan
     excess = _clear_of_gaps(excess, spread_length / null.station_length)
-    bins = _Bins.of(excess, null.station_length)
+    bins = Bins.of(excess, null.station_length)
     if bins.value.size < 8:
         return _Factors(0.0, -np.inf) if wanted else _Factors(-np.inf, 0.0)
-    templates, weights, spans = _templates(bins, spread_length)
-    damage = _log_factors(bins, templates, null, kelvin_per_rise)
+    edges, weights = _edges(bins)
+    logarithm = np.log(weights) + _log_factors(bins, edges, null, kelvin_per_rise, spread_length)
     at = np.zeros(weights.size, dtype=bool)
     for run in wanted:
         low = (run.first - 0.5) * null.station_length
         high = (run.last + 0.5) * null.station_length
-        at |= (spans[:, 0] < high) & (spans[:, 1] > low)
-    logarithm = np.log(weights) + damage
+        at |= (bins.edge[edges[:, 0]] < high) & (bins.edge[edges[:, 1]] > low)
+    best = int(np.argmax(logarithm))
     return _Factors(
         at=_log_sum(logarithm[at]),
         beside=_log_sum(logarithm[~at]),
+        likeliest=(float(bins.edge[edges[best, 0]]), float(bins.edge[edges[best, 1]])),
     )
 
 
@@ -181,16 +224,19 @@ def _clear_of_gaps(values: FloatArray, reach: float) -> FloatArray:
 
 
 @dataclass(frozen=True)
-class _Bins:
+class Bins:
     """Stations taken together, without gaps: place [m], value [K], stations in each."""
 
     place: FloatArray
     value: FloatArray
     number: FloatArray
     size: float
+    edge: FloatArray
+    """Where a stretch may begin or end, one more than bins. [m]"""
 
     @classmethod
-    def of(cls, values: FloatArray, station_length: float) -> "_Bins":
+    def of(cls, values: FloatArray, station_length: float) -> "Bins":
+        """Take stations together, at most `MOST_BINS` of them."""
         step = max(1, -(-values.size // MOST_BINS))
         padded = np.full(-(-values.size // step) * step, np.nan)
         padded[: values.size] = values
@@ -200,98 +246,123 @@ class _Bins:
         kept = number > 0
         total = np.where(usable, table, 0.0).sum(axis=1)
         place = (np.arange(table.shape[0]) * step + (step - 1) / 2) * station_length
-        return cls(place[kept], total[kept] / number[kept], number[kept], step * station_length)
+        place, size = place[kept], step * station_length
+        edge = np.append(place - size / 2, place[-1:] + size / 2)
+        return cls(place, total[kept] / number[kept], number[kept], size, edge)
 
 
-def _templates(bins: _Bins, spread_length: float) -> tuple[FloatArray, FloatArray, FloatArray]:
-    """Return shapes of damage (m, n), their prior weights (m,) and their spans (m, 2) [m]."""
-    start, end = bins.place[0] - bins.size / 2, bins.place[-1] + bins.size / 2
-    longest = LONGEST_SHARE * (end - start)
-    lengths = np.geomspace(min(max(SHORTEST, bins.size), longest), longest, LENGTHS)
-    spans, weights = [], []
-    for length in lengths:
-        number = max(2, int(np.ceil((end - start) / max(length / 3, bins.size))))
-        centres = start + (np.arange(number) + 0.5) * (end - start) / number
-        spans.append(np.stack([centres - length / 2, centres + length / 2], axis=1))
-        weights.append(np.full(number, 1 / number / LENGTHS))
-    span = np.concatenate(spans)
-    shapes = _shape(bins.place[None, :], span[:, :1], span[:, 1:], spread_length, bins.size)
-    return shapes, np.concatenate(weights), span
+def _edges(bins: Bins) -> tuple[IntArray, FloatArray]:
+    """Return first and last edge of every stretch there could be (m, 2), and their priors (m,).
+
+    Lengths are likely by their logarithm, places alike.
+    """
+    count = bins.value.size
+    first, last = np.triu_indices(count + 1, 1)
+    number = last - first
+    longest = max(1, round(LONGEST_SHARE * count))
+    shortest = min(longest, max(1, round(SHORTEST / bins.size)))
+    kept = (number >= shortest) & (number <= longest)
+    first, last, number = first[kept], last[kept], number[kept]
+    weights = 1.0 / (number * (count - number + 1))
+    return np.stack([first, last], axis=1), weights / weights.sum()
 
 
-def _shape(
-    x: FloatArray, low: FloatArray, high: FloatArray, spread_length: float, bin_size: float
-) -> FloatArray:
-    """Return a unit stretch after it has spread along the cladding as along a fin."""
+def spread_step(ahead: FloatArray, spread_length: float, bin_size: float) -> FloatArray:
+    """Return a unit step spread along the cladding as along a fin.
+
+    Parameters
+    ----------
+    ahead : array
+        Distance beyond the step. [m]
+    spread_length : float
+        Decay length; not told from a sharp step below a quarter of a bin. [m]
+    bin_size : float
+        [m]
+    """
     if spread_length < 0.25 * bin_size:
-        inside = (np.minimum(high, x + bin_size / 2) - np.maximum(low, x - bin_size / 2)) / bin_size
-        return np.asarray(np.clip(inside, 0.0, 1.0))
+        return np.asarray(np.clip(ahead / bin_size + 0.5, 0.0, 1.0))
+    far = 0.5 * np.exp(-np.abs(ahead) / spread_length)
+    return np.asarray(np.where(ahead > 0, 1 - far, far))
 
-    def step(distance: FloatArray) -> FloatArray:
-        far = 0.5 * np.exp(-np.abs(distance) / spread_length)
-        return np.where(distance > 0, 1 - far, far)
 
-    return np.asarray(step(x - low) - step(x - high))
+def _steps(bins: Bins, spread_length: float) -> FloatArray:
+    """Return a step at each edge, (n + 1, n)."""
+    return spread_step(bins.place[None, :] - bins.edge[:, None], spread_length, bins.size)
 
 
 def _log_factors(
-    bins: _Bins, templates: FloatArray, null: NullModel, kelvin_per_rise: float
+    bins: Bins, edges: IntArray, null: NullModel, kelvin_per_rise: float, spread_length: float
 ) -> FloatArray:
-    """Return the logarithm of each template's Bayes factor, (m,).
+    """Return the logarithm of each stretch's Bayes factor against the sound pipe, (m,).
 
     Averaged over how smooth patches are, how long, and how strong; factors of strength share
-    the eigenvectors of a covariance.
+    the eigenvectors of a covariance. A stretch is the difference of two steps, so what all of
+    them fit follows from what the steps fit.
     """
     white = null.station_sigma / np.sqrt(bins.number)
     # level and trend are free: what lies in their direction is no evidence
     basis = np.stack([np.ones_like(white), bins.place - bins.place.mean()]) / white
     free_sigma = np.array([1e3, TREND_SHARE * null.scene_sigma / max(np.ptp(bins.place), 1e-9)])
-    sound, ratio = [], []
-    for covariance in _patch_covariances(bins, null, SCATTER_ALONG * kelvin_per_rise):
+    steps = [_steps(bins, share * spread_length) / white for share in SPREADS]
+    first, last = edges.T
+    sound: list[float] = []
+    fits: list[tuple[FloatArray, FloatArray]] = []
+    for covariance in patch_covariances(bins, null, SCATTER_ALONG * kelvin_per_rise):
         values, vectors = np.linalg.eigh(covariance / np.outer(white, white))
         values = np.maximum(values, 0.0)
         data = (bins.value / white) @ vectors
-        shapes = (templates / white) @ vectors
+        shapes = [step @ vectors for step in steps]
         free = (basis @ vectors) * free_sigma[:, None]
         for factor, weight in zip(SCATTER_FACTORS, SCATTER_WEIGHTS, strict=True):
             inverse = 1 / (1 + factor**2 * values)
-            data_left, shapes_left, log_det = _without_free(data, shapes, free, inverse)
-            fit = (data * data_left * inverse).sum() - np.log(inverse).sum() + log_det
-            sound.append(np.log(weight) - 0.5 * fit)
-            along = shapes @ (data_left * inverse)
-            power = (shapes * shapes_left * inverse).sum(axis=1)
-            ratio.append(_over_rises(along, power, kelvin_per_rise * RISES))
-    weights = np.exp(np.array(sound) - max(sound))
-    weights /= weights.sum()
-    return _averaged(np.array(ratio), weights)
+            inner = np.eye(free.shape[0]) + (free * inverse) @ free.T
+            left = data - np.linalg.solve(inner, (free * inverse) @ data) @ free
+            fit = (data * left * inverse).sum() - np.log(inverse).sum()
+            fit += float(np.linalg.slogdet(inner)[1])
+            for shape in shapes:
+                sound.append(float(np.log(weight / len(shapes)) - 0.5 * fit))
+                along = shape @ (left * inverse)
+                power = _power(shape, free, inner, inverse)
+                own = np.diag(power)
+                fits.append(
+                    (along[first] - along[last], own[first] + own[last] - 2 * power[first, last])
+                )
+    return _over_scatter(np.array(sound), fits, kelvin_per_rise)
 
 
-def _averaged(logarithms: FloatArray, weights: FloatArray) -> FloatArray:
-    """Return the logarithm of the weighted mean over the first axis."""
-    top = logarithms.max(axis=0)
-    return np.asarray(top + np.log(np.maximum(weights @ np.exp(logarithms - top), 1e-300)))
+def _over_scatter(
+    sound: FloatArray, fits: list[tuple[FloatArray, FloatArray]], kelvin_per_rise: float
+) -> FloatArray:
+    """Average over the kinds of scatter; those that explain nothing even with damage left out."""
+    heights = kelvin_per_rise * RISES
+    best = np.array(
+        [
+            float(np.max(np.maximum(along, 0.0) ** 2 / np.maximum(2 * power, 1e-12)))
+            for along, power in fits
+        ]
+    )
+    kept = np.flatnonzero(sound + best > (sound + best).max() - NEGLIGIBLE)
+    weights = sound - np.logaddexp.reduce(sound)
+    total = np.full(fits[0][0].size, -np.inf)
+    for number in kept:
+        along, power = fits[number]
+        exponent = heights[:, None] * along - 0.5 * heights[:, None] ** 2 * power
+        top = exponent.max(axis=0)
+        mean = top + np.log(np.exp(exponent - top).mean(axis=0))
+        total = np.logaddexp(total, weights[number] + mean)
+    return total
 
 
-def _without_free(
-    data: FloatArray,
-    shapes: FloatArray,
-    free: FloatArray,
-    inverse: FloatArray,
-) -> tuple[FloatArray, FloatArray, float]:
-    """Take out of data and shapes what the free level and trend explain."""
-    inner = np.eye(free.shape[0]) + (free * inverse) @ free.T
-    fit = np.linalg.solve(inner, (free * inverse) @ data)
-    fits = np.linalg.solve(inner, (free * inverse) @ shapes.T)
-    return data - fit @ free, shapes - fits.T @ free, float(np.linalg.slogdet(inner)[1])
+def _power(
+    shapes: FloatArray, free: FloatArray, inner: FloatArray, inverse: FloatArray
+) -> FloatArray:
+    """Return the products of shapes under the inverse covariance, level and trend taken out."""
+    weighted = shapes * inverse
+    by_free = weighted @ free.T
+    return np.asarray(weighted @ shapes.T - by_free @ np.linalg.solve(inner, by_free.T))
 
 
-def _over_rises(along: FloatArray, power: FloatArray, heights: FloatArray) -> FloatArray:
-    """Return the log of the likelihood ratio averaged over a stretch's heights, (m,)."""
-    exponent = heights[:, None] * along - 0.5 * heights[:, None] ** 2 * power
-    return _averaged(exponent, np.full(heights.size, 1 / heights.size))
-
-
-def _patch_covariances(bins: _Bins, null: NullModel, scatter: float) -> list[FloatArray]:
+def patch_covariances(bins: Bins, null: NullModel, scatter: float) -> list[FloatArray]:
     """Return the covariance of patches and mirrored scene for each smoothness and length. [K2]
 
     Rough (exponential), or smooth (Matern 5/2) with a rough hundredth.

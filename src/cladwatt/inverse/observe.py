@@ -315,9 +315,11 @@ def _contrast(seen: Seen, bands: BoolArray, is_wet: bool) -> _Contrast:
     beside = beside_components(seen, profile, sign)
     searched = beside.searched(profile, sign)
     carries = beside.sound(searched)
-    # a wet surface dries in patches, which are no damage
     runs: tuple[Run, ...] = ()
-    if not is_wet:
+    if is_wet:
+        # it dries in patches, which are no damage: nothing is searched
+        searched = np.full_like(searched, np.nan)
+    else:
         found = find_runs(
             searched, null, sign=sign, diameter_stations=seen.width, level_from=carries
         )

@@ -13,7 +13,7 @@ import numpy as np
 
 from cladwatt.errors import RegionError
 from cladwatt.inverse.advice import measurements_of, ranked_measurements
-from cladwatt.inverse.cladding_fin import spreading_length
+from cladwatt.inverse.cladding_fin import edge_spread
 from cladwatt.inverse.conclude import conclude, moved
 from cladwatt.inverse.detectable import SoundProfiles, smallest_rise
 from cladwatt.inverse.draws import DrawBook
@@ -271,7 +271,7 @@ def _concluded(observed: Observed, book: DrawBook, distance: float) -> LinePlan:
         seen.strip.x.size,
         book.generator(owner, "sound_profiles"),
         kelvin_per_rise=lens,
-        spread_length=spreading_length(seen, balance.sound) or 0.0,
+        spread_length=edge_spread(seen, balance.sound, balance.null.station_length),
     )
     loss = abs(result.sound_loss.median) if result.sound_loss is not None else float("nan")
     diameter = float(np.median(seen.diameter))
