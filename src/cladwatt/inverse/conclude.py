@@ -13,7 +13,7 @@ from cladwatt.inverse.cautions import (
     remarks_of,
     verdict_caps,
 )
-from cladwatt.inverse.cladding_fin import edge_spread, spread_remark
+from cladwatt.inverse.cladding_fin import edge_spread, spread_remark, spreading_length
 from cladwatt.inverse.declared import declared_condition, declared_level
 from cladwatt.inverse.face import COLDEST, FaceDraws, surface_temperature_draws
 from cladwatt.inverse.joint import JointUpdate
