@@ -78,7 +78,8 @@ def region(region_id="north-1", *, tag="NS-101", frame_id="f03", gain=False, kno
         stretches = (
             Stretch("s1", Interval(3.0, 2.93, 3.06), Interval(4.2, 4.12, 4.29), 0.985,
                     interval(252, 214, 297), interval(158, 131, 189), 1.0,
-                    ((180.0, 188.0), (252.0, 188.0), (252.0, 212.0), (180.0, 212.0))),
+                    ((180.0, 188.0), (252.0, 188.0), (252.0, 212.0), (180.0, 212.0)),
+                    kinds=(("wet", 0.52), ("compressed", 0.41), ("void", 0.07))),
         )  # fmt: skip
     reason = reason or Remark("quantified.image_carries", (("relative_width", 0.33),))
     values = {
@@ -98,6 +99,7 @@ def region(region_id="north-1", *, tag="NS-101", frame_id="f03", gain=False, kno
         "probability_damaged": damaged, "probability_local": damaged, "probability_aged": 0.01,
         "verdict": Verdict(level, reason, advice), "stretches": stretches, "stations": table,
         "variance_shares": (("band_emissivity", 0.44), ("convection", 0.31)),
+        "kinds": (("bare", 0.85), ("missing_sector", 0.10), ("sound", 0.05)),
         "air_temperature": 293.15, "strip_temperature": field_of(table),
     }  # fmt: skip
     return RegionResult(**(values | rest))

@@ -300,3 +300,10 @@ def test_what_was_read_from_a_declared_file_is_declared(invented):
     words = Page(report_html(replace(invented.assessment(), assumptions=(band,)))).words
     assert "response.csv" in words.split("Declared for this survey")[1]
     assert "response.csv" not in words.split("Declared for this survey")[0]
+
+
+def test_kinds_stand_with_bars_and_words(html, page):
+    assert "Likely kind of damage" in page.words
+    assert "the image cannot tell which" in page.words
+    assert "bare pipe" in page.words
+    assert 'class="bar" style="width:6.80em"' in html

@@ -9,6 +9,7 @@ from cladwatt.report.findings import (
     ranked_findings,
     where_damaged,
 )
+from cladwatt.report.kind_words import kinds_line
 from cladwatt.report.numbers import (
     CONSOLE,
     format_interval,
@@ -110,9 +111,11 @@ def _table(findings: tuple[Finding, ...], width: int, language: str) -> list[str
     sizes[1] = min(sizes[1], max(spare - sizes[0], 11))
     sizes[0] = min(sizes[0], max(spare - sizes[1], 8))
     lines = []
-    for row in [heads, *rows]:
+    kinds = ["", *(kinds_line(finding.region, language) for finding in findings)]
+    for row, words in zip([heads, *rows], kinds, strict=True):
         cells = [_short(cell, size).ljust(size) for cell, size in zip(row, sizes, strict=True)]
         lines.append(("  " + "  ".join(cells)).rstrip()[:width])
+        lines += _wrapped(words, width, "    ")
     return lines
 
 
@@ -158,7 +161,15 @@ def _reason(item: LeftOut, language: str) -> str:
 
 
 def _item(name: str, reason: str, width: int) -> list[str]:
-    # A number and its percent sign stay on one line.
-    words = f"{name}: {reason}".replace(" %", "\u00a0%")
-    lines = textwrap.wrap(words, width, initial_indent="  ", subsequent_indent="    ")
+    return _wrapped(f"{name}: {reason}", width, "  ")
+
+
+def _wrapped(words: str, width: int, indent: str) -> list[str]:
+    """Return words on lines; a number and its percent sign stay on one."""
+    lines = textwrap.wrap(
+        words.replace(" %", "\u00a0%"),
+        width,
+        initial_indent=indent,
+        subsequent_indent=indent + "  ",
+    )
     return [line.replace("\u00a0", " ") for line in lines]

@@ -6,6 +6,7 @@ from markupsafe import Markup
 
 from cladwatt.quantities import Remark
 from cladwatt.report.findings import Finding, finding_of, signed, unique_remarks, where_damaged
+from cladwatt.report.kind_words import KindsView, kinds_views
 from cladwatt.report.numbers import (
     PRINT,
     celsius,
@@ -65,6 +66,7 @@ class RegionView:
     svg: Markup
     figures: tuple[tuple[str, str], ...]
     stretches: tuple[tuple[str, ...], ...]
+    kinds: tuple[KindsView, ...]
     verdict: str
     level: str
     reason: str
@@ -147,6 +149,7 @@ def region_view(region: RegionResult, anchor: str, svg: str, language: str) -> R
         svg=Markup(svg),
         figures=tuple(_figures(region, language)),
         stretches=tuple(_stretch_rows(region, language)),
+        kinds=kinds_views(region, language),
         verdict=_verdict(region, language),
         level=region.verdict.level.replace(" ", "-"),
         reason=sentence(region.verdict.reason, language),

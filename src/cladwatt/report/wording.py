@@ -12,7 +12,15 @@ from typing import Any
 from cladwatt.errors import InputError
 from cladwatt.quantities import Remark
 
-__all__ = ["has_wording", "known_languages", "phrases", "quantity_name", "sentence", "text"]
+__all__ = [
+    "has_wording",
+    "kind_name",
+    "known_languages",
+    "phrases",
+    "quantity_name",
+    "sentence",
+    "text",
+]
 
 _OPTIONAL = re.compile(r"\[\[(.*?)\]\]", re.DOTALL)
 
@@ -143,6 +151,12 @@ def sentence(remark: Remark, language: str = "en") -> str:
         values = ", ".join(f"{name} {value}" for name, value in remark.parameters)
         return f"{remark.key} ({values})" if values else remark.key
     return text(remark.key, language, **dict(remark.parameters))
+
+
+def kind_name(name: str, language: str = "en") -> str:
+    """Return the readable name of a kind of damage; unknown names lose their underscores."""
+    template = _template(f"kind.{name}", language)
+    return template if template is not None else name.replace("_", " ")
 
 
 def quantity_name(name: str, language: str = "en") -> str:
