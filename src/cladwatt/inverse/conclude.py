@@ -22,6 +22,7 @@ from cladwatt.inverse.kinds import KindShares, local_prior, region_kinds, shares
 from cladwatt.inverse.line_profile import line_profile
 from cladwatt.inverse.local_damage import local_damage
 from cladwatt.inverse.observe import Balance, Observed
+from cladwatt.inverse.recovered import recovered_of
 from cladwatt.inverse.resistance import resistances_of
 from cladwatt.inverse.result import (
     Interval,
@@ -178,11 +179,12 @@ def _concluded(
     stretches: tuple[Stretch, ...] = ()
     whole: KindShares = ()
     local = aged = None
-    loss = None
+    loss = recovered = None
     lens_per_rise = kelvin_of_rise(seen, balance.sound_at, balance.base)
     if seen.diameter_known:
         loss = seen.perimeter[:, None] * balance.flux
         draws |= _loss_draws(seen.perimeter * mean_flux, balance, draws["length"])
+        recovered = recovered_of(seen, balance, sound, lens_per_rise)
         kinds = shipped_tables().damage_kinds if kinds is None else kinds
         spread = spreading_length(seen, sound) or 0.0
         damage = local_damage(
@@ -223,7 +225,7 @@ def _concluded(
         refusals=refusals_of(seen, balance.rain),
     )
     resistances = resistances_of(seen, draws.get("heat_loss"), sound)
-    bare = _without_balance(seen, station_table(seen, loss, sound))
+    bare = _without_balance(seen, station_table(seen, loss, sound, recovered))
     declared_loss = _interval(draws, "declared_loss")
     stripe = balance.stripe
     traced = () if stripe is None else stripe_remarks(stripe, seen.perimeter * mean_flux)

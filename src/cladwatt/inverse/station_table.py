@@ -4,6 +4,7 @@ import numpy as np
 
 from cladwatt.flags import StationFlag
 from cladwatt.inverse.law_spread import at_medians
+from cladwatt.inverse.recovered import Recovered
 from cladwatt.inverse.result import StationTable
 from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.sound import SoundDraws, outside_film
@@ -17,7 +18,12 @@ __all__ = ["station_table"]
 INFEASIBLE_SHARE = 0.05
 
 
-def station_table(seen: Seen, loss: FloatArray | None, sound: SoundDraws | None) -> StationTable:
+def station_table(
+    seen: Seen,
+    loss: FloatArray | None,
+    sound: SoundDraws | None,
+    recovered: Recovered | None = None,
+) -> StationTable:
     """Return the figures along a strip.
 
     Parameters
@@ -26,6 +32,9 @@ def station_table(seen: Seen, loss: FloatArray | None, sound: SoundDraws | None)
     loss : (count, n_stations) array or None
         Draws of the loss; None where no diameter or wind is known. [W/m]
     sound : SoundDraws or None
+    recovered : Recovered or None
+        Loss and resistance with what smeared them undone; as each station shows by itself
+        without.
 
     Returns
     -------
@@ -35,8 +44,12 @@ def station_table(seen: Seen, loss: FloatArray | None, sound: SoundDraws | None)
     """
     nothing = np.full((3, seen.usable.size), np.nan)
     temperature = _quantiles(seen.drawn.surface_temperature)
-    losses = nothing if loss is None else _quantiles(loss)
-    resistance = nothing if loss is None else _resistances(seen, loss)
+    if recovered is not None:
+        losses = _along(_quantiles(recovered.loss), seen, recovered)
+        resistance = _recovered_resistances(seen, recovered)
+    else:
+        losses = nothing if loss is None else _quantiles(loss)
+        resistance = nothing if loss is None else _resistances(seen, loss)
     ratio = nothing[1]
     if sound is not None:
         ratio = resistance[1] / float(np.median(sound.specified_resistance))
@@ -82,6 +95,27 @@ def _resistances(seen: Seen, loss: FloatArray) -> FloatArray:
         conductance = loss / (inside[:, None] - seen.drawn.surface_temperature)
         conductance = outside_film(conductance, seen.line_draws)
         return np.asarray(1 / np.maximum(_quantiles(conductance), 0.0)[::-1])
+
+
+def _recovered_resistances(seen: Seen, recovered: Recovered) -> FloatArray:
+    if recovered.conductance is None:
+        return np.full((3, seen.usable.size), np.nan)
+    conductance = _along(_quantiles(recovered.conductance), seen, recovered)
+    with np.errstate(divide="ignore"):
+        return np.asarray(1 / np.maximum(conductance, 0.0)[::-1])
+
+
+def _along(values: FloatArray, seen: Seen, recovered: Recovered) -> FloatArray:
+    """Return figures of bins at the stations, NaN in gaps."""
+    step = recovered.profile.step
+    stations = np.arange(seen.usable.size)
+    starts = stations[::step]
+    number = np.add.reduceat(seen.usable.astype(float), starts)
+    places = np.add.reduceat(np.where(seen.usable, stations, 0.0), starts)
+    seen_bins = number > 0
+    places = places[seen_bins] / number[seen_bins]
+    found = np.stack([np.interp(stations, places, row[seen_bins]) for row in values])
+    return np.where(seen.usable, found, np.nan)
 
 
 def _mean_across(values: FloatArray) -> FloatArray:
