@@ -28,6 +28,7 @@ from cladwatt.inverse import (
     observe,
     opening,
     plan,
+    profile,
     rain,
     references,
     steady_state,
@@ -44,7 +45,7 @@ from cladwatt.inverse import (
 from cladwatt.materials.load import shipped_tables
 from cladwatt.materials.tables import fitting_equivalent_length, hanger_share
 from cladwatt.measure import strip
-from cladwatt.physics import convection_spread, yawed_wind
+from cladwatt.physics import convection_spread, spreading, yawed_wind
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.physics.field_methods import MINIMUM_SEPARATION
 from cladwatt.survey import sun_builder
@@ -162,6 +163,10 @@ VALUES = [
     f"band to band | u {percent(tracing.UNEVEN_U)}; u {percent(tracing.PATCH_U)} |",
     f"what is mirrored | u {tracing.MIRRORED_U:g} K, times",
     f"patches hang together | {null.PATCH_LENGTH} m |",
+    f"bins along a strip at most | {profile.MOST_BINS} |",
+    f"degrees of freedom of the differences | {profile.FREEDOM:g} |",
+    f"least scatter of sound supply over {null.PATCH_LENGTH} m | {percent(profile.SCATTER_ALONG)} |",
+    f"radiance within a measuring spot | {percent(spreading.SPOT_SHARE)} |",
     f"prior of local damage in a region | {local_damage.PRIOR_LOCAL} |",
     f"| {local_damage.RISES[0]} to {local_damage.RISES[-1]:.0f}, all factors equally likely |",
     f"| {local_damage.SHORTEST} m to {local_damage.LONGEST_SHARE} of the region,",

@@ -93,26 +93,28 @@ def test_a_jump_stays_sharp():
     assert middle[edge + 1] > 0.9 * 12.0
 
 
-@pytest.mark.parametrize("kind", ["sound", "damaged"])
-def test_bands_hold_the_truth_about_as_often_as_they_say(kind):
-    supplied, left = [], []
-    for seed in range(40):
-        random = np.random.default_rng([seed, len(kind)])
+def coverage(damaged):
+    """Share of bins whose band holds the truth: of the supply, and of what leaves."""
+    held = []
+    for seed in range(30):
+        random = np.random.default_rng([seed, damaged])
         # lagging that scatters by 5 % along itself, as no two joints and densities are the same
         truth = along(random, 0.05 * RISE)
-        if kind == "damaged":
+        if damaged:
             width = random.choice([0.03, 0.1, 0.3, 1.0])
             truth += defect(random.uniform(0.6, 1.4), width, RISE * random.uniform(0.5, 5))
         found = recover(seen_by_a_camera(truth, random), seed)
-        for profile, real, held in (
-            (found.supply, truth, supplied),
-            (found.surface, fin(truth, math.sqrt(0.016)), left),
-        ):
+        for profile, real in ((found.supply, truth), (found.surface, fin(truth, math.sqrt(0.016)))):
             low, high = np.percentile(profile, [2.5, 97.5], axis=0)
             expected = LEVEL + binned(real, found.step)
             held.append(np.mean((expected >= low) & (expected <= high)))
-    assert 0.90 <= np.mean(supplied) <= 0.99
-    assert 0.90 <= np.mean(left) <= 0.99
+    return np.mean(np.reshape(held, (-1, 2)), axis=0)
+
+
+def test_bands_hold_the_truth_about_as_often_as_they_say():
+    for damaged in (0, 1):
+        found = coverage(damaged)
+        assert np.all((found >= 0.90) & (found <= 0.99))
 
 
 def test_heat_is_conserved_draw_by_draw():
@@ -127,21 +129,21 @@ def test_heat_is_conserved_draw_by_draw():
 
 def test_a_gap_is_open_between_what_both_sides_hold():
     value = seen_by_a_camera(np.zeros(STATIONS), np.random.default_rng(9))
-    value[180:240] = np.nan
+    value[140:260] = np.nan
     found = recover(value)
     width = np.ptp(np.percentile(found.supply, [2.5, 97.5], axis=0), axis=0)
-    assert width[50:55].mean() > 1.3 * width[15:35].mean()
+    assert width[44:56].mean() > 1.5 * width[8:28].mean()
 
 
-def test_more_noise_more_smoothing():
-    truth = LEVEL + fin(defect(1.0, 0.3, 1.0), 0.126)
-    heights = []
-    for noise in (0.005, 5.0):
-        value = truth + noise * np.random.default_rng(4).standard_normal(STATIONS)
-        found = recover(value, patches=0.01, noise=noise)
-        heights.append(np.ptp(np.median(found.supply, axis=0)))
-    assert heights[0] > 0.8
-    assert heights[1] < 0.5 * heights[0]
+def test_noise_is_not_taken_for_structure():
+    truth = defect(1.0, 0.3, 5.0)
+    value = LEVEL + fin(truth, 0.126) + NOISE * np.random.default_rng(4).standard_normal(STATIONS)
+    found = recover(value, patches=0.01)
+    error = np.std(np.median(found.supply, axis=0) - LEVEL - binned(truth, found.step))
+    # the fin equation turned over, station by station
+    direct = value - LEVEL
+    direct[1:-1] -= (0.126 / STEP) ** 2 * np.diff(value, 2)
+    assert np.std(binned(direct - truth, found.step)) > 20 * error
 
 
 def test_too_little_seen_gives_no_profile():

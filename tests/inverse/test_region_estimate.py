@@ -106,10 +106,10 @@ def test_stations_carry_the_same_numbers(bench, hall_with):
     result = bench.alone(bench.lens(float(sound.surface_temperature)))
     table = result.stations
     assert table.surface_temperature == pytest.approx(float(sound.surface_temperature), abs=1e-3)
-    # the middle of 200 draws lies half a draw from the median
-    assert table.heat_loss == pytest.approx(float(sound.heat_loss), rel=2e-3)
+    # the middle of 200 draws of the profile scatters about it by a tenth of its band
+    assert table.heat_loss == pytest.approx(float(sound.heat_loss), rel=4e-3)
     assert table.sound_loss == pytest.approx(float(sound.heat_loss), rel=1e-6)
-    assert table.resistance_ratio == pytest.approx(1 / 1.15, rel=2e-3)
+    assert table.resistance_ratio == pytest.approx(1 / 1.15, rel=4e-3)
     assert np.all(table.heat_loss_low < table.heat_loss)
     assert np.all(table.resistance_low < table.resistance_high)
     assert np.all(table.flags == 0)
