@@ -165,7 +165,7 @@ VALUES = [
     f"patches hang together | {null.PATCH_LENGTH} m |",
     f"bins along a strip at most | {profile.MOST_BINS} |",
     f"degrees of freedom of the differences | {profile.FREEDOM:g} |",
-    f"least scatter of sound supply over {null.PATCH_LENGTH} m | {percent(profile.SCATTER_ALONG)} |",
+    f"scatter of sound supply over {null.PATCH_LENGTH} m | {percent(profile.SCATTER_ALONG)} |",
     f"radiance within a measuring spot | {percent(spreading.SPOT_SHARE)} |",
     f"prior of local damage in a region | {local_damage.PRIOR_LOCAL} |",
     f"| {local_damage.RISES[0]} to {local_damage.RISES[-1]:.0f}, all factors equally likely |",

@@ -193,7 +193,7 @@ def _reported(explanation: "Explanation", width: int) -> Iterator[str]:
     if found is None:
         yield from ["", text("explain.not_reported")]
         return
-    yield from ["", text("explain.reported")]
+    yield from ["", *wrap(text("explain.reported"), width)]
     rows = [("explain.reported_loss", format_interval(Interval(*found.heat_loss), "W/m", CONSOLE))]
     if math.isfinite(found.sound_loss):
         rows.append(("explain.reported_sound", f"{found.sound_loss:.4g} W/m"))
