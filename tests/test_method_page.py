@@ -218,7 +218,7 @@ VALUES = [
     f"of a clad line for the component at hand | {percent(components.PRINTED_U)} |",
     f"for the component at hand, beyond its u | {percent(components.SHAPE_U)} |",
     f"loss by what is seen of it | {percent(components.UNSEEN_U)} |",
-    f"by its silhouette, and by print | {percent(component_estimates.SILHOUETTE_U)} each |",
+    f"by its silhouette, by print or by both | {percent(component_estimates.AREA_U)} |",
     f"{percent(hanger_share(indoors=True).value)} of the line's loss indoors, "
     f"{percent(hanger_share(indoors=False).value)} outdoors",
     f"the {components.FAR_PERCENTILE:.0f}th percentile of the outline",

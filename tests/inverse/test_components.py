@@ -6,7 +6,7 @@ import numpy as np
 import pytest
 
 from cladwatt.inverse.bare import BARE_EMISSIVITY
-from cladwatt.inverse.component_estimates import weighed
+from cladwatt.inverse.component_estimates import AREA_U, weighed
 from cladwatt.inverse.components import SHAPE_U, estimate_component
 from cladwatt.inverse.sound import sound_draws
 from cladwatt.physics.surface_balance import surface_heat_flux
@@ -122,7 +122,11 @@ def test_a_cover_is_read_off_the_image_too(bench, outline):
     flux = float(surface_heat_flux(sized.surface_temperature.median, bench.exchange))
     both = np.sqrt((side + ends) * np.pi * float(np.median(pipe.diameter)) * 1.0)
     assert sized.image_loss.median == pytest.approx(both * flux, rel=0.08)
-    assert unsized.image_loss.relative_width > sized.image_loss.relative_width
+    # a second guess of the surface makes it no surer
+    assert sized.image_loss.relative_width == pytest.approx(
+        unsized.image_loss.relative_width, rel=0.05
+    )
+    assert sized.image_loss.high / sized.image_loss.median > np.exp(1.9 * AREA_U)
     # print is the same however cool the cover is; what is said is not
     assert cool.table_loss == sized.table_loss
     assert cool.heat_loss.median < 0.7 * sized.heat_loss.median

@@ -12,11 +12,9 @@ from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["BodySize", "body_size", "covered_area", "weighed"]
 
-SILHOUETTE_U = 0.3
-"""Relative standard uncertainty of a cover's surface by what is seen of it: neck and handwheel
-stand towards the camera or away from it; assumption."""
-PUBLISHED_U = 0.3
-"""The same of a surface by the printed length; assumption."""
+AREA_U = 0.3
+"""Relative standard uncertainty of a cover's surface, by what is seen of it or by the printed
+length: neither knows how closely it follows the body, so both are off together; assumption."""
 SMALLEST_SHARE = 0.05
 """Draws of less than this share of the median's size count as it: a logarithm is taken."""
 
@@ -113,18 +111,19 @@ def covered_area(
     By the silhouette: a body of revolution about the pipe has pi times its silhouette for side
     and two ring-shaped ends. By print: a cover adds lagging all round the body as lagging does
     around the pipe, so that it has the surface of as much lagged pipe as the body has of bare.
-    Where both are known their geometric mean counts.
+    Where both are known their geometric mean counts, no better known than either.
     """
     found = []
     if size is not None:
         over = size.silhouette / size.length
         ends = 0.5 * math.pi * np.maximum(over**2 - diameter**2, 0.0)
-        spread = np.exp(SILHOUETTE_U * book.normal(owner, "silhouette"))
-        found.append((math.pi * size.silhouette + ends) * spread)
+        found.append(math.pi * size.silhouette + ends)
     if published_length is not None:
-        spread = np.exp(PUBLISHED_U * book.normal(owner, "published_area"))
-        found.append(math.pi * diameter * published_length * spread)
-    return np.asarray(np.prod(found, axis=0) ** (1 / len(found))) if found else None
+        found.append(math.pi * diameter * published_length)
+    if not found:
+        return None
+    spread = np.exp(AREA_U * book.normal(owner, "cover_area"))
+    return np.asarray(np.prod(found, axis=0) ** (1 / len(found)) * spread)
 
 
 def weighed(printed: FloatArray | None, image: FloatArray | None) -> FloatArray | None:
