@@ -127,6 +127,24 @@ def test_heat_is_conserved_draw_by_draw():
     np.testing.assert_allclose(whole.supply.mean(axis=1), whole.surface.mean(axis=1), atol=1e-9)
 
 
+def test_where_the_sheet_ends_nothing_is_taken_from_beside():
+    place = np.arange(STATIONS)
+    opened = (place >= 190) & (place < 210)
+    random = np.random.default_rng(11)
+    value = LEVEL + np.where(opened, 40.0, 0.0) + NOISE * random.standard_normal(STATIONS)
+    lows = []
+    for sheet_ends in (opened, None):
+        found = recover_profile(
+            value, np.full(STATIONS, STEP), null=NullModel(NOISE, PATCHES, 0.0, 0.0, STEP),
+            blur_sigma=0.3, spreading=ALUMINIUM, kelvin_per_rise=RISE,
+            generator=np.random.default_rng(1), count=200, opened=sheet_ends,
+        )  # fmt: skip
+        lows.append(float(np.median(found.supply, axis=0).min()) - LEVEL)
+    assert lows[0] > -1.0
+    # a sheet that went on could not show so sharp an edge but for a hole of heat beside it
+    assert lows[1] < -5.0
+
+
 def test_a_gap_is_open_between_what_both_sides_hold():
     value = seen_by_a_camera(np.zeros(STATIONS), np.random.default_rng(9))
     value[140:260] = np.nan

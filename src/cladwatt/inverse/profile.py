@@ -68,9 +68,12 @@ class Spreading(NamedTuple):
     outer_diameter: float = 2.0
     """Of the lagging. [m]"""
 
-    def matrix(self, lengths: FloatArray) -> FloatArray:
-        """Return the matrix from supply to flux leaving, (n, n), for slices of lengths [m]."""
-        wavenumber, vectors = slice_waves(lengths)
+    def matrix(self, lengths: FloatArray, apart: BoolArray | None = None) -> FloatArray:
+        """Return the matrix from supply to flux leaving, (n, n), for slices of lengths [m].
+
+        `apart`, (n - 1,), marks neighbours between which the sheet ends.
+        """
+        wavenumber, vectors = slice_waves(lengths, apart)
         admittance: FloatArray | float = 0.0
         if self.conductivity > 0:
             admittance = lengthwise_admittance(
@@ -117,6 +120,7 @@ def recover_profile(
     kelvin_per_rise: float,
     generator: np.random.Generator,
     count: int,
+    opened: BoolArray | None = None,
 ) -> Profile | None:
     """Recover the supply of heat along a strip.
 
@@ -135,6 +139,8 @@ def recover_profile(
     generator : numpy Generator
     count : int
         Draws.
+    opened : (n_stations,) array of bool, optional
+        Stations without a sheet: they share no heat, and none passes across them.
 
     Returns
     -------
@@ -146,7 +152,11 @@ def recover_profile(
     seen = number > 0
     if seen.sum() < FEWEST_BINS:
         return None
-    spread = spreading.matrix(lengths)
+    apart = None
+    if opened is not None and opened.any():
+        bare = np.logical_or.reduceat(opened, np.arange(0, opened.size, step))
+        apart = bare[1:] | bare[:-1]
+    spread = spreading.matrix(lengths, apart)
     observed = (blur_matrix(lengths.size, blur_sigma / step) @ spread)[seen]
     level = float(np.average(mean[seen], weights=lengths[seen]))
     data = mean[seen] - level

@@ -16,7 +16,7 @@ from cladwatt.inverse.profile import Profile, Spreading, recover_profile
 from cladwatt.inverse.seen import Seen
 from cladwatt.inverse.sound import SoundDraws, outside_film
 from cladwatt.physics.spreading import point_spread_sigma
-from cladwatt.types import FloatArray
+from cladwatt.types import BoolArray, FloatArray
 
 __all__ = ["Recovered", "recovered_of", "spreading_of"]
 
@@ -24,6 +24,10 @@ FAINT = 0.02
 """Contrast below which a region does not say itself what a kelvin means. [K]"""
 STRAIGHT = 1.0
 """Contrast below which the loss against the value at the lens counts as straight. [K]"""
+
+
+EDGE_STATIONS = 3
+"""Beside a bare stretch that neither show it nor the sheet alone; a spot; assumption."""
 
 
 class Recovered(NamedTuple):
@@ -69,6 +73,7 @@ def recovered_of(
         return None
     value = np.where(seen.usable, seen.face.temperature.mean(axis=0), np.nan)
     level = float(value[balance.sound_at].mean())
+    opened = _opened(seen, balance)
     spreading, warmer = spreading_of(seen, sound, level)
     profile = recover_profile(
         value,
@@ -79,6 +84,7 @@ def recovered_of(
         kelvin_per_rise=kelvin_per_rise,
         generator=seen.book.generator(seen.owner, "profile"),
         count=seen.book.count,
+        opened=opened,
     )
     if profile is None:
         return None
@@ -87,11 +93,7 @@ def recovered_of(
     contrast = smeared - level
     steepness = abs(float(np.median(balance.base))) / kelvin_per_rise
     slope = _slopes(flux - balance.base[:, None], contrast, steepness)
-    bare_at = np.zeros((1, seen.usable.size))
-    for bare in balance.bare:
-        if bare is not None:
-            bare_at[0, bare.run.stations] = 1.0
-    clad = ~(_binned(bare_at, seen, profile)[0] > 0)
+    clad = ~np.logical_or.reduceat(opened, np.arange(0, opened.size, profile.step))
     sharper = np.where(clad, profile.surface - smeared, 0.0)
     loss = seen.perimeter[:, None] * (flux + slope * sharper)
     inside = seen.line_draws.inside_temperature
@@ -135,6 +137,16 @@ def spreading_of(seen: Seen, sound: SoundDraws | None, level: float) -> tuple[Sp
     conductivity = shape / float(np.median(sound.specified_resistance))
     lagging = {"inner_diameter": inner, "outer_diameter": outer}
     return found._replace(conductivity=conductivity, **lagging), per_kelvin
+
+
+def _opened(seen: Seen, balance: Balance) -> BoolArray:
+    """Return the stations where the pipe may be bare, with those its edges blur into."""
+    opened = np.zeros(seen.usable.size, dtype=bool)
+    for bare in balance.bare:
+        if bare is not None:
+            first = max(bare.run.first - EDGE_STATIONS, 0)
+            opened[first : bare.run.last + EDGE_STATIONS + 1] = True
+    return opened
 
 
 def _binned(values: FloatArray, seen: Seen, profile: Profile) -> FloatArray:

@@ -10,7 +10,7 @@ import numpy as np
 from scipy.linalg import eigh_tridiagonal
 from scipy.special import ive, kve, ndtri
 
-from cladwatt.types import FloatArray
+from cladwatt.types import BoolArray, FloatArray
 
 __all__ = [
     "blur_matrix",
@@ -124,13 +124,17 @@ def spread_matrix(lengths: FloatArray, response: FloatArray, vectors: FloatArray
     return np.asarray(spread * root[None, :] / root[:, None])
 
 
-def slice_waves(lengths: FloatArray) -> tuple[FloatArray, FloatArray]:
+def slice_waves(
+    lengths: FloatArray, apart: BoolArray | None = None
+) -> tuple[FloatArray, FloatArray]:
     """Return the wavenumbers and waves of a row of slices that exchange heat with neighbours.
 
     Parameters
     ----------
     lengths : (n,) array
         Need not be equal. [m]
+    apart : (n - 1,) array of bool, optional
+        Neighbours that exchange nothing, since the sheet ends between them.
 
     Returns
     -------
@@ -140,6 +144,8 @@ def slice_waves(lengths: FloatArray) -> tuple[FloatArray, FloatArray]:
         Orthonormal, over square roots of length.
     """
     between = 2.0 / (lengths[1:] + lengths[:-1])
+    if apart is not None:
+        between = np.where(apart, 0.0, between)
     diagonal = np.zeros(lengths.size)
     diagonal[:-1] += between
     diagonal[1:] += between
