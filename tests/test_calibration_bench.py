@@ -6,6 +6,7 @@ import subprocess
 import sys
 from dataclasses import replace
 from pathlib import Path
+from types import SimpleNamespace
 
 import numpy as np
 import pytest
@@ -29,6 +30,7 @@ from tests.calibration.counting import (
     roc_area,
     wrong_signs,
 )
+from tests.calibration.kinds import by_thresholds, kind_scores, prior_shares
 from tests.calibration.measures import GROUPS, MEASURES
 from tests.calibration.page import Run
 from tests.calibration.summary import Counted, Decile, summarise
@@ -234,6 +236,51 @@ def summary():
     cases = [replace(CASE, seed=s, probability=0.02 + s / 1000) for s in range(70)]
     cases += [replace(WET, seed=s) for s in range(40)]
     return summarise(columns_of(cases), samples=50)
+
+
+def found_kinds(*kinds, hottest=300.0):
+    """A result as far as kinds are scored by it."""
+    stations = SimpleNamespace(surface_temperature=np.array([300.0, np.nan, hottest]))
+    return SimpleNamespace(kinds=kinds, gain=False, stations=stations)
+
+
+class TestKinds:
+    line = SimpleNamespace(inside_temperature=Quantity(400.0))
+    air = Conditions(air_temperature=Quantity(300.0))
+
+    def test_the_true_kind_is_scored_given_that_damage_is_local(self):
+        result = found_kinds(("sound", 0.5), ("wet", 0.3), ("bare", 0.2))
+        scores = kind_scores("bare", result, self.line, self.air)
+        assert scores.true == pytest.approx(0.4)
+        assert (scores.top, scores.right) == (pytest.approx(0.6), 0.0)
+        assert math.isnan(kind_scores("aged", result, self.line, self.air).true)
+
+    def test_a_region_of_which_nothing_is_said_counts_at_the_prior(self):
+        scores = kind_scores("wet", found_kinds(), self.line, self.air)
+        assert scores.true == scores.prior == pytest.approx(prior_shares()["wet"])
+
+    @pytest.mark.parametrize(("hottest", "kind", "other"), [(380.0, "bare", "wet"),
+                                                            (310.0, "wet", "bare")])  # fmt: skip
+    def test_thresholds_go_by_the_hottest_place(self, hottest, kind, other):
+        result = found_kinds(("wet", 1.0), hottest=hottest)
+        for name, favoured in ((kind, True), (other, False)):
+            scores = kind_scores(name, result, self.line, self.air)
+            assert (scores.thresholds > scores.prior) is favoured
+
+    def test_shares_add_up(self):
+        for shown_share in (0.1, 0.9, math.nan):
+            assert sum(by_thresholds(shown_share).values()) == pytest.approx(1.0)
+
+    def test_log_losses_by_hand(self):
+        # -ln 0.5 and -ln 0.25 beside -ln 0.125 twice
+        cases = [
+            replace(WET, kind_true=p, kind_prior=0.125, kind_top=0.5, kind_right=r)
+            for p, r in ((0.5, 1.0), (0.25, 0.0))
+        ]
+        assert measured("kind_log_loss", CASE, *cases) == pytest.approx(1.5 * math.log(2))
+        assert measured("kind_over_prior", CASE, *cases) == pytest.approx(0.5)
+        assert measured("kind_too_sure", CASE, *cases) == pytest.approx(0.0)
+        assert math.isnan(measured("kind_log_loss", CASE))
 
 
 class TestSummary:

@@ -62,6 +62,9 @@ AIMS: tuple[Aim, ...] = (
     Aim("wrong_by_much", "quantified", high=0.01),
     Aim("long_overlap", "all", low=0.8),
     Aim("short_offset", "all", high=1.0),
+    Aim("kind_over_prior", "all", high=0.9),
+    Aim("kind_over_thresholds", "all", high=0.9),
+    Aim("kind_too_sure", "all", -0.05, 0.05, by_band=True),
 )
 
 

@@ -70,6 +70,15 @@ class Case:
     """Of a stretch that matters, longer than 0.2 m, with the best one found; NaN: no such."""
     short_offset: float = NAN
     """Of a shorter stretch: distance to the nearest centre found over what is allowed."""
+    kind_true: float = NAN
+    """Probability of the true kind of local damage, given that it is local; NaN: no such."""
+    kind_prior: float = NAN
+    kind_thresholds: float = NAN
+    """What the prior and thresholds on temperature give the true kind."""
+    kind_top: float = NAN
+    """Probability of the likeliest kind."""
+    kind_right: float = NAN
+    """Whether that is the true one."""
     oracle: float = NAN
     """Loss found from the true inputs, where that was asked for."""
     oracle_low: float = NAN

@@ -137,6 +137,26 @@ def _half_of_allowed(cases: Columns) -> float:
     return float(np.percentile(offsets, 50, method="inverted_cdf"))
 
 
+def _log_loss(cases: Columns, column: str = "kind_true") -> float:
+    shares = _numbers(column)(cases)
+    with np.errstate(divide="ignore"):
+        return _mean(-np.log(shares))
+
+
+def _kind_over(column: str) -> Callable[[Columns], float]:
+    """Return the log-loss of the kinds over that of another column."""
+
+    def value(cases: Columns) -> float:
+        beside = _log_loss(cases, column)
+        return _log_loss(cases) / beside if beside else _NAN
+
+    return value
+
+
+def _kinds(cases: Columns) -> int:
+    return int(_numbers("kind_true")(cases).size)
+
+
 MEASURES: dict[str, Measure] = {
     "coverage_95": Measure(
         "truth inside the 95 % interval", _covered("loss_low", "loss_high", "true_loss"), _all
@@ -210,6 +230,24 @@ MEASURES: dict[str, Measure] = {
     "short_offset": Measure(
         "shorter stretches: median distance of the centre over 5 cm or 3 pixels", _half_of_allowed,
         lambda cases: _numbers("short_offset")(cases).size, "plain",
+    ),
+    "kind_log_loss": Measure(
+        "kinds of local damage: log-loss of the true kind", _log_loss, _kinds, "plain"
+    ),
+    "kind_over_prior": Measure(
+        "that log-loss over the prior's", _kind_over("kind_prior"), _kinds, "plain"
+    ),
+    "kind_over_thresholds": Measure(
+        "that log-loss over that of thresholds on temperature", _kind_over("kind_thresholds"),
+        _kinds, "plain",
+    ),
+    "kind_right": Measure(
+        "likeliest kind is the true one", lambda cases: _mean(_numbers("kind_right")(cases)), _kinds
+    ),
+    "kind_too_sure": Measure(
+        "probability of the likeliest kind less how often it is true",
+        lambda cases: _mean(_numbers("kind_top")(cases)) - _mean(_numbers("kind_right")(cases)),
+        _kinds, "plain",
     ),
     "short_found": Measure(
         "shorter stretches found",

@@ -17,6 +17,7 @@ import numpy as np
 from tests.calibration.baselines import declared_losses, spreadsheet_loss
 from tests.calibration.cases import LOCAL_KINDS, Case
 from tests.calibration.counting import longest_run, overlap_of
+from tests.calibration.kinds import kind_scores
 from tests.calibration.oracle import with_true_inputs
 from tests.calibration.totals import TotalCase, total_cases
 
@@ -179,6 +180,7 @@ def _case(
     matters = _matters(true, truth["lines"][true["tag"]], stations)
     drawn = next(one for one in survey.regions_of(true["frame_id"]) if one.id == true["region_id"])
     overlap, offset = _stretch_scores(true, result, matters, drawn.origin)
+    kinds = kind_scores(true["kind"], result, line, conditions)
     return Case(
         seed=seed,
         frame_id=true["frame_id"],
@@ -215,6 +217,11 @@ def _case(
         spreadsheet=spreadsheet,
         long_overlap=overlap,
         short_offset=offset,
+        kind_true=kinds.true,
+        kind_prior=kinds.prior,
+        kind_thresholds=kinds.thresholds,
+        kind_top=kinds.top,
+        kind_right=kinds.right,
     )
 
 

@@ -39,7 +39,9 @@ _DAMAGE = {
     "wrong_by_much": "wrong > 30 %",
 }
 _REST = ("coverage_sound", "coverage_length", "long_overlap", "short_offset", "short_found",
-         "sure_right", "wrong_not_quantified")  # fmt: skip
+         "sure_right", "wrong_not_quantified",
+         "kind_log_loss", "kind_over_prior", "kind_over_thresholds", "kind_right",
+         "kind_too_sure")  # fmt: skip
 _FEW = f"\\* fewer than {LEAST_CASES} regions: shown, not judged."
 
 
