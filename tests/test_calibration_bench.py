@@ -30,7 +30,7 @@ from tests.calibration.counting import (
     roc_area,
     wrong_signs,
 )
-from tests.calibration.kinds import by_thresholds, kind_scores, prior_shares
+from tests.calibration.kinds import by_thresholds, drop_shown, kind_scores, prior_shares
 from tests.calibration.measures import GROUPS, MEASURES
 from tests.calibration.page import Run
 from tests.calibration.summary import Counted, Decile, summarise
@@ -238,33 +238,25 @@ def summary():
     return summarise(columns_of(cases), samples=50)
 
 
-def found_kinds(*kinds, hottest=300.0):
-    """A result as far as kinds are scored by it."""
-    stations = SimpleNamespace(surface_temperature=np.array([300.0, np.nan, hottest]))
-    return SimpleNamespace(kinds=kinds, gain=False, stations=stations)
-
-
 class TestKinds:
-    line = SimpleNamespace(inside_temperature=Quantity(400.0))
-    air = Conditions(air_temperature=Quantity(300.0))
-
     def test_the_true_kind_is_scored_given_that_damage_is_local(self):
-        result = found_kinds(("sound", 0.5), ("wet", 0.3), ("bare", 0.2))
-        scores = kind_scores("bare", result, self.line, self.air)
+        kinds = (("sound", 0.5), ("wet", 0.3), ("bare", 0.2))
+        scores = kind_scores("bare", kinds, 0.1)
         assert scores.true == pytest.approx(0.4)
         assert (scores.top, scores.right) == (pytest.approx(0.6), 0.0)
-        assert math.isnan(kind_scores("aged", result, self.line, self.air).true)
+        assert math.isnan(kind_scores("aged", kinds, 0.1).true)
 
     def test_a_region_of_which_nothing_is_said_counts_at_the_prior(self):
-        scores = kind_scores("wet", found_kinds(), self.line, self.air)
+        scores = kind_scores("wet", (), 0.1)
         assert scores.true == scores.prior == pytest.approx(prior_shares()["wet"])
 
     @pytest.mark.parametrize(("hottest", "kind", "other"), [(380.0, "bare", "wet"),
                                                             (310.0, "wet", "bare")])  # fmt: skip
-    def test_thresholds_go_by_the_hottest_place(self, hottest, kind, other):
-        result = found_kinds(("wet", 1.0), hottest=hottest)
+    def test_thresholds_go_by_the_hottest_pixel(self, hottest, kind, other):
+        line = SimpleNamespace(inside_temperature=Quantity(400.0))
+        drop = drop_shown(hottest, line, Conditions(air_temperature=Quantity(300.0)))
         for name, favoured in ((kind, True), (other, False)):
-            scores = kind_scores(name, result, self.line, self.air)
+            scores = kind_scores(name, (("wet", 1.0),), drop)
             assert (scores.thresholds > scores.prior) is favoured
 
     def test_shares_add_up(self):

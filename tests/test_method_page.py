@@ -20,6 +20,8 @@ from cladwatt.inverse import (
     frame_draws,
     hidden_side,
     joint,
+    kind_families,
+    kinds,
     line_draws,
     line_log,
     line_profile,
@@ -48,6 +50,7 @@ from cladwatt.measure import strip
 from cladwatt.physics import convection_spread, spreading, yawed_wind
 from cladwatt.physics.constants import ZERO_CELSIUS
 from cladwatt.physics.field_methods import MINIMUM_SEPARATION
+from cladwatt.report import kind_words
 from cladwatt.survey import sun_builder
 from cladwatt.survey.surroundings_builder import SKY_BAND_BELOW_AIR
 
@@ -188,6 +191,16 @@ VALUES = [
     f"shows from | {percent(opening.HOT_SHARE)} of the strongest contrast, "
     f"u {percent(opening.HOT_SCATTER)} |",
     f"least likelihood of a place across | {opening.FLOOR},",
+    f"Each kind is drawn {kind_families.SAMPLES} times with",
+    f"up to {kind_families.DENSER[1]} times as conductive",
+    "is an air gap of {:g} to {:g} W/(m² K)".format(*kind_families.GAP_COEFFICIENT),
+    f"the edges | {kinds.RISE_KERNEL}, {kinds.LENGTH_KERNEL}, {kinds.EDGE_KERNEL} |",
+    f"of their own | {kinds.SHAPE_KERNEL}; {kinds.SHAPE_INDEPENDENT} |",
+    f"over that of the likeliest kind | {kinds.OTHERWISE} |",
+    f"lens and sampling blur | {kind_families.BLUR_SIGMA} px |",
+    "compressed over sound lagging | {:g} to {:g} |".format(*kind_families.DENSER),
+    f"a pipe that is seen, at most | {kind_families.CUT_FACE} of its rise |",
+    f"the fewest kinds that hold {percent(kind_words.TOGETHER)};",
     f"unevenness of sound lagging around the pipe | u {percent(hidden_side.UNEVENNESS)} |",
     f"prior of damage all round | {around_pipe.PRIOR_ALL_ROUND} |",
     f"width of a damaged sector | {math.degrees(around_pipe.NARROWEST):.0f} to "

@@ -20,12 +20,14 @@ from cladwatt.survey.frame import Frame
 from cladwatt.survey.model import Conditions, FrameEntry, Line, Recording
 from cladwatt.survey.region import Region
 from cladwatt.survey.survey import Survey
+from cladwatt.types import FloatArray
 
 __all__ = [
     "DAMAGED_ABOVE",
     "cylinder_loss",
     "declared_losses",
     "fourth_power_corrected",
+    "spreadsheet_extreme",
     "spreadsheet_loss",
 ]
 
@@ -84,28 +86,55 @@ def spreadsheet_loss(
     survey: Survey, entry: FrameEntry, frame: Frame, region: Region, regions: tuple[Region, ...]
 ) -> float:
     """Return the loss per metre a spreadsheet gives; NaN where it gives none. [W/m]"""
-    shape = (frame.temperature.shape[0], frame.temperature.shape[1])
-    inside = region_mask(region, shape)
-    for other in regions:
-        if other.id != region.id and other.role in _NOT_LAGGING:
-            inside &= ~region_mask(other, shape)
-    recorded = frame.temperature[inside & np.isfinite(frame.temperature)]
-    line = survey.lines[str(region.tag)]
-    conditions = entry.conditions
-    reflected = conditions.reflected_temperature or conditions.air_temperature
-    if recorded.size == 0 or reflected is None or line.lagged_diameter is None:
+    recorded = _recorded_within(frame, region, regions)
+    line, conditions = survey.lines[str(region.tag)], entry.conditions
+    if recorded.size == 0 or line.lagged_diameter is None:
         return float("nan")
-    surface = fourth_power_corrected(
-        float(recorded.mean()),
-        entry.recording,
-        emissivity=line.cladding.band_emissivity.value,
-        reflected=reflected.value,
-    )
+    surface = _corrected(float(recorded.mean()), line, entry)
+    if np.isnan(surface):
+        return float("nan")
     return cylinder_loss(
         surface,
         conditions,
         diameter=line.lagged_diameter,
         emissivity=line.cladding.total_emissivity.value,
+    )
+
+
+def spreadsheet_extreme(
+    survey: Survey, entry: FrameEntry, frame: Frame, region: Region, regions: tuple[Region, ...]
+) -> float:
+    """Return the hottest pixel in the outline, corrected; the coldest of a chilled line. [K]"""
+    recorded = _recorded_within(frame, region, regions)
+    line, air = survey.lines[str(region.tag)], entry.conditions.air_temperature
+    inside = line.inside_temperature
+    if recorded.size == 0 or inside is None or air is None:
+        return float("nan")
+    extreme = recorded.min() if inside.value < air.value else recorded.max()
+    return _corrected(float(extreme), line, entry)
+
+
+def _recorded_within(frame: Frame, region: Region, regions: tuple[Region, ...]) -> FloatArray:
+    """Return what was recorded in an outline, other things in view left out. [K]"""
+    shape = (frame.temperature.shape[0], frame.temperature.shape[1])
+    inside = region_mask(region, shape)
+    for other in regions:
+        if other.id != region.id and other.role in _NOT_LAGGING:
+            inside &= ~region_mask(other, shape)
+    return np.asarray(frame.temperature[inside & np.isfinite(frame.temperature)])
+
+
+def _corrected(recorded: float, line: Line, entry: FrameEntry) -> float:
+    """Return the surface by the fourth power, NaN where no reflected temperature is known. [K]"""
+    conditions = entry.conditions
+    reflected = conditions.reflected_temperature or conditions.air_temperature
+    if reflected is None:
+        return float("nan")
+    return fourth_power_corrected(
+        recorded,
+        entry.recording,
+        emissivity=line.cladding.band_emissivity.value,
+        reflected=reflected.value,
     )
 
 

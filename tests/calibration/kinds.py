@@ -2,25 +2,31 @@
 
 Counted over regions with local damage, whether it was found or not, and given that damage is
 local: how likely there is any is counted elsewhere. The *prior* is the table's. *Thresholds on
-temperature* is what a careful user does: where the hottest place shows more than so much of the
-drop from fluid to air, the pipe is seen, else worse lagging; within either by the prior, and one
-time in ten it is the other. The limits were fixed before anything was counted.
+temperature* is what a careful user does: where the hottest pixel of the outline, its emissivity
+corrected as in the spreadsheet, shows more than half of the drop from fluid to air, the pipe is
+seen, else worse lagging; within either by the prior, and one time in ten it is the other.
 """
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass
 
-import numpy as np
 from tests.calibration.cases import LOCAL_KINDS
 
 from cladwatt.materials.load import shipped_tables
-from cladwatt.results.assessment import RegionResult
 from cladwatt.survey.model import Conditions, Line
 
-__all__ = ["PIPE_SEEN_ABOVE", "KindScores", "by_thresholds", "kind_scores", "prior_shares"]
+__all__ = [
+    "PIPE_SEEN_ABOVE",
+    "KindScores",
+    "by_thresholds",
+    "drop_shown",
+    "kind_scores",
+    "prior_shares",
+]
 
 PIPE_SEEN_ABOVE = 0.5
-"""Of the drop from fluid to air, at the hottest place of a region as it was corrected."""
+"""Of the drop from fluid to air, at the hottest pixel of a region."""
 SURE = 0.9
 PIPE_KINDS = frozenset({"open_joint", "bare", "missing_sector"})
 
@@ -72,32 +78,38 @@ def by_thresholds(shown: float) -> dict[str, float]:
     }
 
 
-def _drop_shown(result: RegionResult, line: Line, conditions: Conditions) -> float:
-    """Return the share of the drop from fluid to air that the region's extreme shows."""
+def drop_shown(extreme: float, line: Line, conditions: Conditions) -> float:
+    """Return the share of the drop from fluid to air that a surface shows.
+
+    Parameters
+    ----------
+    extreme : float
+        Of the hottest pixel, of the coldest on a chilled line; NaN where none is told. [K]
+    line : Line
+    conditions : Conditions
+        As declared.
+    """
     inside, air = line.inside_temperature, conditions.air_temperature
-    surface = result.stations.surface_temperature
-    surface = surface[np.isfinite(surface)]
-    if inside is None or air is None or surface.size == 0:
+    if inside is None or air is None or inside.value == air.value:
         return math.nan
-    extreme = float(surface.min() if result.gain else surface.max())
     return (extreme - air.value) / (inside.value - air.value)
 
 
-def kind_scores(true: str, result: RegionResult, line: Line, conditions: Conditions) -> KindScores:
+def kind_scores(true: str, kinds: Sequence[tuple[str, float]], shown: float) -> KindScores:
     """Score what was said of the kind of a region's damage.
 
     Parameters
     ----------
     true : str
         The true kind.
-    result : RegionResult
-    line : Line
-    conditions : Conditions
-        As declared.
+    kinds : sequence of (name, probability)
+        As the region's result gives them.
+    shown : float
+        Share of the drop from fluid to air at the hottest pixel.
     """
     if true not in LOCAL_KINDS:
         return KindScores()
-    local = {name: share for name, share in result.kinds if name in LOCAL_KINDS}
+    local = {name: share for name, share in kinds if name in LOCAL_KINDS}
     # a region of which nothing was said counts as left at the prior, not as left out
     local = local if sum(local.values()) > 0 else prior_shares()
     total = sum(local.values())
@@ -105,7 +117,7 @@ def kind_scores(true: str, result: RegionResult, line: Line, conditions: Conditi
     return KindScores(
         true=local.get(true, 0.0) / total,
         prior=prior_shares()[true],
-        thresholds=by_thresholds(_drop_shown(result, line, conditions))[true],
+        thresholds=by_thresholds(shown)[true],
         top=local[top] / total,
         right=float(top == true),
     )

@@ -14,10 +14,10 @@ from pathlib import Path
 from typing import Any
 
 import numpy as np
-from tests.calibration.baselines import declared_losses, spreadsheet_loss
+from tests.calibration.baselines import declared_losses, spreadsheet_extreme, spreadsheet_loss
 from tests.calibration.cases import LOCAL_KINDS, Case
 from tests.calibration.counting import longest_run, overlap_of
-from tests.calibration.kinds import kind_scores
+from tests.calibration.kinds import drop_shown, kind_scores
 from tests.calibration.oracle import with_true_inputs
 from tests.calibration.totals import TotalCase, total_cases
 
@@ -131,15 +131,19 @@ def _found(survey: Survey) -> dict[str, RegionResult]:
     return {region.region_id: region for region in assess(survey, settings=Settings()).regions}
 
 
-def _spreadsheet(survey: Survey) -> dict[str, float]:
-    losses = {}
+def _spreadsheet(survey: Survey) -> dict[str, tuple[float, float]]:
+    """Return loss and corrected hottest pixel of each region by a spreadsheet."""
+    found = {}
     for entry in survey.frames:
         frame = read_frame(entry, root=survey.root)
         regions = survey.regions_of(entry.id)
         for region in regions:
             if region.role == "pipe":
-                losses[region.id] = spreadsheet_loss(survey, entry, frame, region, regions)
-    return losses
+                found[region.id] = (
+                    spreadsheet_loss(survey, entry, frame, region, regions),
+                    spreadsheet_extreme(survey, entry, frame, region, regions),
+                )
+    return found
 
 
 @dataclass(frozen=True)
@@ -166,7 +170,7 @@ def _station_truth(path: Path) -> dict[str, StationTruth]:
 
 def _case(
     seed: int, survey: Survey, truth: dict[str, Any], true: dict[str, Any],
-    result: RegionResult, stations: StationTruth, spreadsheet: float,
+    result: RegionResult, stations: StationTruth, spreadsheet: tuple[float, float],
 ) -> Case:  # fmt: skip
     assert result.heat_loss is not None
     assert result.sound_loss is not None
@@ -180,7 +184,8 @@ def _case(
     matters = _matters(true, truth["lines"][true["tag"]], stations)
     drawn = next(one for one in survey.regions_of(true["frame_id"]) if one.id == true["region_id"])
     overlap, offset = _stretch_scores(true, result, matters, drawn.origin)
-    kinds = kind_scores(true["kind"], result, line, conditions)
+    shown = drop_shown(spreadsheet[1], line, conditions)
+    kinds = kind_scores(true["kind"], result.kinds, shown)
     return Case(
         seed=seed,
         frame_id=true["frame_id"],
@@ -214,7 +219,7 @@ def _case(
         image_high=nan if result.image_loss is None else result.image_loss.high,
         specified=specified,
         as_specified=as_specified,
-        spreadsheet=spreadsheet,
+        spreadsheet=spreadsheet[0],
         long_overlap=overlap,
         short_offset=offset,
         kind_true=kinds.true,
