@@ -17,7 +17,7 @@ References
 """
 
 import math
-from collections.abc import Mapping, Sequence
+from collections.abc import Mapping
 from dataclasses import dataclass
 
 import numpy as np
@@ -235,14 +235,3 @@ def shares_of_region(
             shares[name] = shares.get(name, 0.0) + by_part
     whole = sum(shares.values())
     return _ordered({name: share / whole for name, share in shares.items()})
-
-
-def named_together(kinds: Sequence[tuple[str, float]], share: float) -> list[str]:
-    """Return the fewest kinds, likeliest first, that hold this share of the probability."""
-    names, total = [], 0.0
-    for name, probability in kinds:
-        names.append(name)
-        total += probability
-        if total >= share:
-            break
-    return names
