@@ -121,7 +121,7 @@ def local_damage(
     LocalDamage
     """
     if not kelvin_per_rise > 0 or np.isfinite(profile).sum() < 8:
-        return LocalDamage((prior,) * min(len(runs), 1), prior if not runs else 0.0)
+        return LocalDamage((0.0,) * len(runs), prior)
     found: list[float] = []
     for number, run in enumerate(runs):
         others = [other for index, other in enumerate(runs) if index != number]
