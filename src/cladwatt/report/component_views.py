@@ -21,6 +21,8 @@ class ComponentView:
     temperature: str
     length: str
     loss: str
+    by_image: str
+    by_table: str
     reason: str
 
 
@@ -33,12 +35,10 @@ def component_view(one: ComponentResult, language: str) -> ComponentView:
     surface, length, loss = one.surface_temperature, one.equivalent_length, one.heat_loss
     of_clad = one.lagged or fitting_kind(one.kind) == "hanger"
     of = "component_of_lagged" if of_clad else "component_of_bare"
-    shown = said("not_known")
-    if loss is not None:
-        shown = _loss(loss, said("gain_mark"))
-        if one.image_loss is not None and one.table_loss is not None:
-            image, table = (_loss(by, "") for by in (one.image_loss, one.table_loss))
-            shown = said("component_two", loss=shown, image=image, table=table)
+    losses = [
+        said("not_known") if by is None else _loss(by, said("gain_mark"))
+        for by in (loss, one.image_loss, one.table_loss)
+    ]
     return ComponentView(
         name=f"{one.kind or said('not_stated')} · {one.region_id}",
         tag=one.tag,
@@ -49,7 +49,9 @@ def component_view(one: ComponentResult, language: str) -> ComponentView:
         length=said("not_known")
         if length is None
         else said(of, length=format_interval(length, "", most=2)),
-        loss=shown,
+        loss=losses[0],
+        by_image=losses[1],
+        by_table=losses[2],
         reason="" if one.reason is None else sentence(one.reason, language),
     )
 

@@ -49,7 +49,7 @@ def _solve_near(
 
 
 def solve_columns(
-    model: ColumnModel, surface_flux: SurfaceFlux, *, tolerance: float = 2e-3, most: int = 12
+    model: ColumnModel, surface_flux: SurfaceFlux, *, tolerance: float = 2e-3, most: int = 40
 ) -> Solution:
     """Solve the steady temperatures of a lagged pipe and the heat it gives off.
 
