@@ -11,7 +11,7 @@ from types import SimpleNamespace
 import numpy as np
 import pytest
 from numpy.testing import assert_allclose
-from tests.calibration.__main__ import build_parser, main, seed_range, write_page
+from tests.calibration.__main__ import build_parser, main, seed_range, write_from, write_page
 from tests.calibration.aims import AIMS, Aim, judged
 from tests.calibration.baselines import cylinder_loss, fourth_power_corrected
 from tests.calibration.cases import Case, columns_of
@@ -32,14 +32,21 @@ from tests.calibration.counting import (
 )
 from tests.calibration.kinds import by_thresholds, drop_shown, kind_scores, prior_shares
 from tests.calibration.measures import GROUPS, MEASURES
+from tests.calibration.otherwise import otherwise_table
 from tests.calibration.page import Run
+from tests.calibration.pieces import code_state, joined_with_oracle, keep_piece, kept_pieces
 from tests.calibration.summary import Counted, Decile, summarise
-from tests.calibration.surveys import survey_cases
+from tests.calibration.surveys import SurveyCases, survey_cases
 from tests.calibration.tables import tables_of
+from tests.calibration.totals import TotalCase
+from tests.calibration.variants import VARIANTS, WRONG_LAW
 from tests.calibration.wording import plain_table, shown
 
 from cladwatt.quantities import Quantity
 from cladwatt.survey.model import Conditions, Recording
+from cladwatt.survey.survey_file import read_survey
+from cladwatt.synthetic.plant import load_plant
+from cladwatt.synthetic.sample import assign_damage
 
 CASE = Case(
     seed=1, frame_id="f1", region_id="R1", kind="sound", damaged=False, indoors=True,
@@ -339,6 +346,106 @@ class TestSummary:
         for table in tables_of(summary):
             assert {len(row) for row in table.rows} <= {len(table.header)}
             plain_table(table.header, table.rows)
+
+
+def piece(seed, *cases):
+    own = tuple(replace(case, seed=seed) for case in cases)
+    return SurveyCases(seed, own, (), 0.0, 0.0, (TotalCase(seed, "loss", 9.0, 8.0, 7.0, 9.5, 2.0),))
+
+
+class TestRunsBesideTheMainOne:
+    def test_what_is_kept_comes_back(self, tmp_path):
+        odd = replace(WET, short_offset=math.inf, damaged=np.bool_(True), loss=np.float64(1 / 3))
+        for seed in (10000, 9999):
+            keep_piece(tmp_path, "plain", piece(seed, CASE, odd), "now")
+        found = kept_pieces(tmp_path, "now")
+        # as text, since an unknown number is not equal to itself
+        bare = replace(odd, damaged=True, loss=1 / 3)
+        assert repr(found) == repr({"plain": [piece(s, CASE, bare) for s in (9999, 10000)]})
+
+    def test_what_other_code_counted_is_left_out(self, tmp_path, capsys):
+        keep_piece(tmp_path, "plain", piece(5000, CASE), "before")
+        keep_piece(tmp_path, "plain", piece(5001, CASE), "now")
+        assert [run.seed for run in kept_pieces(tmp_path, "now")["plain"]] == [5001]
+        assert "plain: 1 kept surveys were counted by other code" in capsys.readouterr().err
+
+    def test_the_state_of_the_code_is_one(self):
+        assert code_state() == code_state()
+
+    def test_the_oracle_is_counted_where_it_ran(self):
+        oracle = [piece(1, replace(WET, loss=190.0, loss_low=180.0, loss_high=200.0))]
+        cases = joined_with_oracle([WET, replace(CASE, seed=2), replace(WET, seed=2)], oracle)
+        lines = {one.words: one for one in summarise(columns_of(cases), samples=2).estimators}
+        found = lines["oracle: cladwatt with every declared input true"]
+        # 190 and 150 of 200, in one survey of two
+        assert (found.regions, found.error, found.coverage) == (1, pytest.approx(0.05), 1.0)
+        beside = lines["cladwatt, the surveys of the next line"]
+        assert (beside.regions, beside.error) == (1, pytest.approx(0.25))
+        assert lines["cladwatt"].regions == 3
+
+    def test_a_line_for_each_run_and_for_the_surveys_it_shares(self):
+        plain = [piece(1, CASE, WET), piece(2, CASE)]
+        assert otherwise_table({"plain": plain}) is None
+        wrong = replace(CASE, probability=0.9)
+        table = otherwise_table({"plain": plain, "wrong-law": [piece(2, wrong)],
+                                 "half-damaged": [piece(7, CASE)]})  # fmt: skip
+        rows = {row[0]: dict(zip(table.header, row, strict=True)) for row in table.rows}
+        assert list(rows) == [
+            "as above", "as above, the surveys of the next line", VARIANTS["wrong-law"].words,
+            VARIANTS["half-damaged"].words,
+        ]  # fmt: skip
+        alarms = [row["false alarms"] for row in rows.values()]
+        assert alarms == ["0 %", "0 %", "100 %", "0 %"]
+        assert rows["as above"]["surveys"] == "2"
+        assert rows["as above"]["damaged"] == "33.3 %"
+
+    def test_the_page_is_put_together_from_all_runs(self, tmp_path):
+        pieces = {"plain": [piece(s, CASE, WET) for s in (5000, 5001)],
+                  "oracle": [piece(5000, WET)], "half-damaged": [piece(6000, CASE)]}  # fmt: skip
+        write_from(pieces, tmp_path)
+        text = (tmp_path / "calibration.md").read_text(encoding="utf-8")
+        for command in ("--seeds 5000:5002", "--variant oracle --seeds 5000:5001",
+                        "--variant half-damaged --seeds 6000:6001"):  # fmt: skip
+            assert f"python -m tests.calibration {command}" in text
+        assert "## If things are otherwise" in text
+        assert "2 of the 4 regions are damaged" in text
+
+    @pytest.mark.parametrize(
+        ("pieces", "words"),
+        [
+            ({"plain": [piece(5000, CASE)], "wrong-law": [piece(1100, CASE)]}, "found 1100"),
+            ({"wrong-law": [piece(5000, CASE)]}, "needs the main run"),
+        ],
+    )
+    def test_a_page_that_must_not_be(self, pieces, words, tmp_path):
+        with pytest.raises(ValueError, match=words):
+            write_from(pieces, tmp_path)
+        assert not list(tmp_path.iterdir())
+
+    def test_nothing_kept_is_no_page(self, capsys):
+        with pytest.raises(SystemExit):
+            main(["--only-write"])
+        assert "--keep DIR" in capsys.readouterr().err
+
+    def test_the_law_is_another_one(self):
+        survey = read_survey(Path(__file__).parent.parent / "sample_data")
+        assert VARIANTS["wrong-law"].given(survey, {}).convection_model == WRONG_LAW
+        assert survey.convection_model != WRONG_LAW
+        assert VARIANTS["plain"].given(survey, {}) is survey
+
+    def test_half_and_twice_the_damaged_pipes(self):
+        plant = load_plant()
+        plain = {pipe.id for frame in plant.frames if not frame.is_corner for pipe in frame.pipes}
+        numbers = []
+        for name in ("half-damaged", "plain", "twice-damaged"):
+            share = VARIANTS[name].options.damaged
+            kinds = assign_damage(plant, np.random.default_rng(3), share)
+            numbers.append(sum(kinds[one] != "sound" for one in plain))
+        assert numbers[0] < 0.7 * numbers[1] < 1.4 * numbers[1] < numbers[2]
+
+    def test_soaked_lagging_is_a_group_of_its_own(self):
+        cases = columns_of([CASE, replace(CASE, kind="soaked"), replace(CASE, kind="aged")])
+        assert GROUPS["soaked"][1](cases).tolist() == [False, True, False]
 
 
 @pytest.mark.parametrize(

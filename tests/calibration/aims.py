@@ -34,6 +34,7 @@ AIMS: tuple[Aim, ...] = (
     Aim("coverage_95", "quantified", 0.93, 0.97, by_band=True),
     Aim("coverage_95", EVERY_GROUP, low=0.88),
     Aim("coverage_50", "all", 0.45, 0.55, by_band=True),
+    Aim("coverage_50", "quantified", 0.45, 0.55, by_band=True),
     Aim("width", "all", high=0.40),
     Aim("width", "quantified", high=0.28),
     Aim("error", "all", high=0.065),

@@ -283,6 +283,7 @@ GROUPS: dict[str, tuple[str, Callable[[Columns], BoolArray]]] = {
         lambda c: np.asarray(c["indoors"] & (c["emissivity"] > 0.7)),
     ),
     "aged": ("aged throughout", _kind("aged")),
+    "soaked": ("soaked or frozen throughout, declared so", _kind("soaked")),
     "compressed": ("compressed", _kind("compressed")),
     "wet": ("wet", _kind("wet")),
     "wet_underside": ("wet underside", _kind("wet_underside")),
@@ -303,6 +304,8 @@ class Estimator:
     """Larger is more damaged."""
     decision: float
     interval: tuple[str, str] | None = None
+    some_seeds: bool = False
+    """Was not run on every seed; counted on those where it was."""
 
 
 def _ratio_to_specified(cases: Columns) -> FloatArray:
@@ -326,6 +329,8 @@ ESTIMATORS: dict[str, Estimator] = {
     "spreadsheet": Estimator("spreadsheet", "spreadsheet", _ratio_to_specified, DAMAGED_ABOVE),
     "oracle": Estimator(
         "oracle: cladwatt with every declared input true", "oracle",
-        lambda c: np.asarray(c["oracle_probability"]), DECISION, ("oracle_low", "oracle_high"),
+        # without a number it raises no alarm
+        lambda c: np.nan_to_num(c["oracle_probability"], nan=0.0), DECISION,
+        ("oracle_low", "oracle_high"), some_seeds=True,
     ),
 }  # fmt: skip

@@ -1,7 +1,7 @@
 """From cases to every number of the tables, with bands by resampling frames."""
 
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 from tests.calibration.cases import Columns
@@ -72,9 +72,10 @@ class Decile:
 
 @dataclass(frozen=True)
 class EstimatorLine:
-    """What one way of estimating reaches over all regions."""
+    """What one way of estimating reaches over all regions it was run on."""
 
     words: str
+    regions: int
     error: float
     error_damaged: float
     rms_log: float
@@ -97,6 +98,7 @@ class Summary:
     counted: Mapping[tuple[str, str], Counted]
     """By (group, measure)."""
     deciles: tuple[Decile, ...]
+    deciles_by_group: Mapping[str, tuple[Decile, ...]]
     estimators: tuple[EstimatorLine, ...]
 
     def of(self, group: str, measure: str) -> Counted | None:
@@ -142,12 +144,24 @@ def summarise(cases: Columns, *, seed: int = 1, samples: int = RESAMPLES) -> Sum
         seeds=int(np.unique(cases["seed"]).size),
         counted=counted,
         deciles=tuple(_deciles(cases)),
-        estimators=tuple(
-            _estimator_line(cases, each)
-            for each in ESTIMATORS.values()
-            if not np.isnan(cases[each.loss]).all()
-        ),
+        deciles_by_group={name: tuple(_deciles(cases.take(mask))) for name, mask in masks.items()},
+        estimators=tuple(_estimator_lines(cases)),
     )
+
+
+def _estimator_lines(cases: Columns) -> Iterable[EstimatorLine]:
+    for each in ESTIMATORS.values():
+        given = ~np.isnan(cases[each.loss])
+        if not given.any():
+            continue
+        own = cases
+        if each.some_seeds:
+            own = cases.take(np.isin(cases["seed"], cases["seed"][given]))
+        if own.count < cases.count:
+            first = next(iter(ESTIMATORS.values()))
+            line = _estimator_line(own, first)
+            yield replace(line, words=f"{first.words}, the surveys of the next line")
+        yield _estimator_line(own, each)
 
 
 def _deciles(cases: Columns) -> Iterable[Decile]:
@@ -173,6 +187,7 @@ def _estimator_line(cases: Columns, each: Estimator) -> EstimatorLine:
     damaged = errors[cases["damaged"]]
     return EstimatorLine(
         words=each.words,
+        regions=cases.count,
         error=float(np.median(errors)),
         error_damaged=float(np.median(damaged)) if damaged.size else nan,
         rms_log=rms_log_error(loss[given], truth[given]),

@@ -20,13 +20,14 @@ from tests.calibration.counting import longest_run, overlap_of
 from tests.calibration.kinds import drop_shown, kind_scores
 from tests.calibration.oracle import with_true_inputs
 from tests.calibration.totals import TotalCase, total_cases
+from tests.calibration.variants import PLAIN, VARIANTS
 
 from cladwatt.assess import assess
 from cladwatt.results.assessment import RegionResult, Settings
 from cladwatt.survey.frame import read_frame
 from cladwatt.survey.survey import Survey
 from cladwatt.survey.survey_file import read_survey
-from cladwatt.synthetic.sample import write_sample
+from cladwatt.synthetic.sample import SampleOptions, write_sample
 from cladwatt.types import FloatArray
 
 __all__ = ["SurveyCases", "assessed", "survey_cases"]
@@ -56,22 +57,26 @@ class SurveyCases:
 
 
 @contextmanager
-def _survey_folder(seed: int, keep: Path | None) -> Iterator[tuple[Path, float]]:
+def _survey_folder(seed: int, keep: Path | None, variant: str) -> Iterator[tuple[Path, float]]:
     """Give a folder with the survey of a seed, and how long drawing it took."""
     started = time.perf_counter()
+    options = VARIANTS[variant].options
     if keep is None:
         with tempfile.TemporaryDirectory(prefix="calibration-") as work:
             folder = Path(work) / str(seed)
-            write_sample(folder, seed)
+            write_sample(folder, seed, options)
             yield folder, time.perf_counter() - started
         return
-    folder = keep / str(seed)
+    # what is drawn otherwise is kept apart
+    folder = (keep if options == SampleOptions() else keep / variant) / str(seed)
     if not (folder / "survey.toml").exists():
-        write_sample(folder, seed)
+        write_sample(folder, seed, options)
     yield folder, time.perf_counter() - started
 
 
-def survey_cases(seed: int, *, keep: Path | None = None, oracle: bool = False) -> SurveyCases:
+def survey_cases(
+    seed: int, *, keep: Path | None = None, oracle: bool = False, variant: str = PLAIN
+) -> SurveyCases:
     """Draw the survey of a seed, or take the kept one, assess it and join it with its truth.
 
     Parameters
@@ -81,13 +86,15 @@ def survey_cases(seed: int, *, keep: Path | None = None, oracle: bool = False) -
         Folder of surveys by seed; what is missing is written there.
     oracle : bool
         Assess once more from the true inputs.
+    variant : str
+        A key of `VARIANTS`: how it is drawn, and what the estimator is given.
     """
-    with _survey_folder(seed, keep) as (folder, seconds_drawing):
+    with _survey_folder(seed, keep, variant) as (folder, seconds_drawing):
         truth = json.loads((folder / "truth" / "truth.json").read_text(encoding="utf-8"))
         stations = _station_truth(folder / "truth" / "truth_stations.csv")
         survey = read_survey(folder)
         started = time.perf_counter()
-        assessment = assess(survey, settings=Settings())
+        assessment = assess(VARIANTS[variant].given(survey, truth), settings=Settings())
         found = {region.region_id: region for region in assessment.regions}
         seconds = time.perf_counter() - started
         plain = _spreadsheet(survey)
@@ -110,10 +117,15 @@ def survey_cases(seed: int, *, keep: Path | None = None, oracle: bool = False) -
 
 
 def assessed(
-    seeds: range, *, workers: int = 1, keep: Path | None = None, oracle: bool = False
+    seeds: range,
+    *,
+    workers: int = 1,
+    keep: Path | None = None,
+    oracle: bool = False,
+    variant: str = PLAIN,
 ) -> Iterator[SurveyCases]:
     """Yield what each seed came to, in order; the same whatever the number of workers."""
-    one = partial(survey_cases, keep=keep, oracle=oracle)
+    one = partial(survey_cases, keep=keep, oracle=oracle, variant=variant)
     if workers == 1:
         yield from map(one, seeds)
         return
