@@ -415,6 +415,7 @@ class TestRunsBesideTheMainOne:
         [
             ({"plain": [piece(5000, CASE)], "wrong-law": [piece(1100, CASE)]}, "found 1100"),
             ({"wrong-law": [piece(5000, CASE)]}, "needs the main run"),
+            ({"plain": [piece(5000, CASE), piece(5002, CASE)]}, "5000 to 5002 without 5001"),
         ],
     )
     def test_a_page_that_must_not_be(self, pieces, words, tmp_path):

@@ -93,7 +93,7 @@ def write_from(pieces: Mapping[str, Sequence[SurveyCases]], guide: Path = GUIDE)
     Raises
     ------
     ValueError
-        If the main run is not among them, or a seed of development is.
+        If the main run is not among them, a seed of development is, or one in between is not.
     """
     early = [run.seed for runs in pieces.values() for run in runs
              if run.seed < FIRST_REPORTED_SEED]  # fmt: skip
@@ -102,6 +102,11 @@ def write_from(pieces: Mapping[str, Sequence[SurveyCases]], guide: Path = GUIDE)
     main_run = pieces.get(PLAIN, ())
     if not cases_of(main_run):
         raise ValueError("the page needs the main run; found none that the present code counted")
+    for name, runs in pieces.items():
+        kept = [run.seed for run in runs]
+        # the page names a run by its first and last seed
+        if missing := sorted(set(range(kept[0], kept[-1] + 1)) - set(kept)):
+            raise ValueError(f"{name}: seeds {kept[0]} to {kept[-1]} without {missing[0]}; run it")
     cases = joined_with_oracle(cases_of(main_run), pieces.get(ORACLE, ()))
     seeds = sorted(run.seed for run in main_run)
     others = [
