@@ -40,6 +40,8 @@ SWEEPS = 8
 DAMPING = 0.7
 TELLING = 0.97
 """A direction whose variance the other frames leave above this share says nothing."""
+VAGUE = 3.0
+"""A region whose y is less sure than this says nothing: bright metal, mostly."""
 LEAST_VARIANCE = 0.5
 """However many frames say it, what they say of a direction is taken for no surer than this share
 of the prior's variance: that it is the same in all of them is itself an assumption."""
@@ -120,12 +122,18 @@ def frame_evidence(
     FrameEvidence or None
         None where no region says anything. Of more than `MOST_TOGETHER` regions the first by id.
     """
-    found = {one.seen.region.id: one for one in observed if one.evidence() is not None}
+    found: dict[str, Observed] = {}
+    said: dict[str, FloatArray] = {}
+    for one in observed:
+        evidence = one.evidence()
+        if evidence is None or np.std(evidence.relative_excess) > VAGUE:
+            continue
+        found[evidence.region_id] = one
+        said[evidence.region_id] = evidence.relative_excess
     names = sorted(found)[:MOST_TOGETHER]
     if not names:
         return None
-    evidence = [found[name].evidence() for name in names]
-    observed_y = np.stack([one.relative_excess for one in evidence if one is not None], axis=1)
+    observed_y = np.stack([said[name] for name in names], axis=1)
     keys = tuple(sorted({key for name in names for key in shared_keys(found[name])}))
     core = core_of(observed_y)
     normals = np.stack([book.normal(*key) for key in keys], axis=1)[core]
@@ -170,9 +178,10 @@ def messages_between(frames: Sequence[FrameEvidence]) -> Mapping[str, Message]:
         for number, frame in enumerate(ordered):
             b = frame.loading
             mean, covariance = means[number], covariances[number]
-            sites[number] = _moved(
-                frame.weighing, b @ mean, b @ covariance @ b.T, b @ b.T, sites[number]
-            )
+            moved = _moved(frame.weighing, b @ mean, b @ covariance @ b.T, b @ b.T, sites[number])
+            # a frame that cannot be weighed says nothing more, and stops no other
+            if np.isfinite(moved.precision).all() and np.isfinite(moved.shift).all():
+                sites[number] = moved
     means, covariances = space.marginals(sites)
     messages = {}
     for number, frame in enumerate(ordered):
