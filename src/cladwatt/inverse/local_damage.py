@@ -24,7 +24,7 @@ import numpy as np
 
 from cladwatt.inverse.null import PATCH_LENGTH, NullModel
 from cladwatt.inverse.stretches import Run
-from cladwatt.types import FloatArray, IntArray
+from cladwatt.types import BoolArray, FloatArray, IntArray
 
 __all__ = [
     "PRIOR_LOCAL",
@@ -127,16 +127,37 @@ def local_damage(
         others = [other for index, other in enumerate(runs) if index != number]
         factors = _factors(profile, null, (run,), others, sign, kelvin_per_rise, spread_length)
         anywhere = np.logaddexp(factors.at, factors.beside)
-        # beside a strong run, its own shoulders are no other damage
-        at = anywhere if factors.at > factors.beside - SHOULDER else factors.at
+        # beside a strong run, its own shoulders are no other damage; one that nothing speaks for
+        # has no more of the prior than its place
+        strong = factors.at > max(factors.beside - SHOULDER, 0.0)
+        at = anywhere if strong else factors.at
         found.append(_share(prior, _heard(at, MISFIT), _heard(anywhere, MISFIT)))
     factors = _factors(profile, null, (), list(runs), sign, kelvin_per_rise, spread_length)
     beside = _heard(factors.beside, MISFIT_ELSEWHERE)
-    elsewhere = _share(prior, beside, beside)
+    # the prior is of the whole strip: the runs have had their part of it
+    elsewhere = _share(prior * _clear_share(profile.size, null, runs), beside, beside)
     hidden = None
     if elsewhere > 0.5:
         hidden = _run_at(factors.likeliest, sign * profile, null, elsewhere)
     return LocalDamage(tuple(found), elsewhere, hidden)
+
+
+def _clear_share(stations: int, null: NullModel, runs: tuple[Run, ...]) -> float:
+    """Return the prior share of the stretches of a strip that touch no run, above zero."""
+    bins = Bins.of(np.zeros(stations), null.station_length)
+    edges, weights = _edges(bins)
+    touching = _touching(bins, edges, null, runs)
+    return max(1e-9, float(weights[~touching].sum()))
+
+
+def _touching(bins: "Bins", edges: IntArray, null: NullModel, runs: tuple[Run, ...]) -> BoolArray:
+    """Return which stretches overlap any run, (m,)."""
+    touching = np.zeros(edges.shape[0], dtype=bool)
+    for run in runs:
+        low = (run.first - 0.5) * null.station_length
+        high = (run.last + 0.5) * null.station_length
+        touching |= (bins.edge[edges[:, 0]] < high) & (bins.edge[edges[:, 1]] > low)
+    return touching
 
 
 def _run_at(
@@ -196,11 +217,7 @@ def _factors(
         return _Factors(0.0, -np.inf) if wanted else _Factors(-np.inf, 0.0)
     edges, weights = _edges(bins)
     logarithm = np.log(weights) + _log_factors(bins, edges, null, kelvin_per_rise, spread_length)
-    at = np.zeros(weights.size, dtype=bool)
-    for run in wanted:
-        low = (run.first - 0.5) * null.station_length
-        high = (run.last + 0.5) * null.station_length
-        at |= (bins.edge[edges[:, 0]] < high) & (bins.edge[edges[:, 1]] > low)
+    at = _touching(bins, edges, null, wanted)
     best = int(np.argmax(logarithm))
     return _Factors(
         at=_log_sum(logarithm[at]),
@@ -219,7 +236,9 @@ def _clear_of_gaps(values: FloatArray, reach: float) -> FloatArray:
     missing = np.isnan(values)
     if not missing.any() or reach < 1:
         return values
-    near = np.convolve(missing, np.ones(2 * round(reach) + 1), mode="same") > 0
+    # a reach beyond the strip's end reaches all of it
+    stations = min(round(reach), values.size)
+    near = np.convolve(missing, np.ones(2 * stations + 1))[stations : stations + values.size] > 0
     return np.where(near, np.nan, values)
 
 
