@@ -9,6 +9,7 @@ import pytest
 
 from cladwatt.physics.band import Band
 from cladwatt.physics.conduction import ConductivityIntegral
+from cladwatt.physics.humidity import frost_point, saturation_pressure_water
 from cladwatt.physics.measurement_equation import lens_radiance
 from cladwatt.survey.model import AccuracyStatement, Recording
 from cladwatt.synthetic import sample
@@ -217,3 +218,12 @@ def test_the_recording_range_ends_where_it_says():
     recorded = next(made).recorded
     assert recorded.max() == pytest.approx(273.15 + 90.0)
     assert 10 < np.count_nonzero(recorded == recorded.max()) < 3000
+
+
+def test_air_whose_dew_point_lies_just_below_freezing_has_a_film():
+    # over ice the same vapour is saturated above 0 °C
+    humidity = float(saturation_pressure_water(273.149) / saturation_pressure_water(276.115))
+    assert np.isnan(frost_point(276.115, humidity))
+    frame = frame_truth(air_temperature=276.115, relative_humidity=humidity)
+    share = water_share(np.array([272.0, 273.1, 275.0]), frame)
+    assert share.tolist() == pytest.approx([1.0, 0.6, 0.0], abs=0.05)

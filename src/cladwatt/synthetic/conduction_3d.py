@@ -22,6 +22,7 @@ __all__ = ["ColumnModel", "Solution", "SurfaceFlux", "heat_up", "solve_columns"]
 _MOST_GRADIENT_STEPS = 15
 _GRADIENT_TOLERANCE = 1e-7
 """Largest residual of the heat balance, over what ties the node. [K]"""
+_FULL_STEPS = 8
 _STEP = 0.05
 """Step of the numerical derivative of the surface flux. [K]"""
 
@@ -83,7 +84,7 @@ def solve_columns(
     cells = air + (inside - air)[..., None] * np.broadcast_to(falling, (n_x, n_phi, n_r))
     surface = np.where(model.exposed, air + 0.97 * (inside - air), air + 0.1 * (inside - air))
     solver: Solver | None = None
-    for _ in range(most):
+    for step in range(most):
         parts, diagonal, source = _balance(model, surface_flux, cells, surface)
         start = np.concatenate([cells, surface[..., None]], axis=-1)
         found = None if solver is None else _solve_near(parts, diagonal, source, start, solver)
@@ -91,6 +92,9 @@ def solve_columns(
             solver = factors_of(parts, diagonal)
             found = solver(source.ravel()).reshape(n_x, n_phi, n_r + 1)
         change = float(np.max(np.abs(found[..., -1] - surface)))
+        # about a kink of the surface's balance full steps would go to and fro
+        if step >= _FULL_STEPS:
+            found = (found + np.concatenate([cells, surface[..., None]], axis=-1)) / 2
         surface, cells = found[..., -1], found[..., :-1]
         if change < tolerance:
             return _solution(model, surface_flux, parts, cells, surface)

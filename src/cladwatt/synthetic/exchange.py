@@ -125,7 +125,9 @@ def water_share(
     dew = float(dew_point(air, humidity))
     point: FloatArray | float = dew
     if dew < ZERO_CELSIUS:
-        point = np.where(temperature < ZERO_CELSIUS, float(frost_point(air, humidity)), dew)
+        # just below the freezing point of water the frost point of the same vapour lies above it
+        frost = float(np.fmax(frost_point(air, humidity), dew))
+        point = np.where(temperature < ZERO_CELSIUS, frost, dew)
     share: FloatArray = np.clip((point - temperature) / _FILM_SPAN + 0.5, 0.0, 1.0)
     return share if rain is None else np.maximum(share, rain)
 
