@@ -16,6 +16,7 @@ from cladwatt.inverse.local_damage import (
     local_damage,
     patch_covariances,
     spread_step,
+    stretches_of,
 )
 from cladwatt.inverse.null import NullModel
 from cladwatt.inverse.stretches import Run, find_runs
@@ -85,7 +86,7 @@ def test_factors_are_those_of_multivariate_normals(spread):
     kelvin = 3.0
     bins = Bins.of(np.random.default_rng(4).normal(20.0, 0.6, 10), null.station_length)
     bins.value[4:7] += 1.5
-    edges, _ = module._edges(bins)
+    edges, _ = stretches_of(bins)
     place, size = bins.place, null.station_length
     sound, damaged = [], []
     free = 1e6 + null.scene_sigma**2 * np.outer(*[(place - place.mean()) / np.ptp(place)] * 2)
@@ -127,7 +128,7 @@ def test_spread_step_is_a_step_convolved_with_the_fins_answer(ahead):
 
 def test_every_stretch_has_a_prior_and_lengths_count_by_their_logarithm():
     bins = Bins.of(np.zeros(40), NULL.station_length)
-    edges, weights = module._edges(bins)
+    edges, weights = stretches_of(bins)
     number = edges[:, 1] - edges[:, 0]
     assert weights.sum() == pytest.approx(1)
     assert number.max() == 30
@@ -147,7 +148,7 @@ def drawn_with_damage(random: np.random.Generator, stations: int, spread: float)
     profile = drawn(random, stations)
     damaged = bool(random.random() < PRIOR_LOCAL)
     if damaged:
-        edges, weights = module._edges(Bins.of(profile, NULL.station_length))
+        edges, weights = stretches_of(Bins.of(profile, NULL.station_length))
         first, end = edges[random.choice(weights.size, p=weights)]
         unit = stretch(stations, first, end - 1, spread * random.choice(module.SPREADS))
         profile += KELVIN * random.choice(module.RISES) * unit

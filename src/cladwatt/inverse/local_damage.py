@@ -33,6 +33,7 @@ __all__ = [
     "local_damage",
     "patch_covariances",
     "spread_step",
+    "stretches_of",
 ]
 
 PRIOR_LOCAL = 0.25
@@ -145,7 +146,7 @@ def local_damage(
 def _clear_share(stations: int, null: NullModel, runs: tuple[Run, ...]) -> float:
     """Return the prior share of the stretches of a strip that touch no run, above zero."""
     bins = Bins.of(np.zeros(stations), null.station_length)
-    edges, weights = _edges(bins)
+    edges, weights = stretches_of(bins)
     touching = _touching(bins, edges, null, runs)
     return max(1e-9, float(weights[~touching].sum()))
 
@@ -215,7 +216,7 @@ def _factors(
     bins = Bins.of(excess, null.station_length)
     if bins.value.size < 8:
         return _Factors(0.0, -np.inf) if wanted else _Factors(-np.inf, 0.0)
-    edges, weights = _edges(bins)
+    edges, weights = stretches_of(bins)
     logarithm = np.log(weights) + _log_factors(bins, edges, null, kelvin_per_rise, spread_length)
     at = _touching(bins, edges, null, wanted)
     best = int(np.argmax(logarithm))
@@ -270,7 +271,7 @@ class Bins:
         return cls(place, total[kept] / number[kept], number[kept], size, edge)
 
 
-def _edges(bins: Bins) -> tuple[IntArray, FloatArray]:
+def stretches_of(bins: Bins) -> tuple[IntArray, FloatArray]:
     """Return first and last edge of every stretch there could be (m, 2), and their priors (m,).
 
     Lengths are likely by their logarithm, places alike.

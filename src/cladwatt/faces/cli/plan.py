@@ -18,9 +18,9 @@ __all__ = ["add"]
 
 _DESCRIPTION = """\
 Before walking: tell for each line of the line list, in the conditions that the survey file expects,
-the smallest damage a frame can show (found in 95 % of cases, with a false alarm on 5 % of sound
-pipes), how well its loss would be known, and what to bring. The survey needs no frames yet: lines
-and [conditions] are enough. Writes nothing.
+the smallest damage a frame can show (found in 95 % of cases, with false alarms on fewer than 5 %
+of sound pipes), how well its loss would be known, and what to bring. The survey needs no frames
+yet: lines and [conditions] are enough. Writes nothing.
 """
 _END = """\
 A frame of each line is imagined, seen square on at the distance given, and assessed like a recorded
