@@ -367,6 +367,12 @@ def observe_with_references(
         conditions=entry.conditions,
         camera=survey.camera,
         book=book,
+        bare_component=any(
+            other.role == "component"
+            and not other.lagged
+            and masks[other.id][masks[region.id]].any()
+            for other in regions
+        ),
     )
     return observed, remarks
 

@@ -177,6 +177,7 @@ def verdict_caps(seen: Seen) -> tuple[Remark, ...]:
         "indicative.traced": seen.line.tracing.kind != "none",
         "indicative.sun_unknown": _sun_is_unknown(conditions),
         "indicative.rain": had_rained(conditions) and _within_a_day(conditions.hours_since_rain),
+        "indicative.bare_component": seen.bare_component,
         "indicative.not_steady": not is_settled(seen.line),
         "indicative.sun_before": _sun_lingers(seen),
         "indicative.below_dew_point": bool(below > 0.05),

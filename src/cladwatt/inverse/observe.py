@@ -141,6 +141,7 @@ def observe_region(
     conditions: Conditions,
     camera: Camera,
     book: DrawBook,
+    bare_component: bool = False,
 ) -> Observed:
     """Read one pipe region off the image.
 
@@ -160,6 +161,8 @@ def observe_region(
     conditions, camera
         As declared for this frame.
     book : DrawBook
+    bare_component : bool
+        Whether one of the components is bare.
 
     Returns
     -------
@@ -198,6 +201,7 @@ def observe_region(
         drawn=face_draws(face, frame, line_draws, diameter),
         usable=usable,
         component_at=component_at,
+        bare_component=bare_component,
         diameter=diameter,
         gain=_is_gain(line, conditions),
         frame=frame,

@@ -60,6 +60,8 @@ class Seen:
         Stations that carry a number.
     component_at : (n_stations,) array of bool
         Stations under a drawn component: no pipe lagging, not counted in the length.
+    bare_component : bool
+        Whether one of them is bare, so that the lagging beside it ends in a cut.
     diameter : (count,) array
         Over the cladding; a rough guess for the convection law alone where `diameter_known` is
         False. [m]
@@ -90,6 +92,7 @@ class Seen:
     image: FrameImage
     book: DrawBook
     body: FloatArray | None = None
+    bare_component: bool = False
 
     @property
     def owner(self) -> str:
