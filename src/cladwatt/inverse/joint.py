@@ -165,12 +165,11 @@ class JointUpdate:
 
     aged: dict[str, float]
     doubted: frozenset[str]
-    _observed: FloatArray
-    """Draws of y, (count, n_regions)."""
-    _core: BoolArray
-    """Draws that means and covariances are taken of, (count,)."""
-    _moves: tuple[tuple[IntArray, FloatArray, FloatArray], ...]
-    """Per combination: draws dealt to it, their innovation, and the inverse covariance."""
+    _centred: FloatArray
+    """Draws of y less their mean, over the number of draws that means and covariances are taken
+    of, and zero in all others, (count, n_regions)."""
+    _gain: FloatArray
+    """What a unit of covariance with each y moves each draw by, (count, n_regions)."""
 
     def apply(self, values: FloatArray) -> FloatArray:
         """Return draws of any quantity of the frame after the update.
@@ -185,15 +184,8 @@ class JointUpdate:
         array of the same shape
             NaN stays NaN.
         """
-        if not self._moves:
-            return values
         flat = values.reshape(values.shape[0], -1)
-        core, observed = flat[self._core], self._observed[self._core]
-        covariance = (observed - observed.mean(axis=0)).T @ (core - core.mean(axis=0))
-        covariance /= core.shape[0]
-        moved = flat.copy()
-        for dealt, innovation, inverse in self._moves:
-            moved[dealt] += innovation @ (inverse @ covariance)
+        moved = flat + self._gain @ (self._centred.T @ flat)
         return np.asarray(moved.reshape(values.shape))
 
 
@@ -239,14 +231,17 @@ def joint_update(
 
 def _shared_update(shared: SharedEvidence) -> JointUpdate:
     """Take in what other frames say: an observation of each direction, the same for all draws."""
-    count = shared.draws.shape[0]
     covariance = np.atleast_2d(np.cov(shared.draws, rowvar=False, bias=True))
     innovation = shared.mean + np.sqrt(shared.variance) * shared.noise - shared.draws
     inverse = np.asarray(np.linalg.inv(covariance + np.diag(shared.variance)), dtype=float)
-    every = np.ones(count, dtype=bool)
-    return JointUpdate(
-        {}, frozenset(), shared.draws, every, ((np.flatnonzero(every), innovation, inverse),)
-    )
+    every = np.ones(shared.draws.shape[0], dtype=bool)
+    return JointUpdate({}, frozenset(), _centred(shared.draws, every), innovation @ inverse)
+
+
+def _centred(observed: FloatArray, core: BoolArray) -> FloatArray:
+    """Return what a covariance with y is taken by: zero where a draw does not count."""
+    away = observed - observed[core].mean(axis=0)
+    return np.asarray(np.where(core[:, None], away, 0.0) / core.sum())
 
 
 def weighing_of(mean: FloatArray, covariance: FloatArray, observed: FloatArray) -> Weighing:
@@ -286,7 +281,7 @@ def _updated(regions: list[str], observed: FloatArray, book: DrawBook, owner: st
     dealt = np.minimum(dealt, weights.size - 1)
     scatter = _keyed(book, regions, "sound_scatter")
     disagreement = np.sqrt(weighing.doubt) * _keyed(book, regions, "disagreement")
-    moves: list[tuple[IntArray, FloatArray, FloatArray]] = []
+    gain = np.zeros_like(observed)
     for number in np.unique(dealt):
         chosen = np.flatnonzero(dealt == number)
         total = covariance + np.diag(weighing.variances[number])
@@ -294,11 +289,11 @@ def _updated(regions: list[str], observed: FloatArray, book: DrawBook, owner: st
         # what image and specification disagree by stays as uncertainty of both
         widening = disagreement[chosen] @ np.linalg.pinv(covariance) @ total
         innovation = target - observed[chosen] + widening
-        moves.append((chosen, innovation, np.asarray(np.linalg.inv(total), dtype=float)))
+        gain[chosen] = innovation @ np.linalg.inv(total)
     is_aged = np.array([state.aged for state in STATES])[weighing.numbers]
     aged = dict(zip(regions, (weights @ is_aged).tolist(), strict=True))
     doubted = frozenset(r for r, own in zip(regions, weighing.doubt, strict=True) if own > 0)
-    return JointUpdate(aged, doubted, observed, core, tuple(moves))
+    return JointUpdate(aged, doubted, _centred(observed, core), gain)
 
 
 def _keyed(book: DrawBook, regions: list[str], quantity: str) -> FloatArray:
