@@ -9,6 +9,7 @@ makers' statements and correlations say nothing of how their error divides.
 
 from collections.abc import Mapping
 from dataclasses import dataclass, replace
+from functools import cached_property
 
 import numpy as np
 from scipy.special import ndtr
@@ -91,7 +92,7 @@ class FrameDraws:
     mirrors_pieces: bool = False
     """Whether the reflected temperature follows from them; a declared one goes before."""
 
-    @property
+    @cached_property
     def dew_point(self) -> FloatArray | None:
         """Dew point of the air, (count,); None where no humidity is known. [K]"""
         if self.relative_humidity is None:
