@@ -4,6 +4,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass
 
 from tests.calibration.aims import judged
+from tests.calibration.causes import CAUSES
 from tests.calibration.measures import ESTIMATORS
 from tests.calibration.summary import Summary
 from tests.calibration.tables import Table, tables_of
@@ -177,6 +178,9 @@ def _shortfalls(summary: Summary) -> str:
             f"({line.number} regions).\n"
             for line in short
         )
+        causes = [text for words, text in CAUSES if any(x.words.startswith(words) for x in short)]
+        text += "\nWhy, and what was tried:\n\n"
+        text += "".join(f"- {cause}\n" for cause in dict.fromkeys(causes))
     if few:
         text += "\nToo few regions to judge: " + "; ".join(line.words for line in few) + ".\n"
     return text
