@@ -214,7 +214,7 @@ VALUES = [
     f"spreads nothing | {around_pipe.PRIOR_UNSPREAD} |",
     f"where one has {percent(stretch_side.NAMED_FROM)} or more",
     f"pipes steeper than {hidden_side.STEEPEST_DEG:.0f}°",
-    *(f"| {s.mean:.2f} | {s.sigma:.2f} | {s.prior:.2f} |" for s in joint.STATES),
+    *(f"| {s.mean:.2f} | {s.sigma:.2f} | {s.prior:g} |" for s in joint.STATES),
     f"more than {joint.LARGEST_DISAGREEMENT} u away from every state",
     f"sound loss is below {observe.SMALLEST_SOUND_LOSS:g} W/m",
     f"more than {percent(verdict.INFEASIBLE_SHARE)} of the draws are beyond",

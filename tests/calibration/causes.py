@@ -4,11 +4,11 @@ __all__ = ["CAUSES"]
 
 _WIDTH = (
     "The interval is as wide as what is declared makes it: conductivity (10 %), installation "
-    "factor (7 %) and thickness alone give the specified loss a width of some 40 %, the "
-    "camera's ±2 K and the convection law give the image one of 50 to 150 %. The oracle below, "
-    "given every declared input's true value, shows how much of it that is. Tried: what frames share of "
-    "the line, the camera and the law told from frame to frame, which took some 5 points off; more trust in what "
-    "others say narrows further, and where frames differ it no longer covers."
+    "factor (7 %) and thickness alone give the specified loss a width of some 40 %; the camera's "
+    "±2 K and the convection law give the image one of 50 to 150 %. The oracle below, given every "
+    "declared input's true value, shows how much of it that is. Tried: what frames share of the "
+    "line, the camera and the law told from frame to frame, which took some 5 points off; more "
+    "trust in what others say narrows further, and where frames differ it no longer covers."
 )
 _MISSED = (
     "Nearly all are warm wet surfaces after rain, which get no number and are not searched, and "
