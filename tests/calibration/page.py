@@ -88,8 +88,9 @@ in every survey: sun on the pipe, sun or a shower earlier in the day; cladding w
 and frost on cold pipes; lagging soaked or frozen throughout and declared so; tracers; a line still
 warming up; a riser, a bend, wind up and down a slope; an inspection window; flanges and valves,
 bare and covered; readings beyond the recording range. The estimator was developed on seeds 1000 to
-1999; the seeds counted here, {first} to {last}, had no part in that. That a region is
-damaged is decided at P > 0.5, fixed beforehand.
+1999. The seeds counted here, {first} to {last}, had no part in that but for this: two of them
+had stopped the generator, which was mended; and they had been counted once before the prior of
+ageing was lowered. That a region is damaged is decided at P > 0.5, fixed beforehand.
 
 """
 
