@@ -255,7 +255,8 @@ class TestKinds:
 
     def test_a_region_of_which_nothing_is_said_counts_at_the_prior(self):
         scores = kind_scores("wet", (), 0.1)
-        assert scores.true == scores.prior == pytest.approx(prior_shares()["wet"])
+        assert scores.true == pytest.approx(scores.prior)
+        assert scores.prior == pytest.approx(prior_shares()["wet"])
 
     @pytest.mark.parametrize(("hottest", "kind", "other"), [(380.0, "bare", "wet"),
                                                             (310.0, "wet", "bare")])  # fmt: skip
