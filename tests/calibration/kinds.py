@@ -55,8 +55,8 @@ class KindScores:
 def prior_shares() -> dict[str, float]:
     """Return the prior of each kind of local damage, given that damage is local."""
     kinds = shipped_tables().damage_kinds
-    total = sum(kinds[name].prior for name in LOCAL_KINDS)
-    return {name: kinds[name].prior / total for name in LOCAL_KINDS}
+    total = sum(kinds[name].prior for name in sorted(LOCAL_KINDS))
+    return {name: kinds[name].prior / total for name in sorted(LOCAL_KINDS)}
 
 
 def by_thresholds(shown: float) -> dict[str, float]:
@@ -71,7 +71,7 @@ def by_thresholds(shown: float) -> dict[str, float]:
     if math.isnan(shown):
         return prior
     favoured = PIPE_KINDS if shown > PIPE_SEEN_ABOVE else LOCAL_KINDS - PIPE_KINDS
-    mass = sum(prior[name] for name in favoured)
+    mass = sum(prior[name] for name in sorted(favoured))
     return {
         name: (SURE * share / mass if name in favoured else (1 - SURE) * share / (1 - mass))
         for name, share in prior.items()
