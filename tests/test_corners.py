@@ -113,9 +113,8 @@ def resistance_holds(shown: Shown, name: str, without: float = 0.0) -> None:
 
 def limited(shown: Shown, name: str, reason: str) -> None:
     verdict = shown.region(name).verdict
-    assert verdict.level != "quantified"
-    if verdict.level == "indicative":
-        assert verdict.reason.key == f"indicative.{reason}"
+    assert verdict.level == "indicative"
+    assert verdict.reason.key == f"indicative.{reason}"
 
 
 def refused(shown: Shown, name: str, reason: str) -> None:
@@ -163,12 +162,13 @@ def vertical_line(shown: Shown) -> None:
 def riser_of_a_level_line(shown: Shown) -> None:
     assert shown.line("R27").inclination_deg == 0.0
     number_holds(shown, "R27")
-    level = shown.otherwise("R27", region={"inclination_deg": None})
-    upright = shown.region("R27").image_loss
+    still = {"wind_speed": Quantity(0.0, 0.01, lower=0.0)}
+    upright = shown.otherwise("R27", region={}, conditions=dict(still)).image_loss
+    level = shown.otherwise("R27", region={"inclination_deg": None}, conditions=dict(still))
     assert upright is not None
     assert level.image_loss is not None
     # free convection along 2 m of height carries less off than across 0.2 m
-    assert upright.median < level.image_loss.median
+    assert upright.median < 0.995 * level.image_loss.median
 
 
 def bend(shown: Shown) -> None:
@@ -264,8 +264,8 @@ def two_emissivities(shown: Shown) -> None:
 
 def sun_on_the_pipe(shown: Shown) -> None:
     limited(shown, "R18", "sun")
-    assert inside(shown.true["R18"]["heat_loss_W_per_m"], shown.region("R18").heat_loss)
-    assert shown.region("R19").verdict.level != "quantified"
+    number_holds(shown, "R18")
+    refused(shown, "R19", "interval_too_wide")
     assert inside(shown.true["R19"]["heat_loss_W_per_m"], shown.region("R19").heat_loss)
 
 

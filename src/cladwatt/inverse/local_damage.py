@@ -23,7 +23,7 @@ from typing import NamedTuple
 import numpy as np
 
 from cladwatt.inverse.null import PATCH_LENGTH, NullModel
-from cladwatt.inverse.stretches import Run
+from cladwatt.inverse.stretches import PRIOR_LOCAL, Run
 from cladwatt.types import BoolArray, FloatArray, IntArray
 
 __all__ = [
@@ -36,15 +36,13 @@ __all__ = [
     "stretches_of",
 ]
 
-PRIOR_LOCAL = 0.25
-"""Prior probability of local damage somewhere in a region; assumption."""
 SCATTER_ALONG = 0.05
 """Scatter of a sound pipe's own loss along it, by joints, density and air; assumption."""
 MOST_BINS = 100
 RISES = np.geomspace(0.12, 12.0, 16)
 """Loss of a stretch over sound, less one; every factor equally likely."""
 SHOULDER = 5.0
-"""Templates beside a run count with it where they are not e^5 times likelier than those on it."""
+"""Stretches beside a run count with it where they are not e^5 times likelier than those on it."""
 SHORTEST = 0.02
 """[m]"""
 LONGEST_SHARE = 0.75
